@@ -1,0 +1,40 @@
+//! Quantum-well active regions, from one plain-text structure file: levels, gain spectrum,
+//! emission wavelength, and what an order needs.
+//!
+//! # The way the data flows
+//!
+//! ```text
+//! structure file -> stack -> profile -> subbands -> carriers -> spectra     (evaluation chains these, once)
+//! evaluation -> sheet -> cli
+//! ```
+//!
+//! Each module stands on a floor and uses only the floors below it; a test reads this table and
+//! checks every path in the code against it.
+//!
+//! | floor | module | what it holds |
+//! |---|---|---|
+//! | 0 | [`units`] | physical constants, typed once, and the conversions derived from them |
+//! | 0 | [`numerics`] | tridiagonal eigenproblems, roots, quadrature, Fermi integrals; no physics |
+//! | 0 | [`source`] | text with places: what is wrong in a file, where, and how to mend it |
+//! | 1 | [`materials`] | parameter data with their citations, alloys, temperature, strain law, index of refraction |
+//! | 2 | [`structure`] | the structure file, and the validated stack that all others use |
+//! | 3 | [`profile`] | band edges and masses along the stack |
+//! | 4 | [`subbands`] | levels and envelopes |
+//! | 5 | [`carriers`] | occupation and quasi-Fermi levels |
+//! | 6 | [`spectra`] | transitions, lineshape, gain, spontaneous emission, landmarks |
+//! | 7 | [`evaluation`] | the only chain of floors 3 to 6; the one record of results; remarks with advice |
+//! | 9 | [`sheet`] | numbers become text here: terminal tables, CSV, JSON, figures |
+//! | 10 | [`cli`] | words in, files and exit code out; the only place that prints |
+//!
+//! # Units
+//!
+//! Energies are in eV, lengths in nm, temperatures in K, masses in free-electron masses, volume
+//! densities in cm⁻³, sheet densities in cm⁻², gain in cm⁻¹, current densities in A/cm². All
+//! energies share one zero, the scale of the valence-band offsets in the parameter table; holes
+//! are given as electron energies (a valence edge is a maximum).
+
+pub mod materials;
+pub mod numerics;
+pub mod source;
+pub mod structure;
+pub mod units;

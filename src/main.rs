@@ -1,0 +1,2 @@
+//! The program: words in, files and exit code out.
+fn main() {}

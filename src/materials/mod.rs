@@ -1,0 +1,1 @@
+//! Materials: parameter data with their citations, alloys, temperature, strain, refractive index.

@@ -1,0 +1,1 @@
+//! Numerical methods, no physics.

@@ -1,0 +1,1 @@
+//! The structure file and the validated [`Stack`] that every other module uses.
