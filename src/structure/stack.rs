@@ -1,0 +1,249 @@
+//! The validated stack: what the file said, checked, expanded, in the trade's units.
+
+use crate::materials::{Composition, Crystal};
+
+/// What a layer is made of.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub enum Substance {
+    /// An alloy by composition: its numbers come from the parameter data at any temperature.
+    Alloy(Composition),
+    /// A material by its own numbers, the same at every temperature.
+    Own {
+        /// Its numbers (gaps to X and L infinite).
+        crystal: Crystal,
+        /// Its refractive index, where the file gives one.
+        index: Option<f64>,
+    },
+}
+
+/// A substance under the name that the file gives it.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Material {
+    /// The key of `[materials.*]`, or the formula as written.
+    pub name: String,
+    /// What it is.
+    pub substance: Substance,
+}
+
+impl Material {
+    /// The formula of an alloy (`Al0.35Ga0.13In0.52As`), or the name of a material of own numbers.
+    #[must_use]
+    pub fn formula(&self) -> String {
+        match &self.substance {
+            Substance::Alloy(composition) => composition.formula(),
+            Substance::Own { .. } => self.name.clone(),
+        }
+    }
+}
+
+/// The part that a layer plays.
+#[derive(Clone, Copy, Debug, PartialEq, Eq, Hash)]
+pub enum Role {
+    /// Starts the epitaxy on the substrate.
+    Buffer,
+    /// Holds the light in, and carries current.
+    Cladding,
+    /// Between cladding and wells: guides the light, holds the carriers near.
+    Confinement,
+    /// Between and next to the wells.
+    Barrier,
+    /// Where carriers are meant to be.
+    Well,
+    /// Next to a well and part of its potential, but not of its thickness.
+    Step,
+    /// Keeps dopants or interfaces apart.
+    Spacer,
+    /// Keeps electrons (or an etch) from going further.
+    Stop,
+    /// Carries the metal.
+    Contact,
+    /// Protects the surface; often removed.
+    Cap,
+}
+
+impl Role {
+    /// Every role, in the order of this list.
+    pub const ALL: [Self; 10] = [
+        Self::Buffer,
+        Self::Cladding,
+        Self::Confinement,
+        Self::Barrier,
+        Self::Well,
+        Self::Step,
+        Self::Spacer,
+        Self::Stop,
+        Self::Contact,
+        Self::Cap,
+    ];
+
+    /// The word for it in files and reports.
+    #[must_use]
+    pub fn word(self) -> &'static str {
+        match self {
+            Self::Buffer => "buffer",
+            Self::Cladding => "cladding",
+            Self::Confinement => "confinement",
+            Self::Barrier => "barrier",
+            Self::Well => "well",
+            Self::Step => "step",
+            Self::Spacer => "spacer",
+            Self::Stop => "stop",
+            Self::Contact => "contact",
+            Self::Cap => "cap",
+        }
+    }
+}
+
+/// Dopants of one layer.
+#[derive(Clone, Debug, Default, PartialEq)]
+pub struct Doping {
+    /// Density of donors, cm⁻³.
+    pub donors_cm3: f64,
+    /// Density of acceptors, cm⁻³.
+    pub acceptors_cm3: f64,
+    /// The element, where the file names it.
+    pub dopant: Option<String>,
+}
+
+/// One layer of the expanded stack.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Layer {
+    /// The part it plays.
+    pub role: Role,
+    /// Its material; of a graded layer the one at the substrate-side end.
+    pub material: Material,
+    /// Of a graded layer the material at the surface-side end: the composition runs straight.
+    pub grade_to: Option<Material>,
+    /// Thickness, nm.
+    pub thickness_nm: f64,
+    /// Dopants.
+    pub doping: Doping,
+    /// Number of the row of the file (from 1, groups counted as one row each) it came from.
+    pub row: usize,
+}
+
+/// Temperature and densities.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Operation {
+    /// Lattice and carrier temperature, K.
+    pub temperature_k: f64,
+    /// Whether the file (or the command line) gave it; else it is the default of 300 K.
+    pub temperature_given: bool,
+    /// Densities per volume of the wells, cm⁻³, rising.
+    pub densities_cm3: Vec<f64>,
+    /// The working density, cm⁻³.
+    pub working_density_cm3: f64,
+}
+
+/// How the valence bands are treated.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum Bands {
+    /// One band at a time: heavy and light holes as parabolas.
+    Single,
+    /// Heavy, light and split-off holes mixed.
+    Mixed,
+}
+
+impl Bands {
+    /// The word for it in files and reports.
+    #[must_use]
+    pub fn word(self) -> &'static str {
+        match self {
+            Self::Single => "single",
+            Self::Mixed => "mixed",
+        }
+    }
+}
+
+/// The shape of the homogeneous line.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum Lineshape {
+    /// Hyperbolic secant: short tails.
+    Sech,
+    /// Gaussian: the shortest tails.
+    Gaussian,
+    /// Lorentzian: long tails, for comparison.
+    Lorentzian,
+}
+
+impl Lineshape {
+    /// The word for it in files and reports.
+    #[must_use]
+    pub fn word(self) -> &'static str {
+        match self {
+            Self::Sech => "sech",
+            Self::Gaussian => "gaussian",
+            Self::Lorentzian => "lorentzian",
+        }
+    }
+}
+
+/// The switches of the model.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct Model {
+    /// Treatment of the valence bands.
+    pub bands: Bands,
+    /// Whether the electron mass depends on energy.
+    pub nonparabolic: bool,
+    /// Shape of the line.
+    pub lineshape: Lineshape,
+    /// Intraband relaxation time τ, fs; the half width is ħ/τ.
+    pub intraband_fs: f64,
+    /// Gap shrinkage at 1e18 cm⁻³, meV.
+    pub shrinkage_mev: f64,
+    /// Share of the gap difference that falls to the conduction band, where the file fixes it.
+    pub conduction_share: Option<f64>,
+    /// Field along growth, kV/cm: the electron's potential energy rises towards the surface.
+    pub field_kv_cm: f64,
+    /// Refractive index of the wells, where the file fixes it.
+    pub index: Option<f64>,
+}
+
+impl Default for Model {
+    fn default() -> Self {
+        Self {
+            bands: Bands::Single,
+            nonparabolic: true,
+            lineshape: Lineshape::Sech,
+            intraband_fs: 100.0,
+            shrinkage_mev: 32.0,
+            conduction_share: None,
+            field_kv_cm: 0.0,
+            index: None,
+        }
+    }
+}
+
+/// A structure that has passed every check of its file.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Stack {
+    /// What the file calls it.
+    pub title: String,
+    /// The substrate, (001).
+    pub substrate: Material,
+    /// Every layer, groups written out, from the substrate up.
+    pub layers: Vec<Layer>,
+    /// Temperature and densities.
+    pub operation: Operation,
+    /// Switches of the model.
+    pub model: Model,
+}
+
+impl Stack {
+    /// Total thickness of the layers whose role is `well`, nm.
+    #[must_use]
+    pub fn well_thickness_nm(&self) -> f64 {
+        self.wells().map(|layer| layer.thickness_nm).sum()
+    }
+
+    /// Number of wells.
+    #[must_use]
+    pub fn well_count(&self) -> usize {
+        self.wells().count()
+    }
+
+    /// The wells, from the substrate up.
+    pub fn wells(&self) -> impl Iterator<Item = &Layer> {
+        self.layers.iter().filter(|layer| layer.role == Role::Well)
+    }
+}
