@@ -10,12 +10,6 @@ use crate::structure::{Material, Role, Stack, Substance};
 
 /// How far the solved region reaches beyond the outermost wells, nm.
 pub const REACH_NM: f64 = 60.0;
-/// Share of the gap difference that falls to the conduction band between InGaAsP layers on InP.
-///
-/// Source: between 0.39 and 0.43 in the literature, D. V. Lang et al., Appl. Phys. Lett. 50, 736
-/// (1987) among it; see the offset rules of the parameter data.
-pub const INGAASP_CONDUCTION_SHARE: f64 = 0.41;
-
 /// A crystal and its edges on the substrate.
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub struct Strained {
@@ -74,7 +68,9 @@ pub enum Unsolvable {
     #[error("the stack has no layer with role = \"well\"")]
     NoWell,
     /// A well (or a step that belongs to it) is the outermost layer.
-    #[error("the {side} layer (row {row}) is a {role}: nothing stands beside it to confine carriers; add a barrier or confinement layer")]
+    #[error(
+        "the {side} layer (row {row}) is a {role}: nothing stands beside it to confine carriers; add a barrier or confinement layer"
+    )]
     OutermostWell {
         /// `lowest` or `topmost`.
         side: &'static str,
@@ -87,7 +83,7 @@ pub enum Unsolvable {
 
 /// Edges and masses of every layer, and the solved region.
 #[derive(Clone, Debug)]
-pub struct Profile {
+pub struct Profile<'a> {
     /// Numbers of every layer of the stack.
     pub layers: Vec<LayerNumbers>,
     /// The substrate's numbers at the working temperature.
@@ -104,29 +100,34 @@ pub struct Profile {
     pub slope_ev_nm: f64,
     /// Compositions at the ends of graded layers, for the intervals between.
     grades: Vec<Option<(Composition, Composition)>>,
-    parameters: Parameters,
+    parameters: &'a Parameters,
     temperature_k: f64,
 }
 
-impl Profile {
+impl<'a> Profile<'a> {
     /// The profile of a stack.
     ///
     /// # Errors
     ///
     /// [`Unsolvable`] if there is no well, or if a well is the outermost layer.
-    pub fn new(stack: &Stack, parameters: &Parameters) -> Result<Self, Unsolvable> {
+    pub fn new(stack: &Stack, parameters: &'a Parameters) -> Result<Self, Unsolvable> {
         let region = Region::of(stack)?;
         let sections = region.sections(stack);
         let temperature_k = stack.operation.temperature_k;
         let offsets = offsets(stack, &sections, parameters);
         let crystal = |substance: &Substance| match substance {
-            Substance::Alloy(composition) => parameters.crystal(composition, temperature_k, offsets),
+            Substance::Alloy(composition) => {
+                parameters.crystal(composition, temperature_k, offsets)
+            }
             Substance::Own { crystal, .. } => *crystal,
         };
         let substrate = crystal(&stack.substrate.substance);
         let strained = |material: &Material| {
             let crystal = crystal(&material.substance);
-            Strained { crystal, edges: crystal.on(substrate.lattice_nm) }
+            Strained {
+                crystal,
+                edges: crystal.on(substrate.lattice_nm),
+            }
         };
         let layers = stack
             .layers
@@ -156,7 +157,7 @@ impl Profile {
             centre_nm: 0.5 * (region.bottom_nm + region.top_nm),
             slope_ev_nm: 1e-4 * stack.model.field_kv_cm,
             grades,
-            parameters: parameters.clone(),
+            parameters,
             temperature_k,
         })
     }
@@ -176,14 +177,22 @@ impl Profile {
         let share = section.shares.0 + (section.shares.1 - section.shares.0) * within;
         if section.shares.0 == section.shares.1 {
             // Uniform, or a graded layer's end prolonged.
-            return if share == 0.0 { numbers.lower } else { numbers.upper };
+            return if share == 0.0 {
+                numbers.lower
+            } else {
+                numbers.upper
+            };
         }
         let Some((from, to)) = &self.grades[section.layer] else {
             return numbers.lower;
         };
         let crystal =
-            self.parameters.crystal(&from.towards(to, share), self.temperature_k, self.offsets);
-        Strained { crystal, edges: crystal.on(self.substrate.lattice_nm) }
+            self.parameters
+                .crystal(&from.towards(to, share), self.temperature_k, self.offsets);
+        Strained {
+            crystal,
+            edges: crystal.on(self.substrate.lattice_nm),
+        }
     }
 
     /// A grid of the solved region whose nodes include every layer boundary: each section is cut
@@ -231,19 +240,27 @@ impl Profile {
         self.sections
             .iter()
             .filter(|section| section.outside)
-            .flat_map(|section| [&self.layers[section.layer].lower, &self.layers[section.layer].upper])
+            .flat_map(|section| {
+                [
+                    &self.layers[section.layer].lower,
+                    &self.layers[section.layer].upper,
+                ]
+            })
     }
 
-    /// Both ends of every well.
-    pub fn wells<'a>(&'a self, stack: &'a Stack) -> impl Iterator<Item = (&'a Strained, f64)> {
-        stack.layers.iter().zip(&self.layers).filter(|(layer, _)| layer.role == Role::Well).flat_map(
-            |(layer, numbers)| {
+    /// Both ends of every well, each with half its thickness in nm.
+    pub fn wells<'b>(&'b self, stack: &'b Stack) -> impl Iterator<Item = (&'b Strained, f64)> {
+        stack
+            .layers
+            .iter()
+            .zip(&self.layers)
+            .filter(|(layer, _)| layer.role == Role::Well)
+            .flat_map(|(layer, numbers)| {
                 [
                     (&numbers.lower, 0.5 * layer.thickness_nm),
                     (&numbers.upper, 0.5 * layer.thickness_nm),
                 ]
-            },
-        )
+            })
     }
 }
 
@@ -274,14 +291,16 @@ impl Region {
             })
             .collect();
         let role = |index: usize| stack.layers[index].role;
-        let wells: Vec<usize> =
-            (0..stack.layers.len()).filter(|&index| role(index) == Role::Well).collect();
+        let wells: Vec<usize> = (0..stack.layers.len())
+            .filter(|&index| role(index) == Role::Well)
+            .collect();
         let (Some(&first_well), Some(&last_well)) = (wells.first(), wells.last()) else {
             return Err(Unsolvable::NoWell);
         };
         // A step counts if it touches a well, directly or through other steps.
-        let mut in_wells: Vec<bool> =
-            (0..stack.layers.len()).map(|index| role(index) == Role::Well).collect();
+        let mut in_wells: Vec<bool> = (0..stack.layers.len())
+            .map(|index| role(index) == Role::Well)
+            .collect();
         for &well in &wells {
             let mut below = well;
             while below > 0 && role(below - 1) == Role::Step {
@@ -294,11 +313,18 @@ impl Region {
                 in_wells[above] = true;
             }
         }
-        let first = in_wells.iter().position(|&inside| inside).unwrap_or(first_well);
-        let last = in_wells.iter().rposition(|&inside| inside).unwrap_or(last_well);
-        for (side, index, beside) in
-            [("lowest", 0, first == 0), ("topmost", last, last + 1 == stack.layers.len())]
-        {
+        let first = in_wells
+            .iter()
+            .position(|&inside| inside)
+            .unwrap_or(first_well);
+        let last = in_wells
+            .iter()
+            .rposition(|&inside| inside)
+            .unwrap_or(last_well);
+        for (side, index, beside) in [
+            ("lowest", 0, first == 0),
+            ("topmost", last, last + 1 == stack.layers.len()),
+        ] {
             if beside {
                 return Err(Unsolvable::OutermostWell {
                     side,
@@ -334,7 +360,11 @@ impl Region {
                 shares,
             };
             let share = |position: f64| {
-                if graded { (position - bottom) / layer.thickness_nm } else { 0.0 }
+                if graded {
+                    (position - bottom) / layer.thickness_nm
+                } else {
+                    0.0
+                }
             };
             if index == 0 && bottom > low {
                 sections.push(section(low, bottom, (0.0, 0.0)));
@@ -352,47 +382,33 @@ impl Region {
     }
 }
 
-/// The offset rule of a stack.
+/// The offset rule of a stack: that of its substrate and of the compositions in the solved region.
 fn offsets(stack: &Stack, sections: &[Section], parameters: &Parameters) -> Offsets {
-    let temperature_k = stack.operation.temperature_k;
-    let substrate = &stack.substrate.substance;
-    let table = |composition: &Composition| {
-        parameters.crystal(composition, temperature_k, Offsets::Table)
-    };
-    if let Some(conduction_share) = stack.model.conduction_share {
-        let anchor = match substrate {
-            Substance::Alloy(composition) => table(composition),
-            Substance::Own { crystal, .. } => *crystal,
-        };
-        return Offsets::Share {
+    let share = stack.model.conduction_share;
+    match (&stack.substrate.substance, share) {
+        (Substance::Alloy(substrate), _) => {
+            let compositions = sections
+                .iter()
+                .flat_map(|section| {
+                    let layer = &stack.layers[section.layer];
+                    std::iter::once(&layer.material).chain(&layer.grade_to)
+                })
+                .filter_map(|material| match &material.substance {
+                    Substance::Alloy(composition) => Some(composition),
+                    Substance::Own { .. } => None,
+                });
+            parameters.offsets(
+                substrate,
+                compositions,
+                share,
+                stack.operation.temperature_k,
+            )
+        }
+        (Substance::Own { crystal, .. }, Some(conduction_share)) => Offsets::Share {
             conduction_share,
-            anchor_valence_ev: anchor.valence_edge_ev,
-            anchor_gap_ev: anchor.gap_ev,
-        };
+            anchor_valence_ev: crystal.valence_edge_ev,
+            anchor_gap_ev: crystal.gap_ev,
+        },
+        (Substance::Own { .. }, None) => Offsets::Table,
     }
-    let Substance::Alloy(composition) = substrate else {
-        return Offsets::Table;
-    };
-    if composition.is_binary("GaAs") {
-        return Offsets::TableUnbowedInGaAs;
-    }
-    let phosphides_and_arsenides = |material: &Material| match &material.substance {
-        Substance::Alloy(composition) => composition.is_within(&["In", "Ga", "As", "P"]),
-        Substance::Own { .. } => true,
-    };
-    let family = composition.is_binary("InP")
-        && sections.iter().all(|section| {
-            let layer = &stack.layers[section.layer];
-            phosphides_and_arsenides(&layer.material)
-                && layer.grade_to.as_ref().is_none_or(phosphides_and_arsenides)
-        });
-    if family {
-        let anchor = table(composition);
-        return Offsets::Share {
-            conduction_share: INGAASP_CONDUCTION_SHARE,
-            anchor_valence_ev: anchor.valence_edge_ev,
-            anchor_gap_ev: anchor.gap_ev,
-        };
-    }
-    Offsets::Table
 }
