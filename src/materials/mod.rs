@@ -5,8 +5,19 @@
 
 mod composition;
 mod crystal;
+mod formula;
+mod interpolation;
+mod offsets;
 mod parameters;
+mod prescription;
+mod quantity;
+mod refraction;
+mod table;
 
-pub use composition::Composition;
+pub use composition::{Composition, Element, Elements};
 pub use crystal::{Crystal, Edges, Sense};
-pub use parameters::{Offsets, Parameters};
+pub use offsets::{OffsetRule, Offsets};
+pub use parameters::{MissingTernary, Parameters};
+pub use prescription::{SolveError, solve_composition};
+pub use quantity::{BINARY_KEYS, Key, TERNARY_KEYS};
+pub use table::{Alternate, Entry, Material, SHIPPED_NAME, Table};
