@@ -34,6 +34,7 @@
 //! are given as electron energies (a valence edge is a maximum).
 
 pub mod carriers;
+pub mod evaluation;
 pub mod materials;
 pub mod numerics;
 pub mod profile;

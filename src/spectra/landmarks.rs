@@ -22,7 +22,7 @@ const PEAK_TOLERANCE_EV: f64 = 1e-8;
 ///
 /// * `polarisation` – picks the gain of a [`Point`]
 pub fn gain_peak(
-    emitter: &impl Emitter,
+    emitter: &dyn Emitter,
     occupation: &Occupation,
     polarisation: impl Fn(&Point) -> f64,
 ) -> Option<Peak> {
@@ -53,7 +53,7 @@ fn points(low: f64, high: f64, step: f64) -> usize {
 
 /// Range of photon energies in which a spectrum emits: the lowest edge less 15 half widths to the
 /// highest occupied edge, or the quasi-Fermi splitting if that is higher, plus 12 kT.
-fn emission_range(emitter: &impl Emitter, occupation: &Occupation) -> Option<(f64, f64)> {
+fn emission_range(emitter: &dyn Emitter, occupation: &Occupation) -> Option<(f64, f64)> {
     let edges = emitter.edges_ev();
     let (lowest, highest) = (edges.first()?, edges.last()?);
     let line = emitter.emission_line(occupation.thermal_ev);
@@ -64,7 +64,7 @@ fn emission_range(emitter: &impl Emitter, occupation: &Occupation) -> Option<(f6
 }
 
 /// The peak of spontaneous emission.
-pub fn emission_peak(emitter: &impl Emitter, occupation: &Occupation) -> Option<Peak> {
+pub fn emission_peak(emitter: &dyn Emitter, occupation: &Occupation) -> Option<Peak> {
     let (low, high) = emission_range(emitter, occupation)?;
     let edges = emitter.edges_ev();
     // Beyond the splitting, or the lowest edge, emission only falls.
@@ -90,7 +90,7 @@ pub fn emission_peak(emitter: &impl Emitter, occupation: &Occupation) -> Option<
 }
 
 /// Full width at half maximum of spontaneous emission around its peak, eV.
-pub fn emission_width_ev(emitter: &impl Emitter, occupation: &Occupation, peak: &Peak) -> f64 {
+pub fn emission_width_ev(emitter: &dyn Emitter, occupation: &Occupation, peak: &Peak) -> f64 {
     let excess = |photon_ev: f64| {
         emitter
             .point(occupation, photon_ev)
@@ -114,7 +114,7 @@ pub fn emission_width_ev(emitter: &impl Emitter, occupation: &Occupation, peak: 
 }
 
 /// Total spontaneous rate, per cm³ of wells and second.
-pub fn total_rate_per_cm3_s(emitter: &impl Emitter, occupation: &Occupation) -> f64 {
+pub fn total_rate_per_cm3_s(emitter: &dyn Emitter, occupation: &Occupation) -> f64 {
     let Some((low, high)) = emission_range(emitter, occupation) else {
         return 0.0;
     };
