@@ -49,7 +49,7 @@ const BOWED: [(Bowed, &str); 11] = [
 ];
 
 /// One number per compound.
-type PerCompound = [f64; COMPOUNDS];
+pub(super) type PerCompound = [f64; COMPOUNDS];
 /// One polynomial per ternary, coefficient by coefficient.
 type PerPair = [[f64; PAIRS]; BOWING_TERMS];
 

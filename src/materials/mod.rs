@@ -20,4 +20,5 @@ pub use offsets::{OffsetRule, Offsets};
 pub use parameters::{MissingTernary, Parameters};
 pub use prescription::{SolveError, solve_composition};
 pub use quantity::{BINARY_KEYS, Key, TERNARY_KEYS};
+pub use refraction::{IndexAdvice, IndexModel, IndexStatement, Refraction};
 pub use table::{Alternate, Entry, Material, SHIPPED_NAME, Table};
