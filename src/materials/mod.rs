@@ -5,6 +5,7 @@
 
 mod composition;
 mod crystal;
+mod description;
 mod formula;
 mod interpolation;
 mod offsets;
@@ -16,6 +17,7 @@ mod table;
 
 pub use composition::{Composition, Element, Elements};
 pub use crystal::{Crystal, Edges, Sense};
+pub use description::{Description, Directness, Family, Figure, IndexFigure, Section};
 pub use offsets::{OffsetRule, Offsets};
 pub use parameters::{MissingTernary, Parameters};
 pub use prescription::{SolveError, solve_composition};

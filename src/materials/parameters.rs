@@ -25,7 +25,6 @@ pub(super) struct Frame {
     pub(super) status_codes: BTreeMap<String, String>,
     pub(super) conventions: BTreeMap<String, String>,
     pub(super) interpolation: BTreeMap<String, String>,
-    pub(super) units: BTreeMap<String, String>,
     #[serde(rename = "offset_rule")]
     pub(super) offset_rules: Vec<OffsetRule>,
     pub(super) index: IndexData,
