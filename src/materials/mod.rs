@@ -5,6 +5,7 @@
 
 mod composition;
 mod crystal;
+mod description;
 mod formula;
 mod interpolation;
 mod offsets;
@@ -16,8 +17,10 @@ mod table;
 
 pub use composition::{Composition, Element, Elements};
 pub use crystal::{Crystal, Edges, Sense};
+pub use description::{Description, Directness, Family, Figure, IndexFigure, Section};
 pub use offsets::{OffsetRule, Offsets};
 pub use parameters::{MissingTernary, Parameters};
 pub use prescription::{SolveError, solve_composition};
 pub use quantity::{BINARY_KEYS, Key, TERNARY_KEYS};
+pub use refraction::{IndexAdvice, IndexModel, IndexStatement, Refraction};
 pub use table::{Alternate, Entry, Material, SHIPPED_NAME, Table};

@@ -131,8 +131,8 @@ pub fn solve_composition(
     in_plane_strain: Option<f64>,
 ) -> Result<Composition, SolveError> {
     refuse_senseless(substrate_lattice_nm, gap_nm, in_plane_strain)?;
-    count_conditions(elements, gap_nm.is_some(), in_plane_strain.is_some())?;
-    parameters.covers(&even_mixture(elements))?;
+    count_conditions(*elements, gap_nm.is_some(), in_plane_strain.is_some())?;
+    parameters.covers(&even_mixture(*elements))?;
 
     let task = Task {
         parameters,
@@ -141,7 +141,7 @@ pub fn solve_composition(
     };
     let line = match in_plane_strain {
         Some(strain) => task.strain_line(strain)?,
-        None => Line::whole(elements),
+        None => Line::whole(*elements),
     };
     let Some(gap_nm) = gap_nm else {
         return Ok(line.at(0.0));
@@ -181,7 +181,7 @@ fn refuse_senseless(
 }
 
 /// Whether as many conditions are given as there are fractions to choose.
-fn count_conditions(elements: &Elements, gap: bool, strain: bool) -> Result<(), SolveError> {
+fn count_conditions(elements: Elements, gap: bool, strain: bool) -> Result<(), SolveError> {
     let free = elements.free_fractions();
     let given = match (gap, strain) {
         (true, true) => "a gap and a strain are",
@@ -223,7 +223,7 @@ fn count_conditions(elements: &Elements, gap: bool, strain: bool) -> Result<(), 
 }
 
 /// Equal shares of all elements.
-fn even_mixture(elements: &Elements) -> Composition {
+fn even_mixture(elements: Elements) -> Composition {
     let even = |present: [bool; 3]| {
         let count = present.iter().filter(|&&here| here).count() as f64;
         present.map(|here| if here { count.recip() } else { 0.0 })
@@ -253,7 +253,7 @@ enum Line {
 
 impl Line {
     /// From end to end of a compound or a ternary.
-    fn whole(elements: &Elements) -> Self {
+    fn whole(elements: Elements) -> Self {
         let corners = corners(elements);
         let last = corners.len() - 1;
         Self::Straight(corners[0], corners[last])
@@ -285,7 +285,7 @@ fn following(lattices_nm: &[[f64; 2]; 2], lattice_nm: f64, run: f64) -> f64 {
 }
 
 /// The compounds that elements make, cations first to last, of each the anions.
-fn corners(elements: &Elements) -> Vec<Composition> {
+fn corners(elements: Elements) -> Vec<Composition> {
     let places = |present: [bool; 3]| (0..3).filter(move |&place| present[place]);
     places(elements.group_iii)
         .flat_map(|cation| {
@@ -317,7 +317,7 @@ impl Task<'_> {
 
     /// All compositions of a strain.
     fn strain_line(&self, strain: f64) -> Result<Line, SolveError> {
-        let corners = corners(self.elements);
+        let corners = corners(*self.elements);
         let lattices_nm: Vec<f64> = corners
             .iter()
             .map(|corner| self.lattice_nm(corner))
@@ -424,8 +424,7 @@ fn curved(corners: &[Composition], lattices_nm: &[f64], lattice_nm: f64) -> Line
     // the following share is a monotone function of the running one: it stays between 0 and 1
     // on one interval, which ends where a column of compounds has the lattice constant
     let mut ends = vec![0.0, 1.0];
-    for column in 0..2 {
-        let (a, b) = (lattices_nm[0][column], lattices_nm[1][column]);
+    for (a, b) in lattices_nm[0].into_iter().zip(lattices_nm[1]) {
         ends.push((lattice_nm - a) / (b - a));
     }
     ends.retain(|&run| {

@@ -94,12 +94,7 @@ impl Table {
         let mut reader = Reader::new(SHIPPED, None);
         reader.read(&mut table);
         let mut faults = reader.faults;
-        faults.extend(
-            table
-                .gaps_and_nonsense(SHIPPED_NAME)
-                .into_iter()
-                .map(|message| Diagnostic::new(0..0, message)),
-        );
+        faults.extend(table.gaps_and_nonsense(SHIPPED_NAME, &reader.places));
         if faults.is_empty() {
             Ok(table)
         } else {
@@ -119,10 +114,7 @@ impl Table {
         reader.read(&mut self);
         let mut faults = reader.faults;
         if faults.is_empty() {
-            faults.extend(self.gaps_and_nonsense(name).into_iter().map(|message| {
-                Diagnostic::new(0..text.len().min(1), message)
-                    .with_help("the numbers of the file laid over and those beneath it must make a crystal together")
-            }));
+            faults.extend(self.gaps_and_nonsense(name, &reader.places));
         }
         if faults.is_empty() {
             self.overlays.push(name.to_owned());
@@ -139,34 +131,40 @@ impl Table {
     }
 
     /// What is missing, or cannot be: each by material, quantity and file.
-    fn gaps_and_nonsense(&self, file: &str) -> Vec<String> {
+    fn gaps_and_nonsense(&self, file: &str, places: &Places) -> Vec<Diagnostic> {
         let mut faults = Vec::new();
         for (cation, anion) in compounds() {
             let name = format!("{}{}", cation.symbol(), anion.symbol());
             let Some(material) = self.binaries.get(&pair(&[cation], &[anion])) else {
-                faults.push(format!("{file} has no compound {name}"));
+                let message = format!("{file} has no compound {name}");
+                faults.push(Diagnostic::new(0..0, message));
                 continue;
             };
             for key in BINARY_KEYS.iter().filter(|key| key.required) {
                 if !material.entries.contains_key(key.word) {
-                    faults.push(format!(
-                        "{file} has no {} ({}) of {name}",
-                        key.word, key.meaning
-                    ));
+                    let message = format!("{file} has no {} ({}) of {name}", key.word, key.meaning);
+                    faults.push(Diagnostic::new(0..0, message));
                 }
             }
-            faults.extend(
-                impossible(material)
-                    .into_iter()
-                    .map(|what| format!("{name} in {file}: {what}")),
-            );
+            for (words, message) in impossible(material) {
+                let place = words
+                    .iter()
+                    .find_map(|&word| places.get(&(material.name.clone(), word.to_owned())));
+                faults.push(
+                    Diagnostic::new(
+                        place.cloned().unwrap_or(0..0),
+                        format!("{name} in {file}: {message}"),
+                    )
+                    .with_help("numbers laid over and those beneath them must make a crystal"),
+                );
+            }
         }
         faults
     }
 }
 
 /// Cations and anions of the nine compounds.
-fn compounds() -> impl Iterator<Item = (Element, Element)> {
+pub(super) fn compounds() -> impl Iterator<Item = (Element, Element)> {
     Element::ALL[..3]
         .iter()
         .flat_map(|&cation| Element::ALL[3..].iter().map(move |&anion| (cation, anion)))
@@ -187,55 +185,66 @@ pub(super) fn pair(group_iii: &[Element], group_v: &[Element]) -> Elements {
     set
 }
 
-/// What no crystal can have: conditions on numbers that are all there.
-fn impossible(material: &Material) -> Vec<String> {
-    let number = |word: &str| material.entries.get(word).map(|entry| entry.value[0]);
+/// What no crystal can have, conditions on numbers that are all there: the keys concerned, and why.
+fn impossible(material: &Material) -> Vec<(Vec<&'static str>, String)> {
+    // a number that is not there is a fault of its own, and NaN fails no comparison below
+    let number = |word: &str| {
+        let entry = material.entries.get(word);
+        entry.map_or(f64::NAN, |entry| entry.value[0])
+    };
     let mut faults = Vec::new();
-    for word in ["a_300", "delta_so", "me_gamma", "ep", "c11", "c12"] {
-        if let Some(value) = number(word)
-            && value <= 0.0
-        {
-            faults.push(format!("{word} = {value} must be above 0"));
+    let positive = [
+        "a_300",
+        "delta_so",
+        "me_gamma",
+        "ep",
+        "c11",
+        "c12",
+        "coth_theta",
+    ];
+    for word in positive {
+        let value = number(word);
+        if value <= 0.0 {
+            faults.push((vec![word], format!("{word} = {value} must be above 0")));
         }
     }
     for word in ["beta_gamma", "beta_x", "beta_l"] {
-        if let Some(value) = number(word)
-            && value < 0.0
-        {
-            faults.push(format!("{word} = {value} must not be negative"));
+        let value = number(word);
+        if value < 0.0 {
+            faults.push((vec![word], format!("{word} = {value} must not be negative")));
         }
     }
-    if let Some(theta) = number("coth_theta")
-        && theta <= 0.0
-    {
-        faults.push(format!("coth_theta = {theta} must be above 0"));
+    if number("coth_a").is_nan() != number("coth_theta").is_nan() {
+        let message = "coth_a and coth_theta belong together".to_owned();
+        faults.push((vec!["coth_a", "coth_theta"], message));
     }
-    if number("coth_a").is_some() != number("coth_theta").is_some() {
-        faults.push("coth_a and coth_theta belong together".to_owned());
-    }
-    if let (Some(first), Some(second)) = (number("gamma1"), number("gamma2"))
-        && !(second > 0.0 && first > 2.0 * second)
-    {
-        faults.push(format!(
-            "gamma1 = {first} and gamma2 = {second} give no heavy hole: gamma1 > 2 gamma2 > 0"
+    let (gamma1, gamma2) = (number("gamma1"), number("gamma2"));
+    if gamma2 <= 0.0 || gamma1 <= 2.0 * gamma2 {
+        faults.push((
+            vec!["gamma1", "gamma2"],
+            format!(
+                "gamma1 = {gamma1} and gamma2 = {gamma2} give no heavy hole: gamma1 > 2 gamma2 > 0"
+            ),
         ));
     }
-    if let (Some(c11), Some(c12)) = (number("c11"), number("c12"))
-        && c11 <= c12
-    {
-        faults.push(format!(
-            "c11 = {c11} and c12 = {c12} make no stable crystal: c11 > c12"
+    let (c11, c12) = (number("c11"), number("c12"));
+    if c11 <= c12 {
+        faults.push((
+            vec!["c11", "c12"],
+            format!("c11 = {c11} and c12 = {c12} make no stable crystal: c11 > c12"),
         ));
     }
-    if let Some(av) = number("av")
-        && av > 0.0
-    {
-        faults.push(format!(
-            "av = {av} has the other sign here: the valence edge moves by -av*tr, so av is negative"
-        ));
+    let av = number("av");
+    if av > 0.0 {
+        let message =
+            format!("av = {av} has the other sign: the edge moves by -av*tr, so av is negative");
+        faults.push((vec!["av"], message));
     }
     faults
 }
+
+/// Where a file gives which number, by material and key.
+type Places = BTreeMap<(String, String), Range<usize>>;
 
 /// Walks one file.
 struct Reader<'a> {
@@ -243,6 +252,7 @@ struct Reader<'a> {
     /// The name of a file laid over; none for the shipped one.
     overlay: Option<&'a str>,
     faults: Vec<Diagnostic>,
+    places: Places,
 }
 
 type Member<'t, 'i> = (
@@ -256,6 +266,7 @@ impl<'a> Reader<'a> {
             text,
             overlay,
             faults: Vec::new(),
+            places: BTreeMap::new(),
         }
     }
 
@@ -288,13 +299,14 @@ impl<'a> Reader<'a> {
                 "binary" => self.materials(value, table, false),
                 "ternary" => self.materials(value, table, true),
                 "sources" => {}
+                "units" => self.units(value),
                 // the rest of the shipped file has readers of its own
                 _ if self.overlay.is_none() => {}
                 other => self.unknown(
                     word.span(),
                     "table",
                     other,
-                    ["binary", "ternary", "sources"].into_iter(),
+                    ["binary", "ternary", "sources", "units"].into_iter(),
                 ),
             }
         }
@@ -321,6 +333,30 @@ impl<'a> Reader<'a> {
             None => format!("known are {}", known.collect::<Vec<_>>().join(", ")),
         };
         self.fault(span, format!("there is no {kind} {word:?}"), help);
+    }
+
+    /// Units that a file states must be those that the program takes its numbers in.
+    fn units(&mut self, value: &Spanned<DeValue<'_>>) {
+        let Some(members) = self.members(value, "units by key") else {
+            return;
+        };
+        for (word, value) in members {
+            let text = word.get_ref().as_ref();
+            let Some(key) = find(BINARY_KEYS, text).or_else(|| find(TERNARY_KEYS, text)) else {
+                let known = BINARY_KEYS.iter().chain(TERNARY_KEYS).map(|key| key.word);
+                self.unknown(word.span(), "quantity", text, known);
+                continue;
+            };
+            if let Some(unit) = self.words(value, "a unit")
+                && unit != key.unit
+            {
+                self.fault(
+                    value.span(),
+                    format!("{text} is taken in {}, not in {unit}", key.unit),
+                    "convert the numbers",
+                );
+            }
+        }
     }
 
     fn sources(&mut self, sources: &Spanned<DeValue<'_>>, table: &mut Table) {
@@ -395,6 +431,16 @@ impl<'a> Reader<'a> {
         if ternary {
             self.ends(members, material, place.clone());
         }
+        let gives = |word: &str| {
+            members
+                .iter()
+                .any(|(key, _)| key.get_ref().as_ref() == word)
+        };
+        if self.overlay.is_some() && (gives("alpha_gamma") || gives("beta_gamma")) {
+            // Varshni's law is wanted: the coth law beneath would hide it
+            material.entries.remove("coth_a");
+            material.entries.remove("coth_theta");
+        }
         let source = self.attributes(members, "source", keys);
         let status = self.attributes(members, "status", keys);
         for (word, value) in members {
@@ -448,6 +494,8 @@ impl<'a> Reader<'a> {
                     .alternates
                     .retain(|alternate| !alternate.keys.iter().any(|other| other == text));
             }
+            self.places
+                .insert((material.name.clone(), text.to_owned()), word.span());
             material.entries.insert(
                 text.to_owned(),
                 Entry {
