@@ -300,6 +300,8 @@ fn sublattice(
         )
         .with_help("the fractions of each sublattice sum to 1"));
     }
+    // A miss of rounding is left, so that fractions written with every digit read back to the bit.
+    let sum = if (sum - 1.0).abs() < 1e-12 { 1.0 } else { sum };
     let mut fractions = [0.0; 3];
     for part in parts {
         fractions[part.element.place()] = part.fraction.unwrap_or(1.0) / sum;

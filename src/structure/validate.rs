@@ -80,12 +80,6 @@ struct Layers<'a> {
     remarked: Vec<String>,
 }
 
-/// A layer of the file that was accepted, with the place of its row.
-struct Accepted {
-    span: Range<usize>,
-    layer: Layer,
-}
-
 impl Layers<'_> {
     fn layers(
         &mut self,
@@ -112,7 +106,8 @@ impl Layers<'_> {
             let Some((repeat, accepted)) = self.row(row, number + 1, findings) else {
                 continue;
             };
-            let new_wells = repeat * accepted.iter().filter(|one| is_well(one)).count();
+            let is_well = |layer: &&Layer| layer.role == Role::Well;
+            let new_wells = repeat * accepted.iter().filter(is_well).count();
             if full {
                 continue;
             }
@@ -127,7 +122,7 @@ impl Layers<'_> {
             }
             wells += new_wells;
             for _ in 0..repeat {
-                expanded.extend(accepted.iter().map(|one| one.layer.clone()));
+                expanded.extend_from_slice(&accepted);
             }
         }
         if !wells_meant {
@@ -153,9 +148,11 @@ impl Layers<'_> {
         row: &Row,
         number: usize,
         findings: &mut Findings,
-    ) -> Option<(usize, Vec<Accepted>)> {
+    ) -> Option<(usize, Vec<Layer>)> {
         if row.repeat.is_none() && row.layers.is_none() {
-            return self.layer(row, number, findings).map(|one| (1, vec![one]));
+            return self
+                .layer(row, number, findings)
+                .map(|layer| (1, vec![layer]));
         }
         if let Some((name, key)) = layer_key(row) {
             findings.faults.push(
@@ -201,7 +198,7 @@ impl Layers<'_> {
                 continue;
             }
             match self.layer(layer, number, findings) {
-                Some(one) => accepted.push(one),
+                Some(layer) => accepted.push(layer),
                 None => complete = false,
             }
         }
@@ -209,7 +206,7 @@ impl Layers<'_> {
         (complete && !accepted.is_empty()).then_some((repeat, accepted))
     }
 
-    fn layer(&mut self, row: &Row, number: usize, findings: &mut Findings) -> Option<Accepted> {
+    fn layer(&mut self, row: &Row, number: usize, findings: &mut Findings) -> Option<Layer> {
         let missing: Vec<&str> = [
             ("role", row.role.is_none()),
             ("material", row.material.is_none()),
@@ -247,19 +244,16 @@ impl Layers<'_> {
             }
         }
         let doping = doping(row, findings);
-        Some(Accepted {
-            span: row.span.clone(),
-            layer: Layer {
-                role: role?,
-                material: material?,
-                grade_to: match grade_to {
-                    Some(end) => Some(end?),
-                    None => None,
-                },
-                thickness_nm: thickness_nm?,
-                doping: doping?,
-                row: number,
+        Some(Layer {
+            role: role?,
+            material: material?,
+            grade_to: match grade_to {
+                Some(end) => Some(end?),
+                None => None,
             },
+            thickness_nm: thickness_nm?,
+            doping: doping?,
+            row: number,
         })
     }
 
@@ -387,10 +381,6 @@ fn role(given: &Field<String>) -> Option<Role> {
     Role::ALL.into_iter().find(|role| role.word() == word)
 }
 
-fn is_well(accepted: &Accepted) -> bool {
-    accepted.layer.role == Role::Well
-}
-
 /// Whether a row says that it is or holds a well, or might have said so.
 fn means_a_well(row: &Row) -> bool {
     let refused = row.role.as_ref().is_some_and(|given| given.value.is_none());
@@ -441,10 +431,8 @@ fn too_many(span: &Range<usize>, layers: usize, wells: usize) -> Option<Diagnost
     } else {
         return None;
     };
-    let message = format!(
-        "the structure has {count} {what} and more up to here: at most {most} are possible"
-    )
-    .replace(" and more", "");
+    let message =
+        format!("the structure has {count} {what} up to here: at most {most} are possible");
     Some(Diagnostic::new(span.clone(), message).with_help("check `repeat`"))
 }
 
