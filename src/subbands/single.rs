@@ -343,6 +343,7 @@ fn levels(
                 mass_bounded: shares.mass_bounded,
                 envelope: fine.envelope,
                 coarser,
+                mass_correction,
             }
         });
     let in_field = profile.slope_ev_nm != 0.0;
