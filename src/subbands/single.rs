@@ -327,11 +327,17 @@ fn levels(
             let shares = Shares::new(profile, &grids[2], &chains[2], band, energy, &fine.envelope);
             let (mut reciprocal_mass, mut in_wells) = (shares.reciprocal_mass, shares.in_wells);
             let mut coarser = half.envelope;
+            let half = Shares::new(profile, &grids[1], &chains[1], band, energy, &coarser);
+            let correction = (reciprocal_mass - half.reciprocal_mass) / 3.0;
+            let mass_correction = (correction / reciprocal_mass).abs();
+            // Members of a cluster may be mixed differently on the two grids; where their wells are
+            // alike that does not matter.
+            if !crowded(index) || mass_correction < 3e-3 {
+                reciprocal_mass += correction;
+            }
             if crowded(index) {
                 coarser.clear();
             } else {
-                let half = Shares::new(profile, &grids[1], &chains[1], band, energy, &coarser);
-                reciprocal_mass += (reciprocal_mass - half.reciprocal_mass) / 3.0;
                 in_wells += (in_wells - half.in_wells) / 3.0;
             }
             Level {
