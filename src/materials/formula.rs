@@ -305,6 +305,8 @@ fn sublattice(
         )
         .with_help("the fractions of each sublattice sum to 1"));
     }
+    // a miss of rounding is left, so that fractions written with every digit read back to the bit
+    let sum = if (sum - 1.0).abs() < 1e-12 { 1.0 } else { sum };
     Ok(fractions.map(|fraction| fraction / sum))
 }
 

@@ -1,7 +1,163 @@
 //! The structure file and the validated [`Stack`] that every other module uses.
+//!
+//! A file has two forms. Its raw form mirrors the TOML key by key, along one table of keys
+//! that also yields the editor [`schema`] and the [`key_reference`] of the manual. [`read`] makes
+//! the stack of it, or names every fault at its place; no module above checks a thickness again.
+//! [`write`] says a stack as a file.
 
+mod file;
+mod keys;
+mod number;
+mod palette;
+mod reader;
+mod reference;
+mod remark;
+mod schema;
 mod stack;
+mod syntax;
+mod validate;
+mod write;
 
+pub use reader::{Refusal, check_magnitude};
+pub use reference::key_reference;
+pub use remark::Remark;
+pub use schema::schema;
 pub use stack::{
     Bands, Doping, Layer, Lineshape, Material, Model, Operation, Role, Stack, Substance,
 };
+pub use write::write;
+
+use crate::materials::Parameters;
+use crate::source::Diagnostic;
+
+/// Most faults of one file that are reported; a file with more is not a structure file.
+const MOST_FAULTS: usize = 100;
+
+/// What a caller lays over a file: it goes before what the file says.
+///
+/// Numbers that reach a program by another way than a file are checked with [`check_magnitude`],
+/// so that the complaint can name where they came from; [`read`] refuses them otherwise.
+#[derive(Clone, Debug, Default, PartialEq)]
+pub struct Overrides {
+    /// Temperature of lattice and carriers, K.
+    pub temperature_k: Option<f64>,
+    /// Carrier densities, cm⁻³, in place of the file's list; the highest becomes the working
+    /// density. Empty: the file's.
+    pub densities_cm3: Vec<f64>,
+    /// Treatment of the valence bands.
+    pub bands: Option<Bands>,
+}
+
+impl Overrides {
+    /// Its numbers under the keys that they go before.
+    fn numbers(&self) -> impl Iterator<Item = (&'static str, f64)> {
+        let temperature = self.temperature_k.map(|kelvin| ("temperature_k", kelvin));
+        let densities = self
+            .densities_cm3
+            .iter()
+            .map(|density| ("densities_cm3", *density));
+        temperature.into_iter().chain(densities)
+    }
+}
+
+/// A file that was accepted.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Reading {
+    /// What it describes.
+    pub stack: Stack,
+    /// What its author should know, in the order of the file.
+    pub remarks: Vec<Remark>,
+}
+
+/// Reads a structure file.
+///
+/// # Errors
+///
+/// Every fault of the file, each at its place and with advice, in the order of the text. Where the
+/// TOML itself is broken, the faults of the syntax and of single values are named; what a missing
+/// line would entail is not.
+///
+/// ```
+/// use stepwell::materials::Parameters;
+/// use stepwell::structure::{self, Overrides};
+///
+/// let text = r#"
+/// format = 1
+/// [substrate]
+/// material = "GaAs"
+/// [[layers]]
+/// role = "barrier"
+/// material = "Al0.3Ga0.7As"
+/// thickness_nm = 30
+/// [[layers]]
+/// role = "well"
+/// material = "GaAs"
+/// thickness_nm = 8
+/// [[layers]]
+/// role = "barrier"
+/// material = "Al0.3Ga0.7As"
+/// thickness_nm = 30
+/// "#;
+/// let reading = structure::read(text, &Parameters::shipped(), &Overrides::default()).expect("sound");
+/// assert_eq!(reading.stack.well_count(), 1);
+/// ```
+pub fn read(
+    text: &str,
+    parameters: &Parameters,
+    overrides: &Overrides,
+) -> Result<Reading, Vec<Diagnostic>> {
+    let (table, broken) = syntax::table(text);
+    let mut findings = reader::Findings::default();
+    let values = reader::read(&table, &mut findings);
+    if !broken.is_empty() {
+        return Err(with_broken_syntax(text, broken, findings.faults));
+    }
+    let file = file::StructureFile::from(values);
+    let stack = validate::stack(&file, text, parameters, overrides, &mut findings);
+    match stack {
+        Some(stack) if findings.faults.is_empty() => {
+            let mut remarks = findings.remarks;
+            remarks.sort_by_key(|remark| remark.span().map(|span| span.start));
+            Ok(Reading { stack, remarks })
+        }
+        _ => Err(in_order(findings.faults)),
+    }
+}
+
+/// The faults of the syntax, and those of values on lines that it left whole.
+fn with_broken_syntax(
+    text: &str,
+    broken: Vec<Diagnostic>,
+    values: Vec<Diagnostic>,
+) -> Vec<Diagnostic> {
+    let line_of = |at: usize| text[..at.min(text.len())].rfind('\n');
+    let lines: std::collections::BTreeSet<Option<usize>> = broken
+        .iter()
+        .map(|fault| line_of(fault.span.start))
+        .collect();
+    let whole = values
+        .into_iter()
+        .filter(|fault| !lines.contains(&line_of(fault.span.start)));
+    let mut faults = broken;
+    faults.truncate(MOST_FAULTS);
+    let whole: Vec<Diagnostic> = whole.collect();
+    faults.extend(whole);
+    in_order(faults)
+}
+
+/// Faults in the order of the text, the rest of very many counted only.
+fn in_order(mut faults: Vec<Diagnostic>) -> Vec<Diagnostic> {
+    faults.sort_by_key(|fault| (fault.span.start, fault.span.end));
+    let hidden = faults.len().saturating_sub(MOST_FAULTS);
+    faults.truncate(MOST_FAULTS);
+    if hidden > 0
+        && let Some(last) = faults.last()
+    {
+        let span = last.span.clone();
+        faults.push(
+            Diagnostic::new(span, format!("{hidden} more faults follow"))
+                .with_help("mend these first"),
+        );
+    }
+    faults
+}

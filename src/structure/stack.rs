@@ -167,6 +167,9 @@ pub enum Lineshape {
 }
 
 impl Lineshape {
+    /// Every shape.
+    pub const ALL: [Self; 3] = [Self::Sech, Self::Gaussian, Self::Lorentzian];
+
     /// The word for it in files and reports.
     #[must_use]
     pub fn word(self) -> &'static str {

@@ -1,0 +1,581 @@
+//! The reader: walks the parsed TOML along the table of keys and checks every value by itself.
+
+use std::collections::BTreeMap;
+use std::ops::Range;
+
+use toml::Spanned;
+use toml::de::{DeTable, DeValue};
+
+use super::Remark;
+use super::keys::{self, FILE, Key, Kind, MISNOMERS, Magnitude, Table};
+use super::number::shown;
+use crate::source::{Diagnostic, nearest, one_of};
+
+/// Longest text value, characters.
+const LONGEST_TEXT: usize = 200;
+
+/// What the walk finds on its way.
+#[derive(Default)]
+pub(super) struct Findings {
+    /// Faults: the file is refused.
+    pub(super) faults: Vec<Diagnostic>,
+    /// Remarks.
+    pub(super) remarks: Vec<Remark>,
+}
+
+/// A value in its place; without one where it was refused.
+#[derive(Clone, Debug)]
+pub(super) struct Given<T> {
+    /// Bytes of the key.
+    pub(super) key: Range<usize>,
+    /// Bytes of the value.
+    pub(super) span: Range<usize>,
+    /// The value; `None` after a complaint.
+    pub(super) value: Option<T>,
+}
+
+/// The value of a key, if the key is there.
+pub(super) type Field<T> = Option<Given<T>>;
+
+/// A table of the file, its keys checked one by one.
+#[derive(Clone, Debug)]
+pub(super) struct Values {
+    /// Bytes of its head, or of all of it where it is written inline.
+    pub(super) span: Range<usize>,
+    entries: BTreeMap<&'static str, Given<Value>>,
+}
+
+#[derive(Clone, Debug)]
+enum Value {
+    Text(String),
+    Flag(bool),
+    Count(u64),
+    Number(f64),
+    Numbers(Vec<(Range<usize>, f64)>),
+    Table(Values),
+    Named(Vec<(String, Given<Values>)>),
+    Rows(Vec<Values>),
+}
+
+impl Values {
+    fn take<T>(&mut self, name: &str, convert: impl Fn(Value) -> Option<T>) -> Field<T> {
+        self.entries.remove(name).map(|given| Given {
+            key: given.key,
+            span: given.span,
+            value: given.value.and_then(convert),
+        })
+    }
+
+    pub(super) fn text(&mut self, name: &str) -> Field<String> {
+        self.take(name, |value| match value {
+            Value::Text(text) => Some(text),
+            _ => None,
+        })
+    }
+
+    pub(super) fn flag(&mut self, name: &str) -> Field<bool> {
+        self.take(name, |value| match value {
+            Value::Flag(flag) => Some(flag),
+            _ => None,
+        })
+    }
+
+    pub(super) fn count(&mut self, name: &str) -> Field<u64> {
+        self.take(name, |value| match value {
+            Value::Count(count) => Some(count),
+            _ => None,
+        })
+    }
+
+    pub(super) fn number(&mut self, name: &str) -> Field<f64> {
+        self.take(name, |value| match value {
+            Value::Number(number) => Some(number),
+            _ => None,
+        })
+    }
+
+    pub(super) fn numbers(&mut self, name: &str) -> Field<Vec<(Range<usize>, f64)>> {
+        self.take(name, |value| match value {
+            Value::Numbers(numbers) => Some(numbers),
+            _ => None,
+        })
+    }
+
+    pub(super) fn table(&mut self, name: &str) -> Field<Values> {
+        self.take(name, |value| match value {
+            Value::Table(values) => Some(values),
+            _ => None,
+        })
+    }
+
+    pub(super) fn named(&mut self, name: &str) -> Field<Vec<(String, Given<Values>)>> {
+        self.take(name, |value| match value {
+            Value::Named(tables) => Some(tables),
+            _ => None,
+        })
+    }
+
+    pub(super) fn rows(&mut self, name: &str) -> Field<Vec<Values>> {
+        self.take(name, |value| match value {
+            Value::Rows(rows) => Some(rows),
+            _ => None,
+        })
+    }
+}
+
+/// The whole file.
+pub(super) fn read(table: &DeTable<'_>, findings: &mut Findings) -> Values {
+    values(&FILE, 0..0, table, findings)
+}
+
+fn values(
+    table: &'static Table,
+    span: Range<usize>,
+    found: &DeTable<'_>,
+    findings: &mut Findings,
+) -> Values {
+    let mut entries = BTreeMap::new();
+    for (name, value) in found {
+        let Some(key) = table.key(name.get_ref()) else {
+            findings.faults.push(unknown(table, name));
+            continue;
+        };
+        let given = Given {
+            key: name.span(),
+            span: value.span(),
+            value: checked(key, value, findings),
+        };
+        entries.insert(key.name, given);
+    }
+    Values { span, entries }
+}
+
+fn unknown(table: &'static Table, name: &Spanned<std::borrow::Cow<'_, str>>) -> Diagnostic {
+    let word = name.get_ref();
+    let misnomer = MISNOMERS
+        .iter()
+        .find(|(misnomer, _)| misnomer == word)
+        .map(|(_, help)| (*help).to_owned());
+    let help = misnomer
+        .or_else(|| nearest(word, table.names()).map(|key| format!("did you mean `{key}`?")))
+        .or_else(|| home(&FILE, word, 0).map(|path| format!("`{word}` belongs in {path}")))
+        .unwrap_or_else(|| format!("known here: {}", one_of(table.names())));
+    let place = match table.path {
+        "" => "of the file".to_owned(),
+        path => format!("of [{path}]"),
+    };
+    Diagnostic::new(
+        name.span(),
+        format!("unknown key `{}` {place}", brief(word)),
+    )
+    .with_help(help)
+}
+
+/// Where a key of this name would be known. Tables nest three deep; a row holds rows.
+fn home(table: &'static Table, word: &str, depth: usize) -> Option<String> {
+    let here = || match table.path {
+        "" => "the file, above the first table".to_owned(),
+        "layers" => "[[layers]]".to_owned(),
+        path => format!("[{path}]"),
+    };
+    if table.key(word).is_some() {
+        return Some(here());
+    }
+    table.keys.iter().find_map(|key| match &key.kind {
+        Kind::Table(inner) | Kind::Named(inner) | Kind::Rows(inner) if depth < 3 => {
+            home(inner, word, depth + 1)
+        }
+        _ => None,
+    })
+}
+
+/// A word of the file, short enough for a message.
+pub(super) fn brief(word: &str) -> String {
+    const LONGEST: usize = 40;
+    if word.chars().count() <= LONGEST {
+        return word.to_owned();
+    }
+    let start: String = word.chars().take(LONGEST).collect();
+    format!("{start}...")
+}
+
+fn checked(
+    key: &'static Key,
+    value: &Spanned<DeValue<'_>>,
+    findings: &mut Findings,
+) -> Option<Value> {
+    let span = value.span();
+    match (&key.kind, value.get_ref()) {
+        (Kind::Text, DeValue::String(text)) => line_of_text(key, text, span, findings),
+        (Kind::Word(words), DeValue::String(text)) => word(key, &words(), text, span, findings),
+        (Kind::Flag, DeValue::Boolean(flag)) => Some(Value::Flag(*flag)),
+        (Kind::Count(lowest, highest), number @ (DeValue::Integer(_) | DeValue::Float(_))) => {
+            count(key, (*lowest, *highest), number, span, findings)
+        }
+        (Kind::Number(magnitude), number @ (DeValue::Integer(_) | DeValue::Float(_))) => {
+            possible(key.name, *magnitude, as_number(number)?, span, findings).map(Value::Number)
+        }
+        (Kind::Numbers(magnitude, fewest, most), DeValue::Array(items)) => {
+            let wanted = (*fewest, *most);
+            numbers(key, *magnitude, wanted, items.iter(), span, findings)
+        }
+        (Kind::Table(table), DeValue::Table(found)) => {
+            Some(Value::Table(values(table, span, found, findings)))
+        }
+        (Kind::Named(table), DeValue::Table(found)) => Some(named(table, found, findings)),
+        (Kind::Rows(table), DeValue::Array(items)) => {
+            let rows = items
+                .iter()
+                .filter_map(|item| match item.get_ref() {
+                    DeValue::Table(found) => Some(values(table, item.span(), found, findings)),
+                    other => {
+                        findings.faults.push(wrong_kind(key, other, item.span()));
+                        None
+                    }
+                })
+                .collect();
+            Some(Value::Rows(rows))
+        }
+        (_, other) => {
+            findings.faults.push(wrong_kind(key, other, span));
+            None
+        }
+    }
+}
+
+fn named(table: &'static Table, found: &DeTable<'_>, findings: &mut Findings) -> Value {
+    let mut tables = Vec::new();
+    for (name, value) in found {
+        let span = value.span();
+        let inner = match value.get_ref() {
+            DeValue::Table(inner) => Some(values(table, span.clone(), inner, findings)),
+            other => {
+                let help = format!(
+                    "write `[materials.{0}]` with its keys below, or `{0} = {{ formula = \"...\" }}`",
+                    brief(name.get_ref())
+                );
+                let message = format!(
+                    "`{}` is {}, and a table is wanted",
+                    brief(name.get_ref()),
+                    said(other)
+                );
+                findings
+                    .faults
+                    .push(Diagnostic::new(span.clone(), message).with_help(help));
+                None
+            }
+        };
+        let given = Given {
+            key: name.span(),
+            span,
+            value: inner,
+        };
+        tables.push((name.get_ref().to_string(), given));
+    }
+    tables.sort_by_key(|(_, given)| given.key.start);
+    Value::Named(tables)
+}
+
+fn line_of_text(
+    key: &'static Key,
+    text: &str,
+    span: Range<usize>,
+    findings: &mut Findings,
+) -> Option<Value> {
+    let fault = if text.chars().count() > LONGEST_TEXT {
+        Diagnostic::new(
+            span,
+            format!("`{}` is longer than {LONGEST_TEXT} characters", key.name),
+        )
+        .with_help("shorten it; comments (`# ...`) can be as long as you like")
+    } else if text.chars().any(char::is_control) {
+        Diagnostic::new(span, format!("`{}` holds a control character", key.name))
+            .with_help("write it on one line, without tabs and escapes")
+    } else if text.trim().is_empty() {
+        Diagnostic::new(span, format!("`{}` is empty", key.name))
+            .with_help(format!("{}; or leave the key out", key.doc))
+    } else {
+        return Some(Value::Text(text.trim().to_owned()));
+    };
+    findings.faults.push(fault);
+    None
+}
+
+fn word(
+    key: &'static Key,
+    words: &[&'static str],
+    text: &str,
+    span: Range<usize>,
+    findings: &mut Findings,
+) -> Option<Value> {
+    if words.contains(&text) {
+        return Some(Value::Text(text.to_owned()));
+    }
+    let help = match nearest(text, words.iter().copied()) {
+        Some(meant) => format!("did you mean `{meant}`?"),
+        None => format!("one of {}", one_of(words.iter().copied())),
+    };
+    let message = format!("\"{}\" is no `{}`", brief(text), key.name);
+    findings
+        .faults
+        .push(Diagnostic::new(span, message).with_help(help));
+    None
+}
+
+fn count(
+    key: &'static Key,
+    (lowest, highest): (u64, u64),
+    value: &DeValue<'_>,
+    span: Range<usize>,
+    findings: &mut Findings,
+) -> Option<Value> {
+    let whole = match value {
+        DeValue::Integer(integer) => i128::from_str_radix(integer.as_str(), integer.radix()).ok(),
+        _ => None,
+    };
+    if let Some(found) = whole.and_then(|whole| u64::try_from(whole).ok())
+        && (lowest..=highest).contains(&found)
+    {
+        return Some(Value::Count(found));
+    }
+    let written = match value {
+        DeValue::Integer(integer) => brief(integer.as_str()),
+        DeValue::Float(float) => brief(float.as_str()),
+        other => said(other).to_owned(),
+    };
+    let (message, help) = if lowest == highest {
+        (
+            format!("`{}` {written} is not known", key.name),
+            format!("this program reads `{} = {lowest}`", key.name),
+        )
+    } else {
+        (
+            format!(
+                "`{}` is {written}: possible is a whole number from {lowest} to {highest}",
+                key.name
+            ),
+            key.doc.to_owned(),
+        )
+    };
+    findings
+        .faults
+        .push(Diagnostic::new(span, message).with_help(help));
+    None
+}
+
+/// The number as written, read as a float; too large ones are infinite.
+fn as_number(value: &DeValue<'_>) -> Option<f64> {
+    match value {
+        DeValue::Float(float) => float.as_str().parse().ok(),
+        DeValue::Integer(integer) if integer.radix() == 10 => integer.as_str().parse().ok(),
+        DeValue::Integer(integer) => i64::from_str_radix(integer.as_str(), integer.radix())
+            .ok()
+            .map(|whole| whole as f64),
+        _ => None,
+    }
+}
+
+fn possible(
+    name: &'static str,
+    magnitude: Magnitude,
+    value: f64,
+    span: Range<usize>,
+    findings: &mut Findings,
+) -> Option<f64> {
+    if let Err(refusal) = magnitude.check(name, value) {
+        findings
+            .faults
+            .push(Diagnostic::new(span, refusal.message).with_help(refusal.help));
+        return None;
+    }
+    let (low, high) = magnitude.usual;
+    if !(low..=high).contains(&value) && value != 0.0 {
+        findings.remarks.push(Remark::Unusual {
+            span,
+            key: name,
+            value,
+            unit: magnitude.unit,
+            usual: magnitude.usual,
+        });
+    }
+    Some(value)
+}
+
+/// Why a number is not accepted, and what would be.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct Refusal {
+    /// What is wrong with it.
+    pub message: String,
+    /// What to do.
+    pub help: String,
+}
+
+impl Magnitude {
+    fn check(&self, name: &str, value: f64) -> Result<(), Refusal> {
+        let (lowest, highest) = self.possible;
+        let unit = if self.unit.is_empty() {
+            String::new()
+        } else {
+            format!(" {}", self.unit)
+        };
+        if !value.is_finite() {
+            return Err(Refusal {
+                message: format!("`{name}` is not a finite number"),
+                help: format!(
+                    "give a number from {} to {}{unit}",
+                    shown(lowest),
+                    shown(highest)
+                ),
+            });
+        }
+        if (lowest..=highest).contains(&value) {
+            return Ok(());
+        }
+        let help = if name == "av_ev" && value < 0.0 {
+            "write it positive: the edge moves by +av (exx + eyy + ezz), so compression lowers it"
+                .to_owned()
+        } else if value < 0.0 && lowest >= 0.0 {
+            "it can't be negative: check the sign".to_owned()
+        } else {
+            "check the unit and the decimal point".to_owned()
+        };
+        Err(Refusal {
+            message: format!(
+                "`{name}` is {}{unit}: possible is {} to {}{unit}",
+                shown(value),
+                shown(lowest),
+                shown(highest)
+            ),
+            help,
+        })
+    }
+}
+
+/// Whether a key of `[operation]` or `[model]` would accept a number: for values that reach a
+/// structure by another way than its file.
+///
+/// # Errors
+///
+/// The words in which the file would be refused.
+///
+/// ```
+/// use stepwell::structure::check_magnitude;
+///
+/// assert!(check_magnitude("temperature_k", 358.15).is_ok());
+/// let refusal = check_magnitude("temperature_k", 3000.0).expect_err("too hot");
+/// assert_eq!(refusal.message, "`temperature_k` is 3000 K: possible is 1 to 1000 K");
+/// ```
+pub fn check_magnitude(key: &str, value: f64) -> Result<(), Refusal> {
+    let known = keys::OPERATION.key(key).or_else(|| keys::MODEL.key(key));
+    match known.map(|key| &key.kind) {
+        Some(Kind::Number(magnitude) | Kind::Numbers(magnitude, ..)) => magnitude.check(key, value),
+        _ => Err(Refusal {
+            message: format!("`{}` is no number of [operation] or [model]", brief(key)),
+            help: format!(
+                "one of {}",
+                one_of(keys::OPERATION.names().chain(keys::MODEL.names()))
+            ),
+        }),
+    }
+}
+
+fn numbers<'a, 'i: 'a>(
+    key: &'static Key,
+    magnitude: Magnitude,
+    (fewest, most): (usize, usize),
+    items: impl ExactSizeIterator<Item = &'a Spanned<DeValue<'i>>>,
+    span: Range<usize>,
+    findings: &mut Findings,
+) -> Option<Value> {
+    if !(fewest..=most).contains(&items.len()) {
+        let wanted = if fewest == most {
+            format!("{fewest}")
+        } else {
+            format!("{fewest} to {most}")
+        };
+        let message = format!(
+            "`{}` has {} numbers: {wanted} are wanted",
+            key.name,
+            items.len()
+        );
+        findings
+            .faults
+            .push(Diagnostic::new(span, message).with_help(key.doc));
+        return None;
+    }
+    let mut numbers = Vec::with_capacity(items.len());
+    let mut complete = true;
+    for item in items {
+        let number = match as_number(item.get_ref()) {
+            Some(number) => possible(key.name, magnitude, number, item.span(), findings),
+            None => {
+                findings
+                    .faults
+                    .push(wrong_kind(key, item.get_ref(), item.span()));
+                None
+            }
+        };
+        match number {
+            Some(number) => numbers.push((item.span(), number)),
+            None => complete = false,
+        }
+    }
+    complete.then_some(Value::Numbers(numbers))
+}
+
+fn wrong_kind(key: &'static Key, found: &DeValue<'_>, span: Range<usize>) -> Diagnostic {
+    let (wanted, help) = match &key.kind {
+        Kind::Text | Kind::Word(_) => ("a text", format!("put it in quotes: {}", key.doc)),
+        Kind::Flag => (
+            "true or false",
+            "write `true` or `false`, without quotes".to_owned(),
+        ),
+        Kind::Count(..) => ("a whole number", key.doc.to_owned()),
+        Kind::Number(magnitude) => {
+            let unit = match magnitude.unit {
+                "" => String::new(),
+                unit => format!(" of {unit}"),
+            };
+            (
+                "a number",
+                format!("write a number{unit}, without quotes and without the unit"),
+            )
+        }
+        Kind::Numbers(..) if matches!(found, DeValue::Array(_)) => (
+            "a list of numbers",
+            "write one list: `[1e18, 2e18]`".to_owned(),
+        ),
+        Kind::Numbers(..) => (
+            "a list of numbers",
+            format!("write `{} = [...]`: {}", key.name, key.doc),
+        ),
+        Kind::Table(_) => (
+            "a table",
+            format!("write `[{}]` with its keys below", key.name),
+        ),
+        Kind::Named(_) => (
+            "a table",
+            format!("write `[{}.NAME]` with its keys below", key.name),
+        ),
+        Kind::Rows(_) => (
+            "a list of tables",
+            format!("write `[[{}]]` above each layer", key.name),
+        ),
+    };
+    Diagnostic::new(
+        span,
+        format!("`{}` is {}, and {wanted} is wanted", key.name, said(found)),
+    )
+    .with_help(help)
+}
+
+fn said(value: &DeValue<'_>) -> &'static str {
+    match value {
+        DeValue::String(_) => "a text",
+        DeValue::Integer(_) | DeValue::Float(_) => "a number",
+        DeValue::Boolean(_) => "true or false",
+        DeValue::Datetime(_) => "a date",
+        DeValue::Array(_) => "a list",
+        DeValue::Table(_) => "a table",
+    }
+}
