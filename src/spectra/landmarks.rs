@@ -33,7 +33,9 @@ pub fn gain_peak(
     if high <= low {
         return None;
     }
-    let step = (0.4 * width).min(occupation.thermal_ev);
+    // Just above transparency all gain lies between the lowest edge and the splitting.
+    let window = (high - lowest).max(0.1 * width);
+    let step = (0.4 * width).min(occupation.thermal_ev).min(window / 6.0);
     let (photon_ev, height) = highest_peak(
         |photon_ev| polarisation(&emitter.point(occupation, photon_ev)),
         low,
