@@ -170,6 +170,43 @@ impl<'a> Profile<'a> {
         (first.bottom_nm, last.top_nm)
     }
 
+    /// Whether the solved region is its own mirror image, and no field is on.
+    #[must_use]
+    pub fn is_symmetric(&self) -> bool {
+        let near = |a: f64, b: f64| (a - b).abs() < 1e-9;
+        let same = |a: &Strained, b: &Strained| {
+            let values = |n: &Strained| {
+                [
+                    n.edges.conduction_ev,
+                    n.edges.heavy_ev,
+                    n.edges.light_ev,
+                    n.edges.valence_mean_ev,
+                    n.crystal.split_off_ev,
+                    n.crystal.luttinger[0],
+                    n.crystal.luttinger[1],
+                    n.crystal.luttinger[2],
+                ]
+            };
+            values(a)
+                .into_iter()
+                .zip(values(b))
+                .all(|(a, b)| near(a, b))
+        };
+        let mirror = |section: &Section, other: &Section| {
+            near(
+                section.top_nm - section.bottom_nm,
+                other.top_nm - other.bottom_nm,
+            ) && same(&self.at(section, 0.0), &self.at(other, 1.0))
+                && same(&self.at(section, 1.0), &self.at(other, 0.0))
+        };
+        self.slope_ev_nm == 0.0
+            && self
+                .sections
+                .iter()
+                .zip(self.sections.iter().rev())
+                .all(|(a, b)| mirror(a, b))
+    }
+
     /// The numbers of a section at the share `within` of the way up it.
     #[must_use]
     pub fn at(&self, section: &Section, within: f64) -> Strained {

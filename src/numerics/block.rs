@@ -320,13 +320,15 @@ impl BlockChain {
     }
 
     /// Follows the `ladder` of a neighbouring problem to the lowest eigenvalues of this one: one
-    /// lane a state, from its energy and vector. Returns whether every state is certified; if not,
-    /// the ladder is of no use.
+    /// lane a state, from its energy and vector. Returns whether every state asked for is
+    /// certified; if not, the ladder is of no use.
     ///
     /// # Arguments
     ///
+    /// * `required` – how many states, from the lowest, must be certified; those beyond only help
+    ///   where states exchange their characters
     /// * `floor` – no eigenvalue may lie below it: checked wherever a lane is free
-    pub fn follow(&mut self, ladder: &mut Ladder, floor: f64) -> bool {
+    pub fn follow(&mut self, ladder: &mut Ladder, required: usize, floor: f64) -> bool {
         let count = ladder.energies.len();
         let mut first = 0;
         while first < count {
@@ -344,12 +346,14 @@ impl BlockChain {
                 let mut good = true;
                 for lane in 0..own {
                     let level = first + lane;
-                    good &= residuals[lane] < LARGEST_RESIDUAL
+                    let certified = residuals[lane] < LARGEST_RESIDUAL
                         && (counts[lane] == level || counts[lane] == level + 1);
-                    if !steps[lane].is_finite() {
+                    good &= certified || level >= required;
+                    if steps[lane].is_finite() {
+                        shifts[lane] += steps[lane];
+                    } else if level < required {
                         return false;
                     }
-                    shifts[lane] += steps[lane];
                 }
                 if good {
                     done = true;
@@ -363,7 +367,9 @@ impl BlockChain {
             self.store(&mut ladder.vectors[first..first + own]);
             first += own;
         }
-        ladder.energies.windows(2).all(|pair| pair[1] > pair[0])
+        ladder.energies[..required.min(count)]
+            .windows(2)
+            .all(|pair| pair[1] > pair[0])
     }
 
     fn load(&mut self, vectors: &[Vec<f64>]) {
@@ -563,7 +569,8 @@ impl BlockChain {
     }
 
     /// Σ w a b.
-    fn product(&self, a: &[f64], b: &[f64]) -> f64 {
+    #[must_use]
+    pub fn product(&self, a: &[f64], b: &[f64]) -> f64 {
         let mut total = 0.0;
         Self::over_nodes(&self.runs, |node, _, weight, _| {
             let at = 3 * node;
@@ -778,7 +785,7 @@ mod tests {
             }
             let exact = dense(&chain);
             let mut followed = ladder.clone();
-            assert!(chain.follow(&mut followed, floor));
+            assert!(chain.follow(&mut followed, 11, floor));
             for (got, want) in followed.energies.iter().zip(&exact) {
                 assert!((got - want).abs() < 1e-8, "{got} {want}");
             }
@@ -794,7 +801,7 @@ mod tests {
         let mut ladder = chain.lowest(4, floor).expect("certified");
         ladder.energies.swap(1, 2);
         ladder.vectors.swap(1, 2);
-        assert!(!chain.follow(&mut ladder, floor));
+        assert!(!chain.follow(&mut ladder, 4, floor));
         assert!(
             chain.lowest(4, dense(&chain)[2]).is_err(),
             "levels below the floor"

@@ -1,7 +1,9 @@
 //! Levels and envelopes of the wells.
 
+mod mixed;
 mod single;
 
+pub use mixed::{Dipole, MixedBands, Slice, ZoneCentre, mixed};
 pub use single::{Band, Level, Overlaps, SingleBands, single};
 
 use crate::profile::{Cells, Profile};
