@@ -27,6 +27,8 @@ pub use stack::{
 };
 pub use write::write;
 
+use std::ops::Range;
+
 use crate::materials::Parameters;
 use crate::source::Diagnostic;
 
@@ -124,24 +126,23 @@ pub fn read(
     }
 }
 
-/// The faults of the syntax, and those of values on lines that it left whole.
+/// The faults of the syntax, and those of values that it left whole.
 fn with_broken_syntax(
     text: &str,
     broken: Vec<Diagnostic>,
     values: Vec<Diagnostic>,
 ) -> Vec<Diagnostic> {
-    let line_of = |at: usize| text[..at.min(text.len())].rfind('\n');
-    let lines: std::collections::BTreeSet<Option<usize>> = broken
+    let mut faults: Vec<Diagnostic> = broken.into_iter().take(MOST_FAULTS).collect();
+    let spoilt: Vec<Range<usize>> = faults
         .iter()
-        .map(|fault| line_of(fault.span.start))
+        .map(|fault| syntax::spoilt(text, fault.span.start))
         .collect();
-    let whole = values
-        .into_iter()
-        .filter(|fault| !lines.contains(&line_of(fault.span.start)));
-    let mut faults = broken;
-    faults.truncate(MOST_FAULTS);
-    let whole: Vec<Diagnostic> = whole.collect();
-    faults.extend(whole);
+    let is_whole = |fault: &Diagnostic| {
+        spoilt
+            .iter()
+            .all(|lines| !lines.contains(&fault.span.start))
+    };
+    faults.extend(values.into_iter().filter(is_whole));
     in_order(faults)
 }
 

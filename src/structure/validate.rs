@@ -384,21 +384,16 @@ fn role(given: &Field<String>) -> Option<Role> {
 /// Whether a row says that it is or holds a well, or might have said so.
 fn means_a_well(row: &Row) -> bool {
     let refused = row.role.as_ref().is_some_and(|given| given.value.is_none());
-    let inner_refused = row
+    let group_refused = row
         .layers
         .as_ref()
         .is_some_and(|given| given.value.is_none());
-    let inner = row.layers.iter().filter_map(|given| given.value.as_ref());
-    refused
-        || inner_refused
-        || role(&row.role) == Some(Role::Well)
-        || inner.flatten().any(|layer| {
-            role(&layer.role) == Some(Role::Well)
-                || layer
-                    .role
-                    .as_ref()
-                    .is_some_and(|given| given.value.is_none())
-        })
+    let mut inner = row
+        .layers
+        .iter()
+        .flat_map(|given| given.value.iter())
+        .flatten();
+    refused || group_refused || role(&row.role) == Some(Role::Well) || inner.any(means_a_well)
 }
 
 /// A key that only a layer has, and its place.
@@ -586,7 +581,10 @@ fn operation(table: &OperationTable, overrides: &Overrides, findings: &mut Findi
     }
     let from_file = number(&table.temperature_k)
         .or_else(|| number(&table.temperature_c).map(|celsius| celsius + CELSIUS_ZERO_K));
-    let temperature_k = overrides.temperature_k.or(from_file);
+    let laid_over = overrides
+        .temperature_k
+        .filter(|kelvin| check_magnitude("temperature_k", *kelvin).is_ok());
+    let temperature_k = laid_over.or(from_file);
     let listed = densities(table, findings);
     let (densities_cm3, working_density_cm3) = if overrides.densities_cm3.is_empty() {
         let highest = listed.last().copied().unwrap_or(DEFAULT_DENSITIES_CM3[4]);
