@@ -7,7 +7,10 @@
 
 mod file;
 mod keys;
+mod layers;
+mod magnitude;
 mod number;
+mod own_numbers;
 mod palette;
 mod reader;
 mod reference;
@@ -18,7 +21,7 @@ mod syntax;
 mod validate;
 mod write;
 
-pub use reader::{Refusal, check_magnitude};
+pub use magnitude::{Refusal, check_magnitude};
 pub use reference::key_reference;
 pub use remark::Remark;
 pub use schema::schema;
