@@ -33,8 +33,13 @@
 //! energies share one zero, the scale of the valence-band offsets in the parameter table; holes
 //! are given as electron energies (a valence edge is a maximum).
 
+pub mod carriers;
+pub mod evaluation;
 pub mod materials;
 pub mod numerics;
+pub mod profile;
 pub mod source;
+pub mod spectra;
 pub mod structure;
+pub mod subbands;
 pub mod units;

@@ -140,6 +140,12 @@ impl Crystal {
         }
     }
 
+    /// Whether the direct gap is not wider than those to the X and L valleys.
+    #[must_use]
+    pub fn is_direct(&self) -> bool {
+        self.gap_ev <= self.gap_x_ev.min(self.gap_l_ev)
+    }
+
     /// Mass of the heavy hole along growth, 1/(γ1 − 2 γ2).
     #[must_use]
     pub fn heavy_mass_growth(&self) -> f64 {

@@ -5,10 +5,10 @@ use crate::source::Diagnostic;
 use std::fmt::Write as _;
 use std::ops::Range;
 
-/// How far the fractions of a sublattice may miss 1, as they come from a file.
-const SUM_TOLERANCE: f64 = 1e-6;
+/// How far the fractions of a sublattice may miss 1: thirds to six decimals, and their binary rounding.
+const SUM_TOLERANCE: f64 = 1e-6 + 1e-12;
 /// Steps of the last printed decimal in one.
-const STEPS: f64 = 1e4;
+const STEPS: u32 = 10_000;
 
 const KNOWN: &str = "a formula is made of Al, Ga, In with P, As, Sb";
 
@@ -62,9 +62,9 @@ impl Composition {
             for (symbol, steps) in symbols.into_iter().zip(printed) {
                 if steps == STEPS {
                     text.push_str(symbol);
-                } else if steps > 0.0 {
-                    let number = format!("{:.4}", steps / STEPS);
-                    let _ = write!(text, "{symbol}{}", number.trim_end_matches('0'));
+                } else if steps > 0 {
+                    let decimals = format!("{steps:04}");
+                    let _ = write!(text, "{symbol}0.{}", decimals.trim_end_matches('0'));
                 }
             }
         }
@@ -283,7 +283,12 @@ fn sublattice(
             ),
         );
     }
-    let sum: f64 = parts.iter().map(|part| part.fraction.unwrap_or(1.0)).sum();
+    // filled before it is summed, so that the order in the formula does not matter to the last bit
+    let mut fractions = [0.0; 3];
+    for part in parts {
+        fractions[part.element.place()] = part.fraction.unwrap_or(1.0);
+    }
+    let sum: f64 = fractions.iter().sum();
     if (sum - 1.0).abs() > SUM_TOLERANCE {
         let symbols: Vec<&str> = parts.iter().map(|part| part.element.symbol()).collect();
         let miss = format!("{:.6}", (sum - 1.0).abs());
@@ -300,31 +305,29 @@ fn sublattice(
         )
         .with_help("the fractions of each sublattice sum to 1"));
     }
-    // A miss of rounding is left, so that fractions written with every digit read back to the bit.
+    // a miss of rounding is left, so that fractions written with every digit read back to the bit
     let sum = if (sum - 1.0).abs() < 1e-12 { 1.0 } else { sum };
-    let mut fractions = [0.0; 3];
-    for part in parts {
-        fractions[part.element.place()] = part.fraction.unwrap_or(1.0) / sum;
-    }
-    Ok(fractions)
+    Ok(fractions.map(|fraction| fraction / sum))
 }
 
-/// Fractions in steps of the last printed decimal, whole numbers that sum to [`STEPS`]: the
-/// largest remainders are rounded up.
-fn rounded(fractions: [f64; 3]) -> [f64; 3] {
-    let exact = fractions.map(|fraction| fraction * STEPS);
-    let mut steps = exact.map(f64::floor);
+/// Fractions in steps of the last printed decimal, which sum to [`STEPS`]: the largest remainders
+/// are rounded up.
+fn rounded(fractions: [f64; 3]) -> [u32; 3] {
+    let exact = fractions.map(|fraction| fraction.clamp(0.0, 1.0) * f64::from(STEPS));
+    #[expect(
+        clippy::cast_possible_truncation,
+        clippy::cast_sign_loss,
+        reason = "between 0 and STEPS"
+    )]
+    let mut steps = exact.map(|value| value as u32);
     let mut order = [0, 1, 2];
     order.sort_by(|&a, &b| {
-        let remainder = |place: usize| exact[place] - steps[place];
+        let remainder = |place: usize| exact[place] - f64::from(steps[place]);
         remainder(b).total_cmp(&remainder(a))
     });
-    let mut missing = STEPS - steps.iter().sum::<f64>();
-    for place in order {
-        if missing > 0.5 {
-            steps[place] += 1.0;
-            missing -= 1.0;
-        }
+    let missing = STEPS.saturating_sub(steps.iter().sum());
+    for place in order.into_iter().take(missing as usize) {
+        steps[place] += 1;
     }
     steps
 }

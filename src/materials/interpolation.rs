@@ -49,7 +49,7 @@ const BOWED: [(Bowed, &str); 11] = [
 ];
 
 /// One number per compound.
-type PerCompound = [f64; COMPOUNDS];
+pub(super) type PerCompound = [f64; COMPOUNDS];
 /// One polynomial per ternary, coefficient by coefficient.
 type PerPair = [[f64; PAIRS]; BOWING_TERMS];
 
@@ -360,14 +360,14 @@ pub(super) fn ternary_elements(place: usize) -> (Elements, Element) {
 /// Bowings of one quantity, as polynomials in the fraction of the first element of each pair.
 fn per_pair(table: &Table, word: &str) -> PerPair {
     debug_assert!(TERNARY_KEYS.iter().any(|key| key.word == word));
-    let mut coefficients = [[0.0; PAIRS]; BOWING_TERMS];
-    for place in 0..PAIRS {
+    let bowing = |place: usize| {
         let (elements, first) = ternary_elements(place);
-        let Some(material) = table.ternaries.get(&elements) else {
-            continue;
-        };
-        let Some(entry) = material.entries.get(word) else {
-            continue;
+        let known = table.ternaries.get(&elements).and_then(|material| {
+            let entry = material.entries.get(word)?;
+            Some((material, entry))
+        });
+        let Some((material, entry)) = known else {
+            return [0.0; BOWING_TERMS];
         };
         let mut terms = [0.0; BOWING_TERMS];
         for (term, value) in terms.iter_mut().zip(&entry.value) {
@@ -381,9 +381,8 @@ fn per_pair(table: &Table, word: &str) -> PerPair {
             let [c0, c1, c2] = terms;
             terms = [c0 + c1 + c2, -c1 - 2.0 * c2, c2];
         }
-        for (power, term) in terms.into_iter().enumerate() {
-            coefficients[power][place] = term;
-        }
-    }
-    coefficients
+        terms
+    };
+    let bowings: [[f64; BOWING_TERMS]; PAIRS] = std::array::from_fn(bowing);
+    std::array::from_fn(|power| bowings.map(|terms| terms[power]))
 }

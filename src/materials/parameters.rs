@@ -1,5 +1,6 @@
 //! The parameter data in force, and the crystals they make.
 
+use super::index_data::IndexData;
 use super::interpolation::{Interpolation, ValenceBowing, ternary_elements};
 use super::offsets::OffsetRule;
 use super::table::{SHIPPED, SHIPPED_NAME, Table};
@@ -24,9 +25,9 @@ pub(super) struct Frame {
     pub(super) status_codes: BTreeMap<String, String>,
     pub(super) conventions: BTreeMap<String, String>,
     pub(super) interpolation: BTreeMap<String, String>,
-    pub(super) units: BTreeMap<String, String>,
     #[serde(rename = "offset_rule")]
     pub(super) offset_rules: Vec<OffsetRule>,
+    pub(super) index: IndexData,
 }
 
 /// A composition for which the data lack the bowings of a ternary.
@@ -173,6 +174,14 @@ impl Parameters {
                 }
             }
         }
+        for rule in &self.frame.offset_rules {
+            let _ = writeln!(
+                text,
+                "offset {} {} {:?}",
+                rule.well, rule.qc, rule.vbo_bowing_override
+            );
+        }
+        self.frame.index.canonical(&mut text);
         text
     }
 }

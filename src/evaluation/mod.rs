@@ -1,0 +1,488 @@
+//! The only chain of profile, subbands, carriers and spectra, and the one record of what came out.
+//!
+//! [`Evaluation::new`] finds the levels of a stack; [`Evaluation::emission`] and
+//! [`Evaluation::spectrum`] go on from there. Writers read the records and compute no physics.
+
+mod budget;
+mod remark;
+mod spectrum;
+
+pub use budget::{Budget, budget};
+pub use remark::Remark;
+pub use spectrum::{
+    Absorption, GainPeak, PhotoLuminescence, Run, Spectrum, Spontaneous, Transparency,
+};
+
+use crate::carriers::{NetDoping, Reservoir, Subband};
+use crate::materials::Parameters;
+use crate::numerics::roots::bracketed_root;
+use crate::profile::{Profile, Unsolvable};
+use crate::spectra::landmarks::{emission_peak, gain_peak};
+use crate::spectra::{Hole, Line, Occupation, Pair, Point, Staircase};
+use crate::structure::{Role, Stack, Substance};
+use crate::subbands::{Band, Level, SingleBands, Uncertified, single};
+use crate::units::{thermal_ev, wavelength_nm};
+
+/// Least overlap |<e|h>|² of a transition that is listed, and of the first transition.
+pub const LEAST_OVERLAP: f64 = 0.01;
+/// Density at which photoluminescence is excited, cm⁻³: low injection, what a wafer map measures.
+pub const PL_DENSITY_CM3: f64 = 1e16;
+
+/// Why an evaluation came to nothing.
+#[derive(Clone, Debug, PartialEq, thiserror::Error)]
+#[non_exhaustive]
+pub enum Failure {
+    /// There is no region to solve.
+    #[error(transparent)]
+    Unsolvable(#[from] Unsolvable),
+    /// Node counts disagree with the levels found.
+    #[error(transparent)]
+    Uncertified(#[from] Uncertified),
+    /// No electron, or no hole, is bound.
+    #[error("no {carrier} level belongs to the wells: {reason}")]
+    NoLevel {
+        /// `electron`, or `heavy-hole or light-hole`.
+        carrier: &'static str,
+        /// What stands in the way, and the remedy.
+        reason: String,
+    },
+    /// No pair of levels overlaps.
+    #[error(
+        "no transition has an overlap above {LEAST_OVERLAP}: electrons and holes sit in different places; \
+         check the offsets of the wells, or lower the field"
+    )]
+    NoTransition,
+    /// A well of own numbers without an index.
+    #[error(
+        "the well material `{material}` has numbers of its own and no refractive index: \
+         give it `index`, or set `index` in [model]"
+    )]
+    NoIndex {
+        /// The material's name.
+        material: String,
+    },
+}
+
+/// An optical transition between two levels.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Transition {
+    /// Number of the electron level, from 1.
+    pub electron: usize,
+    /// Name of the hole level, `hh1`, `lh2`.
+    pub hole: String,
+    /// Energy of the edge without gap shrinkage, eV.
+    pub energy_ev: f64,
+    /// Its wavelength in vacuum, nm.
+    pub wavelength_nm: f64,
+    /// |<electron|hole>|².
+    pub overlap: f64,
+}
+
+/// The emission wavelengths by their names, nm in vacuum.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct Emission {
+    /// Edge of the first transition, without shrinkage.
+    pub first_transition_nm: f64,
+    /// Peak of the spontaneous spectrum at [`PL_DENSITY_CM3`], without shrinkage.
+    pub pl_nm: Option<f64>,
+    /// Peak of the larger of TE and TM gain at the working density, with shrinkage.
+    pub gain_peak_nm: Option<f64>,
+    /// The same without shrinkage.
+    pub gain_peak_unshrunk_nm: Option<f64>,
+}
+
+/// Quasi-Fermi levels at one density, without gap shrinkage.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct Filling {
+    /// Density of pairs per volume of the wells, cm⁻³.
+    pub density_cm3: f64,
+    /// Quasi-Fermi level of the electrons, eV.
+    pub fermi_electron_ev: f64,
+    /// Quasi-Fermi level of the holes, eV.
+    pub fermi_hole_ev: f64,
+}
+
+/// The levels of a stack and what follows from them.
+#[derive(Debug)]
+pub struct Evaluation<'a> {
+    /// The stack.
+    pub stack: &'a Stack,
+    /// The parameter data used.
+    pub parameters: &'a Parameters,
+    /// Band edges and the solved region.
+    pub profile: Profile<'a>,
+    /// Levels and envelopes.
+    pub bands: SingleBands,
+    /// Transitions with an overlap above [`LEAST_OVERLAP`], by rising energy.
+    pub transitions: Vec<Transition>,
+    /// Net doping that the wells feel.
+    pub doping: NetDoping,
+    /// What a reader should know.
+    pub remarks: Vec<Remark>,
+    emitter: Staircase,
+    index: Result<f64, Failure>,
+    electrons: Vec<Subband>,
+    holes: Vec<Subband>,
+    first_ev: f64,
+}
+
+impl<'a> Evaluation<'a> {
+    /// Finds the levels of a stack.
+    ///
+    /// # Errors
+    ///
+    /// [`Failure`] if there is no region to solve, no level of a kind, or no transition.
+    pub fn new(stack: &'a Stack, parameters: &'a Parameters) -> Result<Self, Failure> {
+        let profile = Profile::new(stack, parameters)?;
+        let bands = single(&profile, stack.model.nonparabolic)?;
+        require_levels(stack, &profile, &bands)?;
+        let pairs = pairs(stack, &profile, &bands);
+        let transitions = transitions(&pairs);
+        let first_ev = transitions.first().ok_or(Failure::NoTransition)?.energy_ev;
+        let index = refractive_index(stack, parameters, first_ev);
+        let line = Line::new(stack.model.lineshape, stack.model.intraband_fs);
+        let wells_nm = profile.well_thickness_nm;
+        let kane_energy_ev = profile
+            .wells(stack)
+            .map(|(numbers, thickness_nm)| numbers.crystal.kane_energy_ev * thickness_nm)
+            .sum::<f64>()
+            / wells_nm;
+        // Positions and widths do not hang on the index, which scales every spectrum as a whole.
+        let scale = index.as_ref().copied().unwrap_or(1.0);
+        let emitter = Staircase::new(pairs, kane_energy_ev, wells_nm, scale, line);
+        let electrons = subbands(&bands.electron, 1.0);
+        let mut holes = subbands(&bands.heavy, -1.0);
+        holes.extend(subbands(&bands.light, -1.0));
+        let doping = net_doping(stack, wells_nm);
+        let mut evaluation = Self {
+            stack,
+            parameters,
+            profile,
+            bands,
+            transitions,
+            doping,
+            remarks: Vec::new(),
+            emitter,
+            index,
+            electrons,
+            holes,
+            first_ev,
+        };
+        evaluation.remarks = remark::of_levels(&evaluation);
+        Ok(evaluation)
+    }
+
+    /// kT, eV.
+    #[must_use]
+    pub fn thermal_ev(&self) -> f64 {
+        thermal_ev(self.stack.operation.temperature_k)
+    }
+
+    /// Edge of the first transition without shrinkage, eV.
+    #[must_use]
+    pub fn first_transition_ev(&self) -> f64 {
+        self.first_ev
+    }
+
+    /// Refractive index of the wells.
+    ///
+    /// # Errors
+    ///
+    /// [`Failure::NoIndex`] if a well of own numbers has none.
+    pub fn refractive_index(&self) -> Result<f64, Failure> {
+        self.index.clone()
+    }
+
+    /// Gap shrinkage at a density, eV, at least zero: k (N/1e18)^⅓.
+    ///
+    /// Source: H. C. Casey, F. Stern, J. Appl. Phys. 47, 631 (1976), for equal numbers of
+    /// electrons and holes.
+    #[must_use]
+    pub fn shrinkage_ev(&self, density_cm3: f64) -> f64 {
+        1e-3 * self.stack.model.shrinkage_mev * (density_cm3 / 1e18).cbrt()
+    }
+
+    /// Quasi-Fermi levels at a density of pairs, without shrinkage.
+    #[must_use]
+    pub fn filling(&self, density_cm3: f64) -> Filling {
+        let (electrons, holes) = self.doping.electrons_and_holes_cm3(density_cm3);
+        let area = 1e-7 * self.profile.well_thickness_nm;
+        let kt = self.thermal_ev();
+        Filling {
+            density_cm3,
+            fermi_electron_ev: Reservoir::Parabolic(&self.electrons).fermi_ev(electrons * area, kt),
+            fermi_hole_ev: -Reservoir::Parabolic(&self.holes).fermi_ev(holes * area, kt),
+        }
+    }
+
+    /// The carriers at a density, with the gap lowered by `lowering_ev`.
+    fn occupation(&self, filling: &Filling, lowering_ev: f64) -> Occupation {
+        Occupation {
+            fermi_electron_ev: filling.fermi_electron_ev - lowering_ev,
+            fermi_hole_ev: filling.fermi_hole_ev,
+            lowering_ev,
+            thermal_ev: self.thermal_ev(),
+        }
+    }
+
+    /// Whether a filling gives gain at all: the quasi-Fermi splitting exceeds the first transition.
+    fn is_transparent(&self, filling: &Filling) -> bool {
+        filling.fermi_electron_ev - filling.fermi_hole_ev > self.first_ev
+    }
+
+    /// The density at which the quasi-Fermi splitting equals the first transition, cm⁻³; `None` if
+    /// that is outside 1e10 to 1e22.
+    #[must_use]
+    pub fn transparency_cm3(&self) -> Option<f64> {
+        let excess = |log_density: f64| {
+            let filling = self.filling(log_density.exp());
+            filling.fermi_electron_ev - filling.fermi_hole_ev - self.first_ev
+        };
+        let (low, high) = (1e10f64.ln(), 1e22f64.ln());
+        (excess(low) < 0.0 && excess(high) > 0.0)
+            .then(|| bracketed_root(excess, low, high, 1e-10).exp())
+    }
+
+    /// The emission wavelengths by their names.
+    #[must_use]
+    pub fn emission(&self) -> Emission {
+        let filling = self.filling(self.stack.operation.working_density_cm3);
+        let peak_nm = |lowering_ev: f64| {
+            let [te, tm] = self.gain_peaks(&filling, lowering_ev);
+            larger(te, tm).map(|(_, peak)| peak.peak_nm)
+        };
+        Emission {
+            first_transition_nm: wavelength_nm(self.first_ev),
+            pl_nm: self
+                .photoluminescence_peak()
+                .map(|peak| wavelength_nm(peak.photon_ev)),
+            gain_peak_nm: peak_nm(self.shrinkage_ev(filling.density_cm3)),
+            gain_peak_unshrunk_nm: peak_nm(0.0),
+        }
+    }
+
+    fn low_injection(&self) -> Occupation {
+        self.occupation(&self.filling(PL_DENSITY_CM3), 0.0)
+    }
+
+    fn photoluminescence_peak(&self) -> Option<crate::spectra::landmarks::Peak> {
+        emission_peak(&self.emitter, &self.low_injection())
+    }
+
+    /// Peaks of TE and TM gain; `None` below transparency.
+    fn gain_peaks(&self, filling: &Filling, lowering_ev: f64) -> [Option<GainPeak>; 2] {
+        if !self.is_transparent(filling) {
+            return [None, None];
+        }
+        let occupation = self.occupation(filling, lowering_ev);
+        let peak = |pick: fn(&Point) -> f64| {
+            gain_peak(&self.emitter, &occupation, pick).map(|peak| GainPeak {
+                gain_cm: peak.height,
+                peak_nm: wavelength_nm(peak.photon_ev),
+                peak_ev: peak.photon_ev,
+            })
+        };
+        [
+            peak(|point| point.te_gain_cm),
+            peak(|point| point.tm_gain_cm),
+        ]
+    }
+}
+
+/// The larger of two peaks, with the name of its polarisation.
+fn larger(te: Option<GainPeak>, tm: Option<GainPeak>) -> Option<(&'static str, GainPeak)> {
+    match (te, tm) {
+        (Some(te), Some(tm)) if tm.gain_cm > te.gain_cm => Some(("TM", tm)),
+        (Some(te), _) => Some(("TE", te)),
+        (None, Some(tm)) => Some(("TM", tm)),
+        (None, None) => None,
+    }
+}
+
+/// The subbands of a ladder, energies counted away from the gap.
+fn subbands(levels: &[Level], sign: f64) -> Vec<Subband> {
+    levels
+        .iter()
+        .map(|level| Subband {
+            edge_ev: sign * level.energy_ev,
+            mass: level.in_plane_mass,
+        })
+        .collect()
+}
+
+/// Every pair of an electron and a hole level.
+fn pairs(stack: &Stack, profile: &Profile<'_>, bands: &SingleBands) -> Vec<Pair> {
+    let edge = |band: Band, start: f64, pick: fn(f64, f64) -> f64| {
+        profile
+            .wells(stack)
+            .map(|(numbers, _)| band.edge_ev(numbers))
+            .fold(start, pick)
+    };
+    let conduction_ev = edge(Band::Electron, f64::INFINITY, f64::min);
+    let mut pairs = Vec::new();
+    for (kind, band) in [(Hole::Heavy, Band::Heavy), (Hole::Light, Band::Light)] {
+        let valence_ev = edge(band, f64::NEG_INFINITY, f64::max);
+        let overlaps = bands.overlaps(band);
+        for (electron, upper) in bands.electron.iter().enumerate() {
+            for (hole, lower) in bands.of(band).iter().enumerate() {
+                pairs.push(Pair {
+                    electron,
+                    kind,
+                    hole,
+                    electron_ev: upper.energy_ev,
+                    hole_ev: lower.energy_ev,
+                    electron_mass: upper.in_plane_mass,
+                    hole_mass: lower.in_plane_mass,
+                    overlap: overlaps.0[electron][hole],
+                    confinement_ev: (upper.energy_ev - conduction_ev).max(0.0)
+                        + (valence_ev - lower.energy_ev).max(0.0),
+                });
+            }
+        }
+    }
+    pairs
+}
+
+fn transitions(pairs: &[Pair]) -> Vec<Transition> {
+    let mut transitions: Vec<Transition> = pairs
+        .iter()
+        .filter(|pair| pair.overlap > LEAST_OVERLAP)
+        .map(|pair| Transition {
+            electron: pair.electron + 1,
+            hole: match pair.kind {
+                Hole::Heavy => format!("hh{}", pair.hole + 1),
+                Hole::Light => format!("lh{}", pair.hole + 1),
+            },
+            energy_ev: pair.energy_ev(),
+            wavelength_nm: wavelength_nm(pair.energy_ev()),
+            overlap: pair.overlap,
+        })
+        .collect();
+    transitions.sort_by(|a, b| a.energy_ev.total_cmp(&b.energy_ev));
+    transitions
+}
+
+/// Net doping of the wells, the layers between them, the steps next to them, and a barrier next to
+/// these on either side, per volume of the wells.
+fn net_doping(stack: &Stack, wells_nm: f64) -> NetDoping {
+    let layers = &stack.layers;
+    let is = |index: Option<usize>, role: Role| {
+        index
+            .and_then(|index| layers.get(index))
+            .is_some_and(|layer| layer.role == role)
+    };
+    let well = |layer: &crate::structure::Layer| layer.role == Role::Well;
+    let (Some(mut first), Some(mut last)) =
+        (layers.iter().position(well), layers.iter().rposition(well))
+    else {
+        return NetDoping::default();
+    };
+    while is(first.checked_sub(1), Role::Step) {
+        first -= 1;
+    }
+    while is(Some(last + 1), Role::Step) {
+        last += 1;
+    }
+    if is(first.checked_sub(1), Role::Barrier) {
+        first -= 1;
+    }
+    if is(Some(last + 1), Role::Barrier) {
+        last += 1;
+    }
+    let net_nm: f64 = layers[first..=last]
+        .iter()
+        .map(|layer| (layer.doping.donors_cm3 - layer.doping.acceptors_cm3) * layer.thickness_nm)
+        .sum();
+    NetDoping {
+        net_cm3: net_nm / wells_nm,
+    }
+}
+
+/// Mean refractive index of the wells by thickness at a photon energy.
+fn refractive_index(
+    stack: &Stack,
+    parameters: &Parameters,
+    photon_ev: f64,
+) -> Result<f64, Failure> {
+    if let Some(index) = stack.model.index {
+        return Ok(index);
+    }
+    let substrate = match &stack.substrate.substance {
+        Substance::Alloy(composition) => Some(composition),
+        Substance::Own { .. } => None,
+    };
+    let mut sum = 0.0;
+    for layer in stack.wells() {
+        let ends = [
+            &layer.material,
+            layer.grade_to.as_ref().unwrap_or(&layer.material),
+        ];
+        for material in ends {
+            let index = match &material.substance {
+                Substance::Alloy(composition) => {
+                    parameters.index(composition, substrate, photon_ev)
+                }
+                Substance::Own {
+                    index: Some(index), ..
+                } => *index,
+                Substance::Own { index: None, .. } => {
+                    return Err(Failure::NoIndex {
+                        material: material.name.clone(),
+                    });
+                }
+            };
+            sum += 0.5 * layer.thickness_nm * index;
+        }
+    }
+    Ok(sum / stack.well_thickness_nm())
+}
+
+/// No electron level, or neither a heavy nor a light one, is an error that says why.
+fn require_levels(
+    stack: &Stack,
+    profile: &Profile<'_>,
+    bands: &SingleBands,
+) -> Result<(), Failure> {
+    let missing = |carrier: &'static str, kinds: &[Band]| {
+        let reason = if profile.slope_ev_nm == 0.0 {
+            let parts: Vec<String> = kinds
+                .iter()
+                .map(|&band| {
+                    let sign = if band == Band::Electron { 1.0 } else { -1.0 };
+                    let deepest = |edges: &mut dyn Iterator<Item = f64>| {
+                        edges.map(|edge| sign * edge).fold(f64::INFINITY, f64::min)
+                    };
+                    let well = deepest(&mut profile.wells(stack).map(|(n, _)| band.edge_ev(n)));
+                    let outside = deepest(&mut profile.outside().map(|n| band.edge_ev(n)));
+                    let depth_mev = 1e3 * (outside - well);
+                    if depth_mev > 0.0 {
+                        format!(
+                            "the {} edge of the wells is only {depth_mev:.0} meV deep against the layers outside them",
+                            band.word()
+                        )
+                    } else {
+                        format!(
+                            "the {} edge of the wells stands {:.0} meV beyond that of a layer outside them, so that it is no well",
+                            band.word(),
+                            -depth_mev
+                        )
+                    }
+                })
+                .collect();
+            format!(
+                "{}; take a barrier of larger gap, a wider well, or check that every layer within 60 nm of the wells confines",
+                parts.join(", and ")
+            )
+        } else {
+            "not bound in this field; lower `field_kv_cm` or take deeper wells".to_owned()
+        };
+        Err(Failure::NoLevel { carrier, reason })
+    };
+    if bands.electron.is_empty() {
+        return missing("electron", &[Band::Electron]);
+    }
+    if bands.heavy.is_empty() && bands.light.is_empty() {
+        return missing("heavy-hole or light-hole", &[Band::Heavy, Band::Light]);
+    }
+    Ok(())
+}

@@ -1,0 +1,216 @@
+//! What a reader should know of a result: what was seen, what it may mean, what to do.
+
+use super::{Evaluation, Run};
+use crate::spectra::Emitter;
+use crate::structure::{Bands, Lineshape};
+use crate::subbands::Band;
+
+/// Something worth knowing that is no error.
+#[derive(Clone, Debug, PartialEq)]
+#[non_exhaustive]
+pub enum Remark {
+    /// The valence bands were taken one at a time.
+    SingleBands,
+    /// The energy-dependent electron mass met its lower bound.
+    MassBounded,
+    /// Levels close to the edge that confines them.
+    NearEdge {
+        /// Their names.
+        levels: Vec<String>,
+    },
+    /// A light hole makes the first transition.
+    LightHoleFirst,
+    /// Emission uses another line than gain.
+    EmissionLine {
+        /// The line asked for.
+        asked: Lineshape,
+    },
+    /// A line of fixed width makes cold emission too strong.
+    ColdEmission {
+        /// At this density, cm⁻³.
+        density_cm3: f64,
+        /// The rate is this many times that of a sharp line.
+        ratio: f64,
+    },
+    /// The field leaves some kind of level unbound.
+    NotBoundInField {
+        /// The kinds.
+        kinds: Vec<&'static str>,
+    },
+    /// Densities below transparency.
+    BelowTransparency {
+        /// How many of those asked for.
+        count: usize,
+        /// Transparency density, cm⁻³.
+        transparency_cm3: Option<f64>,
+    },
+    /// A quasi-Fermi level reaches the edges outside the wells.
+    FillsBarriers {
+        /// `electrons` or `holes`.
+        carrier: &'static str,
+        /// From this density on, cm⁻³.
+        density_cm3: f64,
+    },
+}
+
+impl Remark {
+    /// What was seen, and what it may mean.
+    #[must_use]
+    pub fn message(&self) -> String {
+        match self {
+            Self::SingleBands => {
+                "valence bands taken one at a time: good for levels and trends; gain comes out about \
+                 twice too high, transparency 35 to 50 % too low, and TM gain is not to be believed"
+                    .to_owned()
+            }
+            Self::MassBounded => {
+                "the energy-dependent electron mass met its lower bound, a tenth of the edge mass, in a \
+                 layer far above the levels"
+                    .to_owned()
+            }
+            Self::NearEdge { levels } => format!(
+                "{} within 3 meV of the edge that confines: barely bound, and moved by the walls of the \
+                 solved region",
+                levels.join(", ")
+            ),
+            Self::LightHoleFirst => {
+                "a light hole makes the first transition: emission is mostly TM".to_owned()
+            }
+            Self::EmissionLine { asked } => format!(
+                "the tail of the {} line would make emission diverge at this temperature: emission uses \
+                 the Gaussian of the same half width, gain keeps the line asked for",
+                asked.word()
+            ),
+            Self::ColdEmission { density_cm3, ratio } => format!(
+                "at {density_cm3:.3e} cm⁻³ a line of this fixed width makes emission {ratio:.1} times that of \
+                 a sharp line: no accuracy is claimed for cold emission"
+            ),
+            Self::NotBoundInField { kinds } => {
+                format!("not bound in this field: {} levels", kinds.join(" and "))
+            }
+            Self::BelowTransparency { count, transparency_cm3 } => {
+                let plural = if *count == 1 { "y lies" } else { "ies lie" };
+                transparency_cm3.map_or_else(
+                    || format!("{count} densit{plural} below transparency: no peak gain there"),
+                    |density| {
+                        format!(
+                            "{count} densit{plural} below transparency ({density:.3e} cm⁻³): no peak gain there"
+                        )
+                    },
+                )
+            }
+            Self::FillsBarriers { carrier, density_cm3 } => format!(
+                "from {density_cm3:.3e} cm⁻³ on the quasi-Fermi level of the {carrier} comes within 2 kT of \
+                 the edge outside the wells: carriers there are not counted, the true density is higher"
+            ),
+        }
+    }
+
+    /// What to do.
+    #[must_use]
+    pub fn advice(&self) -> Option<String> {
+        let text = match self {
+            Self::SingleBands => "treat absolute gain and polarisation as trends only",
+            Self::MassBounded | Self::LightHoleFirst => return None,
+            Self::NearEdge { .. } => {
+                "do not build on these levels; raise the barrier or widen the well"
+            }
+            Self::EmissionLine { .. } => "lengthen `intraband_fs` or set lineshape = \"gaussian\"",
+            Self::ColdEmission { .. } => "lengthen `intraband_fs` to what the cold line is",
+            Self::NotBoundInField { .. } => "lower `field_kv_cm` or take deeper wells",
+            Self::BelowTransparency { .. } => "ask for higher densities",
+            Self::FillsBarriers { .. } => "take higher barriers, more wells or a lower density",
+        };
+        Some(text.to_owned())
+    }
+}
+
+/// Remarks on the levels.
+pub(super) fn of_levels(evaluation: &Evaluation<'_>) -> Vec<Remark> {
+    let bands = &evaluation.bands;
+    let mut remarks = Vec::new();
+    if bands.electron.iter().any(|level| level.mass_bounded) {
+        remarks.push(Remark::MassBounded);
+    }
+    let near: Vec<String> = [
+        (Band::Electron, "e"),
+        (Band::Heavy, "hh"),
+        (Band::Light, "lh"),
+    ]
+    .into_iter()
+    .flat_map(|(band, name)| {
+        bands
+            .of(band)
+            .iter()
+            .enumerate()
+            .filter(|(_, level)| level.near_edge)
+            .map(move |(index, _)| format!("{name}{}", index + 1))
+    })
+    .collect();
+    if !near.is_empty() {
+        remarks.push(Remark::NearEdge { levels: near });
+    }
+    let first_is_light = evaluation
+        .transitions
+        .first()
+        .is_some_and(|transition| transition.hole.starts_with("lh"));
+    if first_is_light {
+        remarks.push(Remark::LightHoleFirst);
+    }
+    if evaluation.profile.slope_ev_nm != 0.0 {
+        let kinds: Vec<&'static str> = [Band::Heavy, Band::Light]
+            .into_iter()
+            .filter(|&band| bands.of(band).is_empty())
+            .map(Band::word)
+            .collect();
+        if !kinds.is_empty() {
+            remarks.push(Remark::NotBoundInField { kinds });
+        }
+    }
+    remarks
+}
+
+/// Remarks on a spectrum.
+pub(super) fn of_spectrum(evaluation: &Evaluation<'_>, runs: &[Run]) -> Vec<Remark> {
+    let mut remarks = Vec::new();
+    if evaluation.stack.model.bands == Bands::Single {
+        remarks.push(Remark::SingleBands);
+    }
+    let line = evaluation.emitter.line();
+    if evaluation.emitter.emission_line(evaluation.thermal_ev()) != line {
+        remarks.push(Remark::EmissionLine { asked: line.shape });
+    }
+    let count = runs
+        .iter()
+        .filter(|run| run.te.is_none() && run.tm.is_none())
+        .count();
+    if count > 0 {
+        remarks.push(Remark::BelowTransparency {
+            count,
+            transparency_cm3: evaluation.transparency_cm3(),
+        });
+    }
+    let profile = &evaluation.profile;
+    let margin = 2.0 * evaluation.thermal_ev();
+    let conduction = profile
+        .outside()
+        .map(|n| n.edges.conduction_ev)
+        .fold(f64::INFINITY, f64::min);
+    let valence = profile
+        .outside()
+        .map(|n| n.edges.heavy_ev.max(n.edges.light_ev))
+        .fold(f64::NEG_INFINITY, f64::max);
+    let electrons = runs
+        .iter()
+        .find(|run| run.fermi_electron_ev + 1e-3 * run.shrinkage_mev > conduction - margin);
+    let holes = runs.iter().find(|run| run.fermi_hole_ev < valence + margin);
+    for (carrier, run) in [("electrons", electrons), ("holes", holes)] {
+        if let Some(run) = run {
+            remarks.push(Remark::FillsBarriers {
+                carrier,
+                density_cm3: run.density_cm3,
+            });
+        }
+    }
+    remarks
+}

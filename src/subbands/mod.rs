@@ -1,0 +1,68 @@
+//! Levels and envelopes of the wells.
+
+mod single;
+
+pub use single::{Band, Level, Overlaps, SingleBands, single};
+
+use crate::profile::{Cells, Profile};
+
+/// Levels of nearly identical wells come in clusters closer than this, eV: the members are
+/// orthogonal, but only sums over a cluster mean anything.
+pub const CLUSTER_EV: f64 = 3e-4;
+/// Levels nearer than this to the edge that confines them are marked, eV.
+pub const NEAR_EDGE_EV: f64 = 3e-3;
+/// Longest interval of the coarsest grid, nm.
+const COARSEST_STEP_NM: f64 = 0.5;
+/// Every level is refined until its own estimate of its error is below this, eV.
+const WANTED_ERROR_EV: f64 = 1e-6;
+/// Grids are refined until in-plane masses are corrected by less than this, relatively.
+const LARGEST_MASS_CORRECTION: f64 = 1e-3;
+/// Grids are not refined beyond 2^−MOST_HALVINGS of the coarsest step.
+const MOST_HALVINGS: u32 = 5;
+
+/// Why no levels came out.
+#[derive(Clone, Debug, PartialEq, thiserror::Error)]
+#[error("{band} level {level} near {energy_ev:.6} eV could not be certified by node counts")]
+pub struct Uncertified {
+    /// Which band.
+    pub band: &'static str,
+    /// Number of the level from the band edge.
+    pub level: usize,
+    /// Where it was looked for, eV.
+    pub energy_ev: f64,
+}
+
+/// The inner nodes of the finest grid.
+#[derive(Clone, Debug, Default, PartialEq)]
+pub struct Nodes {
+    /// Position above the substrate, nm.
+    pub positions_nm: Vec<f64>,
+    /// Length that belongs to each node, nm: ∫ f dz = Σ weight f.
+    pub weights_nm: Vec<f64>,
+}
+
+impl Nodes {
+    fn of(profile: &Profile<'_>, cells: &[Cells]) -> Self {
+        let (low, _) = profile.walls_nm();
+        let lengths: Vec<f64> = cells
+            .iter()
+            .flat_map(|cell| std::iter::repeat_n(cell.length_nm, cell.intervals))
+            .collect();
+        let mut position = low;
+        let positions_nm = lengths[..lengths.len() - 1]
+            .iter()
+            .map(|length| {
+                position += length;
+                position
+            })
+            .collect();
+        let weights_nm = lengths
+            .windows(2)
+            .map(|pair| 0.5 * (pair[0] + pair[1]))
+            .collect();
+        Self {
+            positions_nm,
+            weights_nm,
+        }
+    }
+}
