@@ -3,7 +3,7 @@
 //! A file has two forms. Its raw form mirrors the TOML key by key, along one table of keys
 //! that also yields the editor [`schema`] and the [`key_reference`] of the manual. [`read`] makes
 //! the stack of it, or names every fault at its place; no module above checks a thickness again.
-//! [`write`] says a stack as a file.
+//! [`write()`] says a stack as a file.
 
 mod file;
 mod keys;
