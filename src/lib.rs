@@ -35,6 +35,7 @@
 
 pub mod materials;
 pub mod numerics;
+pub mod sheet;
 pub mod source;
 pub mod structure;
 pub mod units;
