@@ -132,7 +132,7 @@ fn draft(panel: &Panel, width_px: f64) -> Draft<'_> {
         .fold(0.0, f64::max);
     let title_px = y_title.len() as f64 * (line_height_px(AXIS_TITLE_PX) + 2.0) + 6.0;
     let column_px = beside(panel)
-        .map(|name| width_px_of_note(name))
+        .map(width_px_of_note)
         .fold(0.0, f64::max)
         .min(COLUMN_SHARE * width_px);
     let right_px = if column_px > 0.0 {

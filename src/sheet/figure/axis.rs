@@ -87,7 +87,13 @@ impl Span {
         };
         let bare = Self::between(low, high, scale);
         if low < high {
-            Self::between(bare.value(-air), bare.value(1.0 + air), scale)
+            let (mut from, mut to) = (bare.value(-air), bare.value(1.0 + air));
+            if scale == Scale::Linear {
+                // Data that touch zero or end there keep it at the edge.
+                from = if low >= 0.0 { from.max(0.0) } else { from };
+                to = if high <= 0.0 { to.min(0.0) } else { to };
+            }
+            Self::between(from, to, scale)
         } else {
             bare
         }
@@ -524,6 +530,8 @@ mod tests {
         let span = Span::around([1.0, f64::NAN, 3.0].into_iter(), Scale::Linear, 0.0);
         assert_eq!((span.from, span.to), (1.0, 3.0));
         assert_eq!(span.place(f64::INFINITY), None);
+        let span = Span::around([0.0, 2.0].into_iter(), Scale::Linear, 0.05);
+        assert_eq!((span.from, span.to), (0.0, 2.1));
         let span = Span::around([0.0, -2.0].into_iter(), Scale::Logarithmic, 0.05);
         assert_eq!((span.from, span.to), (1.0, 10.0));
         assert_eq!(span.place(0.0), None);

@@ -59,15 +59,15 @@ fn clipped_segment(from: Point, to: Point, inside: Rectangle) -> Option<(Point, 
 ///
 /// I. E. Sutherland, G. W. Hodgman, Commun. ACM 17, 32 (1974).
 pub(crate) fn clipped_area(outline: &[Point], inside: Rectangle) -> Vec<Point> {
-    let edges: [(fn(Point) -> f64, f64, f64); 4] = [
-        (|point| point.0, 1.0, inside.left_px),
-        (|point| point.0, -1.0, inside.right_px),
-        (|point| point.1, 1.0, inside.top_px),
-        (|point| point.1, -1.0, inside.bottom_px),
+    // How deep inside each edge a point lies.
+    let depths: [&dyn Fn(Point) -> f64; 4] = [
+        &|point| point.0 - inside.left_px,
+        &|point| inside.right_px - point.0,
+        &|point| point.1 - inside.top_px,
+        &|point| inside.bottom_px - point.1,
     ];
     let mut kept = outline.to_vec();
-    for (coordinate, sense, edge_px) in edges {
-        let depth = |point: Point| sense * (coordinate(point) - edge_px);
+    for depth in depths {
         let whole = std::mem::take(&mut kept);
         for (index, &to) in whole.iter().enumerate() {
             let from = whole[(index + whole.len() - 1) % whole.len()];

@@ -1,7 +1,7 @@
 //! How wide a text is set, without asking any font.
 //!
 //! A figure carries no font: the reader's machine chooses a sans-serif. So a text is measured with
-//! the wider of two common ones for every glyph (the advance widths of DejaVu Sans and of
+//! the wider of two common ones for every glyph (the advance widths of `DejaVu Sans` and of
 //! Liberation Sans, whose widths are those of Arial, read from the font files in 1/1000 em). A
 //! narrower font then leaves a little air, and none runs out of its box.
 

@@ -1,7 +1,7 @@
 //! Room for labels: in a column beside a plot, and among the curves inside it.
 
 use super::clipping::crosses;
-use super::glyphs::{Weight, width_px};
+use super::glyphs::Weight;
 use super::lettering::fitted;
 use super::palette::Rgb;
 use super::scene::{Point, Rectangle};
@@ -28,56 +28,70 @@ pub(crate) fn spread(
 ) -> Vec<SideLabel> {
     labels.retain(|label| !label.text.is_empty());
     labels.sort_by(|a, b| a.anchor.1.total_cmp(&b.anchor.1));
-    let mut most = 0;
-    while f64::from(most + 1) * height_px <= bottom_px - top_px {
-        most += 1;
+    share_lines(
+        &mut labels,
+        (bottom_px - top_px) / height_px,
+        (size_px, room_px),
+    );
+    let wanted: Vec<f64> = labels.iter().map(|label| label.middle_px).collect();
+    let middles = parted(&wanted, (top_px, bottom_px), height_px);
+    for (label, middle_px) in labels.iter_mut().zip(middles) {
+        label.middle_px = middle_px;
     }
-    while labels.len() > usize::try_from(most).unwrap_or(0) {
+    labels
+}
+
+/// Writes nearest neighbours on one line until no more lines are needed than there are.
+fn share_lines(labels: &mut Vec<SideLabel>, lines: f64, (size_px, room_px): (f64, f64)) {
+    if lines < 1.0 {
+        labels.clear();
+    }
+    while labels.len() as f64 > lines {
         let nearest = (1..labels.len()).min_by(|a, b| {
             let distance = |at: usize| labels[at].anchor.1 - labels[at - 1].anchor.1;
             distance(*a).total_cmp(&distance(*b))
         });
-        let Some(nearest) = nearest else {
-            return Vec::new();
-        };
+        let Some(nearest) = nearest else { return };
         let second = labels.remove(nearest);
         let first = &mut labels[nearest - 1];
         // A text already cut short takes no more.
-        if width_px(&first.text, size_px, Weight::Regular) < 0.9 * room_px {
-            first.text = format!("{}, {}", first.text, second.text);
+        if !first.text.ends_with('…') {
+            let both = format!("{}, {}", first.text, second.text);
+            first.text = fitted(&both, size_px, Weight::Regular, room_px);
         }
-        first.text = fitted(&first.text, size_px, Weight::Regular, room_px);
     }
+}
 
-    // Neighbours that overlap form a block, which stands where the mean of its members wants to.
-    struct Block {
-        count: usize,
-        middle_px: f64,
-    }
+/// Neighbours that overlap: they stand together where the mean of them wants to.
+struct Block {
+    count: usize,
+    middle_px: f64,
+}
+
+/// Middles of boxes of one height, moved from the rising `wanted` ones until none overlaps and
+/// all lie between two ends, which must leave room for all.
+fn parted(wanted: &[f64], (top_px, bottom_px): (f64, f64), height_px: f64) -> Vec<f64> {
     let half = |count: usize| 0.5 * count as f64 * height_px;
     let mut blocks: Vec<Block> = Vec::new();
-    for label in &labels {
+    for middle_px in wanted {
         let mut block = Block {
             count: 1,
-            middle_px: label.middle_px,
+            middle_px: *middle_px,
         };
         loop {
             let (low, high) = (top_px + half(block.count), bottom_px - half(block.count));
             block.middle_px = block.middle_px.max(low).min(high);
-            match blocks.pop_if(|above| {
+            let Some(above) = blocks.pop_if(|above| {
                 above.middle_px + half(above.count) > block.middle_px - half(block.count)
-            }) {
-                None => break,
-                Some(above) => {
-                    let count = above.count + block.count;
-                    let sum =
-                        above.middle_px * above.count as f64 + block.middle_px * block.count as f64;
-                    block = Block {
-                        count,
-                        middle_px: sum / count as f64,
-                    };
-                }
-            }
+            }) else {
+                break;
+            };
+            let count = above.count + block.count;
+            let sum = above.middle_px * above.count as f64 + block.middle_px * block.count as f64;
+            block = Block {
+                count,
+                middle_px: sum / count as f64,
+            };
         }
         blocks.push(block);
     }
@@ -85,10 +99,7 @@ pub(crate) fn spread(
         let top_px = block.middle_px - half(block.count);
         (0..block.count).map(move |place| top_px + (place as f64 + 0.5) * height_px)
     });
-    for (label, middle_px) in labels.iter_mut().zip(places) {
-        label.middle_px = middle_px;
-    }
-    labels
+    places.collect()
 }
 
 /// Where on which side of its point a label inside a plot would like to stand.
@@ -214,6 +225,7 @@ fn candidates((x, y): Point, width_px: f64, height_px: f64, side: Side) -> Vec<(
 #[cfg(test)]
 mod tests {
     use super::*;
+    use crate::sheet::figure::glyphs::width_px;
     use crate::sheet::figure::palette::BLACK;
     use proptest::prelude::*;
 
