@@ -1,38 +1,24 @@
-//! From what a figure shows to where everything lies.
+//! From what a figure shows to where everything lies: rows of panels under the title.
 
-use super::axis::{Span, Ticks, mapped_ticks, ticks, title};
+use super::axes::{JOINT_PX, LevelAxis, TOP_AXIS_PX, UprightAxis, draw_break};
+use super::axis::Span;
 use super::glyphs::{Weight, width_px};
 use super::legend::Legend;
-use super::lettering::{fitted, wrapped};
-use super::palette::{BLACK, GREY};
+use super::lettering::{fitted, tidy, wrapped};
+use super::palette::GREY;
 use super::panel::{Figure, Joint, Panel, Row};
 use super::plot::{COLUMN_GAP_PX, NOTE_PX, Plot, beside, x_span, y_span};
-use super::scene::{
-    Anchor, Frame, Point, Purpose, Rectangle, Scene, Shape, Stroke, Text, line_height_px,
-};
+use super::scene::{Frame, Purpose, Rectangle, Scene, Text, line_height_px};
 
 /// Width of every figure, px.
-pub(crate) const WIDTH_PX: f64 = 900.0;
+const WIDTH_PX: f64 = 900.0;
 const MARGIN_PX: f64 = 16.0;
 const ROW_GAP_PX: f64 = 20.0;
-/// Between the plots of rows that share an axis: room for the tick labels at both edges.
-const JOINT_PX: f64 = 18.0;
 
 const TITLE_PX: f64 = 17.0;
 const CAPTION_PX: f64 = 12.0;
 const STAMP_PX: f64 = 10.0;
 const PANEL_TITLE_PX: f64 = 13.0;
-const AXIS_TITLE_PX: f64 = 13.0;
-const TICK_LABEL_PX: f64 = 12.0;
-const TICK_PX: f64 = 5.0;
-const SMALL_TICK_PX: f64 = 2.5;
-/// From the axis to its tick labels, px.
-const LABEL_GAP_PX: f64 = 8.0;
-/// Least air between neighbouring tick labels of a horizontal axis, and of a vertical one, px.
-const LABEL_AIR_PX: f64 = 10.0;
-const LEVEL_AIR_PX: f64 = 17.0;
-/// A title of the vertical axis is broken into at most so many lines.
-const MOST_TITLE_LINES: usize = 2;
 /// Largest part of a panel that the column of labels beside its plot takes.
 const COLUMN_SHARE: f64 = 0.25;
 
@@ -61,18 +47,13 @@ pub(crate) fn scene(figure: &Figure) -> Scene {
     }
     top_px += 10.0;
 
-    let rows: Vec<Vec<Draft<'_>>> = figure.rows.iter().map(drafts).collect();
-    for (index, row) in figure.rows.iter().enumerate() {
-        let joint = if index + 1 < figure.rows.len() {
-            row.joint
-        } else {
-            Joint::Apart
-        };
-        let above = index
-            .checked_sub(1)
-            .map_or(Joint::Apart, |above| figure.rows[above].joint);
-        let margins = column_margins(&rows, rows[index].len());
-        top_px = draw_row(&mut scene, &rows[index], &margins, top_px, (above, joint));
+    let mut rows: Vec<Vec<Draft<'_>>> = figure.rows.iter().map(drafts).collect();
+    let joints = share_axes(&figure.rows, &mut rows);
+    let mut above = Joint::Apart;
+    for (row, below) in rows.iter().zip(joints) {
+        let margins = column_margins(&rows, row.len());
+        top_px = draw_row(&mut scene, row, &margins, top_px, (above, below));
+        above = below;
     }
 
     for line in wrapped(&figure.stamp, STAMP_PX, Weight::Regular, room_px, 3) {
@@ -91,8 +72,7 @@ struct Draft<'a> {
     height_px: f64,
     x: Span,
     y: Span,
-    y_ticks: Ticks,
-    y_title: Vec<String>,
+    y_axis: UprightAxis,
     /// Left of the plot, and right of it.
     margins_px: (f64, f64),
 }
@@ -106,93 +86,60 @@ fn drafts(row: &Row) -> Vec<Draft<'_>> {
         .collect()
 }
 
-fn draft(panel: &Panel, width_px: f64) -> Draft<'_> {
+fn draft(panel: &Panel, panel_px: f64) -> Draft<'_> {
     let asked_px = panel.plot_height_px;
     let height_px = if asked_px.is_finite() {
         asked_px.clamp(60.0, 1200.0)
     } else {
         300.0
     };
-    let (x, y) = (x_span(panel), y_span(panel));
-    let down = |value: f64| height_px * (1.0 - y.place(value).unwrap_or(0.0));
-    let y_ticks = with_room(
-        ticks(y, |ticks| apart(ticks, |value, _| level_ends(down(value)))),
-        |value, _| level_ends(down(value)),
-    );
-    let y_title = wrapped(
-        &title(&panel.y.quantity, &panel.y.unit, y_ticks.exponent),
-        AXIS_TITLE_PX,
-        Weight::Regular,
-        height_px,
-        MOST_TITLE_LINES,
-    );
-    let label_px = y_ticks
-        .labelled()
-        .map(|(_, label)| width_px_of_tick(label))
-        .fold(0.0, f64::max);
-    let title_px = y_title.len() as f64 * (line_height_px(AXIS_TITLE_PX) + 2.0) + 6.0;
+    let y = y_span(panel);
+    let y_axis = UprightAxis::new(&panel.y, y, height_px);
     let column_px = beside(panel)
-        .map(width_px_of_note)
+        .map(|name| width_px(&tidy(name), NOTE_PX, Weight::Regular))
         .fold(0.0, f64::max)
-        .min(COLUMN_SHARE * width_px);
+        .min(COLUMN_SHARE * panel_px);
     let right_px = if column_px > 0.0 {
         column_px + COLUMN_GAP_PX + 1.0
     } else {
         14.0
     };
+    let margins_px = (y_axis.width_px(), right_px);
     Draft {
         panel,
-        width_px,
+        width_px: panel_px,
         height_px,
-        x,
+        x: x_span(panel),
         y,
-        y_ticks,
-        y_title,
-        margins_px: (title_px + label_px + LABEL_GAP_PX, right_px),
+        y_axis,
+        margins_px,
     }
 }
 
-fn width_px_of_tick(label: &str) -> f64 {
-    width_px(label, TICK_LABEL_PX, Weight::Regular)
-}
-
-fn width_px_of_note(name: &str) -> f64 {
-    width_px(&super::lettering::tidy(name), NOTE_PX, Weight::Regular)
-}
-
-/// Upper and lower end of a tick label of the vertical axis.
-fn level_ends(middle_px: f64) -> (f64, f64) {
-    let half_px = 0.5 * (line_height_px(TICK_LABEL_PX) + LEVEL_AIR_PX);
-    (middle_px - half_px, middle_px + half_px)
-}
-
-/// Whether the labels of an axis, from end to end as `ends` says, leave each other alone.
-fn apart(ticks: &Ticks, ends: impl Fn(f64, &str) -> (f64, f64)) -> bool {
-    let mut taken: Vec<(f64, f64)> = ticks
-        .labelled()
-        .map(|(value, label)| ends(value, label))
-        .collect();
-    taken.sort_by(|a, b| a.0.total_cmp(&b.0));
-    taken.windows(2).all(|pair| pair[0].1 <= pair[1].0)
-}
-
-/// The ticks without those labels that would run into one before them.
-fn with_room(mut ticks: Ticks, ends: impl Fn(f64, &str) -> (f64, f64)) -> Ticks {
-    let mut taken: Vec<(f64, f64)> = Vec::new();
-    for tick in &mut ticks.ticks {
-        let Some(label) = &tick.label else { continue };
-        let (from, to) = ends(tick.value, label);
-        let free = from <= to
-            && taken
-                .iter()
-                .all(|(start, end)| to <= *start || *end <= from);
-        if free {
-            taken.push((from, to));
-        } else {
-            tick.label = None;
+/// Gives panels that share a horizontal axis the same span, from the bottom up, and returns what
+/// lies below each row; rows that cannot share an axis are apart.
+fn share_axes(asked: &[Row], rows: &mut [Vec<Draft<'_>>]) -> Vec<Joint> {
+    let mut joints = vec![Joint::Apart; rows.len()];
+    for upper in (0..rows.len().saturating_sub(1)).rev() {
+        let spans: Option<Vec<Span>> = (rows[upper].len() == rows[upper + 1].len())
+            .then(|| rows[upper].iter().zip(&rows[upper + 1]))
+            .and_then(|pairs| pairs.map(|(a, b)| a.x.joined(b.x)).collect());
+        let Some(spans) = spans.filter(|_| asked[upper].joint != Joint::Apart) else {
+            continue;
+        };
+        joints[upper] = asked[upper].joint;
+        // The rows further down that hang together with this one follow.
+        let joined = joints[upper..]
+            .iter()
+            .take_while(|joint| **joint != Joint::Apart)
+            .count();
+        for row in &mut rows[upper..=upper + joined] {
+            for (draft, span) in row.iter_mut().zip(&spans) {
+                draft.x = *span;
+            }
         }
     }
-    ticks
+    joints
 }
 
 /// Margins left and right of the plots in each column, over all rows of so many panels; the first
@@ -229,7 +176,11 @@ impl Header {
         let legend = Legend::new(panel, draft.width_px - left_px - right_px.min(14.0));
         Self {
             title_px: if panel.title.is_empty() { 0.0 } else { 22.0 },
-            top_axis_px: if panel.top.is_some() { 40.0 } else { 0.0 },
+            top_axis_px: if panel.top.is_some() {
+                TOP_AXIS_PX
+            } else {
+                0.0
+            },
             legend,
         }
     }
@@ -268,11 +219,10 @@ fn draw_row(
             right_px: left_px + draft.width_px - after_px,
             bottom_px: plot_top_px + draft.height_px,
         };
-        let foot_px = match below {
-            Joint::Apart => {
-                LABEL_GAP_PX + line_height_px(TICK_LABEL_PX) + 6.0 + line_height_px(AXIS_TITLE_PX)
-            }
-            Joint::SharedAxis | Joint::BrokenAxis => 0.0,
+        let foot_px = if below == Joint::Apart {
+            LevelAxis::foot_px()
+        } else {
+            0.0
         };
         let panel = Rectangle {
             left_px,
@@ -289,8 +239,20 @@ fn draw_row(
             column_end_px: panel.right_px,
         };
         draw_header(scene, draft, header, panel, frame);
-        plot.draw(scene, &draft.y_ticks);
-        draw_axes(scene, draft, &plot, panel, (above, below));
+        plot.draw(scene, &draft.y_axis.ticks);
+        draft.y_axis.draw(scene, &plot, panel.left_px);
+        if below == Joint::Apart {
+            LevelAxis::lower(&plot, panel).draw(scene, &plot);
+        }
+        if let Some(top) = &draft.panel.top {
+            LevelAxis::upper(top, &plot, panel).draw(scene, &plot);
+        }
+        if above == Joint::BrokenAxis {
+            draw_break(scene, frame.left_px, frame.top_px, -1.0);
+        }
+        if below == Joint::BrokenAxis {
+            draw_break(scene, frame.left_px, frame.bottom_px, 1.0);
+        }
         bottom_px = bottom_px.max(panel.bottom_px);
         left_px += draft.width_px + ROW_GAP_PX;
     }
@@ -323,193 +285,4 @@ fn draw_header(
     header
         .legend
         .draw(scene, frame.left_px, top_px + header.title_px);
-}
-
-fn draw_axes(
-    scene: &mut Scene,
-    draft: &Draft<'_>,
-    plot: &Plot<'_>,
-    panel: Rectangle,
-    (above, below): (Joint, Joint),
-) {
-    let frame = plot.frame;
-    let line = Stroke::solid(BLACK, 1.0);
-    let corner = |x_px: f64, y_px: f64| -> Point { (x_px, y_px) };
-    let left = [
-        corner(frame.left_px, frame.top_px),
-        corner(frame.left_px, frame.bottom_px),
-    ];
-    scene.shapes.push(Shape::line(left, line));
-    for tick in &draft.y_ticks.ticks {
-        let Some(y_px) = plot.y_px(tick.value) else {
-            continue;
-        };
-        let length_px = if tick.label.is_some() {
-            TICK_PX
-        } else {
-            SMALL_TICK_PX
-        };
-        let ends = [(frame.left_px - length_px, y_px), (frame.left_px, y_px)];
-        scene.shapes.push(Shape::line(ends, line));
-        let top_px = y_px - 0.5 * line_height_px(TICK_LABEL_PX);
-        let label = tick.label.clone().unwrap_or_default();
-        let right_px = frame.left_px - LABEL_GAP_PX;
-        scene.write(
-            Text::hung(label, Purpose::TickLabel, right_px, top_px, TICK_LABEL_PX)
-                .anchored(Anchor::End),
-        );
-    }
-    write_y_title(scene, draft, frame, panel);
-
-    if below == Joint::Apart {
-        let bottom = [
-            (frame.left_px, frame.bottom_px),
-            (frame.right_px, frame.bottom_px),
-        ];
-        scene.shapes.push(Shape::line(bottom, line));
-    }
-    let x_ticks = level_ticks(plot, panel, |fits| ticks(plot.x, fits));
-    let x_name = title(
-        &draft.panel.x.quantity,
-        &draft.panel.x.unit,
-        x_ticks.exponent,
-    );
-    let lower = LevelAxis {
-        y_px: frame.bottom_px,
-        down: 1.0,
-        labelled: below == Joint::Apart,
-    };
-    lower.draw(scene, plot, panel, &x_ticks, &x_name);
-
-    if let Some(top) = &draft.panel.top {
-        let line_ends = [
-            (frame.left_px, frame.top_px),
-            (frame.right_px, frame.top_px),
-        ];
-        scene.shapes.push(Shape::line(line_ends, line));
-        let top_ticks = level_ticks(plot, panel, |fits| mapped_ticks(plot.x, top.of, fits));
-        let name = title(&top.quantity, &top.unit, top_ticks.exponent);
-        let upper = LevelAxis {
-            y_px: frame.top_px,
-            down: -1.0,
-            labelled: true,
-        };
-        upper.draw(scene, plot, panel, &top_ticks, &name);
-    }
-    if above == Joint::BrokenAxis {
-        draw_break(scene, frame.left_px, frame.top_px, -1.0);
-    }
-    if below == Joint::BrokenAxis {
-        draw_break(scene, frame.left_px, frame.bottom_px, 1.0);
-    }
-}
-
-/// Leads an axis a little past the edge of its plot, up (−1) or down (1), to a slanted stroke: it
-/// goes on after a jump.
-fn draw_break(scene: &mut Scene, x_px: f64, edge_px: f64, down: f64) {
-    let line = Stroke::solid(BLACK, 1.0);
-    let y_px = edge_px + down * 0.3 * JOINT_PX;
-    let lead = [(x_px, edge_px), (x_px, y_px)];
-    scene.shapes.push(Shape::line(lead, line));
-    let slant = [(x_px - 6.0, y_px + 3.0), (x_px + 6.0, y_px - 3.0)];
-    scene.shapes.push(Shape::line(slant, line));
-}
-
-fn write_y_title(scene: &mut Scene, draft: &Draft<'_>, frame: Rectangle, panel: Rectangle) {
-    let line_px = line_height_px(AXIS_TITLE_PX) + 2.0;
-    for (index, line) in draft.y_title.iter().enumerate() {
-        let hung = Text::hung(
-            line.clone(),
-            Purpose::AxisTitle,
-            0.0,
-            panel.left_px + index as f64 * line_px,
-            AXIS_TITLE_PX,
-        );
-        // Upright, the line that the letters stand on is as far from the left as it was from the top.
-        let at = (hung.at.1, 0.5 * (frame.top_px + frame.bottom_px));
-        scene.write(Text { at, ..hung }.anchored(Anchor::Middle).upright());
-    }
-}
-
-/// The ticks of a horizontal axis whose labels stay inside the panel and apart from each other.
-fn level_ticks(
-    plot: &Plot<'_>,
-    panel: Rectangle,
-    choose: impl FnOnce(&dyn Fn(&Ticks) -> bool) -> Ticks,
-) -> Ticks {
-    let ends = |value: f64, label: &str| {
-        let middle_px = plot.x_px(value).unwrap_or(plot.frame.left_px);
-        let half_px = 0.5 * (width_px_of_tick(label) + LABEL_AIR_PX);
-        (middle_px - half_px, middle_px + half_px)
-    };
-    let inside = |(from, to): (f64, f64)| {
-        let air_px = 0.5 * LABEL_AIR_PX;
-        panel.left_px <= from + air_px && to - air_px <= panel.right_px
-    };
-    let mut chosen = with_room(choose(&|ticks| apart(ticks, ends)), ends);
-    for tick in &mut chosen.ticks {
-        let value = tick.value;
-        tick.label = tick.label.take().filter(|label| inside(ends(value, label)));
-    }
-    chosen
-}
-
-/// The lower or the upper axis of a plot.
-struct LevelAxis {
-    y_px: f64,
-    /// 1 for the lower axis, whose labels go down, −1 for the upper one.
-    down: f64,
-    labelled: bool,
-}
-
-impl LevelAxis {
-    fn draw(
-        &self,
-        scene: &mut Scene,
-        plot: &Plot<'_>,
-        panel: Rectangle,
-        ticks: &Ticks,
-        name: &str,
-    ) {
-        let line = Stroke::solid(BLACK, 1.0);
-        if !self.labelled {
-            return;
-        }
-        for tick in &ticks.ticks {
-            let Some(x_px) = plot.x_px(tick.value) else {
-                continue;
-            };
-            let length_px = if tick.label.is_some() {
-                TICK_PX
-            } else {
-                SMALL_TICK_PX
-            };
-            let ends = [(x_px, self.y_px), (x_px, self.y_px + self.down * length_px)];
-            scene.shapes.push(Shape::line(ends, line));
-            let label = tick.label.clone().unwrap_or_default();
-            let top_px = self.line_top_px(LABEL_GAP_PX, TICK_LABEL_PX);
-            scene.write(
-                Text::hung(label, Purpose::TickLabel, x_px, top_px, TICK_LABEL_PX)
-                    .anchored(Anchor::Middle),
-            );
-        }
-        let middle_px = 0.5 * (plot.frame.left_px + plot.frame.right_px);
-        let room_px = 2.0 * (middle_px - panel.left_px).min(panel.right_px - middle_px);
-        let name = fitted(name, AXIS_TITLE_PX, Weight::Regular, room_px);
-        let offset_px = LABEL_GAP_PX + line_height_px(TICK_LABEL_PX) + 4.0;
-        let top_px = self.line_top_px(offset_px, AXIS_TITLE_PX);
-        scene.write(
-            Text::hung(name, Purpose::AxisTitle, middle_px, top_px, AXIS_TITLE_PX)
-                .anchored(Anchor::Middle),
-        );
-    }
-
-    /// Upper edge of a line of text that starts so far from the axis.
-    fn line_top_px(&self, offset_px: f64, size_px: f64) -> f64 {
-        if self.down > 0.0 {
-            self.y_px + offset_px
-        } else {
-            self.y_px - offset_px - line_height_px(size_px)
-        }
-    }
 }

@@ -119,6 +119,15 @@ impl Span {
         }
     }
 
+    /// The span from the lower end of either to the upper end of either; none if their scales differ.
+    pub(crate) fn joined(self, other: Self) -> Option<Self> {
+        (self.scale == other.scale).then_some(Self {
+            from: self.from.min(other.from),
+            to: self.to.max(other.to),
+            scale: self.scale,
+        })
+    }
+
     fn holds(self, value: f64) -> bool {
         self.place(value)
             .is_some_and(|place| (-1e-9..=1.0 + 1e-9).contains(&place))
@@ -424,19 +433,15 @@ pub(crate) fn power_of_ten(power: i32) -> String {
     format!("10{}", raised.collect::<String>())
 }
 
-/// What stands at an axis: the quantity, and in brackets its unit with the power of ten that the
-/// tick labels leave out.
-pub(crate) fn title(quantity: &str, unit: &str, exponent: i32) -> String {
-    let factor = if exponent == 0 {
-        String::new()
-    } else {
-        power_of_ten(exponent)
-    };
-    match (factor.is_empty(), unit.is_empty()) {
-        (true, true) => quantity.to_owned(),
-        (true, false) => format!("{quantity} ({unit})"),
-        (false, true) => format!("{quantity} (×{factor})"),
-        (false, false) => format!("{quantity} ({factor} {unit})"),
+/// What stands behind the quantity of an axis: in brackets its unit, with the power of ten that
+/// the tick labels leave out; empty where there is neither.
+pub(crate) fn unit_in_brackets(unit: &str, exponent: i32) -> String {
+    let factor = power_of_ten(exponent);
+    match (exponent, unit.is_empty()) {
+        (0, true) => String::new(),
+        (0, false) => format!("({unit})"),
+        (_, true) => format!("(×{factor})"),
+        (_, false) => format!("({factor} {unit})"),
     }
 }
 
@@ -481,9 +486,10 @@ mod tests {
         assert_eq!(found.exponent, 18);
         let written: Vec<_> = found.labelled().map(|(_, label)| label).collect();
         assert_eq!(written, ["0", "1", "2", "3", "4", "5"]);
-        assert_eq!(title("density", "cm⁻³", 18), "density (10¹⁸ cm⁻³)");
-        assert_eq!(title("density", "", -6), "density (×10⁻⁶)");
-        assert_eq!(title("energy", "eV", 0), "energy (eV)");
+        assert_eq!(unit_in_brackets("cm⁻³", 18), "(10¹⁸ cm⁻³)");
+        assert_eq!(unit_in_brackets("", -6), "(×10⁻⁶)");
+        assert_eq!(unit_in_brackets("eV", 0), "(eV)");
+        assert_eq!(unit_in_brackets("", 0), "");
     }
 
     #[test]

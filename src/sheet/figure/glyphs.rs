@@ -56,6 +56,13 @@ const WIDTHS: &[(char, &[u16])] = &[
         660, 639, 592, 612, 541, 544, 634, 612, 339, 590, 592, 637, 559, 558, 612, 690, 635, 587,
         634, 603, 579, 660, 578, 713, 838,
     ]),
+    // А to я
+    ('\u{410}', &[
+        685, 687, 687, 610, 782, 667, 1078, 642, 749, 749, 710, 752, 863, 752, 788, 752,
+        667, 723, 611, 636, 861, 686, 777, 686, 1070, 1094, 833, 886, 687, 719, 1080, 723,
+        613, 617, 590, 526, 692, 616, 901, 532, 650, 650, 605, 640, 755, 654, 612, 654,
+        635, 550, 583, 592, 855, 592, 681, 591, 916, 942, 707, 790, 590, 549, 842, 602,
+    ]),
     // thin and figure spaces, dashes, quotation marks, bullet, ellipsis, primes
     ('\u{2007}', &[637, 318, 200]),
     ('\u{2013}', &[557, 1000]),
@@ -163,16 +170,18 @@ pub(crate) fn set(character: char) -> (Level, char) {
 /// Width of a character on the line, em; none if the table does not know it.
 fn advance_em(character: char) -> Option<f64> {
     let code = u32::from(character);
-    WIDTHS.iter().find_map(|(first, widths)| {
+    let listed = WIDTHS.iter().find_map(|(first, widths)| {
         let place = code.checked_sub(u32::from(*first))? as usize;
         widths.get(place).map(|width| f64::from(*width) / 1000.0)
-    })
+    });
+    // An accent stands on the letter before it.
+    let accent = || (unicode_width::UnicodeWidthChar::width(character) == Some(0)).then_some(0.0);
+    listed.or_else(accent)
 }
 
-/// Whether the table knows every glyph of a text, so that its width needs no forcing.
-pub(crate) fn all_known(text: &str) -> bool {
-    text.chars()
-        .all(|character| advance_em(set(character).1).is_some())
+/// Whether the table knows a glyph, so that its width needs no forcing.
+pub(crate) fn is_known(character: char) -> bool {
+    advance_em(set(character).1).is_some()
 }
 
 /// Width of one character at a font size, px.
@@ -229,9 +238,11 @@ mod tests {
 
     #[test]
     fn knows_what_the_trade_writes() {
-        assert!(all_known(
+        let known = |text: &str| text.chars().all(is_known);
+        assert!(known(
             "Gain (10¹⁸ cm⁻³) Γ λ µm Å ħω ≥ ≈ ∥ ⊥ · × – … ⟨e|hh⟩ Nₜᵣ g₀"
         ));
-        assert!(!all_known("井"));
+        assert!(known("e\u{301}"));
+        assert!(!known("井"));
     }
 }

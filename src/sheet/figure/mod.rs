@@ -28,6 +28,7 @@
 //! ```
 
 mod arrangement;
+mod axes;
 mod axis;
 mod clipping;
 mod glyphs;

@@ -71,7 +71,7 @@ pub(crate) struct Stroke {
 }
 
 impl Stroke {
-    pub(crate) fn solid(rgb: Rgb, width_px: f64) -> Self {
+    pub(crate) const fn solid(rgb: Rgb, width_px: f64) -> Self {
         Self {
             rgb,
             width_px,

@@ -3,7 +3,7 @@
 
 use std::fmt::Write as _;
 
-use super::glyphs::{Level, SCRIPT_SIZE, Weight, all_known, set};
+use super::glyphs::{Level, SCRIPT_SIZE, Weight, is_known, set, width_px};
 use super::palette::{Mark, Rgb, WHITE};
 use super::scene::{Anchor, Point, Rectangle, Scene, Shape, Stroke, Text};
 
@@ -62,7 +62,7 @@ fn element(svg: &mut String, shape: &Shape) {
     }
 }
 
-/// Writing to a string cannot fail.
+/// Adds to the document; writing to a string cannot fail.
 fn append(svg: &mut String, arguments: std::fmt::Arguments<'_>) {
     svg.write_fmt(arguments).expect("a string takes any text");
 }
@@ -172,53 +172,63 @@ fn text(svg: &mut String, text: &Text) {
     if text.upright {
         append(svg, format_args!(" transform=\"rotate(-90 {x} {y})\""));
     }
-    if !all_known(&text.content) {
-        // Of a glyph that is not in the table nobody knows how wide the reader's font makes it.
-        append(
-            svg,
-            format_args!(
-                " textLength=\"{}\" lengthAdjust=\"spacingAndGlyphs\"",
-                number(text.width_px())
-            ),
-        );
-    }
     append(svg, format_args!(" fill=\"{}\">", hex(text.rgb)));
-    runs(svg, &text.content, text.size_px);
+    runs(svg, &text.content, text.size_px, text.weight);
     svg.push_str("</text>\n");
 }
 
-/// The content with raised and lowered characters in runs of their own.
-fn runs(svg: &mut String, content: &str, size_px: f64) {
+/// The content with raised and lowered characters in runs of their own, and so those whose glyphs
+/// are not in the table: nobody knows how wide the reader's font makes them, so they are forced to
+/// the width measured.
+fn runs(svg: &mut String, content: &str, size_px: f64, weight: Weight) {
     let lift = |level: Level| match level {
         Level::Line => 0.0,
         Level::Raised => -RAISED * size_px,
         Level::Lowered => LOWERED * size_px,
     };
-    let mut characters = content.chars().map(set).peekable();
-    let mut height = 0.0;
-    while let Some((level, first)) = characters.next() {
+    let characters = content.chars().map(|character| {
+        let (level, plain) = set(character);
+        ((level, is_known(plain)), plain)
+    });
+    let mut characters = characters.peekable();
+    let mut height_px = 0.0;
+    while let Some((kind, first)) = characters.next() {
         let mut run = first.to_string();
-        while let Some((_, next)) = characters.next_if(|(next, _)| *next == level) {
+        while let Some((_, next)) = characters.next_if(|(next, _)| *next == kind) {
             run.push(next);
         }
-        let shift = lift(level) - height;
-        height = lift(level);
-        let size = if level == Level::Line {
-            String::new()
-        } else {
-            format!(" font-size=\"{}\"", number(SCRIPT_SIZE * size_px))
-        };
-        if shift == 0.0 && size.is_empty() {
-            svg.push_str(&escaped(&run));
-        } else {
+        let (level, known) = kind;
+        let mut attributes = String::new();
+        let shift_px = lift(level) - height_px;
+        height_px = lift(level);
+        if shift_px != 0.0 {
             append(
-                svg,
+                &mut attributes,
+                format_args!(" dy=\"{}\"", number(shift_px)),
+            );
+        }
+        if level != Level::Line {
+            let size_px = SCRIPT_SIZE * size_px;
+            append(
+                &mut attributes,
+                format_args!(" font-size=\"{}\"", number(size_px)),
+            );
+        }
+        if !known {
+            let forced_px = width_px(&run, size_px, weight);
+            append(
+                &mut attributes,
                 format_args!(
-                    "<tspan dy=\"{}\"{size}>{}</tspan>",
-                    number(shift),
-                    escaped(&run)
+                    " textLength=\"{}\" lengthAdjust=\"spacingAndGlyphs\"",
+                    number(forced_px)
                 ),
             );
+        }
+        let run = escaped(&run);
+        if attributes.is_empty() {
+            svg.push_str(&run);
+        } else {
+            append(svg, format_args!("<tspan{attributes}>{run}</tspan>"));
         }
     }
 }
@@ -270,11 +280,19 @@ mod tests {
     #[test]
     fn raised_figures_return_to_the_line() {
         let mut svg = String::new();
-        runs(&mut svg, "cm⁻³ <", 10.0);
+        runs(&mut svg, "cm⁻³ <", 10.0, Weight::Regular);
         assert_eq!(
             svg,
             "cm<tspan dy=\"-3.6\" font-size=\"7\">−3</tspan><tspan dy=\"3.6\"> &lt;</tspan>"
         );
+    }
+
+    #[test]
+    fn glyphs_of_unknown_width_are_forced() {
+        let mut svg = String::new();
+        runs(&mut svg, "d 井", 10.0, Weight::Regular);
+        let forced = "<tspan textLength=\"10.5\" lengthAdjust=\"spacingAndGlyphs\">井</tspan>";
+        assert_eq!(svg, format!("d {forced}"));
     }
 
     #[test]

@@ -346,6 +346,45 @@ fn absurd_texts_are_cut_and_kept_in_their_places() {
     assert_in_order(&figure);
 }
 
+/// A point of the lower panel only widens the axis of both.
+#[test]
+fn rows_that_share_an_axis_have_one_span() {
+    let panel = |to: f64| Panel {
+        curves: vec![Curve {
+            width_px: 0.0,
+            mark: Some(Mark::Disc),
+            ..Curve::through("", [(0.0, 0.0), (to, 1.0)])
+        }],
+        ..Panel::default()
+    };
+    let figure = |joint: Joint| Figure {
+        rows: [1.0, 2.0, 4.0]
+            .map(|to| Row {
+                panels: vec![panel(to)],
+                joint,
+            })
+            .to_vec(),
+        ..Figure::default()
+    };
+    let mark_places = |figure: &Figure| {
+        let svg = figure.svg();
+        let discs = svg.split("<circle cx=\"").skip(1);
+        discs
+            .filter_map(|disc| disc.split('"').next()?.parse::<f64>().ok())
+            .collect::<Vec<_>>()
+    };
+    let apart = mark_places(&figure(Joint::Apart));
+    assert!(
+        (apart[1] - apart[3]).abs() < 0.1 && (apart[3] - apart[5]).abs() < 0.1,
+        "{apart:?}"
+    );
+    let shared = mark_places(&figure(Joint::SharedAxis));
+    let width = |index: usize| shared[index] - shared[index - 1];
+    assert!((width(3) / width(1) - 2.0).abs() < 1e-3, "{shared:?}");
+    assert!((width(5) / width(1) - 4.0).abs() < 1e-3, "{shared:?}");
+    assert_in_order(&figure(Joint::SharedAxis));
+}
+
 #[test]
 fn many_labels_at_one_height_stay_readable() {
     let notes = (0..200).map(|index| Note {
