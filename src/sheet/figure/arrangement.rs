@@ -19,6 +19,8 @@ const TITLE_PX: f64 = 17.0;
 const CAPTION_PX: f64 = 12.0;
 const STAMP_PX: f64 = 10.0;
 const PANEL_TITLE_PX: f64 = 13.0;
+/// Least room right of a plot, px: half of a number that stands at the end of its axis.
+const RIGHT_PX: f64 = 18.0;
 /// Largest part of a panel that the column of labels beside its plot takes.
 const COLUMN_SHARE: f64 = 0.25;
 
@@ -99,17 +101,20 @@ fn draft(panel: &Panel, panel_px: f64) -> Draft<'_> {
         .map(|name| width_px(&tidy(name), NOTE_PX, Weight::Regular))
         .fold(0.0, f64::max)
         .min(COLUMN_SHARE * panel_px);
-    let right_px = if column_px > 0.0 {
+    let column_px = if column_px > 0.0 {
         column_px + COLUMN_GAP_PX + 1.0
     } else {
-        14.0
+        RIGHT_PX
     };
+    let x = x_span(panel);
+    let plot_px = panel_px - y_axis.width_px() - column_px;
+    let right_px = column_px.max(LevelAxis::overhang_px(x, plot_px));
     let margins_px = (y_axis.width_px(), right_px);
     Draft {
         panel,
         width_px: panel_px,
         height_px,
-        x: x_span(panel),
+        x,
         y,
         y_axis,
         margins_px,
@@ -173,7 +178,7 @@ struct Header {
 impl Header {
     fn new(draft: &Draft<'_>, (left_px, right_px): (f64, f64)) -> Self {
         let panel = draft.panel;
-        let legend = Legend::new(panel, draft.width_px - left_px - right_px.min(14.0));
+        let legend = Legend::new(panel, draft.width_px - left_px - right_px.min(RIGHT_PX));
         Self {
             title_px: if panel.title.is_empty() { 0.0 } else { 22.0 },
             top_axis_px: if panel.top.is_some() {

@@ -175,6 +175,24 @@ impl LevelAxis {
         LABEL_GAP_PX + line_height_px(LABEL_PX) + TITLE_GAP_PX + line_height_px(TITLE_PX)
     }
 
+    /// How far the last number of an axis so long reaches past its end, px.
+    pub(crate) fn overhang_px(span: Span, length_px: f64) -> f64 {
+        let middle_px = |value: f64| length_px * span.place(value).unwrap_or(0.0);
+        let half_px = |label: &str| 0.5 * (label_width_px(label) + LEVEL_AIR_PX);
+        let ends = |value: f64, label: &str| {
+            (
+                middle_px(value) - half_px(label),
+                middle_px(value) + half_px(label),
+            )
+        };
+        let ticks = ticks(span, |ticks| apart(ticks, ends));
+        let last_end_px = ticks
+            .labelled()
+            .last()
+            .map_or(0.0, |(value, label)| ends(value, label).1);
+        (last_end_px - 0.5 * LEVEL_AIR_PX - length_px).max(0.0)
+    }
+
     /// The lower axis of a plot in its panel.
     pub(crate) fn lower(plot: &Plot<'_>, panel: Rectangle) -> Self {
         let axis = &plot.panel.x;

@@ -11,9 +11,9 @@ pub(crate) const SCRIPT_SIZE: f64 = 0.7;
 /// Bold glyphs are at most this much wider than regular ones (the capital I is the worst).
 const BOLD_WIDENING: f64 = 1.3;
 
-/// What a glyph missing from the table is given, em: a full ideograph and a little more. The
-/// writer forces texts with such glyphs to the width measured.
-const STRANGER_EM: f64 = 1.05;
+/// What a glyph missing from the table is given, em: half of an ideograph and a little more for
+/// every column that it takes on a terminal. The writer forces such glyphs to that width.
+const STRANGER_COLUMN_EM: f64 = 0.6;
 
 /// Runs of neighbouring characters: the first, then the widths in 1/1000 em.
 #[rustfmt::skip]
@@ -196,7 +196,11 @@ pub(crate) fn character_width_px(character: char, size_px: f64, weight: Weight) 
         Weight::Regular => 1.0,
         Weight::Bold => BOLD_WIDENING,
     };
-    advance_em(plain).unwrap_or(STRANGER_EM) * scale * widening * size_px
+    let width_em = advance_em(plain).unwrap_or_else(|| {
+        let columns = unicode_width::UnicodeWidthChar::width(plain).unwrap_or(1);
+        STRANGER_COLUMN_EM * columns as f64
+    });
+    width_em * scale * widening * size_px
 }
 
 /// Width of a text on one line at a font size, px; never less than any common font gives it.

@@ -291,7 +291,7 @@ mod tests {
     fn glyphs_of_unknown_width_are_forced() {
         let mut svg = String::new();
         runs(&mut svg, "d 井", 10.0, Weight::Regular);
-        let forced = "<tspan textLength=\"10.5\" lengthAdjust=\"spacingAndGlyphs\">井</tspan>";
+        let forced = "<tspan textLength=\"12\" lengthAdjust=\"spacingAndGlyphs\">井</tspan>";
         assert_eq!(svg, format!("d {forced}"));
     }
 
