@@ -382,7 +382,7 @@ fn numbers_at_the_end_of_an_axis_stay_in_the_panel() {
         top: Some(TopAxis {
             quantity: "length".into(),
             unit: "µm".into(),
-            of: |x| 0.001 - x * 4.0,
+            of: |x| -4.0 * x,
         }),
         ..Panel::default()
     };
