@@ -1,8 +1,9 @@
 //! The axes around a plot: lines, ticks, numbers and titles.
 
-use super::axis::{Span, Tick, Ticks, mapped_ticks, ticks, unit_in_brackets};
+use super::axis::{Span, Tick, Ticks, mapped_ticks, ticks};
 use super::glyphs::{Weight, width_px};
 use super::lettering::{fitted, tidy};
+use super::numerals::unit_in_brackets;
 use super::palette::BLACK;
 use super::panel::{Axis, TopAxis};
 use super::plot::Plot;

@@ -1,5 +1,6 @@
-//! From numbers to places along an axis, the numbers that stand at its ticks, and how they are
-//! written.
+//! From numbers to places along an axis, and the round numbers at which it has ticks.
+
+use super::numerals::{decade, factored_exponent, label, multiple, power_of_ten, ten_to};
 
 /// How values are spread along an axis.
 #[derive(Clone, Copy, Debug, Default, PartialEq, Eq)]
@@ -346,105 +347,6 @@ fn inverse(span: Span, mapped: impl Fn(f64) -> f64, falls: bool, target: f64) ->
     span.value(0.5 * (low + high))
 }
 
-/// Power of ten at or below a positive value.
-#[expect(
-    clippy::cast_possible_truncation,
-    reason = "finite values have at most 309 decades"
-)]
-fn decade(value: f64) -> i32 {
-    let power = value.log10().floor() as i32;
-    // The logarithm of a power of ten may come out a hair low.
-    if ten_to(power + 1) <= value {
-        power + 1
-    } else {
-        power
-    }
-}
-
-fn ten_to(power: i32) -> f64 {
-    10f64.powi(power)
-}
-
-/// `count` × 10^`power`, rounded once: dividing by a power of ten is exact where multiplying by
-/// its inverse is not, so that 3 × 10⁻¹ is 0.3.
-fn multiple(count: f64, power: i32) -> f64 {
-    if power < 0 && power > -300 {
-        count / ten_to(-power)
-    } else {
-        count * ten_to(power)
-    }
-}
-
-/// The power of ten that goes into the axis label when the largest value would be long to write.
-fn factored_exponent(largest: f64) -> i32 {
-    if largest > 0.0 && !(1e-3..1e5).contains(&largest) {
-        decade(largest)
-    } else {
-        0
-    }
-}
-
-/// A value in units of 10^`exponent`, with the decimals that steps of 10^`step_power` need.
-fn label(value: f64, step_power: i32, exponent: i32) -> String {
-    let decimals = usize::try_from(exponent - step_power).unwrap_or(0).min(12);
-    let written = format!("{:.decimals$}", multiple(value, -exponent));
-    let digits = written.trim_start_matches('-');
-    let sign = if written.starts_with('-') && digits.contains(|c| ('1'..='9').contains(&c)) {
-        "−"
-    } else {
-        ""
-    };
-    let (whole, fraction) = digits.split_once('.').unwrap_or((digits, ""));
-    let point = if fraction.is_empty() { "" } else { "." };
-    format!("{sign}{}{point}{fraction}", in_thousands(whole))
-}
-
-/// Digits in groups of three where there are five or more, held together by narrow spaces.
-fn in_thousands(digits: &str) -> String {
-    if digits.len() < 5 {
-        return digits.to_owned();
-    }
-    let mut grouped = String::new();
-    for (place, digit) in digits.chars().enumerate() {
-        if place > 0 && (digits.len() - place).is_multiple_of(3) {
-            grouped.push('\u{202f}');
-        }
-        grouped.push(digit);
-    }
-    grouped
-}
-
-/// 10ⁿ in raised figures.
-pub(crate) fn power_of_ten(power: i32) -> String {
-    let digits = power.to_string();
-    let raised = digits.chars().map(|character| match character {
-        '-' => '⁻',
-        '0' => '⁰',
-        '1' => '¹',
-        '2' => '²',
-        '3' => '³',
-        '4' => '⁴',
-        '5' => '⁵',
-        '6' => '⁶',
-        '7' => '⁷',
-        '8' => '⁸',
-        _ => '⁹',
-    });
-    format!("10{}", raised.collect::<String>())
-}
-
-/// What stands behind the quantity of an axis: in brackets its unit, with the power of ten that
-/// the tick labels leave out; empty where there is neither.
-pub(crate) fn unit_in_brackets(unit: &str, exponent: i32) -> String {
-    let factor = power_of_ten(exponent);
-    match (exponent, unit.is_empty()) {
-        (0, true) => String::new(),
-        (0, false) => format!("({unit})"),
-        (_, true) => format!("(×{factor})"),
-        (_, false) => format!("({factor} {unit})"),
-    }
-}
-
 #[cfg(test)]
 mod tests {
     use super::*;
@@ -486,10 +388,6 @@ mod tests {
         assert_eq!(found.exponent, 18);
         let written: Vec<_> = found.labelled().map(|(_, label)| label).collect();
         assert_eq!(written, ["0", "1", "2", "3", "4", "5"]);
-        assert_eq!(unit_in_brackets("cm⁻³", 18), "(10¹⁸ cm⁻³)");
-        assert_eq!(unit_in_brackets("", -6), "(×10⁻⁶)");
-        assert_eq!(unit_in_brackets("eV", 0), "(eV)");
-        assert_eq!(unit_in_brackets("", 0), "");
     }
 
     #[test]

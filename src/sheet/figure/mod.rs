@@ -34,6 +34,7 @@ mod clipping;
 mod glyphs;
 mod legend;
 mod lettering;
+mod numerals;
 mod palette;
 mod panel;
 mod placing;
