@@ -32,7 +32,12 @@ pub fn gain_peak(
     // Just above transparency all gain lies between the lowest edge and the splitting.
     let window = (high - lowest).max(0.1 * width);
     let step = (0.4 * width).min(occupation.thermal_ev).min(window / 6.0);
-    highest(emitter, occupation, polarisation, (low, high), step)
+    highest(emitter, occupation, &polarisation, (low, high), step).or_else(|| {
+        // Nothing but a tail that rises towards low energies: its value at the lowest edge.
+        let photon_ev = lowest.clamp(low, high);
+        let height = polarisation(&emitter.point(occupation, photon_ev));
+        (height > 0.0).then_some(Peak { photon_ev, height })
+    })
 }
 
 /// The highest point of a spectrum in a range: a first look at a step, then closer looks around
@@ -58,11 +63,9 @@ fn highest(
     let count = (((high - low) / step).ceil() + 1.0).clamp(9.0, 4000.0) as usize;
     let step = (high - low) / (count - 1) as f64;
     let heights = look(low, step, count);
-    let mut tops: Vec<usize> = (0..count)
-        .filter(|&at| {
-            (at == 0 || heights[at - 1] <= heights[at])
-                && (at + 1 == count || heights[at + 1] < heights[at])
-        })
+    // Tops are inside the range: a tail that rises towards an end is no peak.
+    let mut tops: Vec<usize> = (1..count - 1)
+        .filter(|&at| heights[at - 1] <= heights[at] && heights[at + 1] < heights[at])
         .collect();
     tops.sort_by(|&a, &b| heights[b].total_cmp(&heights[a]).then(a.cmp(&b)));
     // A lower top is looked at only if a sharper peak may hide between its neighbours.

@@ -299,6 +299,33 @@ impl Grid {
         }
     }
 
+    /// Shares of a valence vector; energy and error are left at zero.
+    fn shares(&self, vector: &[f64]) -> ZoneCentre {
+        let mut parts = [0.0; 3];
+        let mut in_wells = 0.0;
+        for ((values, weight), inside) in vector
+            .chunks_exact(3)
+            .zip(&self.nodes.weights_nm)
+            .zip(&self.in_wells)
+        {
+            let mut here = 0.0;
+            for (part, value) in parts.iter_mut().zip(values) {
+                *part += weight * value * value;
+                here += weight * value * value;
+            }
+            in_wells += inside * here;
+        }
+        let [heavy, light, split_off] = parts;
+        ZoneCentre {
+            energy_ev: 0.0,
+            heavy,
+            light,
+            split_off,
+            error_ev: 0.0,
+            in_wells,
+        }
+    }
+
     /// Heavy, light and split-off overlaps of an electron envelope with a valence vector.
     fn projection(&self, electron: &[f64], vector: &[f64]) -> Projection {
         let mut sums = [0.0; 3];
@@ -446,44 +473,49 @@ impl Centre {
                     .map_err(|e| uncertified(e, 0.0))
             })
             .collect::<Result<_, _>>()?;
-        let (mut states, mut places) = (Vec::new(), Vec::new());
-        for index in 0..wanted {
-            let [coarse, middle, fine] = [0, 1, 2].map(|grid| ladders[grid].energies[index]);
-            let first = middle + (middle - coarse) / 3.0;
-            let second = fine + (fine - middle) / 3.0;
-            let energy_ev = -(second + (second - first) / 15.0);
-            let vector = &ladders[2].vectors[index];
-            let mut shares = [0.0; 3];
-            let mut in_wells = 0.0;
-            for ((parts, weight), inside) in vector
-                .chunks_exact(3)
-                .zip(&grids[2].nodes.weights_nm)
-                .zip(&grids[2].in_wells)
-            {
-                let mut here = 0.0;
-                for (share, part) in shares.iter_mut().zip(parts) {
-                    *share += weight * part * part;
-                    here += weight * part * part;
+        // At k = 0 the heavy hole stands alone: heavy states and the others cross freely from grid to
+        // grid, so that each family is numbered by itself.
+        let families: Vec<[Vec<usize>; 2]> = ladders
+            .iter()
+            .zip(grids)
+            .map(|(ladder, grid)| {
+                let (heavy, other) =
+                    (0..wanted).partition(|&index| grid.shares(&ladder.vectors[index]).heavy > 0.5);
+                [heavy, other]
+            })
+            .collect();
+        let mut found: Vec<(ZoneCentre, usize)> = Vec::new();
+        for (family, edge) in [(0, heavy_edge), (1, light_edge)] {
+            let members = families
+                .iter()
+                .map(|grid| grid[family].len())
+                .min()
+                .unwrap_or(0);
+            for member in 0..members {
+                let [coarse, middle, fine] =
+                    [0, 1, 2].map(|grid| ladders[grid].energies[families[grid][family][member]]);
+                let first = middle + (middle - coarse) / 3.0;
+                let second = fine + (fine - middle) / 3.0;
+                let energy_ev = -(second + (second - first) / 15.0);
+                let place = families[2][family][member];
+                let shares = grids[2].shares(&ladders[2].vectors[place]);
+                let belongs = if in_field {
+                    shares.in_wells > 0.5
+                } else {
+                    energy_ev > edge
+                };
+                if belongs {
+                    let state = ZoneCentre {
+                        energy_ev,
+                        error_ev: (second - first).abs() / 15.0 + 1e-9,
+                        ..shares
+                    };
+                    found.push((state, place));
                 }
-                in_wells += inside * here;
-            }
-            let edge = if shares[0] > 0.5 {
-                heavy_edge
-            } else {
-                light_edge
-            };
-            if (in_field && in_wells > 0.5) || (!in_field && energy_ev > edge) {
-                states.push(ZoneCentre {
-                    energy_ev,
-                    heavy: shares[0],
-                    light: shares[1],
-                    split_off: shares[2],
-                    error_ev: (second - first).abs() / 15.0 + 1e-9,
-                    in_wells,
-                });
-                places.push(index);
             }
         }
+        found.sort_by(|a, b| b.0.energy_ev.total_cmp(&a.0.energy_ev));
+        let (states, places) = found.into_iter().unzip();
         Ok(Self {
             states,
             places,
