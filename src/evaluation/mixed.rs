@@ -25,7 +25,7 @@ pub(super) fn depth_ev(stack: &Stack, parabolas: &[Subband], doping: &NetDoping)
         .iter()
         .map(|subband| subband.edge_ev)
         .fold(f64::INFINITY, f64::min);
-    ((fermi - edge).max(0.0) + 16.0 * kt).max(0.2)
+    ((fermi - edge).max(0.0) + 13.0 * kt).max(0.2)
 }
 
 /// Zone-centre transitions, components of a valence state summed.
@@ -128,8 +128,8 @@ pub(super) fn samples(
                         let sample = Sample {
                             electron_ev: level.energy_ev + kinetic(k),
                             hole_ev: along.hole_at(interval, within),
-                            te: share * Dispersion::at(&te, interval, within),
-                            tm: share * Dispersion::at(&tm, interval, within),
+                            te: share * along.at(&te, interval, within),
+                            tm: share * along.at(&tm, interval, within),
                         };
                         lowest = lowest.min(sample.electron_ev - sample.hole_ev);
                         samples.push(sample);

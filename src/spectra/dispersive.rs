@@ -292,38 +292,42 @@ impl Emitter for Dispersive {
 /// Electron parabolas and one block of valence states, ready to be sampled.
 #[derive(Clone, Copy, Debug)]
 pub struct Dispersion<'a> {
-    /// Even in-plane wave numbers from zero, 1/nm.
+    /// In-plane wave numbers rising from zero, 1/nm.
     pub k_per_nm: &'a [f64],
     /// Valence energies at each of them, eV.
     pub hole_ev: &'a [f64],
 }
 
-/// Cubic interpolation of values at even nodes that never overshoots them.
+/// Cubic interpolation of values at rising nodes that never overshoots them.
+///
+/// # Arguments
+///
+/// * `interval` – between which nodes, `within` – how far up it, from 0 to 1
 ///
 /// # Reference
 ///
-/// F. N. Fritsch, R. E. Carlson, SIAM J. Numer. Anal. 17, 238 (1980).
-fn between(values: &[f64], interval: usize, within: f64) -> f64 {
+/// F. N. Fritsch, J. Butland, SIAM J. Sci. Stat. Comput. 5, 300 (1984).
+fn between(nodes: &[f64], values: &[f64], interval: usize, within: f64) -> f64 {
+    let length = |at: usize| nodes[at + 1] - nodes[at];
+    let secant = |at: usize| (values[at + 1] - values[at]) / length(at);
     let slope = |node: usize| {
         if node == 0 {
-            // Bands and strengths start flat in the mean of both blocks; each by itself may not.
-            values[1] - values[0]
-        } else if node + 1 >= values.len() {
-            values[node] - values[node - 1]
-        } else {
-            let (below, above) = (
-                values[node] - values[node - 1],
-                values[node + 1] - values[node],
-            );
-            if below * above <= 0.0 {
-                0.0
-            } else {
-                2.0 * below * above / (below + above)
-            }
+            return secant(0);
         }
+        if node + 1 >= values.len() {
+            return secant(node - 1);
+        }
+        let (below, above) = (secant(node - 1), secant(node));
+        if below * above <= 0.0 {
+            return 0.0;
+        }
+        let (l, r) = (length(node - 1), length(node));
+        // Weighted harmonic mean of the neighbouring secants.
+        3.0 * (l + r) / ((2.0 * r + l) / below + (r + 2.0 * l) / above)
     };
     let (a, b) = (values[interval], values[interval + 1]);
-    let (slope_a, slope_b) = (slope(interval), slope(interval + 1));
+    let scale = length(interval);
+    let (slope_a, slope_b) = (scale * slope(interval), scale * slope(interval + 1));
     let (t, r) = (within, 1.0 - within);
     a * r * r * (1.0 + 2.0 * t) + slope_a * t * r * r + b * t * t * (1.0 + 2.0 * r)
         - slope_b * t * t * r
@@ -370,13 +374,13 @@ impl Dispersion<'_> {
     /// The valence energy at a place of an interval, eV.
     #[must_use]
     pub fn hole_at(&self, interval: usize, within: f64) -> f64 {
-        between(self.hole_ev, interval, within)
+        between(self.k_per_nm, self.hole_ev, interval, within)
     }
 
     /// Any other quantity sampled on the same wave numbers.
     #[must_use]
-    pub fn at(values: &[f64], interval: usize, within: f64) -> f64 {
-        between(values, interval, within)
+    pub fn at(&self, values: &[f64], interval: usize, within: f64) -> f64 {
+        between(self.k_per_nm, values, interval, within)
     }
 }
 
@@ -459,7 +463,9 @@ mod tests {
 
     #[test]
     fn interpolation_meets_its_nodes_and_does_not_overshoot() {
+        let nodes = [0.0, 1.0, 2.0, 4.0, 4.5];
         let values = [0.0, -0.1, -0.5, -0.5, -2.0];
+        let between = |values: &[f64], interval, within| between(&nodes, values, interval, within);
         for interval in 0..4 {
             assert!((between(&values, interval, 0.0) - values[interval]).abs() < 1e-15);
             assert!((between(&values, interval, 1.0) - values[interval + 1]).abs() < 1e-15);

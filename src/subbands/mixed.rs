@@ -7,10 +7,21 @@ use crate::numerics::block::{BlockChain, BlockRun, Ladder, Three};
 use crate::profile::{Cells, Profile};
 use crate::units::HBAR2_OVER_2M0_EV_NM2;
 
-/// Step of the in-plane wave number, 1/nm: small enough to follow states from one to the next.
-const WAVE_NUMBER_STEP_PER_NM: f64 = 0.0125;
-/// The in-plane wave number never goes beyond this, 1/nm.
-const LARGEST_WAVE_NUMBER_PER_NM: f64 = 2.0;
+/// Steps of the in-plane wave number, 1/nm, and up to where each is taken: small enough to follow
+/// states from one to the next, and to interpolate between.
+const WAVE_NUMBER_STEPS_PER_NM: [(f64, f64); 3] = [(0.0125, 0.5), (0.025, 1.2), (0.05, 2.0)];
+
+/// The in-plane wave numbers that may be visited, 1/nm, from zero.
+fn wave_numbers() -> Vec<f64> {
+    let mut k_per_nm = vec![0.0];
+    let mut start = 0.0;
+    for (step, end) in WAVE_NUMBER_STEPS_PER_NM {
+        let count = ((end - start) / step).round() as usize;
+        k_per_nm.extend((1..=count).map(|index| start + index as f64 * step));
+        start = end;
+    }
+    k_per_nm
+}
 
 /// A state at zero in-plane wave number.
 #[derive(Clone, Copy, Debug, PartialEq)]
@@ -80,7 +91,7 @@ pub struct MixedBands {
     pub zone_centre: Vec<ZoneCentre>,
     /// |<e|v>|² at zero wave number, all components: rows the electron levels.
     pub overlaps: Vec<Vec<f64>>,
-    /// In-plane wave numbers, 1/nm, from zero, evenly spaced.
+    /// In-plane wave numbers, 1/nm, rising from zero.
     pub k_per_nm: Vec<f64>,
     /// One block counted twice where the stack is its own mirror image, else the two blocks.
     pub blocks: Vec<Vec<Slice>>,
@@ -199,9 +210,7 @@ pub fn mixed(
     Ok(MixedBands {
         zone_centre: centre.states,
         overlaps,
-        k_per_nm: (0..steps)
-            .map(|step| step as f64 * WAVE_NUMBER_STEP_PER_NM)
-            .collect(),
+        k_per_nm: wave_numbers()[..steps].to_vec(),
         degeneracy: if blocks.len() == 1 { 2.0 } else { 1.0 },
         blocks,
     })
@@ -609,16 +618,20 @@ fn follow(
             .collect(),
     };
     track.push(slice(&ladder));
-    let last = (LARGEST_WAVE_NUMBER_PER_NM / WAVE_NUMBER_STEP_PER_NM) as usize;
-    for step in 1..=last {
-        let k = step as f64 * WAVE_NUMBER_STEP_PER_NM;
-        grid.set(&mut chain, k, sign);
+    let k_per_nm = wave_numbers();
+    for at in 1..k_per_nm.len() {
+        let (from, to) = (k_per_nm[at - 1], k_per_nm[at]);
         // Straight on from the two slices before: energies and vectors.
-        let mut next = ahead(&chain, &before, &ladder);
+        let ratio = if at > 1 {
+            (to - from) / (from - k_per_nm[at - 2])
+        } else {
+            0.0
+        };
+        grid.set(&mut chain, to, sign);
+        let mut next = ahead(&chain, &before, &ladder, ratio);
         if !chain.follow(&mut next, count, grid.floor) {
-            next = chain
-                .lowest(kept, grid.floor)
-                .map_err(|error| uncertified(error, k))?;
+            next = creep(grid, &mut chain, sign, count, &ladder, (from, to))
+                .map_err(|error| uncertified(error, to))?;
         }
         before = std::mem::replace(&mut ladder, next);
         track.push(slice(&ladder));
@@ -629,20 +642,50 @@ fn follow(
     Ok(track)
 }
 
-/// Energies and vectors continued in a straight line through two slices.
-fn ahead(chain: &BlockChain, before: &Ladder, last: &Ladder) -> Ladder {
+/// From the ladder at one wave number to that at the next in smaller and smaller steps, and from
+/// nothing where even these do not keep hold of the states.
+fn creep(
+    grid: &Grid,
+    chain: &mut BlockChain,
+    sign: f64,
+    count: usize,
+    start: &Ladder,
+    (from, to): (f64, f64),
+) -> Result<Ladder, crate::numerics::block::Uncertified> {
+    for parts in [2, 4] {
+        let mut ladder = start.clone();
+        let kept_hold = (1..=parts).all(|part| {
+            let k = from + (to - from) * f64::from(part) / f64::from(parts);
+            grid.set(chain, k, sign);
+            chain.follow(&mut ladder, count, grid.floor)
+        });
+        if kept_hold {
+            return Ok(ladder);
+        }
+    }
+    grid.set(chain, to, sign);
+    chain
+        .lowest(start.energies.len(), grid.floor)
+        .or_else(|_| chain.lowest(count, grid.floor))
+}
+
+/// Energies and vectors continued in a straight line through two slices, `ratio` being the step to
+/// come over the step behind.
+fn ahead(chain: &BlockChain, before: &Ladder, last: &Ladder, ratio: f64) -> Ladder {
     let mut next = last.clone();
     for (index, vector) in next.vectors.iter_mut().enumerate() {
-        let old = &before.vectors[index];
+        let Some(old) = before.vectors.get(index) else {
+            continue;
+        };
         let alike = chain.product(old, vector);
         // Where a state has changed its character there is no straight line to follow.
         if alike.abs() < 0.7 {
             continue;
         }
-        next.energies[index] += last.energies[index] - before.energies[index];
-        let sense = alike.signum();
+        next.energies[index] += ratio * (last.energies[index] - before.energies[index]);
+        let sense = ratio * alike.signum();
         for (value, old) in vector.iter_mut().zip(old) {
-            *value = 2.0 * *value - sense * old;
+            *value = (1.0 + ratio) * *value - sense * old;
         }
         let scale = chain.product(vector, vector).sqrt().recip();
         for value in vector.iter_mut() {
