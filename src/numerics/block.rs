@@ -30,6 +30,8 @@
 //!
 //! B. N. Parlett, The Symmetric Eigenvalue Problem (1980), chapters 3 and 4.
 
+use std::ops::Range;
+
 use nalgebra::{DMatrix, SymmetricEigen};
 
 /// Shifts that one sweep carries.
@@ -525,40 +527,72 @@ impl BlockChain {
                 energy: floor,
             });
         }
-        let brackets = self.isolate(count, floor);
-        let mut ladder = Ladder::default();
-        let mut level = 0;
-        while level < count {
-            let bracket = brackets[level];
-            let shared = brackets[level..]
-                .iter()
-                .take_while(|&&other| other == bracket)
-                .count();
-            let span = if shared == 1 {
-                self.single(bracket, level)
-            } else {
-                self.span(bracket, shared)
-            };
-            ladder.energies.extend(span.energies);
-            ladder.vectors.extend(span.vectors);
-            level += shared;
+        self.levels(0..count, floor)
+    }
+
+    /// The eigenvalues with the numbers `range`, counted from 0, found from nothing.
+    ///
+    /// # Arguments
+    ///
+    /// * `low` – an energy below the first of them
+    ///
+    /// # Errors
+    ///
+    /// [`Uncertified`] if a level can't be told apart.
+    pub fn levels(&mut self, range: Range<usize>, low: f64) -> Result<Ladder, Uncertified> {
+        let range = range.start..range.end.min(3 * self.nodes);
+        if range.is_empty() {
+            return Ok(Ladder::default());
         }
-        self.certify(&ladder)?;
+        let brackets = self.isolate(range.clone(), low);
+        let shared = |index: usize| {
+            (index > 0 && brackets[index - 1] == brackets[index])
+                || brackets.get(index + 1) == Some(&brackets[index])
+        };
+        let alone: Vec<usize> = (0..brackets.len())
+            .filter(|&index| !shared(index))
+            .collect();
+        let mut found: Vec<Option<(f64, Vec<f64>)>> = vec![None; brackets.len()];
+        for chunk in alone.chunks(LANES) {
+            let own: Vec<(usize, (f64, f64))> = chunk
+                .iter()
+                .map(|&index| (range.start + index, brackets[index]))
+                .collect();
+            for (&index, state) in chunk.iter().zip(self.singles(&own)) {
+                found[index] = Some(state);
+            }
+        }
+        let mut ladder = Ladder::default();
+        for (index, state) in found.into_iter().enumerate() {
+            if let Some((energy, vector)) = state {
+                ladder.energies.push(energy);
+                ladder.vectors.push(vector);
+            } else if ladder.energies.len() <= index {
+                let count = brackets
+                    .iter()
+                    .filter(|&&other| other == brackets[index])
+                    .count();
+                let span = self.span(brackets[index], count);
+                ladder.energies.extend(span.energies);
+                ladder.vectors.extend(span.vectors);
+            }
+        }
+        self.certify(&ladder, range.start)?;
         Ok(ladder)
     }
 
     /// Counts between the levels (and around clusters) must agree with their numbers.
-    fn certify(&mut self, ladder: &Ladder) -> Result<(), Uncertified> {
+    fn certify(&mut self, ladder: &Ladder, first: usize) -> Result<(), Uncertified> {
         let energies = &ladder.energies;
         let mut points = Vec::with_capacity(energies.len() + 1);
         for (index, &energy) in energies.iter().enumerate() {
             match energies.get(index + 1) {
                 Some(above) if above - energy < CLUSTER => {}
-                Some(above) => points.push((0.5 * (energy + above), index + 1)),
-                None => points.push((energy + CLUSTER, index + 1)),
+                Some(above) => points.push((0.5 * (energy + above), first + index + 1)),
+                None => points.push((energy + CLUSTER, first + index + 1)),
             }
         }
-        points.push((energies[0] - CLUSTER, 0));
+        points.push((energies[0] - CLUSTER, first));
         for chunk in points.chunks(LANES) {
             let lanes: Lanes = std::array::from_fn(|lane| chunk[lane.min(chunk.len() - 1)].0);
             let counts = self.factorise(&lanes);
@@ -574,14 +608,14 @@ impl BlockChain {
         Ok(())
     }
 
-    /// Brackets of the lowest eigenvalues: each holds one, or is narrow and shared.
-    fn isolate(&mut self, count: usize, floor: f64) -> Vec<(f64, f64)> {
+    /// Brackets of the eigenvalues numbered `range`: each holds one, or is narrow and shared.
+    fn isolate(&mut self, range: Range<usize>, low: f64) -> Vec<(f64, f64)> {
         let mut reach = 0.25;
-        while self.count_below(floor + reach) < count {
+        while self.count_below(low + reach) < range.end {
             reach *= 2.0;
         }
-        let top = self.count_below(floor + reach);
-        let mut known = vec![(floor, 0), (floor + reach, top)];
+        let (bottom, top) = (self.count_below(low), self.count_below(low + reach));
+        let mut known = vec![(low, bottom), (low + reach, top)];
         loop {
             let mut wanted = Vec::new();
             for pair in known.windows(2) {
@@ -589,7 +623,7 @@ impl BlockChain {
                 // One level needs a bracket narrow enough for inverse iteration to stay in it.
                 let wide = above > below + 1 && high - low > 0.5 * CLUSTER;
                 let loose = above == below + 1 && high - low > 2e-3;
-                if below < count && (wide || loose) {
+                if below < range.end && above > range.start && (wide || loose) {
                     let parts = (above - below + 1).clamp(2, LANES);
                     wanted.extend(
                         (1..parts).map(|part| low + (high - low) * part as f64 / parts as f64),
@@ -608,7 +642,7 @@ impl BlockChain {
             known.sort_by(|a, b| a.0.total_cmp(&b.0));
             known.dedup_by(|a, b| a.0 == b.0);
         }
-        (0..count)
+        range
             .map(|level| {
                 let above = known.partition_point(|&(_, below)| below <= level);
                 (known[above - 1].0, known[above].0)
@@ -616,41 +650,55 @@ impl BlockChain {
             .collect()
     }
 
-    /// The one state in a bracket: inverse iteration, the bracket halved by counts until the
-    /// iteration stays inside it.
-    fn single(&mut self, bracket: (f64, f64), level: usize) -> Ladder {
-        let (mut low, mut high) = bracket;
-        let mut vector = self.start_vectors(1);
-        let mut energy = 0.5 * (low + high);
+    /// The one state in each of up to [`LANES`] brackets, given with its number: inverse iteration,
+    /// the bracket halved by counts until the iteration stays inside it.
+    fn singles(&mut self, wanted: &[(usize, (f64, f64))]) -> Vec<(f64, Vec<f64>)> {
+        /// Counts put a level on one side of a shift; rounding may leave it on the shift.
+        const SLACK: f64 = 1e-12;
+        let own = wanted.len();
+        let mut brackets: Vec<(f64, f64)> = wanted.iter().map(|&(_, bracket)| bracket).collect();
+        let mut energies: Vec<f64> = brackets.iter().map(|b| 0.5 * (b.0 + b.1)).collect();
+        let mut vectors = vec![self.start_vectors(1).remove(0); own];
+        let mut best: Vec<Option<(f64, Vec<f64>)>> = vec![None; own];
         for round in 0..200 {
             // Two steps at a fixed shift turn the general start vector towards the level.
             let settled = round % 3 == 2;
-            let inside = energy > low && energy < high;
-            let shift = if settled && inside {
-                energy
-            } else {
-                0.5 * (low + high)
-            };
-            let count = self.factorise(&[shift; LANES])[0];
-            if count > level {
-                high = high.min(shift);
-            } else {
-                low = low.max(shift);
-            }
-            self.load(&vector);
+            let shifts: Lanes = std::array::from_fn(|lane| {
+                let lane = lane.min(own - 1);
+                let (low, high) = brackets[lane];
+                let inside = energies[lane] > low && energies[lane] < high;
+                if settled && inside {
+                    energies[lane]
+                } else {
+                    0.5 * (low + high)
+                }
+            });
+            let counts = self.factorise(&shifts);
+            self.load(&vectors);
             let (steps, residuals) = self.iterate();
-            self.store(&mut vector);
-            energy = shift + steps[0];
-            // Counts put the level on one side of the shift; rounding may leave it on the shift.
-            let slack = 1e-12;
-            if residuals[0] < 1e-9 && energy > low - slack && energy < high + slack {
+            self.store(&mut vectors);
+            for lane in 0..own {
+                let (low, high) = &mut brackets[lane];
+                if counts[lane] > wanted[lane].0 {
+                    *high = high.min(shifts[lane]);
+                } else {
+                    *low = low.max(shifts[lane]);
+                }
+                energies[lane] = shifts[lane] + steps[lane];
+                let inside = energies[lane] > *low - SLACK && energies[lane] < *high + SLACK;
+                if best[lane].is_none() && residuals[lane] < 1e-9 && inside {
+                    best[lane] = Some((energies[lane], vectors[lane].clone()));
+                }
+            }
+            if best.iter().all(Option::is_some) {
                 break;
             }
         }
-        Ladder {
-            energies: vec![energy],
-            vectors: vector,
-        }
+        // What has not settled is left to the certificate, which refuses it.
+        best.into_iter()
+            .zip(energies.into_iter().zip(vectors))
+            .map(|(best, last)| best.unwrap_or(last))
+            .collect()
     }
 
     /// General vectors to start inverse iteration from.
@@ -747,7 +795,7 @@ fn above(energies: &[f64], required: usize) -> f64 {
 }
 
 /// Ranges of levels with neighbours closer than [`GROUP`].
-fn groups(energies: &[f64]) -> Vec<std::ops::Range<usize>> {
+fn groups(energies: &[f64]) -> Vec<Range<usize>> {
     let mut groups = Vec::new();
     let mut start = 0;
     for level in 1..=energies.len() {
