@@ -1,9 +1,11 @@
 //! Transitions, lineshape, gain, spontaneous emission and their landmarks.
 
+mod bulk;
 pub mod landmarks;
 mod lineshape;
 mod staircase;
 
+pub use bulk::Bulk;
 pub use lineshape::Line;
 pub use staircase::{Hole, Pair, Staircase};
 
