@@ -60,6 +60,18 @@ impl BulkBands {
     }
 }
 
+/// The density of pairs, cm⁻³, at which the quasi-Fermi splitting equals the gap: the root of
+/// n(η) = p(−η), of which one side rises and the other falls.
+#[must_use]
+pub fn transparency_cm3(electrons: &BulkBands, holes: &BulkBands, thermal_ev: f64) -> f64 {
+    let excess = |eta: f64| {
+        let fermi = eta * thermal_ev;
+        (electrons.density_cm3(fermi, thermal_ev) / holes.density_cm3(-fermi, thermal_ev)).ln()
+    };
+    let eta = bracketed_root(excess, -30.0, 30.0, 1e-13);
+    electrons.density_cm3(eta * thermal_ev, thermal_ev)
+}
+
 #[cfg(test)]
 mod tests {
     use super::*;

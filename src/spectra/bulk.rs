@@ -2,11 +2,10 @@
 //! three-dimensional density of states, rounded by the line.
 
 use super::{Emitter, Line, Occupation, Point, modes_per_ev_cm2_s};
-use crate::carriers::bulk::BulkBands;
+use crate::carriers::bulk::{BulkBands, transparency_cm3};
 use crate::materials::Crystal;
 use crate::numerics::fermi::occupation;
 use crate::numerics::quadrature::panels;
-use crate::numerics::roots::bracketed_root;
 use crate::structure::Lineshape;
 use crate::units::{FINE_STRUCTURE, HBAR2_OVER_2M0_EV_NM2};
 
@@ -113,14 +112,7 @@ impl Bulk {
     /// The density at which the quasi-Fermi splitting equals the gap, cm⁻³, at kT in eV.
     #[must_use]
     pub fn transparency_cm3(&self, thermal_ev: f64) -> f64 {
-        let (electrons, holes) = (self.electrons(), self.holes());
-        // n(η) rises and p(−η) falls with η: one crossing.
-        let excess = |eta: f64| {
-            let fermi = eta * thermal_ev;
-            (electrons.density_cm3(fermi, thermal_ev) / holes.density_cm3(-fermi, thermal_ev)).ln()
-        };
-        let eta = bracketed_root(excess, -30.0, 30.0, 1e-13);
-        electrons.density_cm3(eta * thermal_ev, thermal_ev)
+        transparency_cm3(&self.electrons(), &self.holes(), thermal_ev)
     }
 
     /// Reduced mass with each hole.
