@@ -267,6 +267,22 @@ fn transition_overlap(evaluation: &Evaluation<'_>) -> Answer {
         .ok_or_else(|| "e1-hh1 is not among the transitions".to_owned())
 }
 
+/// Rise of peak TE gain per density between 4 and 6e17 cm⁻³ above transparency.
+fn differential_gain_cm2(evaluation: &Evaluation<'_>, transparency_cm3: f64) -> Answer {
+    let mut stack = evaluation.stack.clone();
+    stack.operation.densities_cm3 = vec![transparency_cm3 + 4e17, transparency_cm3 + 6e17];
+    let runs = Evaluation::new(&stack, evaluation.parameters)
+        .and_then(|evaluation| evaluation.spectrum())
+        .map_err(|error| error.to_string())?
+        .runs;
+    match (runs[0].te, runs[1].te) {
+        (Some(low), Some(high)) => {
+            Ok((high.gain_cm - low.gain_cm) / (runs[1].density_cm3 - runs[0].density_cm3))
+        }
+        _ => Err("no gain above transparency".to_owned()),
+    }
+}
+
 impl Problem for StackProblem {
     fn name(&self) -> &str {
         &self.name
@@ -304,18 +320,12 @@ impl Problem for StackProblem {
                 .fit
                 .map(|(_, fit)| fit.g0_cm)
                 .ok_or_else(missing),
-            // Rise of peak gain per density between the two highest densities.
-            "differential_gain_cm2" => {
-                let runs = spectrum()?.runs;
-                let [.., low, high] = runs.as_slice() else {
-                    return Err("two densities are needed".to_owned());
-                };
-                match (low.te, high.te) {
-                    (Some(a), Some(b)) => {
-                        Ok((b.gain_cm - a.gain_cm) / (high.density_cm3 - low.density_cm3))
-                    }
-                    _ => Err("no gain at two densities".to_owned()),
-                }
+            "gain_peak_unshrunk_nm" => evaluation
+                .emission()
+                .gain_peak_unshrunk_nm
+                .ok_or_else(missing),
+            "differential_gain_above_transparency_cm2" => {
+                differential_gain_cm2(evaluation, transparency()?)
             }
             "conduction_depth_ev" => {
                 let well = evaluation
