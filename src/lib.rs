@@ -19,6 +19,7 @@
 //! | 1 | [`materials`] | parameter data with their citations, alloys, temperature, strain law, index of refraction |
 //! | 2 | [`structure`] | the structure file, and the validated stack that all others use |
 //! | 3 | [`profile`] | band edges and masses along the stack |
+//! | 3 | [`coherence`] | critical thickness, balance of strains |
 //! | 4 | [`subbands`] | levels and envelopes |
 //! | 5 | [`carriers`] | occupation and quasi-Fermi levels |
 //! | 6 | [`spectra`] | transitions, lineshape, gain, spontaneous emission, landmarks |
@@ -34,6 +35,7 @@
 //! are given as electron energies (a valence edge is a maximum).
 
 pub mod carriers;
+pub mod coherence;
 pub mod evaluation;
 pub mod materials;
 pub mod numerics;

@@ -1,10 +1,12 @@
 //! Transitions, lineshape, gain, spontaneous emission and their landmarks.
 
+mod bulk;
 mod dispersive;
 pub mod landmarks;
 mod lineshape;
 mod staircase;
 
+pub use bulk::Bulk;
 pub use dispersive::{Dispersion, Dispersive, Sample};
 pub use lineshape::Line;
 pub use staircase::{Hole, Pair, Staircase};
