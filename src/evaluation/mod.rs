@@ -4,10 +4,12 @@
 //! [`Evaluation::spectrum`] go on from there. Writers read the records and compute no physics.
 
 mod budget;
+mod ladder;
 mod remark;
 mod spectrum;
 
 pub use budget::{Budget, budget};
+pub use ladder::{Group, Ladder, Rung, TransitionGroup};
 pub use remark::Remark;
 pub use spectrum::{
     Absorption, GainPeak, PhotoLuminescence, Run, Spectrum, Spontaneous, Transparency,
@@ -137,7 +139,10 @@ impl<'a> Evaluation<'a> {
         let bands = single(&profile, stack.model.nonparabolic)?;
         require_levels(stack, &profile, &bands)?;
         let pairs = pairs(stack, &profile, &bands);
-        let transitions = transitions(&pairs);
+        let transitions: Vec<Transition> = by_energy(&pairs)
+            .into_iter()
+            .filter(|transition| transition.overlap > LEAST_OVERLAP)
+            .collect();
         let first_ev = transitions.first().ok_or(Failure::NoTransition)?.energy_ev;
         let index = refractive_index(stack, parameters, first_ev);
         let line = Line::new(stack.model.lineshape, stack.model.intraband_fs);
@@ -261,6 +266,24 @@ impl<'a> Evaluation<'a> {
         }
     }
 
+    /// Edge of the first transition with the gap shrinkage at a density, as a wavelength in vacuum,
+    /// nm.
+    #[must_use]
+    pub fn shrunk_first_transition_nm(&self, density_cm3: f64) -> f64 {
+        wavelength_nm(self.first_ev - self.shrinkage_ev(density_cm3))
+    }
+
+    /// Half width at half maximum of the line, eV.
+    #[must_use]
+    pub fn line_half_width_ev(&self) -> f64 {
+        self.emitter.line().half_width_ev
+    }
+
+    /// Every pair of levels, however small its overlap, by rising energy.
+    fn every_pair(&self) -> Vec<Transition> {
+        by_energy(self.emitter.pairs())
+    }
+
     fn low_injection(&self) -> Occupation {
         self.occupation(&self.filling(PL_DENSITY_CM3), 0.0)
     }
@@ -343,10 +366,10 @@ fn pairs(stack: &Stack, profile: &Profile<'_>, bands: &SingleBands) -> Vec<Pair>
     pairs
 }
 
-fn transitions(pairs: &[Pair]) -> Vec<Transition> {
+/// The transitions of all pairs, by rising energy.
+fn by_energy(pairs: &[Pair]) -> Vec<Transition> {
     let mut transitions: Vec<Transition> = pairs
         .iter()
-        .filter(|pair| pair.overlap > LEAST_OVERLAP)
         .map(|pair| Transition {
             electron: pair.electron + 1,
             hole: match pair.kind {

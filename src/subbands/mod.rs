@@ -2,7 +2,7 @@
 
 mod single;
 
-pub use single::{Band, Level, Overlaps, SingleBands, single};
+pub use single::{Band, Hamiltonian, Level, Overlaps, SingleBands, hamiltonian, single};
 
 use crate::profile::{Cells, Profile};
 

@@ -1,0 +1,22 @@
+//! Numbers become text here, and nowhere else: pages for a terminal, JSON, comma-separated values.
+//!
+//! Writers read the records of `evaluation` and `design` and compute no physics.
+
+pub mod csv;
+mod findings;
+pub mod json;
+mod levels;
+mod materials;
+mod number;
+mod page;
+mod remark;
+mod spectrum;
+mod stamp;
+mod table;
+
+pub use findings::findings;
+pub use levels::levels;
+pub use materials::{descriptions, families};
+pub use remark::remark;
+pub use spectrum::spectrum;
+pub use stamp::{Stamp, Switches, sha256};
