@@ -260,8 +260,7 @@ impl<'a> Profile<'a> {
             let pieces = if graded { GRADE_POINTS } else { 1 };
             for piece in 0..=pieces {
                 let within = piece as f64 / pieces as f64;
-                let position_nm =
-                    section.bottom_nm + within * (section.top_nm - section.bottom_nm);
+                let position_nm = section.bottom_nm + within * (section.top_nm - section.bottom_nm);
                 let tilt_ev = self.slope_ev_nm * (position_nm - self.centre_nm);
                 let edges = self.at(section, within).edges;
                 points.push(EdgePoint {

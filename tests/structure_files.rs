@@ -28,7 +28,10 @@ fn toml_files(folder: &str) -> Vec<PathBuf> {
     let mut files: Vec<_> = fs::read_dir(folder)
         .unwrap_or_else(|error| panic!("{folder}: {error}"))
         .map(|entry| entry.expect("entry").path())
-        .filter(|path| path.extension().is_some_and(|extension| extension == "toml"))
+        .filter(|path| {
+            path.extension()
+                .is_some_and(|extension| extension == "toml")
+        })
         .collect();
     files.sort();
     assert!(!files.is_empty(), "{folder} holds no case");

@@ -289,7 +289,11 @@ impl Finding {
                 thermal_ev,
                 least_kt,
                 ..
-            } => vec![measure("margin_kt", margin_ev / thermal_ev, Some(*least_kt))],
+            } => vec![measure(
+                "margin_kt",
+                margin_ev / thermal_ev,
+                Some(*least_kt),
+            )],
             Self::Barrier {
                 height_ev,
                 thermal_ev,
@@ -367,7 +371,8 @@ fn strained_layers(stack: &Stack, profile: &Profile<'_>) -> Vec<Finding> {
     const LEAST_PERCENT: f64 = 0.05;
     let mut findings: Vec<Finding> = Vec::new();
     for (layer, numbers) in stack.layers.iter().zip(&profile.layers) {
-        let worse = |a: &Strained, b: &Strained| a.edges.strain_percent() >= b.edges.strain_percent();
+        let worse =
+            |a: &Strained, b: &Strained| a.edges.strain_percent() >= b.edges.strain_percent();
         let upper = layer.grade_to.as_ref().unwrap_or(&layer.material);
         let (material, edges) = if worse(&numbers.lower, &numbers.upper) {
             (&layer.material, &numbers.lower.edges)
@@ -396,7 +401,8 @@ impl Finding {
     /// Counts another strained layer in, if it is equal to this one.
     fn counts(&mut self, other: &Finding) -> bool {
         let mut counted = other.clone();
-        if let (Self::Strain { count, .. }, Self::Strain { count: seen, .. }) = (&mut *self, &mut counted)
+        if let (Self::Strain { count, .. }, Self::Strain { count: seen, .. }) =
+            (&mut *self, &mut counted)
         {
             *seen = *count;
         }

@@ -20,7 +20,7 @@ use crate::materials::Parameters;
 use crate::numerics::roots::bracketed_root;
 use crate::profile::{Profile, Unsolvable};
 use crate::spectra::landmarks::{emission_peak, gain_peak};
-use crate::spectra::{Hole, Line, Occupation, Pair, Point, Staircase};
+use crate::spectra::{Emitter as _, Hole, Line, Occupation, Pair, Point, Staircase};
 use crate::structure::{Role, Stack, Substance};
 use crate::subbands::{Band, Level, SingleBands, Uncertified, single};
 use crate::units::{thermal_ev, wavelength_nm};

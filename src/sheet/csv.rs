@@ -82,7 +82,8 @@ impl CsvTable {
                 })
                 .collect()
         };
-        let rows = std::iter::once(self.heads.clone()).chain(self.rows.iter().map(|row| cells(row)));
+        let rows =
+            std::iter::once(self.heads.clone()).chain(self.rows.iter().map(|row| cells(row)));
         for row in rows {
             writer
                 .write_record(row)
@@ -180,8 +181,16 @@ fn layers(evaluation: &Evaluation<'_>) -> CsvTable {
         ],
     );
     let stack = evaluation.stack;
-    for (index, (layer, numbers)) in stack.layers.iter().zip(&evaluation.profile.layers).enumerate() {
-        let upper = layer.grade_to.as_ref().map(|to| ("upper", to, &numbers.upper));
+    for (index, (layer, numbers)) in stack
+        .layers
+        .iter()
+        .zip(&evaluation.profile.layers)
+        .enumerate()
+    {
+        let upper = layer
+            .grade_to
+            .as_ref()
+            .map(|to| ("upper", to, &numbers.upper));
         let word = if upper.is_some() { "lower" } else { "both" };
         let ends = std::iter::once((word, &layer.material, &numbers.lower)).chain(upper);
         for (end, material, at) in ends {
@@ -284,12 +293,19 @@ fn envelopes(evaluation: &Evaluation<'_>) -> CsvTable {
         (Band::Light, "lh"),
     ] {
         for (index, level) in bands.of(band).iter().enumerate() {
-            table.heads.push(format!("{symbol}{}_per_sqrt_nm", index + 1));
+            table
+                .heads
+                .push(format!("{symbol}{}_per_sqrt_nm", index + 1));
             columns.push(&level.envelope);
         }
     }
     table.rows = (0..bands.nodes.positions_nm.len())
-        .map(|node| columns.iter().map(|column| Cell::from(column[node])).collect())
+        .map(|node| {
+            columns
+                .iter()
+                .map(|column| Cell::from(column[node]))
+                .collect()
+        })
         .collect();
     table
 }
@@ -320,7 +336,10 @@ pub fn spectrum(evaluation: &Evaluation<'_>, spectrum: &Spectrum) -> Vec<CsvTabl
             ]);
         }
     }
-    let mut absorption = CsvTable::new("absorption", &["photon_ev", "wavelength_nm", "te_cm", "tm_cm"]);
+    let mut absorption = CsvTable::new(
+        "absorption",
+        &["photon_ev", "wavelength_nm", "te_cm", "tm_cm"],
+    );
     let of = &spectrum.absorption;
     for ((photon_ev, te), tm) in of.photon_ev.iter().zip(&of.te_cm).zip(&of.tm_cm) {
         absorption
@@ -379,14 +398,34 @@ fn landmarks(evaluation: &Evaluation<'_>, spectrum: &Spectrum) -> CsvTable {
     let (pl, fit, transparency) = (spectrum.pl, spectrum.fit, spectrum.transparency);
     table.rows = vec![
         row!["refractive index", spectrum.refractive_index, "1"],
-        row!["first transition without shrinkage", evaluation.emission().first_transition_nm, "nm"],
+        row![
+            "first transition without shrinkage",
+            evaluation.emission().first_transition_nm,
+            "nm"
+        ],
         row!["photoluminescence peak", pl.map(|pl| pl.peak_nm), "nm"],
-        row!["photoluminescence full width", pl.map(|pl| pl.fwhm_mev), "meV"],
-        row!["transparency density", transparency.map(|at| at.density_cm3), "cm^-3"],
-        row!["first transition at transparency", transparency.map(|at| at.wavelength_nm), "nm"],
+        row![
+            "photoluminescence full width",
+            pl.map(|pl| pl.fwhm_mev),
+            "meV"
+        ],
+        row![
+            "transparency density",
+            transparency.map(|at| at.density_cm3),
+            "cm^-3"
+        ],
+        row![
+            "first transition at transparency",
+            transparency.map(|at| at.wavelength_nm),
+            "nm"
+        ],
         row!["polarization of the fit", fit.map(|(word, _)| word), ""],
         row!["fit g0", fit.map(|(_, fit)| fit.g0_cm), "cm^-1"],
-        row!["fit transparency density", fit.map(|(_, fit)| fit.transparency_cm3), "cm^-3"],
+        row![
+            "fit transparency density",
+            fit.map(|(_, fit)| fit.transparency_cm3),
+            "cm^-3"
+        ],
         row!["fit residual", fit.map(|(_, fit)| fit.residual_cm), "cm^-1"],
     ];
     table
@@ -395,7 +434,10 @@ fn landmarks(evaluation: &Evaluation<'_>, spectrum: &Spectrum) -> CsvTable {
 /// The table of `check`.
 #[must_use]
 pub fn findings(findings: &[Finding]) -> Vec<CsvTable> {
-    let mut table = CsvTable::new("findings", &["code", "standing", "measure", "value", "limit", "message"]);
+    let mut table = CsvTable::new(
+        "findings",
+        &["code", "standing", "measure", "value", "limit", "message"],
+    );
     for finding in findings {
         let message = super::findings::message(finding);
         let (code, standing) = (finding.code(), finding.standing().word());
@@ -423,7 +465,15 @@ pub fn findings(findings: &[Finding]) -> Vec<CsvTable> {
 pub fn families(parameters: &Parameters) -> Vec<CsvTable> {
     let mut table = CsvTable::new(
         "materials",
-        &["name", "ends", "gap_ev_min", "gap_ev_max", "lattice_nm_min", "lattice_nm_max", "source"],
+        &[
+            "name",
+            "ends",
+            "gap_ev_min",
+            "gap_ev_max",
+            "lattice_nm_min",
+            "lattice_nm_max",
+            "source",
+        ],
     );
     for family in parameters.families() {
         table.rows.push(row![
@@ -444,7 +494,16 @@ pub fn families(parameters: &Parameters) -> Vec<CsvTable> {
 pub fn descriptions(descriptions: &[Description]) -> Vec<CsvTable> {
     let mut table = CsvTable::new(
         "materials",
-        &["formula", "substrate", "temperature_k", "figure", "value", "unit", "sources", "known"],
+        &[
+            "formula",
+            "substrate",
+            "temperature_k",
+            "figure",
+            "value",
+            "unit",
+            "sources",
+            "known",
+        ],
     );
     for description in descriptions {
         for figure in description.sections.iter().flat_map(|it| &it.figures) {

@@ -51,7 +51,12 @@ fn entry(finding: &Finding, page: &mut Page, colour: Colour) {
 }
 
 fn verdict(findings: &[Finding]) -> String {
-    let count = |standing| findings.iter().filter(|it| it.standing() == standing).count();
+    let count = |standing| {
+        findings
+            .iter()
+            .filter(|it| it.standing() == standing)
+            .count()
+    };
     let (outside, noted) = (count(Standing::Outside), count(Standing::Noted));
     let looks = match noted {
         0 => String::new(),
@@ -68,7 +73,7 @@ fn verdict(findings: &[Finding]) -> String {
 
 /// What was found, with its numbers.
 #[must_use]
-pub fn message(finding: &Finding) -> String {
+pub(super) fn message(finding: &Finding) -> String {
     match finding {
         Finding::File(remark) => remark.message(),
         Finding::Unsolved(failure) => failure.to_string(),
@@ -158,7 +163,11 @@ pub fn message(finding: &Finding) -> String {
             let net = if *net_cm3 == 0.0 {
                 "the wells and their barriers are not doped".to_owned()
             } else {
-                let kind = if *net_cm3 > 0.0 { "donors" } else { "acceptors" };
+                let kind = if *net_cm3 > 0.0 {
+                    "donors"
+                } else {
+                    "acceptors"
+                };
                 format!(
                     "wells and barriers hold {} cm⁻³ net of {kind}, per volume of the wells",
                     power(net_cm3.abs(), 4)
@@ -180,7 +189,7 @@ pub fn message(finding: &Finding) -> String {
 
 /// What to do about it; `None` where nothing needs doing.
 #[must_use]
-pub fn advice(finding: &Finding) -> Option<String> {
+pub(super) fn advice(finding: &Finding) -> Option<String> {
     if finding.standing() == Standing::Within {
         return None;
     }

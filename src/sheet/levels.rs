@@ -107,23 +107,33 @@ fn layers(evaluation: &Evaluation<'_>, page: &mut Page) {
         } else {
             format!("{} × {}", course.count, layer.role.word())
         };
-        let mut row = |role: String, material: String, thickness: String, at: &crate::profile::Strained| {
-            let percent = fixed(at.edges.strain_percent(), 2);
-            let flat = percent == "0.00";
-            let sense = if flat { Sense::Matched } else { at.edges.sense() };
-            table.row([
-                role,
-                material,
-                thickness,
-                fixed(at.edges.gap_ev(), 4),
-                percent,
-                sense.word().to_owned(),
-            ]);
-        };
+        let mut row =
+            |role: String, material: String, thickness: String, at: &crate::profile::Strained| {
+                let percent = fixed(at.edges.strain_percent(), 2);
+                let flat = percent == "0.00";
+                let sense = if flat {
+                    Sense::Matched
+                } else {
+                    at.edges.sense()
+                };
+                table.row([
+                    role,
+                    material,
+                    thickness,
+                    fixed(at.edges.gap_ev(), 4),
+                    percent,
+                    sense.word().to_owned(),
+                ]);
+            };
         let thickness = significant(layer.thickness_nm, 4);
         row(role, layer.material.formula(), thickness, &ends.lower);
         if let Some(to) = &layer.grade_to {
-            row("  graded to".to_owned(), to.formula(), String::new(), &ends.upper);
+            row(
+                "  graded to".to_owned(),
+                to.formula(),
+                String::new(),
+                &ends.upper,
+            );
         }
     }
     page.table(&table);
@@ -190,8 +200,13 @@ fn ladder_rows(ladder: &Ladder, table: &mut Table, notes: &mut Notes) {
             name,
             fixed(1e3 * ladder.above_edge_ev(rung.energy_ev), 2),
             fixed(rung.energy_ev, 5),
-            if many { fixed(1e3 * group.spread_ev, 2) } else { String::new() },
-            rung.in_plane_mass.map_or(ABSENT.to_owned(), |mass| fixed(mass, 4)),
+            if many {
+                fixed(1e3 * group.spread_ev, 2)
+            } else {
+                String::new()
+            },
+            rung.in_plane_mass
+                .map_or(ABSENT.to_owned(), |mass| fixed(mass, 4)),
             fixed(100.0 * rung.in_wells, 0),
             significant(1e6 * rung.error_ev, 1),
         ]);
@@ -222,7 +237,11 @@ fn transitions(evaluation: &Evaluation<'_>, page: &mut Page) {
             group.hole.clone(),
             fixed(group.energy_ev, 5),
             fixed(group.wavelength_nm, 2),
-            if group.spread_ev > 0.0 { fixed(1e3 * group.spread_ev, 2) } else { String::new() },
+            if group.spread_ev > 0.0 {
+                fixed(1e3 * group.spread_ev, 2)
+            } else {
+                String::new()
+            },
             fixed(group.overlap, 3),
         ]);
     }
@@ -233,7 +252,9 @@ fn transitions(evaluation: &Evaluation<'_>, page: &mut Page) {
         ));
     }
     page.table(&table);
-    let grouped = groups.iter().any(|group| group.electron.contains('-') || group.hole.contains('-'));
+    let grouped = groups
+        .iter()
+        .any(|group| group.electron.contains('-') || group.hole.contains('-'));
     if grouped {
         page.paragraph(
             2,
@@ -267,7 +288,11 @@ fn sum(budget: &Budget, page: &mut Page) {
         let adds = 1e3 * adds_ev;
         table.row([
             name.to_owned(),
-            if place == 0 { fixed(adds, 1) } else { signed(adds, 1) },
+            if place == 0 {
+                fixed(adds, 1)
+            } else {
+                signed(adds, 1)
+            },
             fixed(1e3 * so_far_ev, 1),
             fixed(wavelength_nm(so_far_ev), 1),
         ]);
@@ -293,10 +318,15 @@ fn wavelengths(evaluation: &Evaluation<'_>, page: &mut Page) {
     table.row([
         "edge of the first transition".to_owned(),
         shown(Some(emission.first_transition_nm)),
-        with(Some(evaluation.shrunk_first_transition_nm(operation.working_density_cm3))),
+        with(Some(
+            evaluation.shrunk_first_transition_nm(operation.working_density_cm3),
+        )),
     ]);
     table.row([
-        format!("photoluminescence peak at {} cm⁻³", power(PL_DENSITY_CM3, 1)),
+        format!(
+            "photoluminescence peak at {} cm⁻³",
+            power(PL_DENSITY_CM3, 1)
+        ),
         shown(emission.pl_nm),
         ABSENT.to_owned(),
     ]);

@@ -25,11 +25,22 @@ pub fn families(parameters: &Parameters, stamp: &Stamp, colour: Colour) -> Strin
     let mut sources = BTreeMap::new();
     let range = |[low, high]: [f64; 2], decimals: usize| {
         let (low, high) = (fixed(low, decimals), fixed(high, decimals));
-        if low == high { low } else { format!("{low} to {high}") }
+        if low == high {
+            low
+        } else {
+            format!("{low} to {high}")
+        }
     };
     for family in parameters.families() {
         let is_compound = family.ends.len() < 2;
-        let end = |place: usize| family.ends.get(place).filter(|_| !is_compound).cloned().unwrap_or_default();
+        let end = |place: usize| {
+            family
+                .ends
+                .get(place)
+                .filter(|_| !is_compound)
+                .cloned()
+                .unwrap_or_default()
+        };
         table.row([
             family.name.clone(),
             end(0),
@@ -101,7 +112,11 @@ fn describe(description: &Description, page: &mut Page) {
             words("known"),
         ]);
         for figure in &section.figures {
-            let values: Vec<String> = figure.values.iter().map(|&value| value_text(value)).collect();
+            let values: Vec<String> = figure
+                .values
+                .iter()
+                .map(|&value| value_text(value))
+                .collect();
             let unit = if figure.unit == "1" { "" } else { figure.unit };
             table.row([
                 figure.name.to_owned(),
@@ -138,7 +153,11 @@ fn describe(description: &Description, page: &mut Page) {
 
 /// Five significant digits: more than any of the numbers is known to.
 fn value_text(value: f64) -> String {
-    if value == 0.0 { plain(value) } else { significant(value, 5) }
+    if value == 0.0 {
+        plain(value)
+    } else {
+        significant(value, 5)
+    }
 }
 
 fn citations(sources: &BTreeMap<String, String>, page: &mut Page) {

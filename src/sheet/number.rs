@@ -141,7 +141,15 @@ mod tests {
 
     #[test]
     fn exact_numbers_read_back_to_the_bit() {
-        for value in [0.1 + 0.2, 1e18, -5e-324, 1303.8017902759361, 0.0, 1e-5, f64::MAX] {
+        for value in [
+            0.1 + 0.2,
+            1e18,
+            -5e-324,
+            1303.8017902759361,
+            0.0,
+            1e-5,
+            f64::MAX,
+        ] {
             let back: f64 = exact(value).parse().expect("a number");
             assert_eq!(back.to_bits(), value.to_bits(), "{}", exact(value));
         }

@@ -103,7 +103,9 @@ pub(super) fn bold(words: &str, colour: Colour) -> String {
 pub(super) fn tidy(text: &str) -> String {
     text.chars()
         .map(|letter| match letter {
-            '\u{202a}'..='\u{202e}' | '\u{2066}'..='\u{2069}' | '\u{200e}' | '\u{200f}' => '\u{fffd}',
+            '\u{202a}'..='\u{202e}' | '\u{2066}'..='\u{2069}' | '\u{200e}' | '\u{200f}' => {
+                '\u{fffd}'
+            }
             letter if letter.is_control() => '\u{fffd}',
             letter => letter,
         })

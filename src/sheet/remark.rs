@@ -1,4 +1,4 @@
-//! Remarks beside a result.
+//! What goes beside a result, or in its place.
 
 use super::page::{COLUMNS, bold, wrapped};
 use crate::source::Colour;
@@ -19,20 +19,25 @@ pub fn remark(
     if let Some((name, line)) = place {
         words.push_str(&format!(" ({name}, line {line})"));
     }
-    let mut text = String::new();
-    let lead = "remark: ";
-    for (place, line) in wrapped(&words, COLUMNS - lead.len()).iter().enumerate() {
-        let margin = if place == 0 { bold(lead, colour) } else { " ".repeat(lead.len()) };
-        text.push_str(&format!("{margin}{line}\n"));
+    entry("remark: ", &words, advice, colour)
+}
+
+/// What went wrong with what to do about it, as lines of at most 80 columns.
+#[must_use]
+pub fn complaint(message: &str, remedy: Option<&str>, colour: Colour) -> String {
+    entry("error: ", message, remedy, colour)
+}
+
+fn entry(lead: &str, words: &str, advice: Option<&str>, colour: Colour) -> String {
+    let margin = lead.len();
+    let mut lines = wrapped(words, COLUMNS - margin);
+    if let Some(advice) = advice {
+        let marks = std::iter::once("→ ").chain(std::iter::repeat("  "));
+        let words = wrapped(advice, COLUMNS - margin - 2);
+        lines.extend(marks.zip(words).map(|(mark, line)| format!("{mark}{line}")));
     }
-    for (place, line) in advice
-        .map(|advice| wrapped(advice, COLUMNS - lead.len() - 2))
-        .into_iter()
-        .flatten()
-        .enumerate()
-    {
-        let mark = if place == 0 { "→ " } else { "  " };
-        text.push_str(&format!("{}{mark}{line}\n", " ".repeat(lead.len())));
-    }
+    let mut text = bold(lead, colour);
+    text.push_str(&lines.join(&format!("\n{}", " ".repeat(margin))));
+    text.push('\n');
     text
 }

@@ -135,7 +135,11 @@ fn terms(evaluation: &Evaluation<'_>, page: &mut Page) {
     );
     page.pair(
         "electron mass",
-        if model.nonparabolic { "rising with energy" } else { "constant" },
+        if model.nonparabolic {
+            "rising with energy"
+        } else {
+            "constant"
+        },
     );
     page.pair(
         "line",
@@ -164,7 +168,10 @@ fn terms(evaluation: &Evaluation<'_>, page: &mut Page) {
             "none".to_owned()
         } else {
             let kind = if net > 0.0 { "donors" } else { "acceptors" };
-            format!("{} cm⁻³ net of {kind}, per volume of the wells", power(net.abs(), 4))
+            format!(
+                "{} cm⁻³ net of {kind}, per volume of the wells",
+                power(net.abs(), 4)
+            )
         },
     );
     page.pair(
@@ -176,7 +183,11 @@ fn terms(evaluation: &Evaluation<'_>, page: &mut Page) {
         },
     );
     if let Ok(index) = evaluation.refractive_index() {
-        let source = if model.index.is_some() { "as given" } else { "by its model" };
+        let source = if model.index.is_some() {
+            "as given"
+        } else {
+            "by its model"
+        };
         page.pair("refractive index", &format!("{} {source}", fixed(index, 3)));
     }
     page.pair(

@@ -123,7 +123,11 @@ impl Stamp {
         let mut words = Vec::new();
         if let Some(kelvin) = self.temperature_k {
             let default = self.temperature_is_default == Some(true);
-            let note = if default { ", the default since none is given" } else { "" };
+            let note = if default {
+                ", the default since none is given"
+            } else {
+                ""
+            };
             words.push(format!("{}{note}", temperature(kelvin)));
         }
         words.extend(self.model.iter().flat_map(Switches::words));
@@ -137,9 +141,16 @@ impl Stamp {
     #[must_use]
     pub fn line(&self) -> String {
         let mut parts = vec![self.program.clone()];
-        parts.extend(self.input_sha256.iter().map(|sum| format!("input sha256 {sum}")));
+        parts.extend(
+            self.input_sha256
+                .iter()
+                .map(|sum| format!("input sha256 {sum}")),
+        );
         parts.push(format!("parameters sha256 {}", self.parameters_sha256));
-        parts.push(format!("parameter files {}", self.parameter_files.join(" + ")));
+        parts.push(format!(
+            "parameter files {}",
+            self.parameter_files.join(" + ")
+        ));
         parts.extend(self.words());
         super::page::tidy(&parts.join("; "))
     }

@@ -178,7 +178,13 @@ mod tests {
         let lines = table.lines(60, Colour::Never);
         assert!(lines.iter().all(|line| line.width() <= 60), "{lines:#?}");
         assert!(lines.iter().any(|line| line.contains("1303.80")));
-        let letters = |letter: char| lines.iter().flat_map(|line| line.chars()).filter(|&it| it == letter).count();
+        let letters = |letter: char| {
+            lines
+                .iter()
+                .flat_map(|line| line.chars())
+                .filter(|&it| it == letter)
+                .count()
+        };
         assert_eq!((letters('x'), letters('y')), (90, 90));
     }
 }
