@@ -72,8 +72,13 @@ impl Complaint {
         if let (ErrorKind::InvalidSubcommand, Some(word)) = (error.kind(), word) {
             let suggested = error.get(ContextKind::SuggestedSubcommand).is_some();
             if !suggested && looks_like_a_file(word) {
-                return Self::usage(format!("`{word}` is no command"))
-                    .with_remedy(format!("a command comes first: stepwell levels {word}"));
+                let is_shipped = shipped::names().any(|name| name == word);
+                let remedy = if is_shipped {
+                    format!("to write that structure: stepwell new {word} > {word}.toml")
+                } else {
+                    format!("a command comes first: stepwell levels {word}")
+                };
+                return Self::usage(format!("`{word}` is no command")).with_remedy(remedy);
             }
         }
         let text = error.render();

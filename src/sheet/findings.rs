@@ -1,6 +1,6 @@
 //! What a check found, in words.
 
-use super::number::{fixed, plain, power, significant};
+use super::number::{fixed, length_nm, plain, power, significant};
 use super::page::{Page, bold, padded, wrapped};
 use super::stamp::Stamp;
 use crate::design::{Carrier, Finding, Standing};
@@ -11,6 +11,9 @@ use crate::structure::{Remark, Stack};
 const STANDING_COLUMNS: usize = 9;
 /// Column at which the words begin.
 const WORDS_COLUMN: usize = 31;
+
+/// A smaller spread is not told apart from none, eV.
+const LEAST_SPREAD_EV: f64 = 1e-5;
 
 /// Findings as text of 80 columns.
 #[must_use]
@@ -125,7 +128,7 @@ pub(super) fn message(finding: &Finding) -> String {
                 role.word(),
                 fixed(*percent, 2),
                 sense.word(),
-                significant(*thickness_nm, 4),
+                length_nm(*thickness_nm),
                 significant(percent * thickness_nm, 3)
             )
         }
@@ -136,7 +139,11 @@ pub(super) fn message(finding: &Finding) -> String {
         } => format!(
             "the first level of the {} spreads by {} meV over the wells (a look above {} meV)",
             carrier.word(),
-            significant(1e3 * spread_ev, 2),
+            if *spread_ev < LEAST_SPREAD_EV {
+                format!("less than {}", plain(1e3 * LEAST_SPREAD_EV))
+            } else {
+                significant(1e3 * spread_ev, 2)
+            },
             plain(1e3 * most_ev)
         ),
         Finding::GroundHole { light, split_ev } => {
@@ -175,7 +182,7 @@ pub(super) fn message(finding: &Finding) -> String {
             };
             let setback = |kind: &str, nm: &Option<f64>| {
                 nm.map_or(String::new(), |nm| {
-                    format!("; {kind} begin {} nm from the wells", significant(nm, 4))
+                    format!("; {kind} begin {} nm from the wells", length_nm(nm))
                 })
             };
             format!(

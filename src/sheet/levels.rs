@@ -1,6 +1,6 @@
 //! The page of the command `levels`.
 
-use super::number::{ABSENT, fixed, power, signed, significant, temperature};
+use super::number::{ABSENT, fixed, length_nm, power, signed, significant, temperature};
 use super::page::Page;
 use super::stamp::Stamp;
 use super::table::{Table, numbers, words};
@@ -47,9 +47,9 @@ pub(super) fn head(stack: &Stack, page: &mut Page) {
     let count = stack.well_count();
     let wells_nm = stack.well_thickness_nm();
     let wells = if count == 1 {
-        format!("one well of {} nm", significant(wells_nm, 4))
+        format!("one well of {} nm", length_nm(wells_nm))
     } else {
-        format!("{count} wells, {} nm together", significant(wells_nm, 4))
+        format!("{count} wells, {} nm together", length_nm(wells_nm))
     };
     page.paragraph(
         2,
@@ -125,7 +125,7 @@ fn layers(evaluation: &Evaluation<'_>, page: &mut Page) {
                     sense.word().to_owned(),
                 ]);
             };
-        let thickness = significant(layer.thickness_nm, 4);
+        let thickness = length_nm(layer.thickness_nm);
         row(role, layer.material.formula(), thickness, &ends.lower);
         if let Some(to) = &layer.grade_to {
             row(
@@ -367,7 +367,7 @@ fn trust(evaluation: &Evaluation<'_>, page: &mut Page) {
     );
     let (low, high) = PARAMETER_ERROR_EV;
     page.pair(
-        "error of the parameters",
+        "parameter error",
         &format!(
             "gaps and offsets of alloys are known to {} to {} meV (common practice), here {} to {} nm: \
              a first design may miss by that much, and mostly by the same amount in every well of a \

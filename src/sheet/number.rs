@@ -69,6 +69,11 @@ pub(super) fn plain(value: f64) -> String {
     text.trim_end_matches('0').trim_end_matches('.').to_owned()
 }
 
+/// A length as a person would write it, to a thousandth of a nm.
+pub(super) fn length_nm(value: f64) -> String {
+    plain(round(value, 1e-3))
+}
+
 /// A temperature in kelvin and Celsius.
 pub(super) fn temperature(kelvin: f64) -> String {
     let celsius = kelvin - crate::units::CELSIUS_ZERO_K;

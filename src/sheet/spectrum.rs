@@ -30,14 +30,14 @@ fn by_density(spectrum: &Spectrum, page: &mut Page) {
     let mut table = Table::new([
         numbers("density\ncm⁻³"),
         numbers("sheet\ncm⁻²"),
-        numbers("shrink-\nage\nmeV"),
-        numbers("quasi-\nFermi\nsplit eV"),
+        numbers("gap\nshrinks\nmeV"),
+        numbers("quasi-\nFermi\nsplit\neV"),
         numbers("TE\ngain\ncm⁻¹"),
         numbers("at\nnm"),
         numbers("TM\ngain\ncm⁻¹"),
         numbers("at\nnm"),
-        numbers("emission\npeak\nnm"),
-        numbers("radiative\ncurrent\nA/cm²"),
+        numbers("emis-\nsion\nat nm"),
+        numbers("radi-\native\nA/cm²"),
     ]);
     let gain = |peak: Option<GainPeak>| {
         peak.map_or([ABSENT.to_owned(), ABSENT.to_owned()], |peak| {
@@ -49,7 +49,7 @@ fn by_density(spectrum: &Spectrum, page: &mut Page) {
         let [tm, tm_nm] = gain(run.tm);
         let emission = run.spontaneous;
         table.row([
-            power(run.density_cm3, 4),
+            power(run.density_cm3, 3),
             power(run.sheet_density_cm2, 3),
             fixed(run.shrinkage_mev, 1),
             fixed(run.splitting_ev, 4),
@@ -64,8 +64,8 @@ fn by_density(spectrum: &Spectrum, page: &mut Page) {
     page.table(&table);
     page.paragraph(
         2,
-        "Densities are of pairs per volume of the wells, sheet densities and currents of all wells \
-         together. Gain is that of the well material, not yet times a confinement factor. \
+        "Densities are of pairs per volume of the wells; sheet densities and radiative currents are of \
+         all wells together. Gain is that of the well material, not yet times a confinement factor. \
          Wavelengths are in vacuum, with gap shrinkage.",
     );
 }

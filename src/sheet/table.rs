@@ -6,6 +6,8 @@ use unicode_width::UnicodeWidthStr as _;
 
 /// Space between two columns.
 const GAP: usize = 2;
+/// The same where there is little room.
+const SMALL_GAP: usize = 1;
 /// A column of words is never made narrower than this.
 const NARROWEST: usize = 8;
 
@@ -61,8 +63,9 @@ impl Table {
     /// The lines of the table, none wider than `width`: where it would be, the widest columns of
     /// words are wrapped.
     pub(super) fn lines(&self, width: usize, colour: Colour) -> Vec<String> {
-        let widths = self.widths(width);
-        let total = widths.iter().sum::<usize>() + GAP * widths.len().saturating_sub(1);
+        let gap = self.gap(width);
+        let widths = self.widths(width, gap);
+        let total = widths.iter().sum::<usize>() + gap * widths.len().saturating_sub(1);
         let heads: Vec<Vec<&str>> = self
             .columns
             .iter()
@@ -77,7 +80,7 @@ impl Table {
                     .checked_sub(height)
                     .map_or("", |index| head[index])
             });
-            lines.push(self.joined(cells, &widths));
+            lines.push(self.joined(cells, &widths, gap));
         }
         lines.push("─".repeat(total));
         for row in &self.rows {
@@ -85,13 +88,20 @@ impl Table {
                 Row::Common(words) => {
                     lines.extend(wrapped(words, width).iter().map(|line| bold(line, colour)));
                 }
-                Row::Cells(cells) => lines.extend(self.cells(cells, &widths)),
+                Row::Cells(cells) => lines.extend(self.cells(cells, &widths, gap)),
             }
         }
         lines
     }
 
-    fn widths(&self, width: usize) -> Vec<usize> {
+    /// Numbers are never cut: where they alone would not fit, columns move together.
+    fn gap(&self, width: usize) -> usize {
+        let room =
+            self.widths(0, GAP).iter().sum::<usize>() + GAP * self.columns.len().saturating_sub(1);
+        if room > width { SMALL_GAP } else { GAP }
+    }
+
+    fn widths(&self, width: usize, gap: usize) -> Vec<usize> {
         let mut widths: Vec<usize> = self
             .columns
             .iter()
@@ -104,7 +114,7 @@ impl Table {
                 }
             }
         }
-        let room = width.saturating_sub(GAP * widths.len().saturating_sub(1));
+        let room = width.saturating_sub(gap * widths.len().saturating_sub(1));
         while widths.iter().sum::<usize>() > room {
             let widest = (0..widths.len())
                 .filter(|&index| !self.columns[index].right && widths[index] > NARROWEST)
@@ -117,7 +127,7 @@ impl Table {
         widths
     }
 
-    fn cells(&self, cells: &[String], widths: &[usize]) -> Vec<String> {
+    fn cells(&self, cells: &[String], widths: &[usize], gap: usize) -> Vec<String> {
         let parts: Vec<Vec<String>> = cells
             .iter()
             .zip(widths)
@@ -129,12 +139,17 @@ impl Table {
                 let cells = parts
                     .iter()
                     .map(|part| part.get(level).map_or("", String::as_str));
-                self.joined(cells, widths)
+                self.joined(cells, widths, gap)
             })
             .collect()
     }
 
-    fn joined<'a>(&self, cells: impl Iterator<Item = &'a str>, widths: &[usize]) -> String {
+    fn joined<'a>(
+        &self,
+        cells: impl Iterator<Item = &'a str>,
+        widths: &[usize],
+        gap: usize,
+    ) -> String {
         let cells: Vec<String> = cells
             .zip(widths)
             .zip(&self.columns)
@@ -146,7 +161,7 @@ impl Table {
                 }
             })
             .collect();
-        cells.join(&" ".repeat(GAP)).trim_end().to_owned()
+        cells.join(&" ".repeat(gap)).trim_end().to_owned()
     }
 }
 
