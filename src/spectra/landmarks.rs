@@ -77,9 +77,13 @@ impl<'a> View<'a> {
                 .sample(&self.occupation, low, step, count as usize + 1);
             self.highest(low, step, &points, &polarisation)
         } else {
-            let count = ((splitting - self.low_ev) / self.step_ev).ceil() as usize + 1;
-            let points = &self.points[..count.min(self.points.len())];
-            self.highest(self.low_ev, self.step_ev, points, &polarisation)
+            // Far below the edges there is no peak, only the tail of a line.
+            let tail = lowest - 4.0 * self.emitter.line().half_width_ev;
+            let first = ((tail - self.low_ev) / self.step_ev).max(0.0) as usize;
+            let end = ((splitting - self.low_ev) / self.step_ev).ceil() as usize + 1;
+            let points = &self.points[first..end.min(self.points.len())];
+            let low = self.low_ev + first as f64 * self.step_ev;
+            self.highest(low, self.step_ev, points, &polarisation)
         };
         peak.or_else(|| {
             // Nothing but a tail that rises towards low energies: its value at the lowest edge.
