@@ -40,6 +40,7 @@ pub mod evaluation;
 pub mod materials;
 pub mod numerics;
 pub mod profile;
+pub mod sheet;
 pub mod source;
 pub mod spectra;
 pub mod structure;

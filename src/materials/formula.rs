@@ -5,8 +5,8 @@ use crate::source::Diagnostic;
 use std::fmt::Write as _;
 use std::ops::Range;
 
-/// How far the fractions of a sublattice may miss 1, as they come from a file.
-const SUM_TOLERANCE: f64 = 1e-6;
+/// How far the fractions of a sublattice may miss 1: thirds to six decimals, and their binary rounding.
+const SUM_TOLERANCE: f64 = 1e-6 + 1e-12;
 /// Steps of the last printed decimal in one.
 const STEPS: u32 = 10_000;
 
@@ -283,7 +283,12 @@ fn sublattice(
             ),
         );
     }
-    let sum: f64 = parts.iter().map(|part| part.fraction.unwrap_or(1.0)).sum();
+    // filled before it is summed, so that the order in the formula does not matter to the last bit
+    let mut fractions = [0.0; 3];
+    for part in parts {
+        fractions[part.element.place()] = part.fraction.unwrap_or(1.0);
+    }
+    let sum: f64 = fractions.iter().sum();
     if (sum - 1.0).abs() > SUM_TOLERANCE {
         let symbols: Vec<&str> = parts.iter().map(|part| part.element.symbol()).collect();
         let miss = format!("{:.6}", (sum - 1.0).abs());
@@ -300,13 +305,9 @@ fn sublattice(
         )
         .with_help("the fractions of each sublattice sum to 1"));
     }
-    // A miss of rounding is left, so that fractions written with every digit read back to the bit.
+    // a miss of rounding is left, so that fractions written with every digit read back to the bit
     let sum = if (sum - 1.0).abs() < 1e-12 { 1.0 } else { sum };
-    let mut fractions = [0.0; 3];
-    for part in parts {
-        fractions[part.element.place()] = part.fraction.unwrap_or(1.0) / sum;
-    }
-    Ok(fractions)
+    Ok(fractions.map(|fraction| fraction / sum))
 }
 
 /// Fractions in steps of the last printed decimal, which sum to [`STEPS`]: the largest remainders

@@ -4,23 +4,27 @@
 //! numbers of one unstrained material; a crystal [on a substrate](Crystal::on) has [`Edges`].
 
 mod composition;
+mod composition_line;
 mod crystal;
 mod description;
 mod formula;
+mod index_data;
 mod interpolation;
 mod offsets;
 mod parameters;
 mod prescription;
 mod quantity;
+mod reading;
 mod refraction;
 mod table;
 
 pub use composition::{Composition, Element, Elements};
 pub use crystal::{Crystal, Edges, Sense};
 pub use description::{Description, Directness, Family, Figure, IndexFigure, Section};
+pub use index_data::IndexStatement;
 pub use offsets::{OffsetRule, Offsets};
 pub use parameters::{MissingTernary, Parameters};
 pub use prescription::{SolveError, solve_composition};
 pub use quantity::{BINARY_KEYS, Key, TERNARY_KEYS};
-pub use refraction::{IndexAdvice, IndexModel, IndexStatement, Refraction};
+pub use refraction::{IndexAdvice, IndexModel, Refraction};
 pub use table::{Alternate, Entry, Material, SHIPPED_NAME, Table};

@@ -1,8 +1,8 @@
 //! The parameter data in force, and the crystals they make.
 
+use super::index_data::IndexData;
 use super::interpolation::{Interpolation, ValenceBowing, ternary_elements};
 use super::offsets::OffsetRule;
-use super::refraction::IndexData;
 use super::table::{SHIPPED, SHIPPED_NAME, Table};
 use super::{Composition, Crystal, Offsets};
 use crate::source::Diagnostic;

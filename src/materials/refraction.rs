@@ -1,12 +1,11 @@
 //! Refractive index at room temperature: closed forms, and which of them holds for which alloy.
 
-use super::interpolation::{PerCompound, weighted};
+use super::index_data::{IndexStatement, Oscillator};
+use super::interpolation::weighted;
 use super::{Composition, Crystal, Element, Offsets, Parameters};
+use crate::numerics::roots::bracketed_root;
 use crate::units::{photon_ev, wavelength_nm};
-use serde::Deserialize;
-use std::collections::BTreeMap;
 use std::f64::consts::PI;
-use std::fmt::Write as _;
 
 /// Temperature of the index data, K.
 const ROOM_K: f64 = 300.0;
@@ -96,154 +95,6 @@ pub struct Refraction {
     pub model: IndexModel,
     /// Why it is less sure; nothing inside the stated range.
     pub advice: Vec<IndexAdvice>,
-}
-
-/// What the data file says of a closed form.
-#[derive(Clone, Debug, PartialEq, Deserialize)]
-pub struct IndexStatement {
-    /// What the coefficients depend on.
-    pub variable: String,
-    /// Where the form holds.
-    pub range: String,
-    /// The citation's key.
-    pub source: String,
-    /// How the coefficients are known.
-    pub status: String,
-    /// What they have been compared with.
-    pub note: String,
-}
-
-/// The index part of the data file.
-#[derive(Clone, Debug, Deserialize)]
-#[serde(deny_unknown_fields)]
-pub(super) struct IndexData {
-    /// Smoothing of the absorption edge, eV.
-    seo_broadening: f64,
-    seo_broadening_source: String,
-    forms: BTreeMap<String, String>,
-    seo: Oscillators,
-    sellmeier1: Sellmeiers,
-    adachi_binary: AdachiBinary,
-}
-
-#[derive(Clone, Debug, Deserialize)]
-#[serde(deny_unknown_fields)]
-struct Oscillators {
-    #[serde(rename = "AlGaAs")]
-    algaas: Oscillator,
-    #[serde(rename = "InGaAsP_InP")]
-    ingaasp_on_inp: Oscillator,
-    #[serde(rename = "InGaAsP")]
-    ingaasp: OscillatorOfTwo,
-    #[serde(rename = "InGaAs")]
-    ingaas: Oscillator,
-}
-
-/// Oscillator energies and gap, polynomials in one composition variable.
-#[derive(Clone, Debug, Deserialize)]
-struct Oscillator {
-    #[serde(flatten)]
-    statement: IndexStatement,
-    e0: Vec<f64>,
-    ed: Vec<f64>,
-    eg: Vec<f64>,
-}
-
-/// Oscillator energies as sums of coefficient · x^i · y^j.
-#[derive(Clone, Debug, Deserialize)]
-struct OscillatorOfTwo {
-    #[serde(flatten)]
-    statement: IndexStatement,
-    e0_terms: Vec<(f64, i32, i32)>,
-    ed_terms: Vec<(f64, i32, i32)>,
-}
-
-#[derive(Clone, Debug, Deserialize)]
-#[serde(deny_unknown_fields)]
-struct Sellmeiers {
-    #[serde(rename = "AlGaInAs_InP")]
-    algainas_on_inp: Sellmeier,
-}
-
-#[derive(Clone, Debug, Deserialize)]
-struct Sellmeier {
-    #[serde(flatten)]
-    statement: IndexStatement,
-    a: Vec<f64>,
-    b: Vec<f64>,
-    c_nm: Vec<f64>,
-}
-
-#[derive(Clone, Debug, Deserialize)]
-struct AdachiBinary {
-    #[serde(flatten)]
-    statement: IndexStatement,
-    strengths: CompoundStrengths,
-}
-
-/// A and B of each compound.
-#[derive(Clone, Debug, Deserialize)]
-#[serde(deny_unknown_fields)]
-struct CompoundStrengths {
-    #[serde(rename = "AlP")]
-    alp: [f64; 2],
-    #[serde(rename = "AlAs")]
-    alas: [f64; 2],
-    #[serde(rename = "AlSb")]
-    alsb: [f64; 2],
-    #[serde(rename = "GaP")]
-    gap: [f64; 2],
-    #[serde(rename = "GaAs")]
-    gaas: [f64; 2],
-    #[serde(rename = "GaSb")]
-    gasb: [f64; 2],
-    #[serde(rename = "InP")]
-    inp: [f64; 2],
-    #[serde(rename = "InAs")]
-    inas: [f64; 2],
-    #[serde(rename = "InSb")]
-    insb: [f64; 2],
-}
-
-impl CompoundStrengths {
-    /// One of the two, in the order of the compounds.
-    fn per_compound(&self, which: usize) -> PerCompound {
-        [
-            self.alp, self.alas, self.alsb, self.gap, self.gaas, self.gasb, self.inp, self.inas,
-            self.insb,
-        ]
-        .map(|strengths| strengths[which])
-    }
-}
-
-impl IndexData {
-    /// Every number, in a fixed order, for the digest of the data.
-    pub(super) fn canonical(&self, text: &mut String) {
-        let _ = writeln!(text, "index seo_broadening {:?}", self.seo_broadening);
-        for (name, model) in [
-            ("AlGaAs", &self.seo.algaas),
-            ("InGaAsP_InP", &self.seo.ingaasp_on_inp),
-            ("InGaAs", &self.seo.ingaas),
-        ] {
-            let _ = writeln!(
-                text,
-                "index {name} {:?} {:?} {:?}",
-                model.e0, model.ed, model.eg
-            );
-        }
-        let two = &self.seo.ingaasp;
-        let _ = writeln!(text, "index InGaAsP {:?} {:?}", two.e0_terms, two.ed_terms);
-        let three = &self.sellmeier1.algainas_on_inp;
-        let _ = writeln!(
-            text,
-            "index AlGaInAs_InP {:?} {:?} {:?}",
-            three.a, three.b, three.c_nm
-        );
-        let strengths = &self.adachi_binary.strengths;
-        for which in 0..2 {
-            let _ = writeln!(text, "index compounds {:?}", strengths.per_compound(which));
-        }
-    }
 }
 
 impl Parameters {
@@ -532,14 +383,5 @@ fn polynomial(coefficients: &[f64], variable: f64) -> f64 {
 
 /// The As fraction between 0 and 1 at which InGaAsP on InP has a gap, or the end of nearest gap.
 fn arsenic_of_gap(gap: &[f64], gap_ev: f64) -> f64 {
-    let (mut wide, mut narrow) = (0.0, 1.0);
-    for _ in 0..60 {
-        let middle = 0.5 * (wide + narrow);
-        if polynomial(gap, middle) > gap_ev {
-            wide = middle;
-        } else {
-            narrow = middle;
-        }
-    }
-    0.5 * (wide + narrow)
+    bracketed_root(|arsenic| polynomial(gap, arsenic) - gap_ev, 0.0, 1.0, 1e-12)
 }

@@ -1,5 +1,6 @@
 //! Numerical methods, no physics: tridiagonal eigenproblems, roots, quadrature, Fermi integrals.
 
+pub mod block;
 pub mod chain;
 pub mod fermi;
 pub mod quadrature;

@@ -1,7 +1,9 @@
 //! Levels and envelopes of the wells.
 
+mod mixed;
 mod single;
 
+pub use mixed::{Dipole, MixedBands, Slice, ZoneCentre, mixed};
 pub use single::{Band, Level, Overlaps, SingleBands, single};
 
 use crate::profile::{Cells, Profile};
@@ -15,6 +17,8 @@ pub const NEAR_EDGE_EV: f64 = 3e-3;
 const COARSEST_STEP_NM: f64 = 0.5;
 /// Every level is refined until its own estimate of its error is below this, eV.
 const WANTED_ERROR_EV: f64 = 1e-6;
+/// Grids are refined until in-plane masses are corrected by less than this, relatively.
+const LARGEST_MASS_CORRECTION: f64 = 1e-3;
 /// Grids are not refined beyond 2^−MOST_HALVINGS of the coarsest step.
 const MOST_HALVINGS: u32 = 5;
 

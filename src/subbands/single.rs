@@ -1,6 +1,9 @@
 //! Subbands one band at a time: finite differences, extrapolated, certified by node counts.
 
-use super::{COARSEST_STEP_NM, MOST_HALVINGS, NEAR_EDGE_EV, Nodes, Uncertified, WANTED_ERROR_EV};
+use super::{
+    CLUSTER_EV, COARSEST_STEP_NM, LARGEST_MASS_CORRECTION, MOST_HALVINGS, NEAR_EDGE_EV, Nodes,
+    Uncertified, WANTED_ERROR_EV,
+};
 use crate::numerics::chain::{Chain, LEAST_SOFTENING_FACTOR, Run};
 use crate::profile::{Cells, Profile, Section, Strained};
 use crate::units::HBAR2_OVER_2M0_EV_NM2;
@@ -79,6 +82,21 @@ pub struct Level {
     pub mass_bounded: bool,
     /// φ on the inner nodes, ∫ φ² dz = 1, in nm^−½.
     pub envelope: Vec<f64>,
+    /// φ on the grid of twice the step, to extrapolate what follows from envelopes.
+    pub(super) coarser: Vec<f64>,
+    /// Whether the level has a near neighbour, so that its envelope is only one choice inside their
+    /// span, and may be another on another grid.
+    crowded: bool,
+    /// Relative size of the correction that the grid's error made to the in-plane mass.
+    mass_correction: f64,
+}
+
+impl Level {
+    /// Whether no other level of its band is so near that only their span has a meaning.
+    #[must_use]
+    pub fn is_alone(&self) -> bool {
+        !self.crowded
+    }
 }
 
 /// Levels of the three bands on common nodes.
@@ -86,6 +104,10 @@ pub struct Level {
 pub struct SingleBands {
     /// Nodes of the envelopes.
     pub nodes: Nodes,
+    /// Nodes of twice the step.
+    pub(super) coarser: Nodes,
+    /// How often the coarsest step was halved for `nodes`.
+    pub(super) halvings: u32,
     /// Electron levels, rising.
     pub electron: Vec<Level>,
     /// Heavy-hole levels, from the band edge down.
@@ -111,18 +133,30 @@ impl SingleBands {
 pub struct Overlaps(pub Vec<Vec<f64>>);
 
 impl SingleBands {
-    /// Squared overlaps of the electron levels with those of a hole band.
+    /// Squared overlaps of the electron levels with those of a hole band, extrapolated from two
+    /// grids as the energies are.
     #[must_use]
     pub fn overlaps(&self, band: Band) -> Overlaps {
-        let weights = &self.nodes.weights_nm;
-        let square = |a: &[f64], b: &[f64]| {
-            let sum: f64 = a
-                .iter()
-                .zip(b)
-                .zip(weights)
-                .map(|((a, b), w)| a * b * w)
-                .sum();
-            sum * sum
+        let size = |nodes: &Nodes, a: &[f64], b: &[f64]| {
+            let terms = a.iter().zip(b).zip(&nodes.weights_nm);
+            terms
+                .map(|((a, b), weight)| a * b * weight)
+                .sum::<f64>()
+                .abs()
+        };
+        let square = |electron: &Level, hole: &Level| {
+            let fine = size(&self.nodes, &electron.envelope, &hole.envelope);
+            if electron.crowded || hole.crowded {
+                return fine * fine;
+            }
+            let coarse = size(&self.coarser, &electron.coarser, &hole.coarser);
+            // A forbidden overlap is rounding on both grids: nothing to extrapolate there.
+            let overlap = if fine > 1e-4 {
+                fine + (fine - coarse) / 3.0
+            } else {
+                fine
+            };
+            (overlap * overlap).min(1.0)
         };
         Overlaps(
             self.electron
@@ -130,7 +164,7 @@ impl SingleBands {
                 .map(|electron| {
                     self.of(band)
                         .iter()
-                        .map(|hole| square(&electron.envelope, &hole.envelope))
+                        .map(|hole| square(electron, hole))
                         .collect()
                 })
                 .collect(),
@@ -155,7 +189,7 @@ impl SingleBands {
 /// Three grids, each of half the step of the one before, with nodes on every layer boundary
 /// ([`Chain`]). The error of each is a series in h²; the first two terms are extrapolated away and
 /// the size of the last correction is given as the error. Grids are refined until that is below
-/// 1e-6 eV.
+/// 1e-6 eV and the masses hardly move.
 ///
 /// # Which levels belong to the wells
 ///
@@ -183,13 +217,16 @@ pub fn single(profile: &Profile<'_>, nonparabolic: bool) -> Result<SingleBands, 
             heavy: ladder(Band::Heavy)?,
             light: ladder(Band::Light)?,
             nodes: Nodes::of(profile, &grids[2]),
+            coarser: Nodes::of(profile, &grids[1]),
+            halvings: finest,
         };
-        let largest = [&bands.electron, &bands.heavy, &bands.light]
+        let settled = [&bands.electron, &bands.heavy, &bands.light]
             .into_iter()
             .flatten()
-            .map(|level| level.error_ev)
-            .fold(0.0, f64::max);
-        if largest < WANTED_ERROR_EV || finest == MOST_HALVINGS {
+            .all(|level| {
+                level.error_ev < WANTED_ERROR_EV && level.mass_correction < LARGEST_MASS_CORRECTION
+            });
+        if settled || finest == MOST_HALVINGS {
             return Ok(bands);
         }
         finest += 1;
@@ -272,7 +309,8 @@ fn levels(
         states.iter().map(|state| state.energy).collect()
     };
     let coarse = energies(&solve(&chains[0], None)?);
-    let middle = energies(&solve(&chains[1], Some(&coarse))?);
+    let half = solve(&chains[1], Some(&coarse))?;
+    let middle = energies(&half);
     let guesses: Vec<f64> = middle
         .iter()
         .zip(&coarse)
@@ -280,25 +318,52 @@ fn levels(
         .collect();
     let fine = solve(&chains[2], Some(&guesses))?;
 
-    let found =
-        fine.into_iter()
-            .zip(coarse.iter().zip(&middle))
-            .map(|(state, (coarse, middle))| {
-                let first = middle + (middle - coarse) / 3.0;
-                let second = state.energy + (state.energy - middle) / 3.0;
-                let energy = second + (second - first) / 15.0;
-                // The correction that the last term made, and what rounding leaves.
-                let error_ev = (second - first).abs() / 15.0 + 1e-9;
-                level(
-                    profile,
-                    &grids[2],
-                    &chains[2],
-                    band,
-                    energy,
-                    error_ev,
-                    state.envelope,
-                )
-            });
+    let extrapolated: Vec<(f64, f64)> = (0..count)
+        .map(|index| {
+            let first = middle[index] + (middle[index] - coarse[index]) / 3.0;
+            let second = fine[index].energy + (fine[index].energy - middle[index]) / 3.0;
+            // The correction that the last term made, and what rounding leaves.
+            let error_ev = (second - first).abs() / 15.0 + 1e-9;
+            (second + (second - first) / 15.0, error_ev)
+        })
+        .collect();
+    let crowded = |index: usize| {
+        let near = |other: usize| (middle[other] - middle[index]).abs() < CLUSTER_EV;
+        (index > 0 && near(index - 1)) || (index + 1 < count && near(index + 1))
+    };
+    let found = fine
+        .into_iter()
+        .zip(half)
+        .enumerate()
+        .map(|(index, (fine, half))| {
+            let (energy, error_ev) = extrapolated[index];
+            let shares = Shares::new(profile, &grids[2], &chains[2], band, energy, &fine.envelope);
+            let (mut reciprocal_mass, mut in_wells) = (shares.reciprocal_mass, shares.in_wells);
+            let coarser = half.envelope;
+            let half = Shares::new(profile, &grids[1], &chains[1], band, energy, &coarser);
+            let correction = (reciprocal_mass - half.reciprocal_mass) / 3.0;
+            let mass_correction = (correction / reciprocal_mass).abs();
+            // Members of a cluster may be mixed differently on the two grids; where their wells are
+            // alike that does not matter.
+            if !crowded(index) || mass_correction < 3e-3 {
+                reciprocal_mass += correction;
+            }
+            if !crowded(index) {
+                in_wells += (in_wells - half.in_wells) / 3.0;
+            }
+            Level {
+                energy_ev: band.sign() * energy,
+                in_plane_mass: reciprocal_mass.recip(),
+                error_ev,
+                in_wells,
+                near_edge: false,
+                mass_bounded: shares.mass_bounded,
+                envelope: fine.envelope,
+                coarser,
+                crowded: crowded(index),
+                mass_correction,
+            }
+        });
     let in_field = profile.slope_ev_nm != 0.0;
     Ok(found
         .filter(|level| {
@@ -315,46 +380,52 @@ fn levels(
         .collect())
 }
 
-/// A level with what follows from its envelope.
-fn level(
-    profile: &Profile<'_>,
-    cells: &[Cells],
-    chain: &Chain,
-    band: Band,
-    energy: f64,
-    error_ev: f64,
-    envelope: Vec<f64>,
-) -> Level {
-    let at = |node: usize| {
-        if node == 0 {
-            0.0
-        } else {
-            envelope.get(node - 1).map_or(0.0, |value| value * value)
+/// What follows from an envelope.
+struct Shares {
+    /// <φ| 1/m |φ> in the plane.
+    reciprocal_mass: f64,
+    /// Share inside the wells and the steps that belong to them.
+    in_wells: f64,
+    /// Whether the energy-dependent mass meets its lower bound somewhere.
+    mass_bounded: bool,
+}
+
+impl Shares {
+    fn new(
+        profile: &Profile<'_>,
+        cells: &[Cells],
+        chain: &Chain,
+        band: Band,
+        energy: f64,
+        envelope: &[f64],
+    ) -> Self {
+        let at = |node: usize| {
+            if node == 0 {
+                0.0
+            } else {
+                envelope.get(node - 1).map_or(0.0, |value| value * value)
+            }
+        };
+        let mut shares = Self {
+            reciprocal_mass: 0.0,
+            in_wells: 0.0,
+            mass_bounded: false,
+        };
+        let mut node = 0;
+        for (cell, run) in cells.iter().zip(chain.runs()) {
+            let mut share = 0.0;
+            for _ in 0..cell.intervals {
+                share += 0.5 * cell.length_nm * (at(node) + at(node + 1));
+                node += 1;
+            }
+            let factor = run.factor(energy);
+            shares.mass_bounded |= run.softening > 0.0 && factor <= LEAST_SOFTENING_FACTOR;
+            shares.reciprocal_mass += share * band.reciprocal_plane_mass(&cell.numbers)
+                / if run.softening > 0.0 { factor } else { 1.0 };
+            if profile.sections[cell.section].in_wells {
+                shares.in_wells += share;
+            }
         }
-    };
-    let mut node = 0;
-    let (mut reciprocal_mass, mut in_wells, mut mass_bounded) = (0.0, 0.0, false);
-    for (cell, run) in cells.iter().zip(chain.runs()) {
-        let mut share = 0.0;
-        for _ in 0..cell.intervals {
-            share += 0.5 * cell.length_nm * (at(node) + at(node + 1));
-            node += 1;
-        }
-        let factor = run.factor(energy);
-        mass_bounded |= run.softening > 0.0 && factor <= LEAST_SOFTENING_FACTOR;
-        reciprocal_mass += share * band.reciprocal_plane_mass(&cell.numbers)
-            / if run.softening > 0.0 { factor } else { 1.0 };
-        if profile.sections[cell.section].in_wells {
-            in_wells += share;
-        }
-    }
-    Level {
-        energy_ev: band.sign() * energy,
-        in_plane_mass: reciprocal_mass.recip(),
-        error_ev,
-        in_wells,
-        near_edge: false,
-        mass_bounded,
-        envelope,
+        shares
     }
 }

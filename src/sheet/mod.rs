@@ -1,0 +1,3 @@
+//! Numbers become text here, and nowhere else.
+
+pub mod figure;
