@@ -11,7 +11,7 @@ use stepwell::materials::{Composition, Offsets, Parameters};
 use stepwell::numerics::chain::{Chain, Run};
 use stepwell::profile::{Profile, REACH_NM};
 use stepwell::structure::{self, Overrides, Stack};
-use stepwell::subbands::{Band, Level, single};
+use stepwell::subbands::{Band, CLUSTER_EV, Level, single};
 use stepwell::units::HBAR2_OVER_2M0_EV_NM2;
 
 /// Numbers from a fixed sequence (splitmix64): the same stacks in every run.
@@ -284,10 +284,25 @@ fn upward_ev(band: Band, level: &Level) -> f64 {
     }
 }
 
-/// The error that a level may have by its own estimate. The estimate is the size of the last
-/// correction of an extrapolation; the factor covers what that leaves out.
+/// The error that a level which is alone may have by its own estimate. The estimate is the size of
+/// the last correction of an extrapolation, which can vanish by accident: hence the factor, and a
+/// hundredth of the 0.01 meV that is promised.
 fn allowed_ev(level: &Level) -> f64 {
-    2.0 * level.error_ev
+    4.0 * level.error_ev + 1e-7
+}
+
+/// Runs of neighbours so close that only sums over them mean anything, with the margin that the
+/// grids have in deciding it.
+fn clusters(levels: &[f64]) -> Vec<std::ops::Range<usize>> {
+    let mut clusters = Vec::new();
+    let mut first = 0;
+    for index in 1..=levels.len() {
+        if index == levels.len() || levels[index] - levels[index - 1] > 1.5 * CLUSTER_EV {
+            clusters.push(first..index);
+            first = index;
+        }
+    }
+    clusters
 }
 
 /// A level so close to the edge that rounding decides whether it is bound proves nothing.
@@ -297,7 +312,7 @@ const UNDECIDED_EV: f64 = 1e-6;
 fn every_bound_level_of_a_thousand_stacks_is_found_within_its_own_error() {
     let parameters = Parameters::shipped();
     let mut random = Random(1);
-    let (mut compared, mut undecided, mut worst) = (0, 0, 0.0f64);
+    let (mut compared, mut alone, mut undecided) = (0, 0, 0);
     for number in 0..1000 {
         let layers = random_layers(&mut random);
         let nonparabolic = number % 2 == 0;
@@ -324,25 +339,41 @@ fn every_bound_level_of_a_thousand_stacks_is_found_within_its_own_error() {
                 "stack {number}, {} levels\n{text}",
                 band.word()
             );
-            for (index, level) in found.iter().enumerate() {
-                let exact = level_ev(&pieces, index, floor, limit);
-                let miss = (upward_ev(band, level) - exact).abs();
-                worst = worst.max(miss / level.error_ev);
+            let exact: Vec<f64> = (0..found.len())
+                .map(|index| level_ev(&pieces, index, floor, limit))
+                .collect();
+            for cluster in clusters(&exact) {
+                let misses = cluster
+                    .clone()
+                    .map(|index| upward_ev(band, &found[index]) - exact[index]);
+                let allowed = cluster
+                    .clone()
+                    .map(|index| allowed_ev(&found[index]))
+                    .fold(0.0, f64::max);
+                let mean = misses.clone().sum::<f64>() / cluster.len() as f64;
+                // Members may be off by as much as they are apart: grids mix them their own way.
+                let width = exact[cluster.end - 1] - exact[cluster.start];
+                let worst = misses.map(f64::abs).fold(0.0, f64::max);
                 assert!(
-                    miss <= allowed_ev(level),
-                    "stack {number}, {} level {}: off by {miss:e} eV, estimate {:e}\n{text}",
-                    band.word(),
-                    index + 1,
-                    level.error_ev
+                    mean.abs() <= allowed && worst <= allowed + width,
+                    "stack {number}, {} levels {cluster:?}: mean off by {mean:e} eV, the worst by \
+                     {worst:e}, allowed {allowed:e}, width {width:e}\n{text}",
+                    band.word()
                 );
-                assert!(level.error_ev < 1e-5, "0.01 meV is promised");
-                compared += 1;
+                alone += usize::from(cluster.len() == 1);
+                compared += cluster.len();
             }
+            assert!(
+                found.iter().all(|level| level.error_ev < 1e-5),
+                "0.01 meV is promised"
+            );
         }
     }
-    assert!(compared > 10_000, "only {compared} levels");
+    assert!(
+        compared > 10_000 && alone > 5_000,
+        "only {compared} levels, {alone} of them alone"
+    );
     assert!(undecided < 10, "{undecided} ladders undecided");
-    assert!(worst > 0.0);
 }
 
 /// In a field the box decides how many states there are; those that the program lists must each be
@@ -362,9 +393,20 @@ fn levels_in_a_field_are_those_of_the_airy_functions() {
         for band in BANDS {
             let pieces = pieces(&layers, band, false, 1e-4 * field_kv_cm);
             let mut below = 0;
-            for level in bands.of(band) {
-                let energy = upward_ev(band, level);
-                let allowed = allowed_ev(level);
+            let energies: Vec<f64> = bands
+                .of(band)
+                .iter()
+                .map(|level| upward_ev(band, level))
+                .collect();
+            for (index, level) in bands.of(band).iter().enumerate() {
+                let energy = energies[index];
+                let width = clusters(&energies)
+                    .into_iter()
+                    .find(|cluster| cluster.contains(&index))
+                    .map_or(0.0, |cluster| {
+                        energies[cluster.end - 1] - energies[cluster.start]
+                    });
+                let allowed = allowed_ev(level) + width;
                 let around =
                     [energy - allowed, energy + allowed].map(|energy| count_below(&pieces, energy));
                 // Levels closer than the error share an interval.
@@ -446,6 +488,16 @@ fn levels_beside_a_grade_are_those_of_many_thin_slices() {
             })
             .collect()
     };
+    let poor_edge_ev = |band: Band| {
+        let edges = parameters
+            .crystal(&poor, 300.0, Offsets::TableUnbowedInGaAs)
+            .on(substrate_nm);
+        match band {
+            Band::Electron => edges.conduction_ev,
+            Band::Heavy => -edges.heavy_ev,
+            Band::Light => -edges.light_ev,
+        }
+    };
     let stack = stack(TEXT, &parameters);
     let profile = Profile::new(&stack, &parameters).expect("a well");
     let bands = single(&profile, true).expect("certified levels");
@@ -456,7 +508,13 @@ fn levels_beside_a_grade_are_those_of_many_thin_slices() {
             coarse[0].edge_ev + 0.1,
         );
         let found = bands.of(band);
-        assert!(found.len() > 2, "{} levels", band.word());
+        assert!(!found.is_empty(), "{} levels", band.word());
+        assert_eq!(
+            found.len(),
+            count_below(&fine, poor_edge_ev(band)),
+            "{} levels below the lower end of the grade",
+            band.word()
+        );
         for (index, level) in found.iter().enumerate() {
             let values = [&coarse, &fine].map(|slices| level_ev(slices, index, low, high));
             let exact = values[1] + (values[1] - values[0]) / 3.0;

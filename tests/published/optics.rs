@@ -157,7 +157,9 @@ impl Problem for PairProblem {
             }
             "te_gain_cm" => sharp.point(&self.occupation()?, photon_ev).te_gain_cm,
             "te_absorption_cm" => sharp.absorption(photon_ev, 0.0, 1)[0].0,
-            "absorbed_fraction" => sharp.absorption(photon_ev, 0.0, 1)[0].0 * 1e-7 * self.thickness_nm,
+            "absorbed_fraction" => {
+                sharp.absorption(photon_ev, 0.0, 1)[0].0 * 1e-7 * self.thickness_nm
+            }
             // Emission that goes with a mean gain of 1000 cm⁻¹.
             "spontaneous_per_1000_cm" => {
                 let point = sharp.point(&self.occupation()?, photon_ev);
