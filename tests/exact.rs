@@ -286,9 +286,9 @@ fn upward_ev(band: Band, level: &Level) -> f64 {
 
 /// The error that a level which is alone may have by its own estimate. The estimate is the size of
 /// the last correction of an extrapolation, which can vanish by accident: hence the factor, and a
-/// hundredth of the 0.01 meV that is promised.
+/// fiftieth of the 0.01 meV that is promised.
 fn allowed_ev(level: &Level) -> f64 {
-    4.0 * level.error_ev + 1e-7
+    4.0 * level.error_ev + 2e-7
 }
 
 /// Runs of neighbours so close that only sums over them mean anything, with the margin that the
