@@ -5,7 +5,7 @@
 //!
 //! ```text
 //! structure file -> stack -> profile -> subbands -> carriers -> spectra     (evaluation chains these, once)
-//! evaluation -> sheet -> cli
+//! evaluation -> design -> sheet -> cli
 //! ```
 //!
 //! Each module stands on a floor and uses only the floors below it; a test reads this table and
@@ -24,6 +24,7 @@
 //! | 5 | [`carriers`] | occupation and quasi-Fermi levels |
 //! | 6 | [`spectra`] | transitions, lineshape, gain, spontaneous emission, landmarks |
 //! | 7 | [`evaluation`] | the only chain of floors 3 to 6; the one record of results; remarks with advice |
+//! | 8 | [`design`] | judgement of a structure: all of it asks `evaluation`, none assembles physics |
 //! | 9 | [`sheet`] | numbers become text here: terminal tables, CSV, JSON, figures |
 //! | 10 | [`cli`] | words in, files and exit code out; the only place that prints |
 //!
@@ -35,7 +36,9 @@
 //! are given as electron energies (a valence edge is a maximum).
 
 pub mod carriers;
+pub mod cli;
 pub mod coherence;
+pub mod design;
 pub mod evaluation;
 pub mod materials;
 pub mod numerics;

@@ -1,2 +1,7 @@
 //! The program: words in, files and exit code out.
-fn main() {}
+
+use std::process::ExitCode;
+
+fn main() -> ExitCode {
+    stepwell::cli::run(std::env::args_os())
+}

@@ -69,6 +69,21 @@ pub struct Cells {
     pub tilt_ev: f64,
 }
 
+/// Band edges at one position, the field's potential included.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct EdgePoint {
+    /// Position above the substrate, nm.
+    pub position_nm: f64,
+    /// Index of the layer in the stack.
+    pub layer: usize,
+    /// Conduction edge, eV.
+    pub conduction_ev: f64,
+    /// Heavy-hole edge, eV.
+    pub heavy_ev: f64,
+    /// Light-hole edge, eV.
+    pub light_ev: f64,
+}
+
 /// Why a stack has no region to solve.
 #[derive(Clone, Debug, PartialEq, thiserror::Error)]
 pub enum Unsolvable {
@@ -283,6 +298,32 @@ impl<'a> Profile<'a> {
             }
         }
         cells
+    }
+
+    /// Band edges along the solved region, to be joined by straight lines: two points at every
+    /// boundary, one from either side, and a few more inside graded layers, whose edges bend.
+    #[must_use]
+    pub fn edge_points(&self) -> Vec<EdgePoint> {
+        const GRADE_POINTS: usize = 16;
+        let mut points = Vec::new();
+        for section in &self.sections {
+            let graded = section.shares.0 != section.shares.1;
+            let pieces = if graded { GRADE_POINTS } else { 1 };
+            for piece in 0..=pieces {
+                let within = piece as f64 / pieces as f64;
+                let position_nm = section.bottom_nm + within * (section.top_nm - section.bottom_nm);
+                let tilt_ev = self.slope_ev_nm * (position_nm - self.centre_nm);
+                let edges = self.at(section, within).edges;
+                points.push(EdgePoint {
+                    position_nm,
+                    layer: section.layer,
+                    conduction_ev: edges.conduction_ev + tilt_ev,
+                    heavy_ev: edges.heavy_ev + tilt_ev,
+                    light_ev: edges.light_ev + tilt_ev,
+                });
+            }
+        }
+        points
     }
 
     /// Both ends of every layer that lies (in part) in the solved region outside the outermost

@@ -1,6 +1,6 @@
 //! From mixed valence bands to transitions, hole states and the samples of a spectrum.
 
-use super::{LEAST_OVERLAP, Transition};
+use super::Transition;
 use crate::carriers::{NetDoping, Reservoir, Subband};
 use crate::spectra::{Dispersion, Line, Sample};
 use crate::structure::Stack;
@@ -28,21 +28,19 @@ pub(super) fn depth_ev(stack: &Stack, parabolas: &[Subband], doping: &NetDoping)
     ((fermi - edge).max(0.0) + 13.0 * kt).max(0.2)
 }
 
-/// Zone-centre transitions, components of a valence state summed.
+/// Zone-centre transitions by rising energy, components of a valence state summed.
 pub(super) fn transitions(electrons: &[Level], mixed: &MixedBands) -> Vec<Transition> {
     let mut transitions: Vec<Transition> = Vec::new();
     for (electron, (level, overlaps)) in electrons.iter().zip(&mixed.overlaps).enumerate() {
         for (state, (centre, &overlap)) in mixed.zone_centre.iter().zip(overlaps).enumerate() {
-            if overlap > LEAST_OVERLAP {
-                let energy_ev = level.energy_ev - centre.energy_ev;
-                transitions.push(Transition {
-                    electron: electron + 1,
-                    hole: format!("v{}", state + 1),
-                    energy_ev,
-                    wavelength_nm: wavelength_nm(energy_ev),
-                    overlap,
-                });
-            }
+            let energy_ev = level.energy_ev - centre.energy_ev;
+            transitions.push(Transition {
+                electron: electron + 1,
+                hole: format!("v{}", state + 1),
+                energy_ev,
+                wavelength_nm: wavelength_nm(energy_ev),
+                overlap,
+            });
         }
     }
     transitions.sort_by(|a, b| a.energy_ev.total_cmp(&b.energy_ev));

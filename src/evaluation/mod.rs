@@ -4,11 +4,13 @@
 //! [`Evaluation::spectrum`] go on from there. Writers read the records and compute no physics.
 
 mod budget;
+mod ladder;
 mod mixed;
 mod remark;
 mod spectrum;
 
 pub use budget::{Budget, budget};
+pub use ladder::{Group, Ladder, Rung, TransitionGroup};
 pub use remark::Remark;
 pub use spectrum::{
     Absorption, GainPeak, PhotoLuminescence, Run, Spectrum, Spontaneous, Transparency,
@@ -140,6 +142,7 @@ pub struct Evaluation<'a> {
     pub remarks: Vec<Remark>,
     emitter: Box<dyn Emitter>,
     pairs: Vec<Pair>,
+    every_pair: Vec<Transition>,
     index: Result<f64, Failure>,
     electrons: Vec<Subband>,
     holes: Holes,
@@ -175,10 +178,15 @@ impl<'a> Evaluation<'a> {
                 Some(crate::subbands::mixed(&profile, &bands, depth_ev)?)
             }
         };
-        let transitions = mixed.as_ref().map_or_else(
-            || transitions(&pairs),
+        let every_pair = mixed.as_ref().map_or_else(
+            || by_energy(&pairs),
             |mixed| mixed::transitions(&bands.electron, mixed),
         );
+        let transitions: Vec<Transition> = every_pair
+            .iter()
+            .filter(|transition| transition.overlap > LEAST_OVERLAP)
+            .cloned()
+            .collect();
         let first_ev = transitions.first().ok_or(Failure::NoTransition)?.energy_ev;
         let index = refractive_index(stack, parameters, first_ev);
         // Positions and widths do not hang on the index, which scales every spectrum as a whole.
@@ -210,6 +218,7 @@ impl<'a> Evaluation<'a> {
             remarks: Vec::new(),
             emitter,
             pairs,
+            every_pair,
             index,
             electrons,
             holes,
@@ -308,6 +317,24 @@ impl<'a> Evaluation<'a> {
         }
     }
 
+    /// Edge of the first transition with the gap shrinkage at a density, as a wavelength in vacuum,
+    /// nm.
+    #[must_use]
+    pub fn shrunk_first_transition_nm(&self, density_cm3: f64) -> f64 {
+        wavelength_nm(self.first_ev - self.shrinkage_ev(density_cm3))
+    }
+
+    /// Half width at half maximum of the line, eV.
+    #[must_use]
+    pub fn line_half_width_ev(&self) -> f64 {
+        self.emitter.line().half_width_ev
+    }
+
+    /// Every pair of levels, however small its overlap, by rising energy.
+    fn every_pair(&self) -> &[Transition] {
+        &self.every_pair
+    }
+
     fn low_injection(&self) -> Occupation {
         self.occupation(&self.filling(PL_DENSITY_CM3), 0.0)
     }
@@ -390,10 +417,10 @@ fn pairs(stack: &Stack, profile: &Profile<'_>, bands: &SingleBands) -> Vec<Pair>
     pairs
 }
 
-fn transitions(pairs: &[Pair]) -> Vec<Transition> {
+/// The transitions of all pairs, by rising energy.
+fn by_energy(pairs: &[Pair]) -> Vec<Transition> {
     let mut transitions: Vec<Transition> = pairs
         .iter()
-        .filter(|pair| pair.overlap > LEAST_OVERLAP)
         .map(|pair| Transition {
             electron: pair.electron + 1,
             hole: match pair.kind {

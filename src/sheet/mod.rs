@@ -1,3 +1,27 @@
-//! Numbers become text here, and nowhere else.
+//! Numbers become text here, and nowhere else: pages for a terminal, JSON, comma-separated values.
+//!
+//! Writers read the records of `evaluation` and `design` and compute no physics.
 
+pub mod csv;
 pub mod figure;
+mod findings;
+pub mod json;
+mod levels;
+mod materials;
+mod matrix;
+mod number;
+mod page;
+mod remark;
+mod spectrum;
+mod stamp;
+mod starting;
+mod table;
+
+pub use findings::findings;
+pub use levels::levels;
+pub use materials::{descriptions, families};
+pub use matrix::matrix_market;
+pub use remark::{complaint, remark};
+pub use spectrum::spectrum;
+pub use stamp::{Stamp, Switches, sha256};
+pub use starting::starting_structures;

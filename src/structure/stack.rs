@@ -92,6 +92,25 @@ impl Role {
             Self::Cap => "cap",
         }
     }
+
+    /// The part it plays, in a few words.
+    #[must_use]
+    pub fn meaning(self) -> &'static str {
+        match self {
+            Self::Buffer => "starts the epitaxy on the substrate",
+            Self::Cladding => "holds the light in, and carries current",
+            Self::Confinement => {
+                "between cladding and wells: guides the light, holds the carriers near"
+            }
+            Self::Barrier => "between the wells and next to them",
+            Self::Well => "where carriers are meant to be; densities are per volume of the wells",
+            Self::Step => "next to a well: part of its potential, not of its thickness",
+            Self::Spacer => "keeps dopants or interfaces apart",
+            Self::Stop => "keeps electrons, or an etch, from going further",
+            Self::Contact => "carries the metal",
+            Self::Cap => "protects the surface; often removed",
+        }
+    }
 }
 
 /// Dopants of one layer.

@@ -4,7 +4,7 @@ mod mixed;
 mod single;
 
 pub use mixed::{Dipole, MixedBands, Slice, ZoneCentre, mixed};
-pub use single::{Band, Level, Overlaps, SingleBands, single};
+pub use single::{Band, Hamiltonian, Level, Overlaps, SingleBands, hamiltonian, single};
 
 use crate::profile::{Cells, Profile};
 

@@ -102,12 +102,12 @@ impl Level {
 /// Levels of the three bands on common nodes.
 #[derive(Clone, Debug, Default, PartialEq)]
 pub struct SingleBands {
+    /// How often the coarsest step was halved to make the finest grid.
+    pub halvings: u32,
     /// Nodes of the envelopes.
     pub nodes: Nodes,
     /// Nodes of twice the step.
     pub(super) coarser: Nodes,
-    /// How often the coarsest step was halved for `nodes`.
-    pub(super) halvings: u32,
     /// Electron levels, rising.
     pub electron: Vec<Level>,
     /// Heavy-hole levels, from the band edge down.
@@ -213,12 +213,12 @@ pub fn single(profile: &Profile<'_>, nonparabolic: bool) -> Result<SingleBands, 
             .collect();
         let ladder = |band| levels(profile, &grids, band, nonparabolic);
         let bands = SingleBands {
+            halvings: finest,
             electron: ladder(Band::Electron)?,
             heavy: ladder(Band::Heavy)?,
             light: ladder(Band::Light)?,
             nodes: Nodes::of(profile, &grids[2]),
             coarser: Nodes::of(profile, &grids[1]),
-            halvings: finest,
         };
         let settled = [&bands.electron, &bands.heavy, &bands.light]
             .into_iter()
@@ -230,6 +230,49 @@ pub fn single(profile: &Profile<'_>, nonparabolic: bool) -> Result<SingleBands, 
             return Ok(bands);
         }
         finest += 1;
+    }
+}
+
+/// The matrix of one band on the finest grid that [`single`] used: symmetric, of three diagonals,
+/// its eigenvalues energies in eV (of a hole too: an electron's energy, so that its levels are the
+/// highest eigenvalues).
+#[derive(Clone, Debug, PartialEq)]
+pub struct Hamiltonian {
+    /// Main diagonal, eV, one entry an inner node.
+    pub diagonal: Vec<f64>,
+    /// Second diagonal, eV, one entry fewer.
+    pub second: Vec<f64>,
+    /// The energy at which masses that depend on energy were taken: that of level 1, eV. `None`
+    /// where they do not.
+    pub masses_at_ev: Option<f64>,
+}
+
+/// The matrix W^−½ K W^−½ of a band, for a look from outside: the problem K φ = E W φ with W the
+/// interval lengths of the nodes, made symmetric.
+///
+/// With masses that depend on energy the problem is not linear: the matrix at the energy of level 1
+/// has that level as an eigenvalue, up to the error of the grid, and no other.
+#[must_use]
+pub fn hamiltonian(
+    profile: &Profile<'_>,
+    bands: &SingleBands,
+    band: Band,
+    nonparabolic: bool,
+) -> Hamiltonian {
+    let chain = chain(
+        &profile.grid(COARSEST_STEP_NM, bands.halvings),
+        band,
+        nonparabolic,
+    );
+    let softened = chain.runs().iter().any(|run| run.softening > 0.0);
+    let first_ev = bands.of(band).first().map(|level| level.energy_ev);
+    let masses_at_ev = first_ev.filter(|_| softened);
+    let (diagonal, second) = chain.matrix(band.sign() * masses_at_ev.unwrap_or(0.0));
+    let signed = |entries: Vec<f64>| entries.into_iter().map(|it| band.sign() * it).collect();
+    Hamiltonian {
+        diagonal: signed(diagonal),
+        second: signed(second),
+        masses_at_ev,
     }
 }
 

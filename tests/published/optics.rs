@@ -153,12 +153,12 @@ impl Problem for PairProblem {
             "hole_fermi_ev" => self.fermi_ev(self.hole_mass, self.hole_fermi_ev)?,
             "inversion" => {
                 let gain = sharp.point(&self.occupation()?, photon_ev).te_gain_cm;
-                gain / sharp.absorption(photon_ev, 0.0, 1)[0].0
+                gain / sharp.absorption(photon_ev, 1e-3, 1)[0].0
             }
             "te_gain_cm" => sharp.point(&self.occupation()?, photon_ev).te_gain_cm,
-            "te_absorption_cm" => sharp.absorption(photon_ev, 0.0, 1)[0].0,
+            "te_absorption_cm" => sharp.absorption(photon_ev, 1e-3, 1)[0].0,
             "absorbed_fraction" => {
-                sharp.absorption(photon_ev, 0.0, 1)[0].0 * 1e-7 * self.thickness_nm
+                sharp.absorption(photon_ev, 1e-3, 1)[0].0 * 1e-7 * self.thickness_nm
             }
             // Emission that goes with a mean gain of 1000 cm⁻¹.
             "spontaneous_per_1000_cm" => {

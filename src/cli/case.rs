@@ -1,0 +1,159 @@
+//! The files that a command reads.
+
+use super::complaint::Complaint;
+use super::outlet::Outlet;
+use super::shipped;
+use crate::evaluation;
+use crate::materials::{Offsets, Parameters};
+use crate::sheet::{self, Stamp};
+use crate::source::{LARGEST_TEXT_BYTES, Place, nearest, text};
+use crate::structure::{self, Bands, Overrides, Reading};
+use std::fs::File;
+use std::io::{self, ErrorKind, Read as _};
+use std::path::Path;
+
+/// A text with the name that messages call it by.
+pub(super) struct Text {
+    pub(super) name: String,
+    pub(super) text: String,
+    sha256: String,
+}
+
+impl Text {
+    /// Reads a file, or standard input for `-`.
+    pub(super) fn read(path: &Path) -> Result<Self, Complaint> {
+        let from_standard_input = path.as_os_str() == "-";
+        let name = if from_standard_input {
+            "standard input".to_owned()
+        } else {
+            path.display().to_string()
+        };
+        // One byte more than is read: enough to see that there are too many.
+        let most = LARGEST_TEXT_BYTES as u64 + 1;
+        let mut bytes = Vec::new();
+        let read = if from_standard_input {
+            io::stdin().lock().take(most).read_to_end(&mut bytes)
+        } else {
+            File::open(path).and_then(|file| file.take(most).read_to_end(&mut bytes))
+        };
+        read.map_err(|error| unreadable(path, &name, &error))?;
+        let text = text(&bytes)
+            .map_err(|error| Complaint::input(format!("{name}: {error}")))?
+            .to_owned();
+        Ok(Self {
+            name,
+            text,
+            sha256: sheet::sha256(&bytes),
+        })
+    }
+}
+
+fn unreadable(path: &Path, name: &str, error: &io::Error) -> Complaint {
+    if path.is_dir() {
+        return Complaint::input(format!("`{name}` is a folder"))
+            .with_remedy("give a structure file in it");
+    }
+    match error.kind() {
+        ErrorKind::NotFound => {
+            let complaint = Complaint::input(format!("there is no file `{name}`"));
+            let stem = path.file_stem().and_then(|stem| stem.to_str());
+            match stem.and_then(|stem| nearest(stem, shipped::names())) {
+                Some(shipped) => complaint.with_remedy(format!(
+                    "write the shipped structure to one: stepwell new {shipped} > {shipped}.toml"
+                )),
+                None => complaint.with_remedy("`stepwell new` lists structures to start from"),
+            }
+        }
+        ErrorKind::PermissionDenied => {
+            Complaint::input(format!("`{name}` can't be read: it is not allowed"))
+        }
+        _ => Complaint::input(format!("`{name}` can't be read: {error}")),
+    }
+}
+
+/// The shipped parameters with a file laid over them, if one is given.
+pub(super) fn parameters(overlay: Option<&Path>, outlet: &Outlet) -> Result<Parameters, Complaint> {
+    let Some(path) = overlay else {
+        return Ok(Parameters::shipped());
+    };
+    let overlay = Text::read(path)?;
+    Parameters::shipped()
+        .with_overlay(&overlay.text, &overlay.name)
+        .map_err(|faults| {
+            Complaint::faults(&faults, &overlay.name, &overlay.text, outlet.error_colour())
+        })
+}
+
+/// A structure file that was accepted, with the parameters it was read with.
+pub(super) struct Case {
+    source: Text,
+    pub(super) parameters: Parameters,
+    pub(super) reading: Reading,
+}
+
+impl Case {
+    /// Reads a structure file.
+    pub(super) fn read(
+        path: &Path,
+        overlay: Option<&Path>,
+        overrides: &Overrides,
+        outlet: &Outlet,
+    ) -> Result<Self, Complaint> {
+        let parameters = parameters(overlay, outlet)?;
+        let source = Text::read(path)?;
+        let reading = structure::read(&source.text, &parameters, overrides).map_err(|faults| {
+            Complaint::faults(&faults, &source.name, &source.text, outlet.error_colour())
+        })?;
+        // A result must not carry a stamp that it does not keep.
+        if reading.stack.model.bands == Bands::Mixed {
+            return Err(Complaint::input("mixed valence bands are not computed yet")
+                .with_remedy("bands = \"single\" in [model], or --bands single"));
+        }
+        Ok(Self {
+            source,
+            parameters,
+            reading,
+        })
+    }
+
+    /// What results hang on.
+    pub(super) fn stamp(&self, offsets: Option<Offsets>) -> Stamp {
+        Stamp::new(
+            &self.reading.stack,
+            &self.parameters,
+            offsets,
+            &self.source.sha256,
+        )
+    }
+
+    /// Writes the remarks on the file to standard error.
+    pub(super) fn remark_on_file(&self, outlet: &Outlet) {
+        for remark in &self.reading.remarks {
+            let line = remark
+                .span()
+                .map(|span| Place::of(&self.source.text, span.start).line);
+            let place = line.map(|line| (self.source.name.as_str(), line));
+            outlet.remark(&sheet::remark(
+                &remark.message(),
+                Some(&remark.advice()),
+                place,
+                outlet.error_colour(),
+            ));
+        }
+    }
+}
+
+/// Writes remarks on results to standard error.
+pub(super) fn remark_on_results<'a>(
+    remarks: impl IntoIterator<Item = &'a evaluation::Remark>,
+    outlet: &Outlet,
+) {
+    for remark in remarks {
+        outlet.remark(&sheet::remark(
+            &remark.message(),
+            remark.advice().as_deref(),
+            None,
+            outlet.error_colour(),
+        ));
+    }
+}

@@ -1,0 +1,288 @@
+//! The command line as it is written. Nothing is judged here beyond what is a flag and what is not.
+
+use clap::{Args, Parser, Subcommand};
+use std::path::PathBuf;
+
+/// Width of help texts, columns: the same everywhere.
+const COLUMNS: usize = 80;
+
+/// Quantum-well active regions from one plain-text structure file: levels, gain and wavelength.
+///
+/// A structure file names the layers of an epitaxial stack from the substrate up, each with its
+/// material, its thickness and the part it plays. From it come the levels of the wells, the
+/// wavelengths they emit, and their gain against photon energy.
+#[derive(Debug, Parser)]
+#[command(name = "stepwell", version, term_width = COLUMNS, after_help = ROOT_EXAMPLES, after_long_help = ROOT_LONG)]
+#[command(disable_help_subcommand = true)]
+pub(super) struct Flags {
+    #[command(subcommand)]
+    pub(super) command: Option<Command>,
+}
+
+#[derive(Debug, Subcommand)]
+pub(super) enum Command {
+    /// Subbands, transitions, wavelengths, and the budget from bulk gap to transition
+    #[command(after_help = LEVELS_EXAMPLES, term_width = COLUMNS)]
+    Levels(Levels),
+    /// Gain, absorption, spontaneous emission and photoluminescence by carrier density
+    #[command(after_help = SPECTRUM_EXAMPLES, term_width = COLUMNS)]
+    Spectrum(Spectrum),
+    /// A structure against physics: barriers, strain, coupling, doping, odd numbers
+    #[command(after_help = CHECK_EXAMPLES, term_width = COLUMNS)]
+    Check(Check),
+    /// Parameters with their sources: all families, one alloy, or all that a file uses
+    #[command(after_help = MATERIALS_EXAMPLES, term_width = COLUMNS)]
+    Materials(Materials),
+    /// Starting structures: a list, or one of them as a file with comments
+    #[command(after_help = NEW_EXAMPLES, term_width = COLUMNS)]
+    New {
+        /// Name of the structure to write to standard output; none lists them
+        #[arg(value_name = "NAME")]
+        name: Option<String>,
+    },
+    /// JSON Schema of the structure file, for editors that complete keys
+    #[command(term_width = COLUMNS)]
+    Schema,
+    /// Completion script for a shell
+    #[command(term_width = COLUMNS)]
+    Completions {
+        /// The shell
+        #[arg(value_enum)]
+        shell: clap_complete::Shell,
+    },
+    /// Manual page with every key of the structure file: read it with `man -l -`
+    #[command(term_width = COLUMNS)]
+    Manual,
+}
+
+#[derive(Debug, Args)]
+pub(super) struct Levels {
+    #[command(flatten)]
+    pub(super) file: StructureFile,
+    #[command(flatten)]
+    pub(super) conditions: Conditions,
+    #[command(flatten)]
+    pub(super) output: Output,
+    /// Also write the matrix whose eigenvalues are the levels, as a Matrix Market file
+    #[arg(long, value_name = "FILE.mtx")]
+    pub(super) matrix: Option<PathBuf>,
+    /// The band of the matrix: electron, heavy or light
+    #[arg(long, value_name = "BAND", requires = "matrix")]
+    pub(super) matrix_of: Option<String>,
+    /// Draw band edges and envelopes
+    #[arg(long, value_name = "PATH.svg")]
+    pub(super) figure: Option<PathBuf>,
+}
+
+#[derive(Debug, Args)]
+pub(super) struct Spectrum {
+    #[command(flatten)]
+    pub(super) file: StructureFile,
+    #[command(flatten)]
+    pub(super) conditions: Conditions,
+    #[command(flatten)]
+    pub(super) output: Output,
+    /// Draw gain against photon energy, and peak gain against density
+    #[arg(long, value_name = "PATH.svg")]
+    pub(super) figure: Option<PathBuf>,
+}
+
+#[derive(Debug, Args)]
+pub(super) struct Check {
+    #[command(flatten)]
+    pub(super) file: StructureFile,
+    #[command(flatten)]
+    pub(super) conditions: Conditions,
+    #[command(flatten)]
+    pub(super) output: Output,
+}
+
+#[derive(Debug, Args)]
+pub(super) struct Materials {
+    /// Formula of a material, elements in any order; none lists the families
+    #[arg(value_name = "FORMULA", conflicts_with = "used_by")]
+    pub(super) formula: Option<String>,
+    /// The substrate that it grows on: strain and band edges are then shown
+    #[arg(long, value_name = "FORMULA", requires = "formula")]
+    pub(super) on: Option<String>,
+    /// Every material of a structure file (`-` reads standard input)
+    #[arg(long, value_name = "FILE")]
+    pub(super) used_by: Option<PathBuf>,
+    /// Temperature: 85C or 358.15K
+    #[arg(long, value_name = "TEMPERATURE", allow_hyphen_values = true)]
+    pub(super) at: Option<String>,
+    /// Lay the numbers of a file over the shipped parameters
+    #[arg(long, value_name = "FILE")]
+    pub(super) materials: Option<PathBuf>,
+    #[command(flatten)]
+    pub(super) output: Output,
+}
+
+#[derive(Debug, Args)]
+pub(super) struct StructureFile {
+    /// Structure file (TOML); `-` reads standard input
+    #[arg(value_name = "FILE")]
+    pub(super) path: PathBuf,
+    /// Lay the numbers of a file over the shipped parameters
+    #[arg(long, value_name = "FILE")]
+    pub(super) materials: Option<PathBuf>,
+}
+
+/// Conditions that go before those of the file.
+#[derive(Debug, Args)]
+pub(super) struct Conditions {
+    /// Temperature: 85C or 358.15K
+    #[arg(long, value_name = "TEMPERATURE", allow_hyphen_values = true)]
+    pub(super) at: Option<String>,
+    /// Carrier density per volume of the wells, cm^-3: 3e18, or a list 1e18,2e18
+    #[arg(long, value_name = "DENSITY", allow_hyphen_values = true)]
+    pub(super) density: Vec<String>,
+    /// Valence bands: mixed, or single (heavy and light holes each by itself)
+    #[arg(long, value_name = "BANDS")]
+    pub(super) bands: Option<String>,
+}
+
+/// Where results go.
+#[derive(Debug, Args)]
+pub(super) struct Output {
+    /// Results as one JSON document in place of the tables
+    #[arg(long)]
+    pub(super) json: bool,
+    /// Write CSV: a file takes the principal table, a folder (PATH/) every table
+    #[arg(long, value_name = "PATH")]
+    pub(super) csv: Option<PathBuf>,
+    /// Leave out the remarks on standard error
+    #[arg(long, short)]
+    pub(super) quiet: bool,
+    /// Write over files that exist
+    #[arg(long)]
+    pub(super) force: bool,
+}
+
+const ROOT_EXAMPLES: &str = "\
+Begin with:
+  stepwell new                                  what structures there are
+  stepwell new estuary-1310 > my.toml           one of them, with its comments
+  stepwell levels my.toml                       its levels and wavelengths
+
+`stepwell COMMAND --help` shows the options of a command and examples;
+`stepwell --help` the roles of layers, units and exit codes.";
+
+const ROOT_LONG: &str = "\
+Begin with:
+  stepwell new                                  what structures there are
+  stepwell new estuary-1310 > my.toml           one of them, with its comments
+  stepwell levels my.toml                       its levels and wavelengths
+  stepwell spectrum my.toml --at 85C            its gain when hot
+  stepwell check my.toml                        what may be wrong with it
+
+Roles of layers:
+  buffer       starts the epitaxy on the substrate
+  cladding     holds the light in, and carries current
+  confinement  between cladding and wells: guides the light, holds the carriers
+               near
+  barrier      between the wells and next to them
+  well         where carriers are meant to be; densities are per volume of the
+               wells
+  step         next to a well: part of its potential, not of its thickness
+  spacer       keeps dopants or interfaces apart
+  stop         keeps electrons, or an etch, from going further
+  contact      carries the metal
+  cap          protects the surface; often removed
+
+Units:
+  thickness nm · energy eV or meV as its head says · wavelength nm in vacuum
+  density cm^-3, per volume of the wells · gain cm^-1 · current density A/cm^2
+  temperature 25C or 298.15K · mass in free-electron masses (m0)
+  Strain is said by its sense, compressive or tensile, and never by a sign.
+
+Results go to standard output, remarks to standard error. An existing file is
+never written over without --force. NO_COLOR switches colours off.
+
+Exit code:
+  0 done   1 the computation failed   2 the command line is wrong
+  3 the input is wrong   4 no answer inside the limits
+  5 checked and found outside
+
+`stepwell manual | man -l -` shows all this with every key of the file.";
+
+const LEVELS_EXAMPLES: &str = "\
+Examples:
+  stepwell levels my.toml
+  stepwell levels my.toml --at 85C --json > hot.json
+  stepwell levels my.toml --csv tables/
+  stepwell levels my.toml --matrix electron.mtx
+
+Energies are in eV on one scale, holes as electron energies; wavelengths in nm
+in vacuum. Levels and transitions are without gap shrinkage; the gain peak is
+shown with it and without.
+CSV files begin with a line behind # that says what the numbers hang on.";
+
+const SPECTRUM_EXAMPLES: &str = "\
+Examples:
+  stepwell spectrum my.toml
+  stepwell spectrum my.toml --at 85C --density 2e18,3e18,4e18
+  stepwell spectrum my.toml --csv gain.csv
+  stepwell new estuary-980 | stepwell spectrum -
+
+Densities are of electron-hole pairs per volume of the wells, cm^-3; gain is
+that of the well material in cm^-1, before any confinement factor.
+CSV files begin with a line behind # that says what the numbers hang on.";
+
+const CHECK_EXAMPLES: &str = "\
+Examples:
+  stepwell check my.toml
+  stepwell check my.toml --at 85C || echo look at it
+
+Each finding has a code and stands ok (inside its limit), stated (a figure
+without a limit), look (worth a look) or outside. Exit code 5 if anything is
+outside.";
+
+const MATERIALS_EXAMPLES: &str = "\
+Examples:
+  stepwell materials
+  stepwell materials In0.2Ga0.8As --on GaAs --at 25C
+  stepwell materials --used-by my.toml";
+
+const NEW_EXAMPLES: &str = "\
+Examples:
+  stepwell new
+  stepwell new estuary-1310 > my.toml";
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+    use crate::structure::Role;
+    use clap::CommandFactory as _;
+
+    #[test]
+    fn the_flags_make_a_command_line() {
+        Flags::command().debug_assert();
+    }
+
+    #[test]
+    fn help_explains_every_role_in_the_words_of_the_program() {
+        let help = ROOT_LONG.split_whitespace().collect::<Vec<_>>().join(" ");
+        for role in Role::ALL {
+            let entry = format!("{} {}", role.word(), role.meaning());
+            assert!(help.contains(&entry), "{entry}");
+        }
+    }
+
+    #[test]
+    fn help_fits_its_width() {
+        for text in [
+            ROOT_EXAMPLES,
+            ROOT_LONG,
+            LEVELS_EXAMPLES,
+            SPECTRUM_EXAMPLES,
+            CHECK_EXAMPLES,
+            MATERIALS_EXAMPLES,
+            NEW_EXAMPLES,
+        ] {
+            for line in text.lines() {
+                assert!(line.chars().count() <= COLUMNS, "{line}");
+            }
+        }
+    }
+}

@@ -1,0 +1,181 @@
+//! Standard output, standard error, and files.
+
+use super::Ending;
+use super::complaint::Complaint;
+use crate::source::Colour;
+use std::fs;
+use std::io::{self, ErrorKind, IsTerminal as _, Write as _};
+use std::path::{Path, PathBuf};
+
+/// Where texts go.
+#[derive(Debug)]
+pub(super) struct Outlet {
+    /// Of standard output.
+    colour: Colour,
+    /// Of standard error.
+    error_colour: Colour,
+}
+
+impl Outlet {
+    /// Standard output and standard error of the process: in colour on a terminal, unless NO_COLOR
+    /// is set and not empty.
+    pub(super) fn of_process() -> Self {
+        let wanted = std::env::var_os("NO_COLOR").is_none_or(|value| value.is_empty())
+            && std::env::var_os("TERM").is_none_or(|term| term != "dumb");
+        let colour = |is_terminal: bool| {
+            if wanted && is_terminal {
+                Colour::Always
+            } else {
+                Colour::Never
+            }
+        };
+        Self {
+            colour: colour(io::stdout().is_terminal()),
+            error_colour: colour(io::stderr().is_terminal()),
+        }
+    }
+
+    /// Colour of results.
+    pub(super) fn colour(&self) -> Colour {
+        self.colour
+    }
+
+    /// Colour of remarks and complaints.
+    pub(super) fn error_colour(&self) -> Colour {
+        self.error_colour
+    }
+
+    pub(super) fn has_colour(&self) -> bool {
+        self.colour == Colour::Always
+    }
+
+    pub(super) fn has_error_colour(&self) -> bool {
+        self.error_colour == Colour::Always
+    }
+
+    /// Writes a result. A reader that has gone away is no fault.
+    pub(super) fn print(&self, text: &str) -> Result<(), Complaint> {
+        let mut out = io::stdout().lock();
+        let written = out.write_all(text.as_bytes()).and_then(|()| out.flush());
+        match written {
+            Err(error) if error.kind() != ErrorKind::BrokenPipe => Err(Complaint::new(
+                Ending::Failed,
+                format!("standard output can't be written: {error}"),
+            )),
+            _ => Ok(()),
+        }
+    }
+
+    /// Writes a remark to standard error; nobody has to read it.
+    pub(super) fn remark(&self, text: &str) {
+        let _ = io::stderr().lock().write_all(text.as_bytes());
+    }
+
+    /// Writes a complaint to standard error.
+    pub(super) fn complain(&self, complaint: &Complaint) {
+        self.remark(&complaint.text(self.error_colour));
+    }
+}
+
+/// Files that a run will write, looked at before the work and written after it.
+#[derive(Debug, Default)]
+pub(super) struct Files {
+    force: bool,
+    paths: Vec<PathBuf>,
+}
+
+impl Files {
+    pub(super) fn new(force: bool) -> Self {
+        Self {
+            force,
+            paths: Vec::new(),
+        }
+    }
+
+    /// Announces a file, so that one that is in the way is complained of before any work.
+    pub(super) fn announce(&mut self, path: &Path, flag: &str) -> Result<(), Complaint> {
+        if path.as_os_str().is_empty() {
+            return Err(Complaint::usage(format!("{flag} has an empty path"))
+                .with_remedy("give the name of a file"));
+        }
+        if path.is_dir() {
+            return Err(
+                Complaint::usage(format!("{flag}: `{}` is a folder", path.display()))
+                    .with_remedy("give the name of a file in it"),
+            );
+        }
+        if self.paths.iter().any(|known| known == path) {
+            return Err(
+                Complaint::usage(format!("`{}` is asked for twice", path.display()))
+                    .with_remedy("give each file a name of its own"),
+            );
+        }
+        if !self.force && is_in_the_way(path) {
+            return Err(in_the_way(path));
+        }
+        self.paths.push(path.to_owned());
+        Ok(())
+    }
+
+    /// Writes a file: it appears whole or not at all, and never in place of another without
+    /// `--force`.
+    pub(super) fn write(&self, path: &Path, text: &str) -> Result<(), Complaint> {
+        let failed = |error: io::Error| unwritable(path, &error);
+        // What is no plain file (a pipe, a terminal) can only be written to, and holds nothing.
+        if fs::metadata(path).is_ok_and(|it| !it.is_file()) {
+            return fs::write(path, text).map_err(failed);
+        }
+        // A link stays what it is: the file behind it is replaced.
+        let path = fs::canonicalize(path).unwrap_or_else(|_| path.to_owned());
+        let folder = match path.parent() {
+            Some(folder) if !folder.as_os_str().is_empty() => folder,
+            _ => Path::new("."),
+        };
+        let mut builder = tempfile::Builder::new();
+        #[cfg(unix)]
+        let builder = {
+            use std::os::unix::fs::PermissionsExt as _;
+            builder.permissions(fs::Permissions::from_mode(0o666))
+        };
+        let mut file = builder.tempfile_in(folder).map_err(failed)?;
+        file.write_all(text.as_bytes()).map_err(failed)?;
+        let persisted = if self.force {
+            file.persist(&path)
+        } else {
+            file.persist_noclobber(&path)
+        };
+        match persisted {
+            Ok(_) => Ok(()),
+            Err(error) if error.error.kind() == ErrorKind::AlreadyExists => Err(in_the_way(&path)),
+            Err(error) => Err(failed(error.error)),
+        }
+    }
+}
+
+fn is_in_the_way(path: &Path) -> bool {
+    match fs::symlink_metadata(path) {
+        Ok(found) if found.is_symlink() => fs::metadata(path).is_ok_and(|it| it.is_file()),
+        Ok(found) => found.is_file(),
+        Err(_) => false,
+    }
+}
+
+fn in_the_way(path: &Path) -> Complaint {
+    Complaint::usage(format!("`{}` exists and is left as it is", path.display()))
+        .with_remedy("--force writes over it")
+}
+
+fn unwritable(path: &Path, error: &io::Error) -> Complaint {
+    let complaint = |message: String| Complaint::new(Ending::Failed, message);
+    let shown = path.display();
+    match error.kind() {
+        ErrorKind::NotFound => complaint(format!(
+            "`{shown}` can't be written: there is no such folder"
+        ))
+        .with_remedy("make the folder first"),
+        ErrorKind::PermissionDenied => {
+            complaint(format!("`{shown}` can't be written: it is not allowed"))
+        }
+        _ => complaint(format!("`{shown}` can't be written: {error}")),
+    }
+}

@@ -1,0 +1,525 @@
+//! A structure against physics: does it confine, how strained is it, what is unusual about it.
+
+use crate::evaluation::{self, Evaluation, Failure};
+use crate::materials::{Parameters, Sense};
+use crate::profile::{Profile, Strained};
+use crate::structure::{Remark, Role, Stack};
+use crate::subbands::Band;
+use crate::units::thermal_ev;
+
+/// Limits that findings are held against.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct Limits {
+    /// Least height of the barriers above the lowest level, in kT at the working temperature.
+    ///
+    /// Default 4 (common practice: at 4 kT about one carrier in fifty has the energy to leave).
+    pub barrier_kt_min: f64,
+    /// Widest spread of the lowest level over equal wells that is not remarked, eV.
+    ///
+    /// Default 2 meV (common practice: well below the width of any line at room temperature).
+    pub coupling_ev_max: f64,
+}
+
+impl Default for Limits {
+    fn default() -> Self {
+        Self {
+            barrier_kt_min: 4.0,
+            coupling_ev_max: 0.002,
+        }
+    }
+}
+
+/// How a finding stands.
+#[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord)]
+pub enum Standing {
+    /// Inside its limit.
+    Within,
+    /// A figure without a limit to hold it against.
+    Stated,
+    /// No limit is broken, and a look is worth while.
+    Noted,
+    /// Outside its limit.
+    Outside,
+}
+
+impl Standing {
+    /// The word for it.
+    #[must_use]
+    pub fn word(self) -> &'static str {
+        match self {
+            Self::Within => "ok",
+            Self::Stated => "stated",
+            Self::Noted => "look",
+            Self::Outside => "outside",
+        }
+    }
+}
+
+/// Carriers of one sign.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum Carrier {
+    /// Electrons.
+    Electrons,
+    /// Holes, heavy and light.
+    Holes,
+}
+
+impl Carrier {
+    /// The word for them.
+    #[must_use]
+    pub fn word(self) -> &'static str {
+        match self {
+            Self::Electrons => "electrons",
+            Self::Holes => "holes",
+        }
+    }
+}
+
+/// A number of a finding, and what it is held against.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct Measure {
+    /// What it is, with its unit at the end.
+    pub name: &'static str,
+    /// The number.
+    pub value: f64,
+    /// The limit, where there is one.
+    pub limit: Option<f64>,
+}
+
+/// What a check found.
+#[derive(Clone, Debug, PartialEq)]
+#[non_exhaustive]
+pub enum Finding {
+    /// The reader of the file remarked on something.
+    File(Remark),
+    /// No level, or no transition: there is nothing to build on.
+    Unsolved(Failure),
+    /// Wells are direct by a margin against the X or L valleys.
+    DirectWell {
+        /// The well's formula.
+        formula: String,
+        /// The nearest valley, `X` or `L`.
+        valley: &'static str,
+        /// How far it lies above Γ, eV.
+        margin_ev: f64,
+        /// kT, eV.
+        thermal_ev: f64,
+        /// Margin wanted, in kT.
+        least_kt: f64,
+    },
+    /// Height of the barriers above the lowest level.
+    Barrier {
+        /// Whose.
+        carrier: Carrier,
+        /// From the lowest level to the lowest edge outside the wells, eV.
+        height_ev: f64,
+        /// kT, eV.
+        thermal_ev: f64,
+        /// Height wanted, in kT.
+        least_kt: f64,
+    },
+    /// A strained layer.
+    Strain {
+        /// Its role.
+        role: Role,
+        /// Its formula; of a graded layer that of its more strained end.
+        formula: String,
+        /// Strain, %, at least zero.
+        percent: f64,
+        /// Sense of the strain.
+        sense: Sense,
+        /// Thickness of one such layer, nm.
+        thickness_nm: f64,
+        /// How many such layers there are.
+        count: usize,
+    },
+    /// Spread of the lowest level over equal wells.
+    Coupling {
+        /// Whose level.
+        carrier: Carrier,
+        /// From the first to the last, eV.
+        spread_ev: f64,
+        /// Widest that is not remarked, eV.
+        most_ev: f64,
+    },
+    /// Which hole lies nearest the gap.
+    GroundHole {
+        /// Whether it is a light hole.
+        light: bool,
+        /// Distance to the first hole of the other kind, eV; `None` if that is not bound.
+        split_ev: Option<f64>,
+    },
+    /// A remark on the levels.
+    Levels(evaluation::Remark),
+    /// Dopants in the wells and the barriers next to them.
+    Doping {
+        /// Donors less acceptors, per volume of the wells, cm⁻³.
+        net_cm3: f64,
+        /// From the outermost well to the nearest layer with acceptors, nm.
+        acceptors_setback_nm: Option<f64>,
+        /// The same for donors.
+        donors_setback_nm: Option<f64>,
+    },
+}
+
+/// Checks a structure.
+///
+/// # Arguments
+///
+/// * `remarks` – what the reader of the file remarked
+#[must_use]
+pub fn check(
+    stack: &Stack,
+    parameters: &Parameters,
+    remarks: &[Remark],
+    limits: &Limits,
+) -> Vec<Finding> {
+    let mut findings: Vec<Finding> = remarks.iter().cloned().map(Finding::File).collect();
+    if let Ok(profile) = Profile::new(stack, parameters) {
+        findings.extend(direct_wells(stack, &profile, limits));
+        findings.extend(strained_layers(stack, &profile));
+    }
+    match Evaluation::new(stack, parameters) {
+        Err(failure) => findings.push(Finding::Unsolved(failure)),
+        Ok(evaluation) => {
+            findings.extend(barriers(&evaluation, limits));
+            findings.extend(ground_hole(&evaluation));
+            findings.extend(coupling(&evaluation, limits));
+            // The ground hole is a finding of its own.
+            let of_levels = evaluation
+                .remarks
+                .iter()
+                .filter(|remark| **remark != evaluation::Remark::LightHoleFirst)
+                .cloned();
+            findings.extend(of_levels.map(Finding::Levels));
+            findings.push(doping(&evaluation));
+        }
+    }
+    findings
+}
+
+impl Finding {
+    /// Its code: a word that scripts can rely on.
+    #[must_use]
+    pub fn code(&self) -> &'static str {
+        match self {
+            Self::File(remark) => match remark {
+                Remark::DefaultTemperature { .. } => "default-temperature",
+                Remark::Unusual { .. } => "unusual-number",
+                Remark::SameMaterial { .. } => "same-material",
+                Remark::UnusedMaterial { .. } => "unused-material",
+                Remark::IndirectBarrier { .. } => "indirect-barrier",
+                Remark::UnusualDopant { .. } => "unusual-dopant",
+                Remark::OwnNumbersKept { .. } => "own-numbers-kept",
+            },
+            Self::Unsolved(_) => "no-levels",
+            Self::DirectWell { .. } => "direct-well",
+            Self::Barrier {
+                carrier: Carrier::Electrons,
+                ..
+            } => "electron-barrier",
+            Self::Barrier { .. } => "hole-barrier",
+            Self::Strain { .. } => "strain",
+            Self::Coupling { .. } => "coupling",
+            Self::GroundHole { .. } => "ground-hole",
+            Self::Levels(remark) => match remark {
+                evaluation::Remark::NearEdge { .. } => "near-edge",
+                evaluation::Remark::MassBounded => "mass-bounded",
+                evaluation::Remark::NotBoundInField { .. } => "unbound-in-field",
+                _ => "levels",
+            },
+            Self::Doping { .. } => "doping",
+        }
+    }
+
+    /// How it stands.
+    #[must_use]
+    pub fn standing(&self) -> Standing {
+        let look = |worth: bool| {
+            if worth {
+                Standing::Noted
+            } else {
+                Standing::Within
+            }
+        };
+        match self {
+            Self::File(Remark::DefaultTemperature { .. }) | Self::Strain { .. } => Standing::Stated,
+            Self::File(_) => Standing::Noted,
+            Self::Levels(evaluation::Remark::MassBounded) => Standing::Stated,
+            Self::Levels(_) => Standing::Noted,
+            Self::Unsolved(_) => Standing::Outside,
+            Self::DirectWell {
+                margin_ev,
+                thermal_ev,
+                least_kt,
+                ..
+            } => look(*margin_ev < least_kt * thermal_ev),
+            Self::Barrier {
+                height_ev,
+                thermal_ev,
+                least_kt,
+                ..
+            } => {
+                if *height_ev < least_kt * thermal_ev {
+                    Standing::Outside
+                } else {
+                    Standing::Within
+                }
+            }
+            Self::Coupling {
+                spread_ev, most_ev, ..
+            } => look(spread_ev > most_ev),
+            Self::GroundHole { light, .. } => look(*light),
+            Self::Doping { .. } => Standing::Stated,
+        }
+    }
+
+    /// Its numbers.
+    #[must_use]
+    pub fn measures(&self) -> Vec<Measure> {
+        let measure = |name, value, limit| Measure { name, value, limit };
+        match self {
+            Self::File(Remark::Unusual { value, .. }) => vec![measure("value", *value, None)],
+            Self::File(Remark::IndirectBarrier { below_mev, .. }) => {
+                vec![measure("valley_below_mev", *below_mev, None)]
+            }
+            Self::File(_) | Self::Unsolved(_) | Self::Levels(_) => Vec::new(),
+            Self::DirectWell {
+                margin_ev,
+                thermal_ev,
+                least_kt,
+                ..
+            } => vec![measure(
+                "margin_kt",
+                margin_ev / thermal_ev,
+                Some(*least_kt),
+            )],
+            Self::Barrier {
+                height_ev,
+                thermal_ev,
+                least_kt,
+                ..
+            } => vec![
+                measure("height_kt", height_ev / thermal_ev, Some(*least_kt)),
+                measure("height_mev", 1e3 * height_ev, None),
+            ],
+            Self::Strain {
+                percent,
+                thickness_nm,
+                ..
+            } => vec![
+                measure("strain_percent", *percent, None),
+                measure("thickness_nm", *thickness_nm, None),
+                measure("strain_thickness_percent_nm", percent * thickness_nm, None),
+            ],
+            Self::Coupling {
+                spread_ev, most_ev, ..
+            } => vec![measure("spread_mev", 1e3 * spread_ev, Some(1e3 * most_ev))],
+            Self::GroundHole { split_ev, .. } => split_ev
+                .iter()
+                .map(|split| measure("split_mev", 1e3 * split, None))
+                .collect(),
+            Self::Doping {
+                net_cm3,
+                acceptors_setback_nm,
+                donors_setback_nm,
+            } => {
+                let mut measures = vec![measure("net_cm3", *net_cm3, None)];
+                let setbacks = [
+                    ("acceptors_setback_nm", acceptors_setback_nm),
+                    ("donors_setback_nm", donors_setback_nm),
+                ];
+                for (name, setback) in setbacks {
+                    measures.extend(setback.map(|nm| measure(name, nm, None)));
+                }
+                measures
+            }
+        }
+    }
+}
+
+/// The well that is direct by the smallest margin. Materials of own numbers have no valleys.
+fn direct_wells(stack: &Stack, profile: &Profile<'_>, limits: &Limits) -> Option<Finding> {
+    let margins = stack
+        .layers
+        .iter()
+        .zip(&profile.layers)
+        .filter(|(layer, _)| layer.role == Role::Well)
+        .flat_map(|(layer, numbers)| {
+            let upper = layer.grade_to.as_ref().unwrap_or(&layer.material);
+            [(&layer.material, &numbers.lower), (upper, &numbers.upper)]
+        })
+        .flat_map(|(material, numbers)| {
+            let crystal = &numbers.crystal;
+            [("X", crystal.gap_x_ev), ("L", crystal.gap_l_ev)]
+                .map(|(valley, gap)| (material, valley, gap - crystal.gap_ev))
+        })
+        .filter(|(.., margin)| margin.is_finite());
+    let (material, valley, margin_ev) = margins.min_by(|a, b| a.2.total_cmp(&b.2))?;
+    Some(Finding::DirectWell {
+        formula: material.formula(),
+        valley,
+        margin_ev,
+        thermal_ev: thermal_ev(stack.operation.temperature_k),
+        least_kt: limits.barrier_kt_min,
+    })
+}
+
+/// Every strained layer, equal layers of one role once.
+fn strained_layers(stack: &Stack, profile: &Profile<'_>) -> Vec<Finding> {
+    /// Strain below this is what a matched layer has for rounding or temperature, %.
+    const LEAST_PERCENT: f64 = 0.05;
+    let mut findings: Vec<Finding> = Vec::new();
+    for (layer, numbers) in stack.layers.iter().zip(&profile.layers) {
+        let worse =
+            |a: &Strained, b: &Strained| a.edges.strain_percent() >= b.edges.strain_percent();
+        let upper = layer.grade_to.as_ref().unwrap_or(&layer.material);
+        let (material, edges) = if worse(&numbers.lower, &numbers.upper) {
+            (&layer.material, &numbers.lower.edges)
+        } else {
+            (upper, &numbers.upper.edges)
+        };
+        if edges.strain_percent() < LEAST_PERCENT {
+            continue;
+        }
+        let finding = Finding::Strain {
+            role: layer.role,
+            formula: material.formula(),
+            percent: edges.strain_percent(),
+            sense: edges.sense(),
+            thickness_nm: layer.thickness_nm,
+            count: 1,
+        };
+        if !findings.iter_mut().any(|known| known.counts(&finding)) {
+            findings.push(finding);
+        }
+    }
+    findings
+}
+
+impl Finding {
+    /// Counts another strained layer in, if it is equal to this one.
+    fn counts(&mut self, other: &Finding) -> bool {
+        let mut counted = other.clone();
+        if let (Self::Strain { count, .. }, Self::Strain { count: seen, .. }) =
+            (&mut *self, &mut counted)
+        {
+            *seen = *count;
+        }
+        let equal = *self == counted;
+        if let (true, Self::Strain { count, .. }) = (equal, self) {
+            *count += 1;
+        }
+        equal
+    }
+}
+
+/// Heights from the lowest level to the lowest edge outside the wells. In a field they hang on where
+/// one looks, and are left out.
+fn barriers(evaluation: &Evaluation<'_>, limits: &Limits) -> Vec<Finding> {
+    if evaluation.profile.slope_ev_nm != 0.0 {
+        return Vec::new();
+    }
+    let outside = || evaluation.profile.outside().map(|numbers| &numbers.edges);
+    let conduction = outside()
+        .map(|edges| edges.conduction_ev)
+        .fold(f64::INFINITY, f64::min);
+    let valence = outside()
+        .map(|edges| edges.heavy_ev.max(edges.light_ev))
+        .fold(f64::NEG_INFINITY, f64::max);
+    let ladders = evaluation.ladders();
+    let first = |ladder: &crate::evaluation::Ladder| Some(ladder.rungs.first()?.energy_ev);
+    let Some((electrons, holes)) = ladders.split_first() else {
+        return Vec::new();
+    };
+    let electron = first(electrons).map(|level| (Carrier::Electrons, conduction - level));
+    let hole = holes
+        .iter()
+        .filter_map(first)
+        .reduce(f64::max)
+        .map(|level| (Carrier::Holes, level - valence));
+    electron
+        .into_iter()
+        .chain(hole)
+        .map(|(carrier, height_ev)| Finding::Barrier {
+            carrier,
+            height_ev,
+            thermal_ev: evaluation.thermal_ev(),
+            least_kt: limits.barrier_kt_min,
+        })
+        .collect()
+}
+
+fn ground_hole(evaluation: &Evaluation<'_>) -> Option<Finding> {
+    let first = |band| {
+        let levels = evaluation.bands.of(band);
+        levels.first().map(|level| level.energy_ev)
+    };
+    let (heavy, light) = (first(Band::Heavy), first(Band::Light));
+    let split_ev = heavy.zip(light).map(|(heavy, light)| (heavy - light).abs());
+    let light_first = match (heavy, light) {
+        (Some(heavy), Some(light)) => light > heavy,
+        (None, Some(_)) => true,
+        (Some(_), None) => false,
+        (None, None) => return None,
+    };
+    Some(Finding::GroundHole {
+        light: light_first,
+        split_ev,
+    })
+}
+
+fn coupling(evaluation: &Evaluation<'_>, limits: &Limits) -> Vec<Finding> {
+    let holes = [Band::Heavy, Band::Light]
+        .into_iter()
+        .filter_map(|band| {
+            let first = evaluation.bands.of(band).first()?;
+            Some((first.energy_ev, band))
+        })
+        .max_by(|a, b| a.0.total_cmp(&b.0))
+        .map(|(_, band)| (Carrier::Holes, band));
+    [(Carrier::Electrons, Band::Electron)]
+        .into_iter()
+        .chain(holes)
+        .filter_map(|(carrier, band)| {
+            Some(Finding::Coupling {
+                carrier,
+                spread_ev: evaluation.coupling_ev(band)?,
+                most_ev: limits.coupling_ev_max,
+            })
+        })
+        .collect()
+}
+
+fn doping(evaluation: &Evaluation<'_>) -> Finding {
+    let stack = evaluation.stack;
+    let is_well = |index: &usize| stack.layers[*index].role == Role::Well;
+    let first = (0..stack.layers.len()).find(is_well).unwrap_or(0);
+    let last = (0..stack.layers.len()).rfind(is_well).unwrap_or(first);
+    // Thickness between the outermost well and the nearest doped layer on either side; zero where
+    // the doped layer lies between the wells.
+    let setback = |density: fn(&crate::structure::Doping) -> f64| {
+        let doped = |index: usize| density(&stack.layers[index].doping) > 0.0;
+        if (first..=last).any(doped) {
+            return Some(0.0);
+        }
+        let distance = |layers: &mut dyn Iterator<Item = usize>| {
+            let mut between = 0.0;
+            for index in layers {
+                if doped(index) {
+                    return Some(between);
+                }
+                between += stack.layers[index].thickness_nm;
+            }
+            None
+        };
+        let below = distance(&mut (0..first).rev());
+        let above = distance(&mut (last + 1..stack.layers.len()));
+        below.into_iter().chain(above).reduce(f64::min)
+    };
+    Finding::Doping {
+        net_cm3: evaluation.doping.net_cm3,
+        acceptors_setback_nm: setback(|doping| doping.acceptors_cm3),
+        donors_setback_nm: setback(|doping| doping.donors_cm3),
+    }
+}

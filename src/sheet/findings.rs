@@ -1,0 +1,224 @@
+//! What a check found, in words.
+
+use super::number::{fixed, length_nm, plain, power, significant};
+use super::page::{Page, bold, padded, wrapped};
+use super::stamp::Stamp;
+use crate::design::{Carrier, Finding, Standing};
+use crate::source::Colour;
+use crate::structure::{Remark, Stack};
+
+/// Width of the column that says how a finding stands.
+const STANDING_COLUMNS: usize = 9;
+/// Column at which the words begin.
+const WORDS_COLUMN: usize = 31;
+
+/// A smaller spread is not told apart from none, eV.
+const LEAST_SPREAD_EV: f64 = 1e-5;
+
+/// Findings as text of 80 columns.
+#[must_use]
+pub fn findings(stack: &Stack, findings: &[Finding], stamp: &Stamp, colour: Colour) -> String {
+    let mut page = Page::new(colour);
+    super::levels::head(stack, &mut page);
+    page.heading("Findings");
+    for finding in findings {
+        entry(finding, &mut page, colour);
+    }
+    page.gap();
+    page.paragraph(2, &verdict(findings));
+    stamp.write(&mut page);
+    page.finish()
+}
+
+fn entry(finding: &Finding, page: &mut Page, colour: Colour) {
+    let standing = finding.standing();
+    let word = padded(standing.word(), STANDING_COLUMNS);
+    let word = if standing == Standing::Outside {
+        bold(&word, colour)
+    } else {
+        word
+    };
+    let code = padded(finding.code(), WORDS_COLUMN - STANDING_COLUMNS - 2);
+    let mut lead = format!("  {word}{code}");
+    let width = super::page::COLUMNS - WORDS_COLUMN;
+    let mut lines = wrapped(&message(finding), width);
+    if let Some(advice) = advice(finding) {
+        let words = wrapped(&advice, width - 2);
+        let marks = std::iter::once("→ ").chain(std::iter::repeat("  "));
+        lines.extend(marks.zip(words).map(|(mark, line)| format!("{mark}{line}")));
+    }
+    for line in lines {
+        page.ready(&format!("{lead}{line}"));
+        lead = " ".repeat(WORDS_COLUMN);
+    }
+}
+
+fn verdict(findings: &[Finding]) -> String {
+    let count = |standing| {
+        findings
+            .iter()
+            .filter(|it| it.standing() == standing)
+            .count()
+    };
+    let (outside, noted) = (count(Standing::Outside), count(Standing::Noted));
+    let looks = match noted {
+        0 => String::new(),
+        1 => "; one is worth a look".to_owned(),
+        many => format!("; {many} are worth a look"),
+    };
+    let broken = match outside {
+        0 => "No limit is broken".to_owned(),
+        1 => "One limit is broken".to_owned(),
+        many => format!("{many} limits are broken"),
+    };
+    format!("{broken}{looks}.")
+}
+
+/// What was found, with its numbers.
+#[must_use]
+pub(super) fn message(finding: &Finding) -> String {
+    match finding {
+        Finding::File(remark) => remark.message(),
+        Finding::Unsolved(failure) => failure.to_string(),
+        Finding::Levels(remark) => remark.message(),
+        Finding::DirectWell {
+            formula,
+            valley,
+            margin_ev,
+            thermal_ev,
+            least_kt,
+        } => format!(
+            "the well {formula} is direct: its {valley} valley lies {} meV above Γ, {} kT (a look below {} kT)",
+            fixed(1e3 * margin_ev, 0),
+            fixed(margin_ev / thermal_ev, 1),
+            plain(*least_kt)
+        ),
+        Finding::Barrier {
+            carrier,
+            height_ev,
+            thermal_ev,
+            least_kt,
+        } => {
+            let (level, edge) = match carrier {
+                Carrier::Electrons => ("electron", "lowest conduction edge"),
+                Carrier::Holes => ("hole", "highest valence edge"),
+            };
+            format!(
+                "the first {level} level lies {} meV from the {edge} outside the wells, {} kT (at least {} kT)",
+                fixed(1e3 * height_ev, 0),
+                fixed(height_ev / thermal_ev, 1),
+                plain(*least_kt)
+            )
+        }
+        Finding::Strain {
+            role,
+            formula,
+            percent,
+            sense,
+            thickness_nm,
+            count,
+        } => {
+            let times = if *count > 1 {
+                format!("{count} × ")
+            } else {
+                String::new()
+            };
+            format!(
+                "{times}{} {formula}: {} % {} over {} nm, {} % nm each",
+                role.word(),
+                fixed(*percent, 2),
+                sense.word(),
+                length_nm(*thickness_nm),
+                significant(percent * thickness_nm, 3)
+            )
+        }
+        Finding::Coupling {
+            carrier,
+            spread_ev,
+            most_ev,
+        } => format!(
+            "the first level of the {} spreads by {} meV over the wells (a look above {} meV)",
+            carrier.word(),
+            if *spread_ev < LEAST_SPREAD_EV {
+                format!("less than {}", plain(1e3 * LEAST_SPREAD_EV))
+            } else {
+                significant(1e3 * spread_ev, 2)
+            },
+            plain(1e3 * most_ev)
+        ),
+        Finding::GroundHole { light, split_ev } => {
+            let (first, other) = if *light {
+                ("light", "heavy")
+            } else {
+                ("heavy", "light")
+            };
+            split_ev.map_or_else(
+                || format!("the first hole is {first}; no {other} hole is bound"),
+                |split| {
+                    format!(
+                        "the first hole is {first}; the first {other} hole lies {} meV deeper",
+                        significant(1e3 * split, 3)
+                    )
+                },
+            )
+        }
+        Finding::Doping {
+            net_cm3,
+            acceptors_setback_nm,
+            donors_setback_nm,
+        } => {
+            let net = if *net_cm3 == 0.0 {
+                "the wells and their barriers are not doped".to_owned()
+            } else {
+                let kind = if *net_cm3 > 0.0 {
+                    "donors"
+                } else {
+                    "acceptors"
+                };
+                format!(
+                    "wells and barriers hold {} cm⁻³ net of {kind}, per volume of the wells",
+                    power(net_cm3.abs(), 4)
+                )
+            };
+            let setback = |kind: &str, nm: &Option<f64>| {
+                nm.map_or(String::new(), |nm| {
+                    format!("; {kind} begin {} nm from the wells", length_nm(nm))
+                })
+            };
+            format!(
+                "{net}{}{}",
+                setback("acceptors", acceptors_setback_nm),
+                setback("donors", donors_setback_nm)
+            )
+        }
+    }
+}
+
+/// What to do about it; `None` where nothing needs doing.
+#[must_use]
+pub(super) fn advice(finding: &Finding) -> Option<String> {
+    if finding.standing() == Standing::Within {
+        return None;
+    }
+    match finding {
+        Finding::File(Remark::DefaultTemperature { .. }) => Some("give `temperature_c`".to_owned()),
+        Finding::File(remark) => Some(remark.advice()),
+        Finding::Levels(remark) => remark.advice(),
+        Finding::Unsolved(_) | Finding::Strain { .. } | Finding::Doping { .. } => None,
+        Finding::DirectWell { .. } => Some(
+            "electrons spill into the valley and do not emit: less of the wide-gap element in the well"
+                .to_owned(),
+        ),
+        Finding::Barrier { carrier, .. } => Some(format!(
+            "{} leave the wells when warm: take a barrier of larger gap, a wider well, or a family with more of its gap difference in that band",
+            carrier.word()
+        )),
+        Finding::Coupling { .. } => Some(
+            "the wells act together and the line widens: thicker barriers part them, if that is not meant"
+                .to_owned(),
+        ),
+        Finding::GroundHole { .. } => {
+            Some("emission is mostly TM: right for a TM device, else less tension".to_owned())
+        }
+    }
+}

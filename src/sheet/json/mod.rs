@@ -1,0 +1,25 @@
+//! One JSON document a command, for programs to read.
+//!
+//! Keys and their meaning are fixed under `"format": 1`: new keys may come, old ones stay. Energies
+//! are on one scale, holes as electron energies; what does not exist is `null`.
+
+mod findings;
+mod layout;
+mod levels;
+mod materials;
+mod spectrum;
+
+pub use findings::findings;
+pub use levels::levels;
+pub use materials::{descriptions, families};
+pub use spectrum::spectrum;
+
+use serde::Serialize;
+
+/// Version of the documents.
+const FORMAT: u32 = 1;
+
+/// A document as text: an object's keys on lines of their own, lists on one.
+fn text(document: &impl Serialize) -> String {
+    layout::text(document)
+}
