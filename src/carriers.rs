@@ -1,5 +1,7 @@
 //! Occupation of the levels and quasi-Fermi levels.
 
+pub mod bulk;
+
 use crate::numerics::fermi::{log_exp_minus_one, log_one_plus_exp, occupation};
 use crate::numerics::roots::bracketed_root;
 use crate::units::SUBBAND_DENSITY_PER_CM2_EV;

@@ -19,6 +19,7 @@
 //! | 1 | [`materials`] | parameter data with their citations, alloys, temperature, strain law, index of refraction |
 //! | 2 | [`structure`] | the structure file, and the validated stack that all others use |
 //! | 3 | [`profile`] | band edges and masses along the stack |
+//! | 3 | [`coherence`] | critical thickness, balance of strains |
 //! | 4 | [`subbands`] | levels and envelopes |
 //! | 5 | [`carriers`] | occupation and quasi-Fermi levels |
 //! | 6 | [`spectra`] | transitions, lineshape, gain, spontaneous emission, landmarks |
@@ -36,6 +37,7 @@
 
 pub mod carriers;
 pub mod cli;
+pub mod coherence;
 pub mod design;
 pub mod evaluation;
 pub mod materials;

@@ -10,6 +10,11 @@ use crate::structure::{Material, Role, Stack, Substance};
 
 /// How far the solved region reaches beyond the outermost wells, nm.
 pub const REACH_NM: f64 = 60.0;
+/// Beyond this distance from the wells intervals are [`FAR_FACTOR`] times as long, nm.
+const NEAR_NM: f64 = 10.0;
+/// How much longer intervals are far from the wells.
+const FAR_FACTOR: f64 = 4.0;
+
 /// A crystal and its edges on the substrate.
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub struct Strained {
@@ -44,6 +49,9 @@ pub struct Section {
     /// For a graded layer, the share of the way from its lower to its upper end at this section's
     /// two ends; (0, 0) where the layer is uniform.
     pub shares: (f64, f64),
+    /// Whether it lies so far from the wells that levels have died out to a smooth tail, for which
+    /// longer intervals do.
+    pub far: bool,
 }
 
 /// Equal intervals of a grid with the numbers that hold on them.
@@ -185,6 +193,43 @@ impl<'a> Profile<'a> {
         (first.bottom_nm, last.top_nm)
     }
 
+    /// Whether the solved region is its own mirror image, and no field is on.
+    #[must_use]
+    pub fn is_symmetric(&self) -> bool {
+        let near = |a: f64, b: f64| (a - b).abs() < 1e-9;
+        let same = |a: &Strained, b: &Strained| {
+            let values = |n: &Strained| {
+                [
+                    n.edges.conduction_ev,
+                    n.edges.heavy_ev,
+                    n.edges.light_ev,
+                    n.edges.valence_mean_ev,
+                    n.crystal.split_off_ev,
+                    n.crystal.luttinger[0],
+                    n.crystal.luttinger[1],
+                    n.crystal.luttinger[2],
+                ]
+            };
+            values(a)
+                .into_iter()
+                .zip(values(b))
+                .all(|(a, b)| near(a, b))
+        };
+        let mirror = |section: &Section, other: &Section| {
+            near(
+                section.top_nm - section.bottom_nm,
+                other.top_nm - other.bottom_nm,
+            ) && same(&self.at(section, 0.0), &self.at(other, 1.0))
+                && same(&self.at(section, 1.0), &self.at(other, 0.0))
+        };
+        self.slope_ev_nm == 0.0
+            && self
+                .sections
+                .iter()
+                .zip(self.sections.iter().rev())
+                .all(|(a, b)| mirror(a, b))
+    }
+
     /// The numbers of a section at the share `within` of the way up it.
     #[must_use]
     pub fn at(&self, section: &Section, within: f64) -> Strained {
@@ -211,7 +256,8 @@ impl<'a> Profile<'a> {
     }
 
     /// A grid of the solved region whose nodes include every layer boundary: each section is cut
-    /// into equal intervals no longer than `step_nm`, and each of these `2^halvings` times more.
+    /// into equal intervals no longer than `step_nm` (four times that far from the wells), and each
+    /// of these is halved `halvings` times.
     ///
     /// In a graded layer, and in a field, every interval carries the numbers of its own middle, so
     /// that the error of the grid stays of second order.
@@ -220,6 +266,11 @@ impl<'a> Profile<'a> {
         let mut cells = Vec::new();
         for (index, section) in self.sections.iter().enumerate() {
             let thickness = section.top_nm - section.bottom_nm;
+            let step_nm = if section.far {
+                FAR_FACTOR * step_nm
+            } else {
+                step_nm
+            };
             let least = (thickness / step_nm - 1e-9).ceil().max(1.0);
             let intervals = (least as usize) << halvings;
             let length_nm = thickness / intervals as f64;
@@ -386,37 +437,59 @@ impl Region {
 
     fn sections(&self, stack: &Stack) -> Vec<Section> {
         let (low, high) = (self.bottom_nm - REACH_NM, self.top_nm + REACH_NM);
+        // In a field states lean on the far walls too: no part of the region is smooth.
+        let near = if stack.model.field_kv_cm == 0.0 {
+            let last = &stack.layers[self.last];
+            let below = self.bottoms_nm[self.first] - NEAR_NM;
+            (
+                below,
+                self.bottoms_nm[self.last] + last.thickness_nm + NEAR_NM,
+            )
+        } else {
+            (low, high)
+        };
         let mut sections = Vec::new();
         let count = stack.layers.len();
         for (index, layer) in stack.layers.iter().enumerate() {
             let bottom = self.bottoms_nm[index];
             let top = bottom + layer.thickness_nm;
             let graded = layer.grade_to.is_some();
-            let section = |bottom_nm, top_nm, shares| Section {
-                layer: index,
-                bottom_nm,
-                top_nm,
-                in_wells: self.in_wells[index],
-                outside: index < self.first || index > self.last,
-                shares,
+            let mut add = |from: f64, to: f64, shares: &dyn Fn(f64) -> f64| {
+                // Cut where the near part of the region begins and ends.
+                let mut cuts = vec![from];
+                cuts.extend(
+                    [near.0, near.1]
+                        .into_iter()
+                        .filter(|&at| at > from && at < to),
+                );
+                cuts.push(to);
+                for pair in cuts.windows(2) {
+                    if pair[1] - pair[0] > 1e-9 {
+                        let middle = 0.5 * (pair[0] + pair[1]);
+                        sections.push(Section {
+                            layer: index,
+                            bottom_nm: pair[0],
+                            top_nm: pair[1],
+                            in_wells: self.in_wells[index],
+                            outside: index < self.first || index > self.last,
+                            shares: (shares(pair[0]), shares(pair[1])),
+                            far: middle < near.0 || middle > near.1,
+                        });
+                    }
+                }
             };
-            let share = |position: f64| {
+            if index == 0 {
+                add(low, bottom, &|_| 0.0);
+            }
+            add(bottom.max(low), top.min(high), &|position| {
                 if graded {
                     (position - bottom) / layer.thickness_nm
                 } else {
                     0.0
                 }
-            };
-            if index == 0 && bottom > low {
-                sections.push(section(low, bottom, (0.0, 0.0)));
-            }
-            let (from, to) = (bottom.max(low), top.min(high));
-            if to - from > 1e-9 {
-                sections.push(section(from, to, (share(from), share(to))));
-            }
-            if index + 1 == count && top < high {
-                let end = if graded { 1.0 } else { 0.0 };
-                sections.push(section(top, high, (end, end)));
+            });
+            if index + 1 == count {
+                add(top, high, &|_| if graded { 1.0 } else { 0.0 });
             }
         }
         sections

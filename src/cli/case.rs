@@ -7,7 +7,7 @@ use crate::evaluation;
 use crate::materials::{Offsets, Parameters};
 use crate::sheet::{self, Stamp};
 use crate::source::{LARGEST_TEXT_BYTES, Place, nearest, text};
-use crate::structure::{self, Bands, Overrides, Reading};
+use crate::structure::{self, Overrides, Reading};
 use std::fs::File;
 use std::io::{self, ErrorKind, Read as _};
 use std::path::Path;
@@ -104,11 +104,6 @@ impl Case {
         let reading = structure::read(&source.text, &parameters, overrides).map_err(|faults| {
             Complaint::faults(&faults, &source.name, &source.text, outlet.error_colour())
         })?;
-        // A result must not carry a stamp that it does not keep.
-        if reading.stack.model.bands == Bands::Mixed {
-            return Err(Complaint::input("mixed valence bands are not computed yet")
-                .with_remedy("bands = \"single\" in [model], or --bands single"));
-        }
         Ok(Self {
             source,
             parameters,

@@ -33,6 +33,7 @@ pub(super) fn levels(flags: &flags::Levels, outlet: &Outlet) -> Result<Ending, C
         "emission",
         "edges",
         "envelopes",
+        "dispersion",
     ];
     let destinations = Destinations::new(
         &flags.output,

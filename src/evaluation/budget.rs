@@ -1,7 +1,7 @@
 //! From the bulk gap to the first transition, term by term.
 
 use super::Evaluation;
-use crate::spectra::{Emitter, Hole};
+use crate::spectra::Hole;
 
 /// The first transition as a sum, eV.
 #[derive(Clone, Copy, Debug, PartialEq)]
@@ -16,8 +16,26 @@ pub struct Budget {
     pub electron_ev: f64,
     /// Hole level below the highest edge of its kind in the wells.
     pub hole_ev: f64,
-    /// The first transition.
+    /// What mixing of the valence bands adds (zero where heavy and light holes are taken each by
+    /// itself, or the first hole is heavy).
+    pub mixing_ev: f64,
+    /// The first transition: the sum of all others.
     pub transition_ev: f64,
+}
+
+impl Budget {
+    /// The terms in the order in which they add up, with their names.
+    #[must_use]
+    pub fn terms(&self) -> [(&'static str, f64); 6] {
+        [
+            ("gap of the well material, unstrained", self.bulk_gap_ev),
+            ("strain", self.strain_ev),
+            ("wells that differ from each other", self.between_wells_ev),
+            ("confinement of the electron", self.electron_ev),
+            ("confinement of the hole", self.hole_ev),
+            ("mixing of the valence bands", self.mixing_ev),
+        ]
+    }
 }
 
 /// The budget of the first transition. In a field the confinement terms count from the flat edges
@@ -26,8 +44,7 @@ pub struct Budget {
 pub fn budget(evaluation: &Evaluation<'_>) -> Option<Budget> {
     let first = evaluation.first_ev;
     let pair = evaluation
-        .emitter
-        .pairs()
+        .pairs
         .iter()
         .filter(|pair| pair.overlap > super::LEAST_OVERLAP)
         .min_by(|a, b| a.energy_ev().total_cmp(&b.energy_ev()))?;
@@ -52,13 +69,13 @@ pub fn budget(evaluation: &Evaluation<'_>) -> Option<Budget> {
         .map(|numbers| hole_edge(&numbers.edges))
         .fold(f64::NEG_INFINITY, f64::max);
     let strained = smallest.edges.conduction_ev - hole_edge(&smallest.edges);
-    debug_assert!(!evaluation.emitter.edges_ev().is_empty());
     Some(Budget {
         bulk_gap_ev: smallest.crystal.gap_ev,
         strain_ev: strained - smallest.crystal.gap_ev,
         between_wells_ev: (lowest - highest) - strained,
         electron_ev: pair.electron_ev - lowest,
         hole_ev: highest - pair.hole_ev,
+        mixing_ev: first - pair.energy_ev(),
         transition_ev: first,
     })
 }

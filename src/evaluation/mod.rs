@@ -5,11 +5,12 @@
 
 mod budget;
 mod ladder;
+mod mixed;
 mod remark;
 mod spectrum;
 
 pub use budget::{Budget, budget};
-pub use ladder::{Group, Ladder, Rung, TransitionGroup};
+pub use ladder::{Group, Ladder, Rung, Shares, TransitionGroup};
 pub use remark::Remark;
 pub use spectrum::{
     Absorption, GainPeak, PhotoLuminescence, Run, Spectrum, Spontaneous, Transparency,
@@ -20,9 +21,9 @@ use crate::materials::Parameters;
 use crate::numerics::roots::bracketed_root;
 use crate::profile::{Profile, Unsolvable};
 use crate::spectra::landmarks::{emission_peak, gain_peak};
-use crate::spectra::{Emitter as _, Hole, Line, Occupation, Pair, Point, Staircase};
-use crate::structure::{Role, Stack, Substance};
-use crate::subbands::{Band, Level, SingleBands, Uncertified, single};
+use crate::spectra::{Dispersive, Emitter, Hole, Line, Occupation, Pair, Point, Staircase};
+use crate::structure::{Bands, Role, Stack, Substance};
+use crate::subbands::{Band, Level, MixedBands, SingleBands, Uncertified, single};
 use crate::units::{thermal_ev, wavelength_nm};
 
 /// Least overlap |<e|h>|² of a transition that is listed, and of the first transition.
@@ -104,6 +105,22 @@ pub struct Filling {
     pub fermi_hole_ev: f64,
 }
 
+/// States that holes may fill, energies counted down from the scale's zero.
+#[derive(Debug)]
+enum Holes {
+    Parabolic(Vec<Subband>),
+    Sampled(Vec<(f64, f64)>),
+}
+
+impl Holes {
+    fn reservoir(&self) -> Reservoir<'_> {
+        match self {
+            Self::Parabolic(subbands) => Reservoir::Parabolic(subbands),
+            Self::Sampled(states) => Reservoir::Sampled(states),
+        }
+    }
+}
+
 /// The levels of a stack and what follows from them.
 #[derive(Debug)]
 pub struct Evaluation<'a> {
@@ -113,18 +130,21 @@ pub struct Evaluation<'a> {
     pub parameters: &'a Parameters,
     /// Band edges and the solved region.
     pub profile: Profile<'a>,
-    /// Levels and envelopes.
+    /// Levels and envelopes of the bands one at a time.
     pub bands: SingleBands,
+    /// Valence states with the bands mixed, where the model asks for them.
+    pub mixed: Option<MixedBands>,
     /// Transitions with an overlap above [`LEAST_OVERLAP`], by rising energy.
     pub transitions: Vec<Transition>,
     /// Net doping that the wells feel.
     pub doping: NetDoping,
     /// What a reader should know.
     pub remarks: Vec<Remark>,
-    emitter: Staircase,
+    emitter: Box<dyn Emitter>,
+    pairs: Vec<Pair>,
     index: Result<f64, Failure>,
     electrons: Vec<Subband>,
-    holes: Vec<Subband>,
+    holes: Holes,
     first_ev: f64,
 }
 
@@ -139,12 +159,6 @@ impl<'a> Evaluation<'a> {
         let bands = single(&profile, stack.model.nonparabolic)?;
         require_levels(stack, &profile, &bands)?;
         let pairs = pairs(stack, &profile, &bands);
-        let transitions: Vec<Transition> = by_energy(&pairs)
-            .into_iter()
-            .filter(|transition| transition.overlap > LEAST_OVERLAP)
-            .collect();
-        let first_ev = transitions.first().ok_or(Failure::NoTransition)?.energy_ev;
-        let index = refractive_index(stack, parameters, first_ev);
         let line = Line::new(stack.model.lineshape, stack.model.intraband_fs);
         let wells_nm = profile.well_thickness_nm;
         let kane_energy_ev = profile
@@ -152,22 +166,50 @@ impl<'a> Evaluation<'a> {
             .map(|(numbers, thickness_nm)| numbers.crystal.kane_energy_ev * thickness_nm)
             .sum::<f64>()
             / wells_nm;
+        let electrons = subbands(&bands.electron, 1.0);
+        let mut parabolas = subbands(&bands.heavy, -1.0);
+        parabolas.extend(subbands(&bands.light, -1.0));
+        let doping = net_doping(stack, wells_nm);
+        let mixed = match stack.model.bands {
+            Bands::Single => None,
+            Bands::Mixed => {
+                let depth_ev = mixed::depth_ev(stack, &parabolas, &doping);
+                Some(crate::subbands::mixed(&profile, &bands, depth_ev)?)
+            }
+        };
+        let mut transitions = every_pair(&pairs, &bands, mixed.as_ref());
+        transitions.retain(|transition| transition.overlap > LEAST_OVERLAP);
+        let first_ev = transitions.first().ok_or(Failure::NoTransition)?.energy_ev;
+        let index = refractive_index(stack, parameters, first_ev);
         // Positions and widths do not hang on the index, which scales every spectrum as a whole.
         let scale = index.as_ref().copied().unwrap_or(1.0);
-        let emitter = Staircase::new(pairs, kane_energy_ev, wells_nm, scale, line);
-        let electrons = subbands(&bands.electron, 1.0);
-        let mut holes = subbands(&bands.heavy, -1.0);
-        holes.extend(subbands(&bands.light, -1.0));
-        let doping = net_doping(stack, wells_nm);
+        let (emitter, holes): (Box<dyn Emitter>, Holes) = match &mixed {
+            None => {
+                let emitter = Staircase::new(pairs.clone(), kane_energy_ev, wells_nm, scale, line);
+                (Box::new(emitter), Holes::Parabolic(parabolas))
+            }
+            Some(mixed) => {
+                let kt = thermal_ev(stack.operation.temperature_k);
+                let (samples, edges, reach) = mixed::samples(&bands.electron, mixed, &line);
+                let emitter =
+                    Dispersive::new(samples, edges, reach, kane_energy_ev, wells_nm, scale, line);
+                (
+                    Box::new(emitter),
+                    Holes::Sampled(mixed::hole_states(mixed, kt)),
+                )
+            }
+        };
         let mut evaluation = Self {
             stack,
             parameters,
             profile,
             bands,
+            mixed,
             transitions,
             doping,
             remarks: Vec::new(),
             emitter,
+            pairs,
             index,
             electrons,
             holes,
@@ -216,7 +258,7 @@ impl<'a> Evaluation<'a> {
         Filling {
             density_cm3,
             fermi_electron_ev: Reservoir::Parabolic(&self.electrons).fermi_ev(electrons * area, kt),
-            fermi_hole_ev: -Reservoir::Parabolic(&self.holes).fermi_ev(holes * area, kt),
+            fermi_hole_ev: -self.holes.reservoir().fermi_ev(holes * area, kt),
         }
     }
 
@@ -281,7 +323,7 @@ impl<'a> Evaluation<'a> {
 
     /// Every pair of levels, however small its overlap, by rising energy.
     fn every_pair(&self) -> Vec<Transition> {
-        by_energy(self.emitter.pairs())
+        every_pair(&self.pairs, &self.bands, self.mixed.as_ref())
     }
 
     fn low_injection(&self) -> Occupation {
@@ -289,7 +331,7 @@ impl<'a> Evaluation<'a> {
     }
 
     fn photoluminescence_peak(&self) -> Option<crate::spectra::landmarks::Peak> {
-        emission_peak(&self.emitter, &self.low_injection())
+        emission_peak(&*self.emitter, &self.low_injection())
     }
 
     /// Peaks of TE and TM gain; `None` below transparency.
@@ -299,7 +341,7 @@ impl<'a> Evaluation<'a> {
         }
         let occupation = self.occupation(filling, lowering_ev);
         let peak = |pick: fn(&Point) -> f64| {
-            gain_peak(&self.emitter, &occupation, pick).map(|peak| GainPeak {
+            gain_peak(&*self.emitter, &occupation, pick).map(|peak| GainPeak {
                 gain_cm: peak.height,
                 peak_nm: wavelength_nm(peak.photon_ev),
                 peak_ev: peak.photon_ev,
@@ -366,21 +408,25 @@ fn pairs(stack: &Stack, profile: &Profile<'_>, bands: &SingleBands) -> Vec<Pair>
     pairs
 }
 
-/// The transitions of all pairs, by rising energy.
-fn by_energy(pairs: &[Pair]) -> Vec<Transition> {
-    let mut transitions: Vec<Transition> = pairs
-        .iter()
-        .map(|pair| Transition {
-            electron: pair.electron + 1,
-            hole: match pair.kind {
-                Hole::Heavy => format!("hh{}", pair.hole + 1),
-                Hole::Light => format!("lh{}", pair.hole + 1),
-            },
-            energy_ev: pair.energy_ev(),
-            wavelength_nm: wavelength_nm(pair.energy_ev()),
-            overlap: pair.overlap,
-        })
-        .collect();
+/// The transitions between all levels, by rising energy: of the mixed valence states where there are
+/// any, else of heavy and light holes.
+fn every_pair(pairs: &[Pair], bands: &SingleBands, mixed: Option<&MixedBands>) -> Vec<Transition> {
+    let mut transitions: Vec<Transition> = match mixed {
+        Some(mixed) => mixed::transitions(&bands.electron, mixed),
+        None => pairs
+            .iter()
+            .map(|pair| Transition {
+                electron: pair.electron + 1,
+                hole: match pair.kind {
+                    Hole::Heavy => format!("hh{}", pair.hole + 1),
+                    Hole::Light => format!("lh{}", pair.hole + 1),
+                },
+                energy_ev: pair.energy_ev(),
+                wavelength_nm: wavelength_nm(pair.energy_ev()),
+                overlap: pair.overlap,
+            })
+            .collect(),
+    };
     transitions.sort_by(|a, b| a.energy_ev.total_cmp(&b.energy_ev));
     transitions
 }

@@ -1,7 +1,6 @@
 //! What a reader should know of a result: what was seen, what it may mean, what to do.
 
 use super::{Evaluation, Run};
-use crate::spectra::Emitter;
 use crate::structure::{Bands, Lineshape};
 use crate::subbands::Band;
 

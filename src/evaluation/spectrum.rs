@@ -115,7 +115,7 @@ impl Evaluation<'_> {
     /// [`Failure::NoIndex`] if the refractive index of a well is not known.
     pub fn spectrum(&self) -> Result<Spectrum, Failure> {
         let refractive_index = self.refractive_index()?;
-        let emitter: &dyn Emitter = &self.emitter;
+        let emitter: &dyn Emitter = &*self.emitter;
         let densities = &self.stack.operation.densities_cm3;
         let occupations: Vec<Occupation> = densities
             .iter()
@@ -197,9 +197,11 @@ impl Evaluation<'_> {
         let low = (self.first_ev - 8.0 * width).max(0.02);
         let high = (highest + 0.05).clamp(self.first_ev + 0.1, self.first_ev + 0.6);
         let photon_ev = spread(low, high);
-        let (te_cm, tm_cm) = photon_ev
-            .iter()
-            .map(|&photon| self.emitter.absorption(photon))
+        let step = photon_ev[1] - photon_ev[0];
+        let (te_cm, tm_cm) = self
+            .emitter
+            .absorption(low, step, photon_ev.len())
+            .into_iter()
             .unzip();
         Absorption {
             photon_ev,
@@ -209,7 +211,7 @@ impl Evaluation<'_> {
     }
 
     fn run(&self, density_cm3: f64, occupation: &Occupation, photon_ev: &[f64]) -> Run {
-        let emitter: &dyn Emitter = &self.emitter;
+        let emitter: &dyn Emitter = &*self.emitter;
         let [te, tm] = self.gain_peaks(&self.filling(density_cm3), occupation.lowering_ev);
         let total_per_cm3_s = total_rate_per_cm3_s(emitter, occupation);
         let wells_cm = 1e-7 * self.profile.well_thickness_nm;
@@ -227,7 +229,12 @@ impl Evaluation<'_> {
                 total_per_cm3_s,
                 current_a_cm2: ELEMENTARY_CHARGE_C * total_per_cm3_s * wells_cm,
             }),
-            points: emitter.sample(occupation, photon_ev),
+            points: emitter.sample(
+                occupation,
+                photon_ev[0],
+                photon_ev[1] - photon_ev[0],
+                photon_ev.len(),
+            ),
         }
     }
 
@@ -245,7 +252,7 @@ impl Evaluation<'_> {
         if line.half_width_ev < 0.35 * occupation.thermal_ev {
             return None;
         }
-        let emitter: &dyn Emitter = &self.emitter;
+        let emitter: &dyn Emitter = &*self.emitter;
         let rate = rate_per_cm3_s.unwrap_or_else(|| total_rate_per_cm3_s(emitter, occupation));
         let ratio = rate / emitter.sharp_rate_per_cm3_s(occupation);
         (ratio > TOO_STRONG).then_some(Remark::ColdEmission { density_cm3, ratio })

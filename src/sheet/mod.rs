@@ -3,6 +3,7 @@
 //! Writers read the records of `evaluation` and `design` and compute no physics.
 
 pub mod csv;
+pub mod figure;
 mod findings;
 pub mod json;
 mod levels;

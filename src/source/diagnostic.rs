@@ -7,7 +7,8 @@ use annotate_snippets::{AnnotationKind, Group, Level, Origin, Renderer, Snippet}
 
 /// Columns that a report takes; longer lines are cut around the caret.
 const COLUMNS: usize = 120;
-/// A line longer than this, bytes, is shown for its first fault only: laying one out takes time.
+/// A line with more than this before the caret, bytes, is shown for its first fault only: laying
+/// one out takes time.
 const LONG_LINE_BYTES: usize = 1 << 16;
 
 /// One fault at its place in a text.
@@ -169,6 +170,8 @@ impl<'a> Line<'a> {
         let end = text[caret..]
             .find('\n')
             .map_or(text.len(), |feed| caret + feed);
+        // What lies further behind the caret than a report is wide is not laid out.
+        let end = end.min(boundary(text, caret + 4 * COLUMNS));
         let line = text[start..end].trim_end_matches('\r');
         let within = |at: usize| (at - start).min(line.len());
         Self {
@@ -252,12 +255,13 @@ mod tests {
     #[test]
     fn a_thousand_faults_on_one_long_line_are_shown_in_short() {
         let text = "z".repeat(2 * LONG_LINE_BYTES);
-        let faults: Vec<Diagnostic> = (0..1000)
-            .map(|at| Diagnostic::new(at..at + 1, "wrong"))
+        let faults: Vec<Diagnostic> = (1..=1000)
+            .map(|at| Diagnostic::new(LONG_LINE_BYTES + at..LONG_LINE_BYTES + at + 1, "wrong"))
             .collect();
         let report = report(&faults, "a.toml", &text, Colour::Never);
         assert_eq!(report.matches('^').count(), 1);
-        assert!(report.ends_with("--> a.toml:1:1000"), "{report}");
+        let last = format!("--> a.toml:1:{}", LONG_LINE_BYTES + 1001);
+        assert!(report.ends_with(&last), "{report}");
     }
 
     #[test]

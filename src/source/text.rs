@@ -60,7 +60,7 @@ pub fn text(bytes: &[u8]) -> Result<&str, Unreadable> {
         return Err(Unreadable::Utf16);
     }
     if let Some(at) = bytes.iter().position(|byte| *byte == 0) {
-        let line = 1 + bytes[..at].iter().filter(|byte| **byte == b'\n').count();
+        let line = bytes[..at].split(|byte| *byte == b'\n').count();
         return Err(Unreadable::Binary { line, byte: at + 1 });
     }
     let text = str::from_utf8(bytes).map_err(|error| {

@@ -1,8 +1,7 @@
 //! What a reader wants of a spectrum: peaks, widths, totals, transparency, the logarithmic law.
 
 use super::{Emitter, Occupation, Point};
-use crate::numerics::quadrature::panels;
-use crate::numerics::roots::{bracketed_root, highest_peak};
+use crate::numerics::roots::bracketed_root;
 
 /// The highest point of a spectrum, per unit of photon energy.
 #[derive(Clone, Copy, Debug, PartialEq)]
@@ -12,9 +11,6 @@ pub struct Peak {
     /// Its height, in the unit of the spectrum.
     pub height: f64,
 }
-
-/// Photon energies to which a peak is refined, eV.
-const PEAK_TOLERANCE_EV: f64 = 1e-8;
 
 /// The highest gain below the quasi-Fermi splitting; `None` where no gain is positive.
 ///
@@ -36,59 +32,111 @@ pub fn gain_peak(
     // Just above transparency all gain lies between the lowest edge and the splitting.
     let window = (high - lowest).max(0.1 * width);
     let step = (0.4 * width).min(occupation.thermal_ev).min(window / 6.0);
-    let (photon_ev, height) = highest_peak(
-        |photon_ev| polarisation(&emitter.point(occupation, photon_ev)),
-        low,
-        high,
-        points(low, high, step),
-        PEAK_TOLERANCE_EV,
-    );
-    (height > 0.0).then_some(Peak { photon_ev, height })
+    highest(emitter, occupation, &polarisation, (low, high), step).or_else(|| {
+        // Nothing but a tail that rises towards low energies: its value at the lowest edge.
+        let photon_ev = lowest.clamp(low, high);
+        let height = polarisation(&emitter.point(occupation, photon_ev));
+        (height > 0.0).then_some(Peak { photon_ev, height })
+    })
 }
 
-/// Nodes that span a range at a step, within reason.
-fn points(low: f64, high: f64, step: f64) -> usize {
-    let wanted = ((high - low) / step).ceil() + 1.0;
+/// The highest point of a spectrum in a range: a first look at a step, then closer looks around
+/// the three highest points of it.
+fn highest(
+    emitter: &dyn Emitter,
+    occupation: &Occupation,
+    pick: impl Fn(&Point) -> f64,
+    (low, high): (f64, f64),
+    step: f64,
+) -> Option<Peak> {
+    /// A closer look divides the step by this.
+    const CLOSER: usize = 12;
+
+    let look = |low: f64, step: f64, count: usize| -> Vec<f64> {
+        emitter
+            .sample(occupation, low, step, count)
+            .iter()
+            .map(&pick)
+            .collect()
+    };
     // The bound keeps a cold, wide spectrum from taking seconds.
-    wanted.clamp(9.0, 4000.0) as usize
+    let count = (((high - low) / step).ceil() + 1.0).clamp(9.0, 4000.0) as usize;
+    let step = (high - low) / (count - 1) as f64;
+    let heights = look(low, step, count);
+    // Tops are inside the range: a tail that rises towards an end is no peak.
+    let mut tops: Vec<usize> = (1..count - 1)
+        .filter(|&at| heights[at - 1] <= heights[at] && heights[at + 1] < heights[at])
+        .collect();
+    tops.sort_by(|&a, &b| heights[b].total_cmp(&heights[a]).then(a.cmp(&b)));
+    // A lower top is looked at only if a sharper peak may hide between its neighbours.
+    let best = tops.first().map_or(0.0, |&at| heights[at]);
+    tops.retain(|&at| heights[at] > 0.8 * best);
+    tops.truncate(3);
+    let refined = tops.into_iter().map(|top| {
+        let (mut centre, mut step) = (low + top as f64 * step, step);
+        let mut peak = Peak {
+            photon_ev: centre,
+            height: heights[top],
+        };
+        for _ in 0..3 {
+            let from = (centre - step).max(low);
+            let to = (centre + step).min(high);
+            let fine = (to - from) / (2 * CLOSER) as f64;
+            let near = look(from, fine, 2 * CLOSER + 1);
+            let at = (0..near.len())
+                .max_by(|&a, &b| near[a].total_cmp(&near[b]).then(b.cmp(&a)))
+                .unwrap_or(CLOSER);
+            centre = from + at as f64 * fine;
+            peak = Peak {
+                photon_ev: centre,
+                height: near[at],
+            };
+            if at > 0 && at + 1 < near.len() {
+                // The parabola through three points.
+                let (below, above) = (near[at - 1] - near[at], near[at + 1] - near[at]);
+                let bend = below + above;
+                if bend < 0.0 {
+                    let shift = 0.5 * (below - above) / bend;
+                    peak.photon_ev += shift * fine;
+                    peak.height -= 0.125 * (below - above).powi(2) / bend;
+                }
+            }
+            step = fine;
+        }
+        peak
+    });
+    refined
+        .max_by(|a, b| a.height.total_cmp(&b.height))
+        .filter(|peak| peak.height > 0.0)
 }
 
 /// Range of photon energies in which a spectrum emits: the lowest edge less 15 half widths to the
-/// highest occupied edge, or the quasi-Fermi splitting if that is higher, plus 12 kT.
+/// highest occupied edge, or the quasi-Fermi splitting if that is higher, plus 12 kT; never further
+/// than 45 kT beyond the splitting and the lowest edge, where nothing is left.
 fn emission_range(emitter: &dyn Emitter, occupation: &Occupation) -> Option<(f64, f64)> {
     let edges = emitter.edges_ev();
-    let (lowest, highest) = (edges.first()?, edges.last()?);
-    let line = emitter.emission_line(occupation.thermal_ev);
-    let low = (lowest - occupation.lowering_ev - 15.0 * line.half_width_ev).max(1e-3);
-    let high = (highest - occupation.lowering_ev).max(occupation.splitting_ev())
-        + 12.0 * occupation.thermal_ev;
-    Some((low, high))
+    let lowest = edges.first()? - occupation.lowering_ev;
+    let highest = edges.last()? - occupation.lowering_ev;
+    let kt = occupation.thermal_ev;
+    let line = emitter.emission_line(kt);
+    let low = (lowest - 15.0 * line.half_width_ev).max(1e-3);
+    let splitting = occupation.splitting_ev();
+    let high = highest.max(splitting) + 12.0 * kt;
+    Some((low, high.min(splitting.max(lowest) + 45.0 * kt)))
 }
 
 /// The peak of spontaneous emission.
 pub fn emission_peak(emitter: &dyn Emitter, occupation: &Occupation) -> Option<Peak> {
-    let (low, high) = emission_range(emitter, occupation)?;
-    let edges = emitter.edges_ev();
-    // Beyond the splitting, or the lowest edge, emission only falls.
-    let top = occupation
-        .splitting_ev()
-        .max(edges[0] - occupation.lowering_ev)
-        + 30.0 * occupation.thermal_ev;
+    let range = emission_range(emitter, occupation)?;
     let width = emitter.emission_line(occupation.thermal_ev).half_width_ev;
-    let high = high.min(top.max(low + width));
     let step = (0.4 * width).min(0.5 * occupation.thermal_ev);
-    let (photon_ev, height) = highest_peak(
-        |photon_ev| {
-            emitter
-                .point(occupation, photon_ev)
-                .spontaneous_per_ev_cm3_s
-        },
-        low,
-        high,
-        points(low, high, step),
-        PEAK_TOLERANCE_EV,
-    );
-    (height > 0.0).then_some(Peak { photon_ev, height })
+    highest(
+        emitter,
+        occupation,
+        |point| point.spontaneous_per_ev_cm3_s,
+        range,
+        step,
+    )
 }
 
 /// Full width at half maximum of spontaneous emission around its peak, eV.
@@ -116,40 +164,22 @@ pub fn emission_width_ev(emitter: &dyn Emitter, occupation: &Occupation, peak: &
 }
 
 /// Total spontaneous rate, per cm³ of wells and second.
+///
+/// A rounded spectrum is analytic around the real axis, as far as the poles of the line and of the
+/// occupations, and has died out at both ends: there the trapezoidal rule converges exponentially.
 pub fn total_rate_per_cm3_s(emitter: &dyn Emitter, occupation: &Occupation) -> f64 {
     let Some((low, high)) = emission_range(emitter, occupation) else {
         return 0.0;
     };
-    let kt = occupation.thermal_ev;
-    let splitting = occupation.splitting_ev();
-    let width = emitter.emission_line(kt).half_width_ev;
-    // Features are as wide as the line or kT; edges and the splitting are where they stand.
-    let fine = (1.5 * width).min(3.0 * kt);
-    let mut breaks = vec![low];
-    breaks.extend(
-        emitter
-            .edges_ev()
-            .iter()
-            .map(|edge| edge - occupation.lowering_ev),
-    );
-    breaks.push(splitting);
-    breaks.push(high);
-    breaks.retain(|at| (low..=high).contains(at));
-    breaks.sort_by(f64::total_cmp);
-    breaks.dedup_by(|a, b| (*a - *b).abs() < 0.2 * fine);
-    // What lies 45 kT above the splitting and the lowest edge is empty.
-    let lowest = emitter.edges_ev()[0] - occupation.lowering_ev;
-    let end = (splitting.max(lowest) + 45.0 * kt).min(high);
-    breaks.retain(|&at| at < end);
-    breaks.push(end);
-    let nodes = panels(&breaks, fine);
-    let photons: Vec<f64> = nodes.iter().map(|node| node.0).collect();
-    emitter
-        .sample(occupation, &photons)
+    let width = emitter.emission_line(occupation.thermal_ev).half_width_ev;
+    let step = (0.35 * width).min(0.7 * occupation.thermal_ev);
+    let count = ((high - low) / step).ceil().clamp(2.0, 200_000.0) as usize;
+    let step = (high - low) / count as f64;
+    let points = emitter.sample(occupation, low, step, count + 1);
+    step * points
         .iter()
-        .zip(&nodes)
-        .map(|(point, node)| node.1 * point.spontaneous_per_ev_cm3_s)
-        .sum()
+        .map(|point| point.spontaneous_per_ev_cm3_s)
+        .sum::<f64>()
 }
 
 /// The law g = g₀ ln(N/N_tr) fitted to peak gains by least squares in ln N.

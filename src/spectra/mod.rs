@@ -1,9 +1,13 @@
 //! Transitions, lineshape, gain, spontaneous emission and their landmarks.
 
+mod bulk;
+mod dispersive;
 pub mod landmarks;
 mod lineshape;
 mod staircase;
 
+pub use bulk::Bulk;
+pub use dispersive::{Dispersion, Dispersive, Sample};
 pub use lineshape::Line;
 pub use staircase::{Hole, Pair, Staircase};
 
@@ -40,20 +44,25 @@ pub struct Point {
 }
 
 /// Anything that absorbs and emits: the staircase of single bands, or mixed bands.
-pub trait Emitter {
+pub trait Emitter: std::fmt::Debug + Send + Sync {
     /// Gain and emission at a photon energy, cm⁻¹ and per eV, cm³ and s.
     fn point(&self, occupation: &Occupation, photon_ev: f64) -> Point;
 
-    /// The same at many photon energies.
-    fn sample(&self, occupation: &Occupation, photon_ev: &[f64]) -> Vec<Point> {
-        photon_ev
-            .iter()
-            .map(|&photon_ev| self.point(occupation, photon_ev))
+    /// The same at `count` even photon energies from `low_ev` on.
+    fn sample(
+        &self,
+        occupation: &Occupation,
+        low_ev: f64,
+        step_ev: f64,
+        count: usize,
+    ) -> Vec<Point> {
+        (0..count)
+            .map(|at| self.point(occupation, low_ev + at as f64 * step_ev))
             .collect()
     }
 
-    /// Absorption (TE, TM) without carriers, cm⁻¹, at least zero.
-    fn absorption(&self, photon_ev: f64) -> (f64, f64);
+    /// Absorption (TE, TM) without carriers at `count` even photon energies, cm⁻¹, at least zero.
+    fn absorption(&self, low_ev: f64, step_ev: f64, count: usize) -> Vec<(f64, f64)>;
 
     /// Edges of the transitions without shrinkage, rising, eV.
     fn edges_ev(&self) -> &[f64];

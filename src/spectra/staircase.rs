@@ -141,12 +141,6 @@ impl Staircase {
         }
     }
 
-    /// The pairs.
-    #[must_use]
-    pub fn pairs(&self) -> &[Pair] {
-        &self.pairs
-    }
-
     /// Emission strengths Σ a f_c (1 − f_v) of (TE, TM) with the gain's line, then with the
     /// emission's; above the splitting those of absorption, Σ a f_v (1 − f_c), for the first.
     fn strengths(&self, o: &Occupation, photon_ev: f64) -> [(f64, f64); 2] {
@@ -209,17 +203,22 @@ impl Emitter for Staircase {
         }
     }
 
-    fn absorption(&self, photon_ev: f64) -> (f64, f64) {
-        let mut sums = (0.0, 0.0);
-        for pair in &self.pairs {
-            let x = photon_ev - pair.energy_ev();
-            let (te, tm) = pair.polarisation(x);
-            let amount = pair.reduced_mass() * pair.overlap * self.line.step(x);
-            sums.0 += amount * te;
-            sums.1 += amount * tm;
-        }
-        let factor = self.strength_ev_cm / photon_ev;
-        (factor * sums.0, factor * sums.1)
+    fn absorption(&self, low_ev: f64, step_ev: f64, count: usize) -> Vec<(f64, f64)> {
+        (0..count)
+            .map(|at| {
+                let photon_ev = low_ev + at as f64 * step_ev;
+                let mut sums = (0.0, 0.0);
+                for pair in &self.pairs {
+                    let x = photon_ev - pair.energy_ev();
+                    let (te, tm) = pair.polarisation(x);
+                    let amount = pair.reduced_mass() * pair.overlap * self.line.step(x);
+                    sums.0 += amount * te;
+                    sums.1 += amount * tm;
+                }
+                let factor = self.strength_ev_cm / photon_ev;
+                (factor * sums.0, factor * sums.1)
+            })
+            .collect()
     }
 
     fn edges_ev(&self) -> &[f64] {

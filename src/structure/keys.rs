@@ -460,37 +460,51 @@ pub(super) static MODEL: Table = Table {
     ],
 };
 
-/// Words that are no keys and are often written for one, with what to write.
-pub(super) const MISNOMERS: [(&str, &str); 16] = [
-    (
-        "strain",
-        "name its sense: `compressive_percent` or `tensile_percent`",
-    ),
-    (
-        "strain_percent",
-        "name its sense: `compressive_percent` or `tensile_percent`",
-    ),
-    (
-        "mismatch_ppm",
-        "give the strain as `compressive_percent` or `tensile_percent`",
-    ),
-    ("thickness_um", "lengths are in nm: `thickness_nm`"),
-    ("thickness_a", "lengths are in nm: `thickness_nm`"),
-    ("thickness_angstrom", "lengths are in nm: `thickness_nm`"),
-    ("doping", "say which: `donors_cm3` or `acceptors_cm3`"),
-    ("doping_cm3", "say which: `donors_cm3` or `acceptors_cm3`"),
-    ("n_cm3", "write `donors_cm3`"),
-    ("p_cm3", "write `acceptors_cm3`"),
-    ("temperature", "write `temperature_c` or `temperature_k`"),
-    ("gap_um", "gaps of alloys are in nm: `gap_nm`"),
-    (
-        "wavelength_nm",
-        "a material has `gap_nm`, the gap of its strained bulk layer",
-    ),
-    ("composition", "write `formula = \"In0.53Ga0.47As\"`"),
-    ("periods", "write `repeat`"),
-    (
-        "name",
-        "the structure has a `title`, a layer a `role`, a material its key in [materials]",
-    ),
-];
+/// A word that is no key and is often written for one.
+pub(super) struct Misnomer {
+    /// The word.
+    pub(super) word: &'static str,
+    /// The key that its author had in mind.
+    pub(super) meant: &'static str,
+    /// What to write.
+    pub(super) help: &'static str,
+}
+
+/// Words that are often written for keys.
+pub(super) const MISNOMERS: [Misnomer; 15] = {
+    const fn one(word: &'static str, meant: &'static str, help: &'static str) -> Misnomer {
+        Misnomer { word, meant, help }
+    }
+    const SENSE: &str = "name its sense: `compressive_percent` or `tensile_percent`";
+    const LENGTH: &str = "lengths are in nm: `thickness_nm`";
+    const TYPE: &str = "say which: `donors_cm3` or `acceptors_cm3`";
+    [
+        one("strain", "compressive_percent", SENSE),
+        one("strain_percent", "compressive_percent", SENSE),
+        one("mismatch_ppm", "compressive_percent", SENSE),
+        one("thickness_um", "thickness_nm", LENGTH),
+        one("thickness_a", "thickness_nm", LENGTH),
+        one("thickness_angstrom", "thickness_nm", LENGTH),
+        one("doping", "donors_cm3", TYPE),
+        one("doping_cm3", "donors_cm3", TYPE),
+        one("n_cm3", "donors_cm3", "write `donors_cm3`"),
+        one("p_cm3", "acceptors_cm3", "write `acceptors_cm3`"),
+        one(
+            "temperature",
+            "temperature_c",
+            "write `temperature_c` or `temperature_k`",
+        ),
+        one("gap_um", "gap_nm", "gaps of alloys are in nm: `gap_nm`"),
+        one(
+            "wavelength_nm",
+            "gap_nm",
+            "a material has `gap_nm`, the gap of its strained bulk layer",
+        ),
+        one(
+            "composition",
+            "formula",
+            "write `formula = \"In0.53Ga0.47As\"`",
+        ),
+        one("periods", "repeat", "write `repeat`"),
+    ]
+};

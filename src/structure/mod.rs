@@ -3,11 +3,14 @@
 //! A file has two forms. Its raw form mirrors the TOML key by key, along one table of keys
 //! that also yields the editor [`schema`] and the [`key_reference`] of the manual. [`read`] makes
 //! the stack of it, or names every fault at its place; no module above checks a thickness again.
-//! [`write`] says a stack as a file.
+//! [`write()`] says a stack as a file.
 
 mod file;
 mod keys;
+mod layers;
+mod magnitude;
 mod number;
+mod own_numbers;
 mod palette;
 mod reader;
 mod reference;
@@ -18,7 +21,7 @@ mod syntax;
 mod validate;
 mod write;
 
-pub use reader::{Refusal, check_magnitude};
+pub use magnitude::{Refusal, check_magnitude};
 pub use reference::key_reference;
 pub use remark::Remark;
 pub use schema::schema;
@@ -26,6 +29,8 @@ pub use stack::{
     Bands, Doping, Layer, Lineshape, Material, Model, Operation, Role, Stack, Substance,
 };
 pub use write::write;
+
+use std::ops::Range;
 
 use crate::materials::Parameters;
 use crate::source::Diagnostic;
@@ -124,24 +129,23 @@ pub fn read(
     }
 }
 
-/// The faults of the syntax, and those of values on lines that it left whole.
+/// The faults of the syntax, and those of values that it left whole.
 fn with_broken_syntax(
     text: &str,
     broken: Vec<Diagnostic>,
     values: Vec<Diagnostic>,
 ) -> Vec<Diagnostic> {
-    let line_of = |at: usize| text[..at.min(text.len())].rfind('\n');
-    let lines: std::collections::BTreeSet<Option<usize>> = broken
+    let mut faults: Vec<Diagnostic> = broken.into_iter().take(MOST_FAULTS).collect();
+    let spoilt: Vec<Range<usize>> = faults
         .iter()
-        .map(|fault| line_of(fault.span.start))
+        .map(|fault| syntax::spoilt(text, fault.span.start))
         .collect();
-    let whole = values
-        .into_iter()
-        .filter(|fault| !lines.contains(&line_of(fault.span.start)));
-    let mut faults = broken;
-    faults.truncate(MOST_FAULTS);
-    let whole: Vec<Diagnostic> = whole.collect();
-    faults.extend(whole);
+    let is_whole = |fault: &Diagnostic| {
+        spoilt
+            .iter()
+            .all(|lines| !lines.contains(&fault.span.start))
+    };
+    faults.extend(values.into_iter().filter(is_whole));
     in_order(faults)
 }
 

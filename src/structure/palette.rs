@@ -3,11 +3,12 @@
 use std::collections::BTreeMap;
 use std::ops::Range;
 
-use super::file::{MaterialTable, NumbersTable, StructureFile};
-use super::keys::{MOST_MATERIALS, NUMBERS};
-use super::reader::{Field, Findings, Given, brief};
+use super::file::{MaterialTable, StructureFile};
+use super::keys::MOST_MATERIALS;
+use super::own_numbers::own_numbers;
+use super::reader::{Findings, Given, brief};
 use super::{Material, Remark, Substance};
-use crate::materials::{Composition, Crystal, Elements, Offsets, Parameters, solve_composition};
+use crate::materials::{Composition, Elements, Offsets, Parameters, solve_composition};
 use crate::source::{Diagnostic, nearest};
 
 /// Temperature at which gaps and strains of a prescription are meant, K.
@@ -51,7 +52,7 @@ impl<'a> Palette<'a> {
             );
         }
         for (name, given) in file.materials.iter().take(MOST_MATERIALS) {
-            palette.name_is_plain(name, &given.key, findings);
+            Self::name_is_plain(name, &given.key, findings);
             let substance = given
                 .value
                 .as_ref()
@@ -89,7 +90,7 @@ impl<'a> Palette<'a> {
     }
 
     /// Names are words that options and outputs can hold.
-    fn name_is_plain(&self, name: &str, key: &Range<usize>, findings: &mut Findings) {
+    fn name_is_plain(name: &str, key: &Range<usize>, findings: &mut Findings) {
         let plain = name.starts_with(|letter: char| letter.is_ascii_alphabetic())
             && name.len() <= 40
             && name
@@ -311,7 +312,7 @@ impl<'a> Palette<'a> {
                 return None;
             }
         };
-        let strain = in_plane_strain(name, table, findings)?;
+        let strain = in_plane_strain(name, table, findings).ok()?;
         let gap_nm = match &table.gap_nm {
             Some(given) => Some(given.value?),
             None => None,
@@ -368,6 +369,9 @@ impl<'a> Palette<'a> {
     }
 }
 
+/// A complaint has been made.
+struct Refused;
+
 /// The lattice constant at which prescriptions are meant, nm.
 fn lattice_nm(parameters: &Parameters, substance: &Substance) -> f64 {
     match substance {
@@ -405,13 +409,16 @@ fn no_conditions(table: &MaterialTable, kind: &str, findings: &mut Findings) {
     }
 }
 
-/// The in-plane strain that a prescription asks for (compressive negative), if it asks for one;
-/// the outer `None` after a complaint.
+/// The in-plane strain that a prescription asks for (compressive negative), if it asks for one.
+///
+/// # Errors
+///
+/// After a complaint, made here or before.
 fn in_plane_strain(
     name: &str,
     table: &MaterialTable,
     findings: &mut Findings,
-) -> Option<Option<f64>> {
+) -> Result<Option<f64>, Refused> {
     let matched = table.matched.as_ref().map(|given| Given {
         key: given.key.clone(),
         span: given.span.clone(),
@@ -439,12 +446,12 @@ fn in_plane_strain(
             )
             .with_help("keep one of them"),
         );
-        return None;
+        return Err(Refused);
     }
     let Some(&(word, sign, field)) = given.first() else {
-        return Some(None);
+        return Ok(None);
     };
-    let value = field.value?;
+    let value = field.value.ok_or(Refused)?;
     if word == "matched" && value == 0.0 {
         findings.faults.push(
             Diagnostic::new(
@@ -453,101 +460,7 @@ fn in_plane_strain(
             )
             .with_help("leave it out, or give `compressive_percent` or `tensile_percent`"),
         );
-        return None;
+        return Err(Refused);
     }
-    Some(Some(sign * value))
-}
-
-/// A material by its own numbers.
-fn own_numbers(given: &Given<NumbersTable>, findings: &mut Findings) -> Option<Substance> {
-    let table = given.value.as_ref()?;
-    let plain = [
-        ("lattice_nm", &table.lattice_nm),
-        ("gap_ev", &table.gap_ev),
-        ("valence_edge_ev", &table.valence_edge_ev),
-        ("split_off_ev", &table.split_off_ev),
-        ("electron_mass", &table.electron_mass),
-        ("kane_energy_ev", &table.kane_energy_ev),
-        ("ac_ev", &table.ac_ev),
-        ("av_ev", &table.av_ev),
-        ("b_ev", &table.b_ev),
-        ("c11_gpa", &table.c11_gpa),
-        ("c12_gpa", &table.c12_gpa),
-    ];
-    let missing: Vec<String> = NUMBERS
-        .names()
-        .filter(|name| {
-            let absent_number = plain
-                .iter()
-                .any(|(key, field)| key == name && field.is_none());
-            absent_number || (*name == "luttinger" && table.luttinger.is_none())
-        })
-        .map(|name| format!("`{name}`"))
-        .collect();
-    if !missing.is_empty() {
-        findings.faults.push(
-            Diagnostic::new(
-                table.span.clone(),
-                format!("own numbers are incomplete: {}", missing.join(", ")),
-            )
-            .with_help("own numbers are never mixed with the parameter data: give all but `index`"),
-        );
-    }
-    physical(table, findings);
-    let number = |field: &Field<f64>| field.as_ref().and_then(|given| given.value);
-    let luttinger = table.luttinger.as_ref()?.value.as_ref()?;
-    let index = match &table.index {
-        Some(given) => Some(given.value?),
-        None => None,
-    };
-    Some(Substance::Own {
-        crystal: Crystal {
-            lattice_nm: number(&table.lattice_nm)?,
-            gap_ev: number(&table.gap_ev)?,
-            gap_x_ev: f64::INFINITY,
-            gap_l_ev: f64::INFINITY,
-            valence_edge_ev: number(&table.valence_edge_ev)?,
-            split_off_ev: number(&table.split_off_ev)?,
-            electron_mass: number(&table.electron_mass)?,
-            luttinger: [luttinger[0].1, luttinger[1].1, luttinger[2].1],
-            kane_energy_ev: number(&table.kane_energy_ev)?,
-            ac_ev: number(&table.ac_ev)?,
-            av_ev: number(&table.av_ev)?,
-            b_ev: number(&table.b_ev)?,
-            c11_gpa: number(&table.c11_gpa)?,
-            c12_gpa: number(&table.c12_gpa)?,
-        },
-        index,
-    })
-}
-
-/// What no crystal can have, though each number by itself could be.
-fn physical(table: &NumbersTable, findings: &mut Findings) {
-    if let Some(given) = &table.luttinger
-        && let Some([(_, first), (_, second), (_, third)]) = given.value.as_deref()
-    {
-        let heaviest = second.abs().max(third.abs());
-        if *first <= 2.0 * heaviest {
-            findings.faults.push(
-                Diagnostic::new(
-                    given.span.clone(),
-                    "a hole mass is not positive: gamma1 is above twice gamma2 and twice gamma3",
-                )
-                .with_help("the order is gamma1, gamma2, gamma3 of the six-band model (not of the eight-band one)"),
-            );
-        }
-    }
-    let value = |field: &Field<f64>| field.as_ref().and_then(|given| given.value);
-    if let (Some(c11), Some(given), Some(c12)) =
-        (value(&table.c11_gpa), &table.c12_gpa, value(&table.c12_gpa))
-        && c12 >= c11
-    {
-        findings.faults.push(
-            Diagnostic::new(
-                given.span.clone(),
-                "C12 is not below C11: such a crystal is not stable",
-            )
-            .with_help("check which of the two is which"),
-        );
-    }
+    Ok(Some(sign * value))
 }

@@ -1,5 +1,6 @@
 //! The reader: walks the parsed TOML along the table of keys and checks every value by itself.
 
+use std::borrow::Cow;
 use std::collections::BTreeMap;
 use std::ops::Range;
 
@@ -7,12 +8,13 @@ use toml::Spanned;
 use toml::de::{DeTable, DeValue};
 
 use super::Remark;
-use super::keys::{self, FILE, Key, Kind, MISNOMERS, Magnitude, Table};
-use super::number::shown;
+use super::keys::{FILE, Key, Kind, MISNOMERS, Magnitude, Table};
 use crate::source::{Diagnostic, nearest, one_of};
 
 /// Longest text value, characters.
 const LONGEST_TEXT: usize = 200;
+/// Most keys of a table that are looked at one by one.
+const MOST_KEYS: usize = 200;
 
 /// What the walk finds on its way.
 #[derive(Default)]
@@ -135,40 +137,72 @@ fn values(
     findings: &mut Findings,
 ) -> Values {
     let mut entries = BTreeMap::new();
+    let too_many = found.len() > MOST_KEYS;
+    if too_many {
+        findings.faults.push(
+            Diagnostic::new(span.clone(), format!("{} keys in one table", found.len()))
+                .with_help(format!("known are {}", one_of(table.names()))),
+        );
+    }
     for (name, value) in found {
-        let Some(key) = table.key(name.get_ref()) else {
-            findings.faults.push(unknown(table, name));
-            continue;
+        let (key, checked) = match table.key(name.get_ref()) {
+            Some(key) => (Some(key), checked(key, value, findings)),
+            None if too_many => continue,
+            None => (unknown(table, name, findings), None),
         };
         let given = Given {
             key: name.span(),
             span: value.span(),
-            value: checked(key, value, findings),
+            value: checked,
         };
-        entries.insert(key.name, given);
+        match key {
+            Some(key) if key.name == name.get_ref() => {
+                entries.insert(key.name, given);
+            }
+            // The key that was meant counts as given: one slip makes one complaint.
+            Some(meant) => {
+                entries.entry(meant.name).or_insert(given);
+            }
+            None => {}
+        }
     }
     Values { span, entries }
 }
 
-fn unknown(table: &'static Table, name: &Spanned<std::borrow::Cow<'_, str>>) -> Diagnostic {
+/// Complains about a key that is not in the table, and returns the one that was probably meant.
+fn unknown(
+    table: &'static Table,
+    name: &Spanned<Cow<'_, str>>,
+    findings: &mut Findings,
+) -> Option<&'static Key> {
     let word = name.get_ref();
     let misnomer = MISNOMERS
         .iter()
-        .find(|(misnomer, _)| misnomer == word)
-        .map(|(_, help)| (*help).to_owned());
-    let help = misnomer
-        .or_else(|| nearest(word, table.names()).map(|key| format!("did you mean `{key}`?")))
-        .or_else(|| home(&FILE, word, 0).map(|path| format!("`{word}` belongs in {path}")))
-        .unwrap_or_else(|| format!("known here: {}", one_of(table.names())));
-    let place = match table.path {
-        "" => "of the file".to_owned(),
-        path => format!("of [{path}]"),
+        .filter_map(|misnomer| Some((misnomer, table.key(misnomer.meant)?)))
+        .find(|(misnomer, _)| misnomer.word == word);
+    let near = || nearest(word, table.names()).and_then(|name| table.key(name));
+    let (help, meant) = if let Some((misnomer, key)) = misnomer {
+        (misnomer.help.to_owned(), Some(key))
+    } else if let Some(key) = near() {
+        (format!("did you mean `{}`?", key.name), Some(key))
+    } else if let Some(path) = home(&FILE, word, 0) {
+        (format!("`{word}` belongs in {path}"), None)
+    } else {
+        (format!("known here: {}", one_of(table.names())), None)
     };
-    Diagnostic::new(
-        name.span(),
-        format!("unknown key `{}` {place}", brief(word)),
-    )
-    .with_help(help)
+    let message = format!("unknown key `{}` {}", brief(word), place_of(table));
+    findings
+        .faults
+        .push(Diagnostic::new(name.span(), message).with_help(help));
+    meant
+}
+
+fn place_of(table: &Table) -> String {
+    match table.path {
+        "" => "of the file".to_owned(),
+        "layers" => "of [[layers]]".to_owned(),
+        path => format!("of [{path}]"),
+    }
 }
 
 /// Where a key of this name would be known. Tables nest three deep; a row holds rows.
@@ -224,17 +258,17 @@ fn checked(
         }
         (Kind::Named(table), DeValue::Table(found)) => Some(named(table, found, findings)),
         (Kind::Rows(table), DeValue::Array(items)) => {
-            let rows = items
+            let rows: Vec<Values> = items
                 .iter()
                 .filter_map(|item| match item.get_ref() {
                     DeValue::Table(found) => Some(values(table, item.span(), found, findings)),
                     other => {
-                        findings.faults.push(wrong_kind(key, other, item.span()));
+                        findings.faults.push(wrong_item(key, other, item.span()));
                         None
                     }
                 })
                 .collect();
-            Some(Value::Rows(rows))
+            (items.is_empty() || !rows.is_empty()).then_some(Value::Rows(rows))
         }
         (_, other) => {
             findings.faults.push(wrong_kind(key, other, span));
@@ -401,84 +435,6 @@ fn possible(
     Some(value)
 }
 
-/// Why a number is not accepted, and what would be.
-#[derive(Clone, Debug, PartialEq, Eq)]
-pub struct Refusal {
-    /// What is wrong with it.
-    pub message: String,
-    /// What to do.
-    pub help: String,
-}
-
-impl Magnitude {
-    fn check(&self, name: &str, value: f64) -> Result<(), Refusal> {
-        let (lowest, highest) = self.possible;
-        let unit = if self.unit.is_empty() {
-            String::new()
-        } else {
-            format!(" {}", self.unit)
-        };
-        if !value.is_finite() {
-            return Err(Refusal {
-                message: format!("`{name}` is not a finite number"),
-                help: format!(
-                    "give a number from {} to {}{unit}",
-                    shown(lowest),
-                    shown(highest)
-                ),
-            });
-        }
-        if (lowest..=highest).contains(&value) {
-            return Ok(());
-        }
-        let help = if name == "av_ev" && value < 0.0 {
-            "write it positive: the edge moves by +av (exx + eyy + ezz), so compression lowers it"
-                .to_owned()
-        } else if value < 0.0 && lowest >= 0.0 {
-            "it can't be negative: check the sign".to_owned()
-        } else {
-            "check the unit and the decimal point".to_owned()
-        };
-        Err(Refusal {
-            message: format!(
-                "`{name}` is {}{unit}: possible is {} to {}{unit}",
-                shown(value),
-                shown(lowest),
-                shown(highest)
-            ),
-            help,
-        })
-    }
-}
-
-/// Whether a key of `[operation]` or `[model]` would accept a number: for values that reach a
-/// structure by another way than its file.
-///
-/// # Errors
-///
-/// The words in which the file would be refused.
-///
-/// ```
-/// use stepwell::structure::check_magnitude;
-///
-/// assert!(check_magnitude("temperature_k", 358.15).is_ok());
-/// let refusal = check_magnitude("temperature_k", 3000.0).expect_err("too hot");
-/// assert_eq!(refusal.message, "`temperature_k` is 3000 K: possible is 1 to 1000 K");
-/// ```
-pub fn check_magnitude(key: &str, value: f64) -> Result<(), Refusal> {
-    let known = keys::OPERATION.key(key).or_else(|| keys::MODEL.key(key));
-    match known.map(|key| &key.kind) {
-        Some(Kind::Number(magnitude) | Kind::Numbers(magnitude, ..)) => magnitude.check(key, value),
-        _ => Err(Refusal {
-            message: format!("`{}` is no number of [operation] or [model]", brief(key)),
-            help: format!(
-                "one of {}",
-                one_of(keys::OPERATION.names().chain(keys::MODEL.names()))
-            ),
-        }),
-    }
-}
-
 fn numbers<'a, 'i: 'a>(
     key: &'static Key,
     magnitude: Magnitude,
@@ -506,14 +462,13 @@ fn numbers<'a, 'i: 'a>(
     let mut numbers = Vec::with_capacity(items.len());
     let mut complete = true;
     for item in items {
-        let number = match as_number(item.get_ref()) {
-            Some(number) => possible(key.name, magnitude, number, item.span(), findings),
-            None => {
-                findings
-                    .faults
-                    .push(wrong_kind(key, item.get_ref(), item.span()));
-                None
-            }
+        let number = if let Some(number) = as_number(item.get_ref()) {
+            possible(key.name, magnitude, number, item.span(), findings)
+        } else {
+            findings
+                .faults
+                .push(wrong_item(key, item.get_ref(), item.span()));
+            None
         };
         match number {
             Some(number) => numbers.push((item.span(), number)),
@@ -541,10 +496,6 @@ fn wrong_kind(key: &'static Key, found: &DeValue<'_>, span: Range<usize>) -> Dia
                 format!("write a number{unit}, without quotes and without the unit"),
             )
         }
-        Kind::Numbers(..) if matches!(found, DeValue::Array(_)) => (
-            "a list of numbers",
-            "write one list: `[1e18, 2e18]`".to_owned(),
-        ),
         Kind::Numbers(..) => (
             "a list of numbers",
             format!("write `{} = [...]`: {}", key.name, key.doc),
@@ -565,6 +516,29 @@ fn wrong_kind(key: &'static Key, found: &DeValue<'_>, span: Range<usize>) -> Dia
     Diagnostic::new(
         span,
         format!("`{}` is {}, and {wanted} is wanted", key.name, said(found)),
+    )
+    .with_help(help)
+}
+
+/// A member of a list that is not what the list is of.
+fn wrong_item(key: &'static Key, found: &DeValue<'_>, span: Range<usize>) -> Diagnostic {
+    let (wanted, help) = match key.kind {
+        Kind::Rows(_) => (
+            "tables",
+            "write `[[layers]]` above each layer, or `layers = [{ role = ... }, ...]`",
+        ),
+        _ => (
+            "numbers",
+            "write one list of numbers, without quotes: `[1e18, 2e18]`",
+        ),
+    };
+    Diagnostic::new(
+        span,
+        format!(
+            "`{}` holds {}, and {wanted} are wanted",
+            key.name,
+            said(found)
+        ),
     )
     .with_help(help)
 }

@@ -1,11 +1,17 @@
 //! From text to a table with places, and what is wrong with the TOML itself.
 
+use std::ops::Range;
+
 use toml::de::DeTable;
 
 use crate::source::Diagnostic;
 
 /// Deepest nesting of brackets that is read; a structure needs four.
 const DEEPEST_NESTING: usize = 32;
+
+/// Above this, bytes, parsing ends at the first fault of the TOML: a structure has a few thousand
+/// bytes, and something else may have a fault in every one.
+const LARGEST_RECOVERED_BYTES: usize = 1 << 18;
 
 /// The table that could be made out, and the faults of the TOML in the order of the text.
 ///
@@ -19,22 +25,43 @@ pub(super) fn table(text: &str) -> (DeTable<'_>, Vec<Diagnostic>) {
         .with_help("a structure file needs four levels: close the brackets that were left open");
         return (DeTable::new(), vec![fault]);
     }
-    let (table, errors) = DeTable::parse_recoverable(text);
+    let (table, errors) = if text.len() > LARGEST_RECOVERED_BYTES {
+        match DeTable::parse(text) {
+            Ok(table) => (table.into_inner(), Vec::new()),
+            Err(error) => (DeTable::new(), vec![error]),
+        }
+    } else {
+        let (table, errors) = DeTable::parse_recoverable(text);
+        (table.into_inner(), errors)
+    };
     let mut faults: Vec<Diagnostic> = Vec::new();
+    // One slip often makes several errors; the first on a line names it.
+    let mut line_named = 0;
     for error in errors {
         let span = error.span().unwrap_or(text.len()..text.len());
-        // One slip often makes several errors; the first on a line names it.
-        let same_line = |last: &Diagnostic| {
-            last.span.start <= span.start && !text[last.span.start..span.start].contains('\n')
-        };
-        if !faults.last().is_some_and(same_line) {
-            let help = advice(text, span.start, error.message());
-            faults.push(
-                Diagnostic::new(span, format!("not TOML: {}", error.message())).with_help(help),
-            );
+        if span.start < line_named {
+            continue;
         }
+        line_named = 1 + line_end(text.as_bytes(), span.start.min(text.len()));
+        let help = advice(text, span.start, error.message());
+        faults
+            .push(Diagnostic::new(span, format!("not TOML: {}", error.message())).with_help(help));
     }
-    (table.into_inner(), faults)
+    (table, faults)
+}
+
+/// What a fault of the TOML at byte `at` makes doubtful: its line, and below a broken head of a
+/// table all that would have belonged to it.
+pub(super) fn spoilt(text: &str, at: usize) -> Range<usize> {
+    let at = at.min(text.len());
+    let start = text[..at].rfind('\n').map_or(0, |feed| feed + 1);
+    let next = if text[start..].trim_start().starts_with('[') {
+        "\n["
+    } else {
+        "\n"
+    };
+    let end = text[at..].find(next).map_or(text.len(), |feed| at + feed);
+    start..end + 1
 }
 
 /// The byte of the bracket that goes too deep, if any; brackets in strings and comments are text.
@@ -89,19 +116,23 @@ fn string_end(bytes: &[u8], from: usize, quote: u8) -> usize {
 fn advice(text: &str, at: usize, message: &str) -> &'static str {
     let line_start = text[..at].rfind('\n').map_or(0, |feed| feed + 1);
     let before = text[line_start..at].trim_end();
-    let rest = text[at..].trim_start();
-    let after_digit = before.ends_with(|letter: char| letter.is_ascii_digit());
+    let rest = text[at..].lines().next().unwrap_or_default().trim_start();
+    let number_before = before.ends_with(|letter: char| letter.is_ascii_digit());
+    let number_after = rest
+        .starts_with(|letter: char| letter.is_ascii_digit() || matches!(letter, '+' | '-' | '.'));
     if message.contains("duplicate key") {
         "each key and each table stands once: leave out one of the two"
-    } else if after_digit && rest.starts_with(',') && !before.contains('[') {
+    } else if number_before && rest.starts_with(',') && !before.contains('[') {
         "write the decimal point as `.`"
-    } else if after_digit && rest.starts_with(char::is_alphabetic) {
+    } else if number_before && rest.starts_with(char::is_alphabetic) {
         "leave the unit off: the key names it"
-    } else if before.ends_with('=') && rest.starts_with(char::is_alphabetic) {
-        "put words and formulas in quotes: `role = \"well\"`"
-    } else if before.ends_with('=') {
+    } else if before.ends_with('=') && number_after {
+        "write a number alone (`8.5`, `1e18`): the unit is in the key"
+    } else if before.ends_with('=') && (rest.is_empty() || rest.starts_with('#')) {
         "give the key a value, or leave it out"
-    } else if message.contains("key with no value") || message.contains("expected `=`") {
+    } else if before.ends_with('=') {
+        "put words and formulas in quotes: `role = \"well\"`"
+    } else if message.contains("key with no value") {
         "a line is `key = value`, or `[table]`; comments begin with `#`"
     } else {
         "the file is TOML 1.0: `key = value` lines, `[table]` heads, text in double quotes"

@@ -1,7 +1,9 @@
 //! Levels and envelopes of the wells.
 
+mod mixed;
 mod single;
 
+pub use mixed::{Dipole, MixedBands, Slice, ZoneCentre, mixed};
 pub use single::{Band, Hamiltonian, Level, Overlaps, SingleBands, hamiltonian, single};
 
 use crate::profile::{Cells, Profile};

@@ -82,22 +82,32 @@ pub struct Level {
     pub mass_bounded: bool,
     /// φ on the inner nodes, ∫ φ² dz = 1, in nm^−½.
     pub envelope: Vec<f64>,
-    /// φ on the grid of twice the step, to extrapolate what follows from envelopes; empty where the
-    /// level has a near neighbour and its envelope is only one choice inside their span.
-    coarser: Vec<f64>,
+    /// φ on the grid of twice the step, to extrapolate what follows from envelopes.
+    pub(super) coarser: Vec<f64>,
+    /// Whether the level has a near neighbour, so that its envelope is only one choice inside their
+    /// span, and may be another on another grid.
+    crowded: bool,
     /// Relative size of the correction that the grid's error made to the in-plane mass.
     mass_correction: f64,
+}
+
+impl Level {
+    /// Whether no other level of its band is so near that only their span has a meaning.
+    #[must_use]
+    pub fn is_alone(&self) -> bool {
+        !self.crowded
+    }
 }
 
 /// Levels of the three bands on common nodes.
 #[derive(Clone, Debug, Default, PartialEq)]
 pub struct SingleBands {
-    /// How often the coarsest step was halved to make the finest grid.
-    pub halvings: u32,
     /// Nodes of the envelopes.
     pub nodes: Nodes,
     /// Nodes of twice the step.
-    coarser: Nodes,
+    pub(super) coarser: Nodes,
+    /// How often the coarsest step was halved for `nodes`.
+    pub(super) halvings: u32,
     /// Electron levels, rising.
     pub electron: Vec<Level>,
     /// Heavy-hole levels, from the band edge down.
@@ -136,7 +146,7 @@ impl SingleBands {
         };
         let square = |electron: &Level, hole: &Level| {
             let fine = size(&self.nodes, &electron.envelope, &hole.envelope);
-            if electron.coarser.is_empty() || hole.coarser.is_empty() {
+            if electron.crowded || hole.crowded {
                 return fine * fine;
             }
             let coarse = size(&self.coarser, &electron.coarser, &hole.coarser);
@@ -203,12 +213,12 @@ pub fn single(profile: &Profile<'_>, nonparabolic: bool) -> Result<SingleBands, 
             .collect();
         let ladder = |band| levels(profile, &grids, band, nonparabolic);
         let bands = SingleBands {
-            halvings: finest,
             electron: ladder(Band::Electron)?,
             heavy: ladder(Band::Heavy)?,
             light: ladder(Band::Light)?,
             nodes: Nodes::of(profile, &grids[2]),
             coarser: Nodes::of(profile, &grids[1]),
+            halvings: finest,
         };
         let settled = [&bands.electron, &bands.heavy, &bands.light]
             .into_iter()
@@ -372,7 +382,7 @@ fn levels(
             let (energy, error_ev) = extrapolated[index];
             let shares = Shares::new(profile, &grids[2], &chains[2], band, energy, &fine.envelope);
             let (mut reciprocal_mass, mut in_wells) = (shares.reciprocal_mass, shares.in_wells);
-            let mut coarser = half.envelope;
+            let coarser = half.envelope;
             let half = Shares::new(profile, &grids[1], &chains[1], band, energy, &coarser);
             let correction = (reciprocal_mass - half.reciprocal_mass) / 3.0;
             let mass_correction = (correction / reciprocal_mass).abs();
@@ -381,9 +391,7 @@ fn levels(
             if !crowded(index) || mass_correction < 3e-3 {
                 reciprocal_mass += correction;
             }
-            if crowded(index) {
-                coarser.clear();
-            } else {
+            if !crowded(index) {
                 in_wells += (in_wells - half.in_wells) / 3.0;
             }
             Level {
@@ -395,6 +403,7 @@ fn levels(
                 mass_bounded: shares.mass_bounded,
                 envelope: fine.envelope,
                 coarser,
+                crowded: crowded(index),
                 mass_correction,
             }
         });

@@ -1,0 +1,696 @@
+//! Subbands with heavy, light and split-off holes mixed.
+
+use rayon::prelude::*;
+
+use super::{CLUSTER_EV, COARSEST_STEP_NM, Nodes, SingleBands, Uncertified};
+use crate::numerics::block::{BlockChain, BlockRun, Ladder, Three};
+use crate::profile::{Cells, Profile};
+use crate::units::HBAR2_OVER_2M0_EV_NM2;
+
+/// Steps of the in-plane wave number, 1/nm, and up to where each is taken: small enough to follow
+/// states from one to the next, and to interpolate between.
+const WAVE_NUMBER_STEPS_PER_NM: [(f64, f64); 3] = [(0.0125, 0.5), (0.025, 1.2), (0.05, 2.0)];
+
+/// The in-plane wave numbers that may be visited, 1/nm, from zero.
+fn wave_numbers() -> Vec<f64> {
+    let mut k_per_nm = vec![0.0];
+    let mut start = 0.0;
+    for (step, end) in WAVE_NUMBER_STEPS_PER_NM {
+        let count = ((end - start) / step).round() as usize;
+        k_per_nm.extend((1..=count).map(|index| start + index as f64 * step));
+        start = end;
+    }
+    k_per_nm
+}
+
+/// A state at zero in-plane wave number.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct ZoneCentre {
+    /// Energy, eV.
+    pub energy_ev: f64,
+    /// Heavy-hole share.
+    pub heavy: f64,
+    /// Light-hole share.
+    pub light: f64,
+    /// Split-off share.
+    pub split_off: f64,
+    /// Estimate of the numerical error of the energy, eV.
+    pub error_ev: f64,
+    /// Share inside the wells and the steps that belong to them.
+    pub in_wells: f64,
+}
+
+/// Squared momentum matrix elements of one electron level and one valence state, in M_b² = m₀E_p/6,
+/// summed over the electron spins and averaged over the direction in the plane.
+#[derive(Clone, Copy, Debug, Default, PartialEq)]
+pub struct Dipole {
+    /// Light polarised in the plane.
+    pub te: f64,
+    /// Light polarised along growth.
+    pub tm: f64,
+}
+
+/// Envelope overlaps of one electron level and one valence state.
+#[derive(Clone, Copy, Debug, Default, PartialEq)]
+struct Projection {
+    heavy: f64,
+    light: f64,
+    split_off: f64,
+}
+
+impl Projection {
+    /// |M|² of the state: the sum rule (2 TE + TM)/3 = I_h² + I_l² + I_s² holds identically.
+    fn dipole(self) -> Dipole {
+        use std::f64::consts::SQRT_2;
+        let plane = self.light - SQRT_2 * self.split_off;
+        let growth = self.light + self.split_off / SQRT_2;
+        Dipole {
+            te: 1.5 * self.heavy * self.heavy + 0.5 * plane * plane,
+            tm: 2.0 * growth * growth,
+        }
+    }
+
+    fn overlap(self) -> f64 {
+        self.heavy * self.heavy + self.light * self.light + self.split_off * self.split_off
+    }
+}
+
+/// The states of one block at one in-plane wave number.
+#[derive(Clone, Debug, Default, PartialEq)]
+pub struct Slice {
+    /// Energies, from the highest down, eV.
+    pub energy_ev: Vec<f64>,
+    /// Matrix elements, electron level by electron level.
+    pub dipoles: Vec<Vec<Dipole>>,
+}
+
+/// The valence states of the wells over the in-plane wave number.
+#[derive(Clone, Debug, Default, PartialEq)]
+pub struct MixedBands {
+    /// Zone-centre states that belong to the wells, from the highest down.
+    pub zone_centre: Vec<ZoneCentre>,
+    /// |<e|v>|² at zero wave number, all components: rows the electron levels.
+    pub overlaps: Vec<Vec<f64>>,
+    /// In-plane wave numbers, 1/nm, rising from zero.
+    pub k_per_nm: Vec<f64>,
+    /// One block counted twice where the stack is its own mirror image, else the two blocks.
+    pub blocks: Vec<Vec<Slice>>,
+    /// How many states each block stands for: 2 where one is counted twice.
+    pub degeneracy: f64,
+}
+
+/// The valence states that belong to the wells, heavy, light and split-off holes mixed.
+///
+/// # Equation
+///
+/// Six-band Luttinger-Kohn with strain in the axial approximation. With the in-plane wave number k
+/// along x the mirror y → −y splits it into two real blocks, s = ±1, on envelopes (heavy, light,
+/// split-off); d = d/dz, every kinetic term times ħ²/2m₀:
+///
+/// ```text
+///  H_hh = E_v − P − Q − (γ1+γ2) k² + d (γ1−2γ2) d
+///  H_ll = E_v − P + Q − (γ1−γ2) k² + d (γ1+2γ2) d − s (k/3) D′
+///  H_ss = E_v − P − Δ − γ1 k² + d γ1 d + s (k/3) D′
+///  H_hl = −s √3 γ̄ k² + (k/√3)(N₊ d + d N₋)
+///  H_hs = +s √6 γ̄ k² + (k/√6)(N₊ d + d N₋)
+///  H_ls = √2 Q + √2 (γ2 k² + 2 d γ2 d) + s k/(3√2) (2 d N₊ + 2 N₋ d + N₊ d + d N₋)
+/// ```
+///
+/// with N₋ = −(γ1−2γ2) − 1, N₊ = −6γ3 − N₋ (the ordering of operators of Burt and Foreman, which
+/// keeps spurious states out of the gap), D = N₊ − N₋ and γ̄ = (γ2+γ3)/2. At k = 0 the heavy hole
+/// stands alone and is that of the single band.
+///
+/// # Discretisation
+///
+/// The weak form on the grid of the single bands, envelopes on common nodes: each interval adds
+/// c₀∫ab − c₂∫a′b′ + c₊∫ab′ − c₋∫a′b − c_d∫(ab)′ for every pair of components, coefficients constant
+/// on it; interface conditions are natural. Errors fall as h². Energies at k = 0 are extrapolated
+/// from three grids, all else from two.
+///
+/// # Which states count
+///
+/// At k = 0 a state belongs to the wells if it lies above the edges of every layer outside them:
+/// heavy edges if its heavy share is over one half, else light edges (in a field: if more than half
+/// of it lies in the wells). Their number m is kept, and at each k the m highest states of each block
+/// are used.
+///
+/// # Arguments
+///
+/// * `depth_ev` – the wave number runs until the highest state has fallen this far
+///
+/// # Errors
+///
+/// [`Uncertified`] where inertia, residuals and order of the states do not agree, or where a state
+/// lies above the highest hole edge.
+///
+/// # References
+///
+/// B. A. Foreman, Phys. Rev. B 48, 4964 (1993); C. Y.-P. Chao, S. L. Chuang, Phys. Rev. B 46, 4110
+/// (1992); C.-S. Chang, S. L. Chuang, IEEE J. Sel. Top. Quantum Electron. 1, 218 (1995).
+pub fn mixed(
+    profile: &Profile<'_>,
+    single: &SingleBands,
+    depth_ev: f64,
+) -> Result<MixedBands, Uncertified> {
+    let grids: Vec<Grid> = (single.halvings - 2..=single.halvings)
+        .map(|halvings| Grid::new(profile, profile.grid(COARSEST_STEP_NM, halvings)))
+        .collect();
+    let centre = Centre::new(profile, &grids)?;
+    let count = centre.states.len();
+    if count == 0 {
+        return Ok(MixedBands::default());
+    }
+    let signs: &[f64] = if profile.is_symmetric() {
+        &[1.0]
+    } else {
+        &[1.0, -1.0]
+    };
+    let top = centre.states[0].energy_ev;
+    let electrons = |fine: bool| -> Vec<&[f64]> {
+        single
+            .electron
+            .iter()
+            .map(|level| {
+                if fine {
+                    &level.envelope[..]
+                } else {
+                    &level.coarser[..]
+                }
+            })
+            .collect()
+    };
+    let tracks: Vec<Track> = signs
+        .par_iter()
+        .flat_map(|&sign| {
+            let track = |grid: usize| {
+                let electrons = electrons(grid == 2);
+                follow(
+                    &grids[grid],
+                    sign,
+                    &centre,
+                    grid,
+                    &electrons,
+                    top - depth_ev,
+                )
+            };
+            let (coarse, fine) = rayon::join(|| track(1), || track(2));
+            [coarse, fine]
+        })
+        .collect::<Result<Vec<Track>, Uncertified>>()?;
+    let steps = tracks.iter().map(Vec::len).min().unwrap_or(0);
+    let blocks: Vec<Vec<Slice>> = tracks
+        .chunks(2)
+        .map(|pair| {
+            (0..steps)
+                .map(|at| extrapolated(&pair[0][at], &pair[1][at]))
+                .collect()
+        })
+        .collect();
+    let overlaps = centre.overlaps(&grids, single);
+    Ok(MixedBands {
+        zone_centre: centre.states,
+        overlaps,
+        k_per_nm: wave_numbers()[..steps].to_vec(),
+        degeneracy: if blocks.len() == 1 { 2.0 } else { 1.0 },
+        blocks,
+    })
+}
+
+/// Slices along k on one grid.
+type Track = Vec<Slice>;
+
+/// The same slice on two grids of steps h and h/2, extrapolated.
+fn extrapolated(coarse: &Slice, fine: &Slice) -> Slice {
+    let two = |coarse: f64, fine: f64| fine + (fine - coarse) / 3.0;
+    Slice {
+        energy_ev: coarse
+            .energy_ev
+            .iter()
+            .zip(&fine.energy_ev)
+            .map(|(&c, &f)| two(c, f))
+            .collect(),
+        dipoles: coarse
+            .dipoles
+            .iter()
+            .zip(&fine.dipoles)
+            .map(|(coarse, fine)| {
+                coarse
+                    .iter()
+                    .zip(fine)
+                    .map(|(c, f)| Dipole {
+                        te: two(c.te, f.te),
+                        tm: two(c.tm, f.tm),
+                    })
+                    .collect()
+            })
+            .collect(),
+    }
+}
+
+/// One grid with what a block needs of it.
+struct Grid {
+    cells: Vec<Cells>,
+    nodes: Nodes,
+    /// Hole energy below which no state may lie: the highest hole edge, upside down.
+    floor: f64,
+    /// Share of every node's length inside wells and steps.
+    in_wells: Vec<f64>,
+}
+
+impl Grid {
+    fn new(profile: &Profile<'_>, cells: Vec<Cells>) -> Self {
+        let highest = cells
+            .iter()
+            .map(|cell| cell.numbers.edges.heavy_ev.max(cell.numbers.edges.light_ev) + cell.tilt_ev)
+            .fold(f64::NEG_INFINITY, f64::max);
+        let nodes = Nodes::of(profile, &cells);
+        let inside: Vec<f64> = cells
+            .iter()
+            .flat_map(|cell| {
+                let counts = profile.sections[cell.section].in_wells;
+                std::iter::repeat_n(if counts { cell.length_nm } else { 0.0 }, cell.intervals)
+            })
+            .collect();
+        let in_wells = inside
+            .windows(2)
+            .zip(&nodes.weights_nm)
+            .map(|(pair, weight)| 0.5 * (pair[0] + pair[1]) / weight)
+            .collect();
+        Self {
+            cells,
+            nodes,
+            floor: -highest - 1e-9,
+            in_wells,
+        }
+    }
+
+    /// A chain for this grid, its forms still to be set.
+    fn chain(&self) -> BlockChain {
+        let empty: Three = [[0.0; 3]; 3];
+        let runs = self
+            .cells
+            .iter()
+            .map(|cell| BlockRun {
+                intervals: cell.intervals,
+                length: cell.length_nm,
+                lower: empty,
+                upper: empty,
+                coupling: empty,
+            })
+            .collect();
+        BlockChain::new(runs)
+    }
+
+    /// Sets the forms of a block at an in-plane wave number.
+    fn set(&self, chain: &mut BlockChain, k_per_nm: f64, sign: f64) {
+        for (run, cell) in chain.runs_mut().iter_mut().zip(&self.cells) {
+            set_forms(run, cell, k_per_nm, sign);
+        }
+    }
+
+    /// Shares of a valence vector; energy and error are left at zero.
+    fn shares(&self, vector: &[f64]) -> ZoneCentre {
+        let mut parts = [0.0; 3];
+        let mut in_wells = 0.0;
+        for ((values, weight), inside) in vector
+            .chunks_exact(3)
+            .zip(&self.nodes.weights_nm)
+            .zip(&self.in_wells)
+        {
+            let mut here = 0.0;
+            for (part, value) in parts.iter_mut().zip(values) {
+                *part += weight * value * value;
+                here += weight * value * value;
+            }
+            in_wells += inside * here;
+        }
+        let [heavy, light, split_off] = parts;
+        ZoneCentre {
+            energy_ev: 0.0,
+            heavy,
+            light,
+            split_off,
+            error_ev: 0.0,
+            in_wells,
+        }
+    }
+
+    /// Heavy, light and split-off overlaps of an electron envelope with a valence vector.
+    fn projection(&self, electron: &[f64], vector: &[f64]) -> Projection {
+        let mut sums = [0.0; 3];
+        for ((value, weight), parts) in electron
+            .iter()
+            .zip(&self.nodes.weights_nm)
+            .zip(vector.chunks_exact(3))
+        {
+            let scaled = value * weight;
+            for (sum, part) in sums.iter_mut().zip(parts) {
+                *sum += scaled * part;
+            }
+        }
+        Projection {
+            heavy: sums[0],
+            light: sums[1],
+            split_off: sums[2],
+        }
+    }
+}
+
+/// The forms of one interval, upside down (hole energies).
+fn set_forms(run: &mut BlockRun, cell: &Cells, k: f64, s: f64) {
+    use std::f64::consts::SQRT_2;
+    const SQRT_3: f64 = 1.732_050_807_568_877_2;
+    const SQRT_6: f64 = 2.449_489_742_783_178;
+    let unit = HBAR2_OVER_2M0_EV_NM2;
+    let [g1, g2, g3] = cell.numbers.crystal.luttinger;
+    let axial = 0.5 * (g2 + g3);
+    let minus = -(g1 - 2.0 * g2) - 1.0;
+    let plus = -6.0 * g3 - minus;
+    let edges = &cell.numbers.edges;
+    let mean = edges.valence_mean_ev + cell.tilt_ev;
+    let (shear, k2) = (edges.shear_ev, k * k);
+    let spike = s * k / 3.0 * (plus - minus) * unit;
+    let mixing = s * k / (3.0 * SQRT_2) * unit;
+    // (row, column, c0, c2, cp, cm, cd)
+    let entries = [
+        (
+            0,
+            0,
+            mean - shear - unit * (g1 + g2) * k2,
+            unit * (g1 - 2.0 * g2),
+            0.0,
+            0.0,
+            0.0,
+        ),
+        (
+            1,
+            1,
+            mean + shear - unit * (g1 - g2) * k2,
+            unit * (g1 + 2.0 * g2),
+            0.0,
+            0.0,
+            -spike,
+        ),
+        (
+            2,
+            2,
+            mean - cell.numbers.crystal.split_off_ev - unit * g1 * k2,
+            unit * g1,
+            0.0,
+            0.0,
+            spike,
+        ),
+        (
+            0,
+            1,
+            -s * SQRT_3 * axial * k2 * unit,
+            0.0,
+            k / SQRT_3 * plus * unit,
+            k / SQRT_3 * minus * unit,
+            0.0,
+        ),
+        (
+            0,
+            2,
+            s * SQRT_6 * axial * k2 * unit,
+            0.0,
+            k / SQRT_6 * plus * unit,
+            k / SQRT_6 * minus * unit,
+            0.0,
+        ),
+        (
+            1,
+            2,
+            SQRT_2 * (shear + unit * g2 * k2),
+            2.0 * SQRT_2 * g2 * unit,
+            mixing * (plus + 2.0 * minus),
+            mixing * (2.0 * plus + minus),
+            0.0,
+        ),
+    ];
+    let dz = run.length;
+    for (a, b, c0, c2, cp, cm, cd) in entries {
+        let even = 0.5 * c0 * dz - c2 / dz;
+        let odd = 0.5 * (cp - cm) - cd;
+        let slope = 0.5 * (cp + cm);
+        run.lower[a][b] = -(even - odd);
+        run.upper[a][b] = -(even + odd);
+        run.coupling[a][b] = -(c2 / dz + slope);
+        if a != b {
+            run.lower[b][a] = run.lower[a][b];
+            run.upper[b][a] = run.upper[a][b];
+            run.coupling[b][a] = -(c2 / dz - slope);
+        }
+    }
+}
+
+/// Zone-centre states that belong to the wells, and the ladders to follow from.
+struct Centre {
+    states: Vec<ZoneCentre>,
+    /// Index of each state in the ladders.
+    places: Vec<usize>,
+    ladders: Vec<Ladder>,
+}
+
+impl Centre {
+    fn new(profile: &Profile<'_>, grids: &[Grid]) -> Result<Self, Uncertified> {
+        let in_field = profile.slope_ev_nm != 0.0;
+        let heavy_edge = profile
+            .outside()
+            .map(|n| n.edges.heavy_ev)
+            .fold(f64::NEG_INFINITY, f64::max);
+        let light_edge = profile
+            .outside()
+            .map(|n| n.edges.light_ev)
+            .fold(f64::NEG_INFINITY, f64::max);
+        let lowest = heavy_edge.min(light_edge);
+        let mut chains: Vec<BlockChain> = grids
+            .iter()
+            .map(|grid| {
+                let mut chain = grid.chain();
+                grid.set(&mut chain, 0.0, 1.0);
+                chain
+            })
+            .collect();
+        let wanted = chains[2].count_below(-lowest + 1e-3);
+        let ladders: Vec<Ladder> = chains
+            .iter_mut()
+            .zip(grids)
+            .map(|(chain, grid)| {
+                chain
+                    .lowest(wanted, grid.floor)
+                    .map_err(|e| uncertified(e, 0.0))
+            })
+            .collect::<Result<_, _>>()?;
+        // At k = 0 the heavy hole stands alone: heavy states and the others cross freely from grid to
+        // grid, so that each family is numbered by itself.
+        let families: Vec<[Vec<usize>; 2]> = ladders
+            .iter()
+            .zip(grids)
+            .map(|(ladder, grid)| {
+                let (heavy, other) =
+                    (0..wanted).partition(|&index| grid.shares(&ladder.vectors[index]).heavy > 0.5);
+                [heavy, other]
+            })
+            .collect();
+        let mut found: Vec<(ZoneCentre, usize)> = Vec::new();
+        for (family, edge) in [(0, heavy_edge), (1, light_edge)] {
+            let members = families
+                .iter()
+                .map(|grid| grid[family].len())
+                .min()
+                .unwrap_or(0);
+            for member in 0..members {
+                let [coarse, middle, fine] =
+                    [0, 1, 2].map(|grid| ladders[grid].energies[families[grid][family][member]]);
+                let first = middle + (middle - coarse) / 3.0;
+                let second = fine + (fine - middle) / 3.0;
+                let energy_ev = -(second + (second - first) / 15.0);
+                let place = families[2][family][member];
+                let shares = grids[2].shares(&ladders[2].vectors[place]);
+                let belongs = if in_field {
+                    shares.in_wells > 0.5
+                } else {
+                    energy_ev > edge
+                };
+                if belongs {
+                    let state = ZoneCentre {
+                        energy_ev,
+                        error_ev: (second - first).abs() / 15.0 + 1e-9,
+                        ..shares
+                    };
+                    found.push((state, place));
+                }
+            }
+        }
+        found.sort_by(|a, b| b.0.energy_ev.total_cmp(&a.0.energy_ev));
+        let (states, places) = found.into_iter().unzip();
+        Ok(Self {
+            states,
+            places,
+            ladders,
+        })
+    }
+
+    /// |<e|v>|² of all components, extrapolated from two grids where no neighbour is near.
+    fn overlaps(&self, grids: &[Grid], single: &SingleBands) -> Vec<Vec<f64>> {
+        let crowded = |energies: &[f64], index: usize| {
+            let near = |other: f64| (other - energies[index]).abs() < CLUSTER_EV;
+            (index > 0 && near(energies[index - 1]))
+                || energies.get(index + 1).is_some_and(|&other| near(other))
+        };
+        single
+            .electron
+            .iter()
+            .map(|level| {
+                self.places
+                    .iter()
+                    .map(|&place| {
+                        let fine = grids[2]
+                            .projection(&level.envelope, &self.ladders[2].vectors[place])
+                            .overlap();
+                        let coarse = grids[1]
+                            .projection(&level.coarser, &self.ladders[1].vectors[place])
+                            .overlap();
+                        let single_choice = level.is_alone()
+                            && !crowded(&self.ladders[2].energies, place)
+                            && fine > 1e-6;
+                        let overlap = if single_choice {
+                            fine + (fine - coarse) / 3.0
+                        } else {
+                            fine
+                        };
+                        overlap.clamp(0.0, 1.0)
+                    })
+                    .collect()
+            })
+            .collect()
+    }
+}
+
+fn uncertified(error: crate::numerics::block::Uncertified, k_per_nm: f64) -> Uncertified {
+    let band = if k_per_nm == 0.0 {
+        "valence zone-centre"
+    } else {
+        "valence in-plane"
+    };
+    Uncertified {
+        band,
+        level: error.level,
+        energy_ev: -error.energy,
+    }
+}
+
+/// The slices of one block on one grid, from k = 0 until the highest state has fallen to `depth`.
+fn follow(
+    grid: &Grid,
+    sign: f64,
+    centre: &Centre,
+    which: usize,
+    electrons: &[&[f64]],
+    depth: f64,
+) -> Result<Track, Uncertified> {
+    /// States beyond those used, to take over where characters are exchanged.
+    const GUARDS: usize = 2;
+    let count = centre.states.len();
+    let start = &centre.ladders[which];
+    let kept = (count + GUARDS).min(start.energies.len()).max(count);
+    let mut chain = grid.chain();
+    let mut ladder = Ladder {
+        energies: start.energies[..kept].to_vec(),
+        vectors: start.vectors[..kept].to_vec(),
+    };
+    let mut before = ladder.clone();
+    let mut track = Vec::new();
+    let slice = |ladder: &Ladder| Slice {
+        energy_ev: ladder.energies[..count]
+            .iter()
+            .map(|energy| -energy)
+            .collect(),
+        dipoles: electrons
+            .iter()
+            .map(|electron| {
+                ladder.vectors[..count]
+                    .iter()
+                    .map(|vector| grid.projection(electron, vector).dipole())
+                    .collect()
+            })
+            .collect(),
+    };
+    track.push(slice(&ladder));
+    let k_per_nm = wave_numbers();
+    for at in 1..k_per_nm.len() {
+        let (from, to) = (k_per_nm[at - 1], k_per_nm[at]);
+        // Straight on from the two slices before: energies and vectors.
+        let ratio = if at > 1 {
+            (to - from) / (from - k_per_nm[at - 2])
+        } else {
+            0.0
+        };
+        grid.set(&mut chain, to, sign);
+        let mut next = ahead(&chain, &before, &ladder, ratio);
+        if !chain.follow(&mut next, count, grid.floor) {
+            next = creep(grid, &mut chain, sign, count, &ladder, (from, to))
+                .map_err(|error| uncertified(error, to))?;
+        }
+        before = std::mem::replace(&mut ladder, next);
+        track.push(slice(&ladder));
+        if -ladder.energies[0] < depth {
+            break;
+        }
+    }
+    Ok(track)
+}
+
+/// From the ladder at one wave number to that at the next in smaller and smaller steps, and from
+/// nothing where even these do not keep hold of the states.
+fn creep(
+    grid: &Grid,
+    chain: &mut BlockChain,
+    sign: f64,
+    count: usize,
+    start: &Ladder,
+    (from, to): (f64, f64),
+) -> Result<Ladder, crate::numerics::block::Uncertified> {
+    for parts in [2, 4] {
+        let mut ladder = start.clone();
+        let kept_hold = (1..=parts).all(|part| {
+            let k = from + (to - from) * f64::from(part) / f64::from(parts);
+            grid.set(chain, k, sign);
+            chain.follow(&mut ladder, count, grid.floor)
+        });
+        if kept_hold {
+            return Ok(ladder);
+        }
+    }
+    grid.set(chain, to, sign);
+    chain
+        .lowest(start.energies.len(), grid.floor)
+        .or_else(|_| chain.lowest(count, grid.floor))
+}
+
+/// Energies and vectors continued in a straight line through two slices, `ratio` being the step to
+/// come over the step behind.
+fn ahead(chain: &BlockChain, before: &Ladder, last: &Ladder, ratio: f64) -> Ladder {
+    let mut next = last.clone();
+    for (index, vector) in next.vectors.iter_mut().enumerate() {
+        let Some(old) = before.vectors.get(index) else {
+            continue;
+        };
+        let alike = chain.product(old, vector);
+        // Where a state has changed its character there is no straight line to follow.
+        if alike.abs() < 0.7 {
+            continue;
+        }
+        next.energies[index] += ratio * (last.energies[index] - before.energies[index]);
+        let sense = ratio * alike.signum();
+        for (value, old) in vector.iter_mut().zip(old) {
+            *value = (1.0 + ratio) * *value - sense * old;
+        }
+        let scale = chain.product(vector, vector).sqrt().recip();
+        for value in vector.iter_mut() {
+            *value *= scale;
+        }
+    }
+    next
+}

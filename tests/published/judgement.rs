@@ -1,0 +1,173 @@
+//! Rows and how they are judged.
+
+use crate::Answer;
+use libtest_mimic::Failed;
+use serde::Deserialize;
+
+/// One number to compare.
+#[derive(Clone, Debug, Deserialize)]
+#[serde(deny_unknown_fields)]
+pub struct Check {
+    /// What is asked, in the words of the problem.
+    pub quantity: String,
+    /// Where it is asked, if the quantity depends on something.
+    pub at: Option<f64>,
+    value: Option<f64>,
+    range: Option<[f64; 2]>,
+    /// In the unit of the value.
+    tolerance: Option<f64>,
+    relative_tolerance: Option<f64>,
+    /// How this number is known, where it differs from the rest of the file.
+    known: Option<String>,
+    /// Why its tolerance differs from the rest of the file.
+    tolerance_reason: Option<String>,
+    /// Why the program is known to miss it.
+    expected_miss: Option<String>,
+}
+
+impl Check {
+    /// A question without an expected answer.
+    pub fn asking(quantity: &str) -> Self {
+        Self {
+            quantity: quantity.to_owned(),
+            at: None,
+            value: None,
+            range: None,
+            tolerance: None,
+            relative_tolerance: None,
+            known: None,
+            tolerance_reason: None,
+            expected_miss: None,
+        }
+    }
+
+    pub fn title(&self) -> String {
+        self.at.map_or_else(
+            || self.quantity.clone(),
+            |at| format!("{} at {at}", self.quantity),
+        )
+    }
+
+    /// Lowest and highest accepted value, and what is published in words.
+    fn accepted(&self) -> (f64, f64, String) {
+        for statement in [&self.known, &self.tolerance_reason, &self.expected_miss] {
+            assert!(
+                statement.as_ref().is_none_or(|text| !text.is_empty()),
+                "{} has an empty statement",
+                self.title()
+            );
+        }
+        match (
+            self.value,
+            self.range,
+            self.tolerance,
+            self.relative_tolerance,
+        ) {
+            (Some(value), None, Some(tolerance), None) => (
+                value - tolerance,
+                value + tolerance,
+                format!("{} ± {}", digits(value), digits(tolerance)),
+            ),
+            (Some(value), None, None, Some(relative)) => {
+                let tolerance = (value * relative).abs();
+                (
+                    value - tolerance,
+                    value + tolerance,
+                    format!("{} ± {} of it", digits(value), digits(relative)),
+                )
+            }
+            (None, Some([low, high]), None, None) if low < high => {
+                (low, high, format!("{} … {}", digits(low), digits(high)))
+            }
+            _ => panic!(
+                "{}: give a value with one tolerance, or a range",
+                self.title()
+            ),
+        }
+    }
+}
+
+/// A number with six digits, as the table shows it.
+pub fn digits(value: f64) -> String {
+    let size = value.abs();
+    if value == 0.0 {
+        "0".to_owned()
+    } else if (1e-3..1e6).contains(&size) {
+        let before = size.log10().floor();
+        let decimals = (5.0 - before).max(0.0);
+        let text = format!("{value:.*}", decimals as usize);
+        if text.contains('.') {
+            text.trim_end_matches('0').trim_end_matches('.').to_owned()
+        } else {
+            text
+        }
+    } else {
+        let text = format!("{value:.5e}");
+        let (mantissa, exponent) = text.split_once('e').expect("scientific notation");
+        let mantissa = mantissa.trim_end_matches('0').trim_end_matches('.');
+        format!("{mantissa}e{exponent}")
+    }
+}
+
+/// How a row came out.
+pub struct Verdict {
+    /// What is published.
+    pub published: String,
+    /// What the program says.
+    pub computed: String,
+    /// Whether it is inside the tolerance.
+    pub met: bool,
+    /// Why it was expected to be missed.
+    pub expected_miss: Option<String>,
+}
+
+impl Verdict {
+    pub fn of(check: &Check, answer: Answer) -> Self {
+        let (low, high, published) = check.accepted();
+        let (met, computed) = match answer {
+            // Written so that NaN is a miss.
+            Ok(got) => (low <= got && got <= high, digits(got)),
+            Err(reason) => (false, reason),
+        };
+        Self {
+            published,
+            computed,
+            met,
+            expected_miss: check.expected_miss.clone(),
+        }
+    }
+
+    pub fn of_order(values: Result<Vec<f64>, String>, expected_miss: Option<&str>) -> Self {
+        let (met, computed) = match values {
+            Ok(values) => (
+                values.len() > 1 && values.windows(2).all(|pair| pair[0] < pair[1]),
+                values
+                    .iter()
+                    .map(|&value| digits(value))
+                    .collect::<Vec<_>>()
+                    .join(", "),
+            ),
+            Err(reason) => (false, reason),
+        };
+        Self {
+            published: "rising".to_owned(),
+            computed,
+            met,
+            expected_miss: expected_miss.map(str::to_owned),
+        }
+    }
+
+    pub fn outcome(&self) -> Result<(), Failed> {
+        match (self.met, &self.expected_miss) {
+            (true, None) | (false, Some(_)) => Ok(()),
+            (false, None) => {
+                Err(format!("published {}, computed {}", self.published, self.computed).into())
+            }
+            (true, Some(reason)) => Err(format!(
+                "met ({}), though listed as a miss because {reason}: take it off the list",
+                self.computed
+            )
+            .into()),
+        }
+    }
+}
