@@ -70,6 +70,10 @@ impl CsvTable {
     }
 
     /// The table as a file.
+    ///
+    /// # Panics
+    ///
+    /// Never: the text is written to memory, and every row has the cells of the head.
     #[must_use]
     pub fn text(&self, stamp: &Stamp) -> String {
         let mut writer = csv::Writer::from_writer(format!("# {}\n", stamp.line()).into_bytes());

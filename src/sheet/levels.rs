@@ -9,6 +9,7 @@ use crate::materials::Sense;
 use crate::source::Colour;
 use crate::structure::{Layer, Stack};
 use crate::units::wavelength_nm;
+use std::fmt::Write as _;
 
 /// Longer ladders and lists are cut: a page is read, a file is searched.
 const MOST_ROWS: usize = 12;
@@ -199,7 +200,7 @@ fn ladder_rows(ladder: &Ladder, table: &mut Table, notes: &mut Notes) {
         notes.near_edge |= rung.near_edge;
         let mut name = group.name(ladder.symbol);
         if many {
-            name.push_str(&format!(" (×{})", group.count()));
+            let _ = write!(name, " (×{})", group.count());
         }
         if rung.near_edge {
             name.push_str(" *");

@@ -95,6 +95,10 @@ struct TransitionEntry<'a> {
     overlap: f64,
 }
 
+#[expect(
+    clippy::struct_field_names,
+    reason = "they are the keys of the document"
+)]
 #[derive(Serialize)]
 struct EmissionEntry {
     first_transition_nm: f64,
