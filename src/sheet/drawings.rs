@@ -17,7 +17,7 @@ const MOST_GROUPS: usize = 6;
 /// Points of an envelope.
 const ENVELOPE_POINTS: usize = 400;
 /// Height of the highest envelope, as a share of the energies shown.
-const ENVELOPE_SHARE: f64 = 0.12;
+const ENVELOPE_SHARE: f64 = 0.09;
 /// Air above and below the energies shown, eV.
 const AIR_EV: f64 = 0.03;
 
@@ -340,9 +340,9 @@ fn gain_panel(spectrum: &Spectrum) -> Panel {
             of: runs.len(),
         };
         let curve = |name: String, of: fn(&Point) -> f64, dash, naming| Curve {
+            naming,
             ink,
             dash,
-            naming,
             ..Curve::through(name, photons.iter().copied().zip(run.points.iter().map(of)))
         };
         panel.curves.push(curve(
@@ -383,7 +383,7 @@ fn peak_panel(spectrum: &Spectrum) -> Panel {
     };
     let mut panel = Panel {
         plot_height_px: 230.0,
-        x: Axis::new("carrier density", "cm⁻³").logarithmic(),
+        x: density_axis(spectrum),
         y: Axis {
             heavy_zero: true,
             includes: Some(0.0),
@@ -420,6 +420,18 @@ fn peak_panel(spectrum: &Spectrum) -> Panel {
     panel
 }
 
+/// From below transparency, or the lowest density, to above the highest.
+fn density_axis(spectrum: &Spectrum) -> Axis {
+    let axis = Axis::new("carrier density", "cm⁻³").logarithmic();
+    let densities = spectrum.runs.iter().map(|run| run.density_cm3);
+    let (low, high) = densities
+        .chain(spectrum.transparency.map(|at| at.density_cm3))
+        .fold((f64::INFINITY, 0.0f64), |(low, high), it| {
+            (low.min(it), high.max(it))
+        });
+    axis.over(0.9 * low, 1.1 * high)
+}
+
 fn current_panel(spectrum: &Spectrum) -> Panel {
     let currents = spectrum.runs.iter().map(|run| {
         let current = run.spontaneous.map(|it| it.current_a_cm2);
@@ -427,7 +439,7 @@ fn current_panel(spectrum: &Spectrum) -> Panel {
     });
     Panel {
         plot_height_px: 230.0,
-        x: Axis::new("carrier density", "cm⁻³").logarithmic(),
+        x: density_axis(spectrum),
         y: Axis {
             includes: Some(0.0),
             ..Axis::new("radiative current, all wells", "A cm⁻²")
