@@ -363,8 +363,9 @@ fn a_file_that_can_not_be_written_is_named() {
     let folder = folder();
     let nowhere = shown(&folder.path().join("none/levels.csv"));
     let (code, errors) = refusal(&["levels", TENSILE, "--csv", &nowhere]);
-    assert_eq!(code, 1);
-    assert!(errors.contains("no such folder"), "{errors}");
+    assert_eq!(code, 2);
+    assert!(errors.contains("make the folder first"), "{errors}");
+    assert!(!errors.contains("remark"), "before any work: {errors}");
     let (code, errors) = refusal(&["levels", TENSILE, "--figure", &shown(folder.path())]);
     assert_eq!(code, 2);
     assert!(errors.contains("is a folder"), "{errors}");

@@ -92,8 +92,28 @@ impl Files {
         }
     }
 
-    /// Announces a file, so that one that is in the way is complained of before any work.
+    /// Announces a file in a folder that is there, so that what is in the way is complained of
+    /// before any work.
     pub(super) fn announce(&mut self, path: &Path, flag: &str) -> Result<(), Complaint> {
+        if let Some(folder) = path.parent()
+            && !folder.as_os_str().is_empty()
+            && !folder.is_dir()
+        {
+            return Err(Complaint::usage(format!(
+                "{flag} {}: there is no such folder",
+                path.display()
+            ))
+            .with_remedy("make the folder first"));
+        }
+        self.announce_in_any_folder(path, flag)
+    }
+
+    /// Announces a file in a folder that is made when it is written.
+    pub(super) fn announce_in_any_folder(
+        &mut self,
+        path: &Path,
+        flag: &str,
+    ) -> Result<(), Complaint> {
         if path.as_os_str().is_empty() {
             return Err(Complaint::usage(format!("{flag} has an empty path"))
                 .with_remedy("give the name of a file"));

@@ -147,7 +147,7 @@ impl Destinations {
             Some(Csv::File(path)) => files.announce(path, "--csv")?,
             Some(Csv::Folder(folder)) => {
                 for table in tables {
-                    files.announce(&folder.join(format!("{table}.csv")), "--csv")?;
+                    files.announce_in_any_folder(&folder.join(format!("{table}.csv")), "--csv")?;
                 }
             }
             None => {}
