@@ -174,7 +174,14 @@ impl<'a> Evaluation<'a> {
             Bands::Single => None,
             Bands::Mixed => {
                 let depth_ev = mixed::depth_ev(stack, &parabolas, &doping);
-                Some(crate::subbands::mixed(&profile, &bands, depth_ev)?)
+                Some(match mixed::one_of_equal_wells(stack, &bands) {
+                    Some((wells, one)) => {
+                        let profile = Profile::new(&one, parameters)?;
+                        let bands = single(&profile, stack.model.nonparabolic)?;
+                        crate::subbands::mixed(&profile, &bands, depth_ev)?.of_equal_wells(wells)
+                    }
+                    None => crate::subbands::mixed(&profile, &bands, depth_ev)?,
+                })
             }
         };
         let mut transitions = every_pair(&pairs, &bands, mixed.as_ref());
@@ -190,7 +197,7 @@ impl<'a> Evaluation<'a> {
             }
             Some(mixed) => {
                 let kt = thermal_ev(stack.operation.temperature_k);
-                let (samples, edges, reach) = mixed::samples(&bands.electron, mixed, &line);
+                let (samples, edges, reach) = mixed::samples(mixed, &line);
                 let emitter =
                     Dispersive::new(samples, edges, reach, kane_energy_ev, wells_nm, scale, line);
                 (
