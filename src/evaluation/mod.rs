@@ -20,7 +20,7 @@ use crate::carriers::{NetDoping, Reservoir, Subband};
 use crate::materials::Parameters;
 use crate::numerics::roots::bracketed_root;
 use crate::profile::{Profile, Unsolvable};
-use crate::spectra::landmarks::{emission_peak, gain_peak};
+use crate::spectra::landmarks::View;
 use crate::spectra::{Dispersive, Emitter, Hole, Line, Occupation, Pair, Point, Staircase};
 use crate::structure::{Bands, Role, Stack, Substance};
 use crate::subbands::{Band, Level, MixedBands, SingleBands, Uncertified, single};
@@ -304,13 +304,15 @@ impl<'a> Evaluation<'a> {
     pub fn emission(&self) -> Emission {
         let filling = self.filling(self.stack.operation.working_density_cm3);
         let peak_nm = |lowering_ev: f64| {
-            let [te, tm] = self.gain_peaks(&filling, lowering_ev);
+            let view = self.view(&self.occupation(&filling, lowering_ev));
+            let [te, tm] = self.gain_peaks(&filling, &view);
             larger(te, tm).map(|(_, peak)| peak.peak_nm)
         };
         Emission {
             first_transition_nm: wavelength_nm(self.first_ev),
             pl_nm: self
-                .photoluminescence_peak()
+                .view(&self.low_injection())
+                .emission_peak()
                 .map(|peak| wavelength_nm(peak.photon_ev)),
             gain_peak_nm: peak_nm(self.shrinkage_ev(filling.density_cm3)),
             gain_peak_unshrunk_nm: peak_nm(0.0),
@@ -339,18 +341,18 @@ impl<'a> Evaluation<'a> {
         self.occupation(&self.filling(PL_DENSITY_CM3), 0.0)
     }
 
-    fn photoluminescence_peak(&self) -> Option<crate::spectra::landmarks::Peak> {
-        emission_peak(&*self.emitter, &self.low_injection())
+    /// A view of the spectrum at some carriers. There is always a transition to see.
+    fn view(&self, occupation: &Occupation) -> View<'_> {
+        View::new(&*self.emitter, occupation).expect("an evaluation has a transition")
     }
 
     /// Peaks of TE and TM gain; `None` below transparency.
-    fn gain_peaks(&self, filling: &Filling, lowering_ev: f64) -> [Option<GainPeak>; 2] {
+    fn gain_peaks(&self, filling: &Filling, view: &View<'_>) -> [Option<GainPeak>; 2] {
         if !self.is_transparent(filling) {
             return [None, None];
         }
-        let occupation = self.occupation(filling, lowering_ev);
         let peak = |pick: fn(&Point) -> f64| {
-            gain_peak(&*self.emitter, &occupation, pick).map(|peak| GainPeak {
+            view.gain_peak(pick).map(|peak| GainPeak {
                 gain_cm: peak.height,
                 peak_nm: wavelength_nm(peak.photon_ev),
                 peak_ev: peak.photon_ev,

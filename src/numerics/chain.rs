@@ -406,10 +406,22 @@ impl Chain {
     fn certifies(&self, states: &[State]) -> bool {
         // (energy, levels below it): between levels, and just above the last.
         let mut points: Vec<(f64, usize)> = Vec::with_capacity(states.len() + 1);
+        let mut continues = false;
         for (index, state) in states.iter().enumerate() {
             if !state.energy.is_finite() {
                 return false;
             }
+            // One level found twice looks like a cluster: the whole of one must lie where its
+            // members do, which counts half-way to its neighbours do not tell.
+            let goes_on = states
+                .get(index + 1)
+                .is_some_and(|above| above.energy - state.energy < CLUSTER);
+            if goes_on && !continues {
+                points.push((state.energy - 0.25 * CLUSTER, index));
+            } else if continues && !goes_on {
+                points.push((state.energy + 0.25 * CLUSTER, index + 1));
+            }
+            continues = goes_on;
             match states.get(index + 1) {
                 Some(above) if above.energy < state.energy => return false,
                 // Inside a cluster only the whole is certified; its vectors are orthogonal.
@@ -489,8 +501,9 @@ impl Chain {
     /// `count` states that share one narrow bracket around `centre`: their span by inverse
     /// iteration, separated inside it.
     fn common_span(&self, centre: f64, count: usize) -> Vec<State> {
-        // A shift a little off the cluster keeps the factorisation away from zero pivots.
-        let shift = centre - 3.0 * CLUSTER;
+        // Close to the centre of the bracket, so that its levels are nearer than any neighbour, and
+        // a little off it, which keeps the factorisation away from zero pivots.
+        let shift = centre - CLUSTER / 64.0;
         let (diagonal, link) = self.pencil(shift);
         let factors = Factors::new(&diagonal, &link);
         let weights = self.weights();

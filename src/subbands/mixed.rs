@@ -2,7 +2,8 @@
 
 use rayon::prelude::*;
 
-use super::{CLUSTER_EV, COARSEST_STEP_NM, Nodes, SingleBands, Uncertified};
+use super::single::limit;
+use super::{Band, CLUSTER_EV, COARSEST_STEP_NM, Nodes, SingleBands, Uncertified};
 use crate::numerics::block::{BlockChain, BlockRun, Ladder, Three};
 use crate::profile::{Cells, Profile};
 use crate::units::HBAR2_OVER_2M0_EV_NM2;
@@ -447,8 +448,11 @@ fn set_forms(run: &mut BlockRun, cell: &Cells, k: f64, s: f64) {
 /// Zone-centre states that belong to the wells, and the ladders to follow from.
 struct Centre {
     states: Vec<ZoneCentre>,
-    /// Index of each state in the ladders.
-    places: Vec<usize>,
+    /// Index of each state in the three ladders.
+    places: Vec<[usize; 3]>,
+    /// Whether states are followed by their character: in a field box states stand between them, and
+    /// only the order of all states could be certified by counting.
+    by_character: bool,
     ladders: Vec<Ladder>,
 }
 
@@ -463,7 +467,6 @@ impl Centre {
             .outside()
             .map(|n| n.edges.light_ev)
             .fold(f64::NEG_INFINITY, f64::max);
-        let lowest = heavy_edge.min(light_edge);
         let mut chains: Vec<BlockChain> = grids
             .iter()
             .map(|grid| {
@@ -472,55 +475,65 @@ impl Centre {
                 chain
             })
             .collect();
-        let wanted = chains[2].count_below(-lowest + 1e-3);
+        // Hole energies between which states may belong to the wells.
+        let (low, high) = if in_field {
+            let bottom = grids[2]
+                .cells
+                .iter()
+                .filter(|cell| profile.sections[cell.section].in_wells)
+                .map(|cell| {
+                    let edges = &cell.numbers.edges;
+                    -(edges.heavy_ev.max(edges.light_ev) + cell.tilt_ev)
+                })
+                .fold(f64::INFINITY, f64::min);
+            let top = limit(profile, Band::Heavy).max(limit(profile, Band::Light));
+            (bottom, top)
+        } else {
+            (grids[2].floor, -heavy_edge.min(light_edge) + 1e-3)
+        };
+        let wanted = chains[2].count_below(low)..chains[2].count_below(high);
         let ladders: Vec<Ladder> = chains
             .iter_mut()
             .zip(grids)
             .map(|(chain, grid)| {
-                chain
-                    .lowest(wanted, grid.floor)
-                    .map_err(|e| uncertified(e, 0.0))
+                if in_field {
+                    // A coarser grid may put the first of them a little lower.
+                    chain.levels(wanted.clone(), low - 0.05)
+                } else {
+                    chain.lowest(wanted.end, grid.floor)
+                }
+                .map_err(|error| uncertified(error, 0.0))
             })
             .collect::<Result<_, _>>()?;
-        // At k = 0 the heavy hole stands alone: heavy states and the others cross freely from grid to
-        // grid, so that each family is numbered by itself.
-        let families: Vec<[Vec<usize>; 2]> = ladders
-            .iter()
-            .zip(grids)
-            .map(|(ladder, grid)| {
-                let (heavy, other) =
-                    (0..wanted).partition(|&index| grid.shares(&ladder.vectors[index]).heavy > 0.5);
-                [heavy, other]
-            })
-            .collect();
-        let mut found: Vec<(ZoneCentre, usize)> = Vec::new();
-        for (family, edge) in [(0, heavy_edge), (1, light_edge)] {
-            let members = families
-                .iter()
-                .map(|grid| grid[family].len())
-                .min()
-                .unwrap_or(0);
-            for member in 0..members {
-                let [coarse, middle, fine] =
-                    [0, 1, 2].map(|grid| ladders[grid].energies[families[grid][family][member]]);
-                let first = middle + (middle - coarse) / 3.0;
-                let second = fine + (fine - middle) / 3.0;
-                let energy_ev = -(second + (second - first) / 15.0);
-                let place = families[2][family][member];
-                let shares = grids[2].shares(&ladders[2].vectors[place]);
-                let belongs = if in_field {
-                    shares.in_wells > 0.5
-                } else {
-                    energy_ev > edge
-                };
-                if belongs {
-                    let state = ZoneCentre {
+        let places = if in_field {
+            same_by_likeness(grids, &ladders)
+        } else {
+            same_by_family(grids, &ladders)
+        };
+        let mut found: Vec<(ZoneCentre, [usize; 3])> = Vec::new();
+        for place in places {
+            let [coarse, middle, fine] = [0, 1, 2].map(|grid| ladders[grid].energies[place[grid]]);
+            let first = middle + (middle - coarse) / 3.0;
+            let second = fine + (fine - middle) / 3.0;
+            let energy_ev = -(second + (second - first) / 15.0);
+            let shares = grids[2].shares(&ladders[2].vectors[place[2]]);
+            let edge = if shares.heavy > 0.5 {
+                heavy_edge
+            } else {
+                light_edge
+            };
+            if (in_field && shares.in_wells > 0.5 && shares.split_off < 0.5)
+                || (!in_field && energy_ev > edge)
+            {
+                let error_ev = (second - first).abs() / 15.0 + 1e-9;
+                found.push((
+                    ZoneCentre {
                         energy_ev,
-                        error_ev: (second - first).abs() / 15.0 + 1e-9,
+                        error_ev,
                         ..shares
-                    };
-                    found.push((state, place));
-                }
+                    },
+                    place,
+                ));
             }
         }
         found.sort_by(|a, b| b.0.energy_ev.total_cmp(&a.0.energy_ev));
@@ -528,6 +541,7 @@ impl Centre {
         Ok(Self {
             states,
             places,
+            by_character: in_field,
             ladders,
         })
     }
@@ -547,13 +561,13 @@ impl Centre {
                     .iter()
                     .map(|&place| {
                         let fine = grids[2]
-                            .projection(&level.envelope, &self.ladders[2].vectors[place])
+                            .projection(&level.envelope, &self.ladders[2].vectors[place[2]])
                             .overlap();
                         let coarse = grids[1]
-                            .projection(&level.coarser, &self.ladders[1].vectors[place])
+                            .projection(&level.coarser, &self.ladders[1].vectors[place[1]])
                             .overlap();
                         let single_choice = level.is_alone()
-                            && !crowded(&self.ladders[2].energies, place)
+                            && !crowded(&self.ladders[2].energies, place[2])
                             && fine > 1e-6;
                         let overlap = if single_choice {
                             fine + (fine - coarse) / 3.0
@@ -566,6 +580,60 @@ impl Centre {
             })
             .collect()
     }
+}
+
+/// Places of one state in the ladders of the three grids, state by state. At k = 0 the heavy hole
+/// stands alone: heavy states and the others cross freely from grid to grid, so that each family is
+/// numbered by itself.
+fn same_by_family(grids: &[Grid], ladders: &[Ladder]) -> Vec<[usize; 3]> {
+    let families: Vec<[Vec<usize>; 2]> = ladders
+        .iter()
+        .zip(grids)
+        .map(|(ladder, grid)| {
+            let (heavy, other) = (0..ladder.energies.len())
+                .partition(|&index| grid.shares(&ladder.vectors[index]).heavy > 0.5);
+            [heavy, other]
+        })
+        .collect();
+    (0..2)
+        .flat_map(|family| {
+            let members = families
+                .iter()
+                .map(|grid| grid[family].len())
+                .min()
+                .unwrap_or(0);
+            let families = &families;
+            (0..members)
+                .map(move |member| [0, 1, 2].map(|grid: usize| families[grid][family][member]))
+        })
+        .collect()
+}
+
+/// The same where states are picked from the middle of the order: by the likeness of their vectors.
+fn same_by_likeness(grids: &[Grid], ladders: &[Ladder]) -> Vec<[usize; 3]> {
+    // Every second node of a grid is one of the grid before it.
+    let likest = |grid: usize, fine: &[f64], stride: usize| {
+        let likeness = |vector: &[f64]| -> f64 {
+            vector
+                .chunks_exact(3)
+                .zip(fine.chunks_exact(3).skip(stride - 1).step_by(stride))
+                .zip(&grids[grid].nodes.weights_nm)
+                .map(|((a, b), weight)| weight * (a[0] * b[0] + a[1] * b[1] + a[2] * b[2]))
+                .sum::<f64>()
+                .abs()
+        };
+        let ladder = &ladders[grid];
+        (0..ladder.vectors.len())
+            .max_by(|&a, &b| likeness(&ladder.vectors[a]).total_cmp(&likeness(&ladder.vectors[b])))
+            .unwrap_or(0)
+    };
+    (0..ladders[2].energies.len())
+        .filter(|&index| grids[2].shares(&ladders[2].vectors[index]).in_wells > 0.5)
+        .map(|index| {
+            let fine = &ladders[2].vectors[index];
+            [likest(0, fine, 4), likest(1, fine, 2), index]
+        })
+        .collect()
 }
 
 fn uncertified(error: crate::numerics::block::Uncertified, k_per_nm: f64) -> Uncertified {
@@ -594,11 +662,25 @@ fn follow(
     const GUARDS: usize = 2;
     let count = centre.states.len();
     let start = &centre.ladders[which];
-    let kept = (count + GUARDS).min(start.energies.len()).max(count);
+    let picked: Vec<usize> = if centre.by_character {
+        centre.places.iter().map(|place| place[which]).collect()
+    } else {
+        (0..(count + GUARDS).min(start.energies.len())).collect()
+    };
     let mut chain = grid.chain();
     let mut ladder = Ladder {
-        energies: start.energies[..kept].to_vec(),
-        vectors: start.vectors[..kept].to_vec(),
+        energies: picked.iter().map(|&index| start.energies[index]).collect(),
+        vectors: picked
+            .iter()
+            .map(|&index| start.vectors[index].clone())
+            .collect(),
+    };
+    let hold = |chain: &mut BlockChain, ladder: &mut Ladder| {
+        if centre.by_character {
+            chain.pursue(ladder, grid.floor)
+        } else {
+            chain.follow(ladder, count, grid.floor)
+        }
     };
     let mut before = ladder.clone();
     let mut track = Vec::new();
@@ -629,9 +711,34 @@ fn follow(
         };
         grid.set(&mut chain, to, sign);
         let mut next = ahead(&chain, &before, &ladder, ratio);
-        if !chain.follow(&mut next, count, grid.floor) {
-            next = creep(grid, &mut chain, sign, count, &ladder, (from, to))
-                .map_err(|error| uncertified(error, to))?;
+        if !hold(&mut chain, &mut next) {
+            // Smaller and smaller steps, then from nothing where even these lose the states.
+            let crept = [2u32, 4, 8].into_iter().find_map(|parts| {
+                let mut crept = ladder.clone();
+                (1..=parts)
+                    .all(|part| {
+                        let k = from + (to - from) * f64::from(part) / f64::from(parts);
+                        grid.set(&mut chain, k, sign);
+                        hold(&mut chain, &mut crept)
+                    })
+                    .then_some(crept)
+            });
+            grid.set(&mut chain, to, sign);
+            next = match crept {
+                Some(crept) => crept,
+                None if centre.by_character => {
+                    let energy_ev = -ladder.energies[0];
+                    return Err(Uncertified {
+                        band: "valence in-plane",
+                        level: 1,
+                        energy_ev,
+                    });
+                }
+                None => chain
+                    .lowest(ladder.energies.len(), grid.floor)
+                    .or_else(|_| chain.lowest(count, grid.floor))
+                    .map_err(|error| uncertified(error, to))?,
+            };
         }
         before = std::mem::replace(&mut ladder, next);
         track.push(slice(&ladder));
@@ -640,33 +747,6 @@ fn follow(
         }
     }
     Ok(track)
-}
-
-/// From the ladder at one wave number to that at the next in smaller and smaller steps, and from
-/// nothing where even these do not keep hold of the states.
-fn creep(
-    grid: &Grid,
-    chain: &mut BlockChain,
-    sign: f64,
-    count: usize,
-    start: &Ladder,
-    (from, to): (f64, f64),
-) -> Result<Ladder, crate::numerics::block::Uncertified> {
-    for parts in [2, 4] {
-        let mut ladder = start.clone();
-        let kept_hold = (1..=parts).all(|part| {
-            let k = from + (to - from) * f64::from(part) / f64::from(parts);
-            grid.set(chain, k, sign);
-            chain.follow(&mut ladder, count, grid.floor)
-        });
-        if kept_hold {
-            return Ok(ladder);
-        }
-    }
-    grid.set(chain, to, sign);
-    chain
-        .lowest(start.energies.len(), grid.floor)
-        .or_else(|_| chain.lowest(count, grid.floor))
 }
 
 /// Energies and vectors continued in a straight line through two slices, `ratio` being the step to

@@ -301,7 +301,7 @@ fn chain(cells: &[Cells], band: Band, nonparabolic: bool) -> Chain {
 }
 
 /// Energy (counted upwards from the band edge) up to which levels are looked for.
-fn limit(profile: &Profile<'_>, band: Band) -> f64 {
+pub(super) fn limit(profile: &Profile<'_>, band: Band) -> f64 {
     let edges = profile
         .outside()
         .map(|numbers| band.sign() * band.edge_ev(numbers));
