@@ -7,7 +7,7 @@ use std::fs;
 use std::io::{self, ErrorKind, IsTerminal as _, Write as _};
 use std::path::{Path, PathBuf};
 
-/// Where texts go.
+/// The colours of standard output and standard error.
 #[derive(Debug)]
 pub(super) struct Outlet {
     /// Of standard output.
@@ -53,28 +53,28 @@ impl Outlet {
         self.error_colour == Colour::Always
     }
 
-    /// Writes a result. A reader that has gone away is no fault.
-    pub(super) fn print(&self, text: &str) -> Result<(), Complaint> {
-        let mut out = io::stdout().lock();
-        let written = out.write_all(text.as_bytes()).and_then(|()| out.flush());
-        match written {
-            Err(error) if error.kind() != ErrorKind::BrokenPipe => Err(Complaint::new(
-                Ending::Failed,
-                format!("standard output can't be written: {error}"),
-            )),
-            _ => Ok(()),
-        }
-    }
-
-    /// Writes a remark to standard error; nobody has to read it.
-    pub(super) fn remark(&self, text: &str) {
-        let _ = io::stderr().lock().write_all(text.as_bytes());
-    }
-
     /// Writes a complaint to standard error.
     pub(super) fn complain(&self, complaint: &Complaint) {
-        self.remark(&complaint.text(self.error_colour));
+        remark(&complaint.text(self.error_colour));
     }
+}
+
+/// Writes a result to standard output. A reader that has gone away is no fault.
+pub(super) fn print(text: &str) -> Result<(), Complaint> {
+    let mut out = io::stdout().lock();
+    let written = out.write_all(text.as_bytes()).and_then(|()| out.flush());
+    match written {
+        Err(error) if error.kind() != ErrorKind::BrokenPipe => Err(Complaint::new(
+            Ending::Failed,
+            format!("standard output can't be written: {error}"),
+        )),
+        _ => Ok(()),
+    }
+}
+
+/// Writes a remark to standard error; nobody has to read it.
+pub(super) fn remark(text: &str) {
+    let _ = io::stderr().lock().write_all(text.as_bytes());
 }
 
 /// Files that a run will write, looked at before the work and written after it.

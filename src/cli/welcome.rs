@@ -2,7 +2,7 @@
 
 use super::Ending;
 use super::complaint::Complaint;
-use super::outlet::Outlet;
+use super::outlet::print;
 
 const WELCOME: &str = "\
 stepwell computes the active region of a quantum-well laser from one text file:
@@ -15,7 +15,7 @@ levels, emission wavelengths, gain.
   stepwell --help                         all commands, roles of layers, units
 ";
 
-pub(super) fn greet(outlet: &Outlet) -> Result<Ending, Complaint> {
-    outlet.print(WELCOME)?;
+pub(super) fn greet() -> Result<Ending, Complaint> {
+    print(WELCOME)?;
     Ok(Ending::Done)
 }
