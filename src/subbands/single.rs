@@ -110,6 +110,8 @@ pub struct SingleBands {
     pub(super) halvings: u32,
     /// Nodes of twice the step.
     pub(super) coarser: Nodes,
+    /// How often the coarsest step was halved for `nodes`.
+    pub(super) halvings: u32,
     /// Electron levels, rising.
     pub electron: Vec<Level>,
     /// Heavy-hole levels, from the band edge down.
