@@ -72,7 +72,7 @@ impl Rung {
             in_plane_mass: None,
             error_ev: state.error_ev,
             in_wells: state.in_wells,
-            near_edge: false,
+            near_edge: state.near_edge,
             shares: Some(Shares {
                 heavy: state.heavy,
                 light: state.light,

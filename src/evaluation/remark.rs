@@ -161,21 +161,20 @@ pub(super) fn of_levels(evaluation: &Evaluation<'_>) -> Vec<Remark> {
             remarks.push(Remark::FollowedInField);
         }
     }
-    let near: Vec<String> = [
-        (Band::Electron, "e"),
-        (Band::Heavy, "hh"),
-        (Band::Light, "lh"),
-    ]
-    .into_iter()
-    .flat_map(|(band, name)| {
-        bands
-            .of(band)
-            .iter()
-            .enumerate()
-            .filter(|(_, level)| level.near_edge)
-            .map(move |(index, _)| format!("{name}{}", index + 1))
-    })
-    .collect();
+    let near: Vec<String> = evaluation
+        .ladders()
+        .iter()
+        .flat_map(|ladder| {
+            let marked = ladder
+                .rungs
+                .iter()
+                .enumerate()
+                .filter(|(_, rung)| rung.near_edge);
+            marked
+                .map(|(index, _)| format!("{}{}", ladder.symbol, index + 1))
+                .collect::<Vec<_>>()
+        })
+        .collect();
     if !near.is_empty() {
         remarks.push(Remark::NearEdge { levels: near });
     }

@@ -39,6 +39,8 @@ pub struct ZoneCentre {
     pub error_ev: f64,
     /// Share inside the wells and the steps that belong to them.
     pub in_wells: f64,
+    /// Whether it lies within [`super::NEAR_EDGE_EV`] of the edge that confines it.
+    pub near_edge: bool,
 }
 
 /// Squared momentum matrix elements of one electron level and one valence state, in M_b² = m₀E_p/6,
@@ -374,6 +376,7 @@ impl Grid {
             split_off,
             error_ev: 0.0,
             in_wells,
+            near_edge: false,
         }
     }
 
@@ -592,10 +595,12 @@ impl Centre {
                 || (!in_field && energy_ev > edge)
             {
                 let error_ev = (second - first).abs() / 15.0 + 1e-9;
+                let near_edge = !in_field && energy_ev - edge < super::NEAR_EDGE_EV;
                 found.push((
                     ZoneCentre {
                         energy_ev,
                         error_ev,
+                        near_edge,
                         ..shares
                     },
                     place,
