@@ -122,6 +122,22 @@ enum Csv {
     Folder(PathBuf),
 }
 
+/// Figures are SVG: a path that promises another kind of picture is refused.
+fn require_svg(path: &Path) -> Result<(), Complaint> {
+    let ending = path.extension().and_then(|ending| ending.to_str());
+    if ending.is_some_and(|ending| ending.eq_ignore_ascii_case("svg")) {
+        return Ok(());
+    }
+    let complaint = Complaint::usage(format!(
+        "--figure: `{}` does not end in .svg, the one kind of picture that is written",
+        path.display()
+    ));
+    Err(complaint.with_remedy(format!(
+        "--figure {}; any browser shows it and prints it as PDF",
+        path.with_extension("svg").display()
+    )))
+}
+
 impl Destinations {
     /// Where the results of a command go; every file that is in the way is found now.
     ///
@@ -151,6 +167,9 @@ impl Destinations {
                 }
             }
             None => {}
+        }
+        if let Some(path) = figure {
+            require_svg(path)?;
         }
         for (path, flag) in [(figure, "--figure"), (matrix, "--matrix")] {
             if let Some(path) = path {

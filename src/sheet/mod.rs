@@ -4,7 +4,6 @@
 //! Writers read the records of `evaluation` and `design` and compute no physics.
 
 pub mod csv;
-mod drawings;
 pub mod figure;
 mod findings;
 pub mod json;
@@ -13,17 +12,18 @@ mod materials;
 mod matrix;
 mod number;
 mod page;
+mod picture;
 mod remark;
 mod spectrum;
 mod stamp;
 mod starting;
 mod table;
 
-pub use drawings::{levels_figure, spectrum_figure};
 pub use findings::findings;
 pub use levels::levels;
 pub use materials::{descriptions, families};
 pub use matrix::matrix_market;
+pub use picture::{levels_figure, spectrum_figure};
 pub use remark::{complaint, remark};
 pub use spectrum::spectrum;
 pub use stamp::{Stamp, Switches, sha256};

@@ -64,6 +64,34 @@ pub(super) fn power(value: f64, digits: usize) -> String {
     }
 }
 
+/// A number as mantissa and power of ten, as it is set in print: `1.704×10¹⁸`, `10¹⁸`.
+pub(super) fn typeset(value: f64, digits: usize) -> String {
+    let text = power(value, digits);
+    let Some((mantissa, exponent)) = text.split_once('e') else {
+        return text;
+    };
+    let raised: String = exponent
+        .chars()
+        .map(|character| match character {
+            '0' => '⁰',
+            '1' => '¹',
+            '2' => '²',
+            '3' => '³',
+            '4' => '⁴',
+            '5' => '⁵',
+            '6' => '⁶',
+            '7' => '⁷',
+            '8' => '⁸',
+            '9' => '⁹',
+            _ => '⁻',
+        })
+        .collect();
+    match mantissa {
+        "1" => format!("10{raised}"),
+        _ => format!("{mantissa}×10{raised}"),
+    }
+}
+
 /// A number as a person would write it, up to six digits.
 pub(super) fn plain(value: f64) -> String {
     if !value.is_finite() {
@@ -143,6 +171,14 @@ mod tests {
         assert_eq!(power(1.5e18, 4), "1.5e18");
         assert_eq!(power(9.654134e17, 4), "9.654e17");
         assert_eq!(power(1e18, 1), "1e18");
+    }
+
+    #[test]
+    fn powers_are_raised_in_print() {
+        assert_eq!(typeset(1.7041e18, 4), "1.704×10¹⁸");
+        assert_eq!(typeset(1e18, 3), "10¹⁸");
+        assert_eq!(typeset(-2.5e-9, 3), "-2.5×10⁻⁹");
+        assert_eq!(typeset(f64::NAN, 3), ABSENT);
     }
 
     #[test]
