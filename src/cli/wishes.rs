@@ -2,7 +2,7 @@
 
 use super::complaint::Complaint;
 use super::flags::{Conditions, Output};
-use super::outlet::{Files, Outlet};
+use super::outlet::{Files, print};
 use crate::sheet::Stamp;
 use crate::sheet::csv::CsvTable;
 use crate::source::{nearest, one_of};
@@ -147,7 +147,7 @@ impl Destinations {
             Some(Csv::File(path)) => files.announce(path, "--csv")?,
             Some(Csv::Folder(folder)) => {
                 for table in tables {
-                    files.announce(&folder.join(format!("{table}.csv")), "--csv")?;
+                    files.announce_in_any_folder(&folder.join(format!("{table}.csv")), "--csv")?;
                 }
             }
             None => {}
@@ -208,11 +208,10 @@ impl Destinations {
     /// The result on standard output: the document, or the page.
     pub(super) fn print(
         &self,
-        outlet: &Outlet,
         json: impl FnOnce() -> String,
         page: impl FnOnce() -> String,
     ) -> Result<(), Complaint> {
-        outlet.print(&if self.json { json() } else { page() })
+        print(&if self.json { json() } else { page() })
     }
 }
 

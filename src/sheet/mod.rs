@@ -1,8 +1,10 @@
-//! Numbers become text here, and nowhere else: pages for a terminal, JSON, comma-separated values.
+//! Numbers become text here, and nowhere else: pages for a terminal, JSON, comma-separated
+//! values, figures.
 //!
 //! Writers read the records of `evaluation` and `design` and compute no physics.
 
 pub mod csv;
+mod drawings;
 pub mod figure;
 mod findings;
 pub mod json;
@@ -17,6 +19,7 @@ mod stamp;
 mod starting;
 mod table;
 
+pub use drawings::{levels_figure, spectrum_figure};
 pub use findings::findings;
 pub use levels::levels;
 pub use materials::{descriptions, families};

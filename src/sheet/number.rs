@@ -35,8 +35,16 @@ pub(super) fn significant(value: f64, digits: usize) -> String {
     if !(1e-3..1e6).contains(&size) {
         return power(value, digits);
     }
-    let before = size.log10().floor() as i32 + 1;
-    let decimals = (digits as i32 - before).max(0) as usize;
+    let mut decimals = digits.saturating_sub(1);
+    let mut scale = size;
+    while scale >= 10.0 {
+        scale /= 10.0;
+        decimals = decimals.saturating_sub(1);
+    }
+    while scale < 1.0 {
+        scale *= 10.0;
+        decimals += 1;
+    }
     fixed(value, decimals)
 }
 
