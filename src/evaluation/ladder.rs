@@ -252,7 +252,10 @@ impl Evaluation<'_> {
         let Some(mixed) = &self.mixed else {
             return Vec::new();
         };
-        let states = mixed.zone_centre.len();
+        let states = mixed
+            .blocks
+            .first()
+            .map_or(0, |slices| slices[0].energy_ev.len());
         mixed
             .k_per_nm
             .iter()

@@ -106,8 +106,12 @@ pub struct SingleBands {
     pub halvings: u32,
     /// Nodes of the envelopes.
     pub nodes: Nodes,
+    /// How often the coarsest step was halved for `nodes`.
+    pub(super) halvings: u32,
     /// Nodes of twice the step.
     pub(super) coarser: Nodes,
+    /// How often the coarsest step was halved for `nodes`.
+    pub(super) halvings: u32,
     /// Electron levels, rising.
     pub electron: Vec<Level>,
     /// Heavy-hole levels, from the band edge down.
@@ -219,6 +223,7 @@ pub fn single(profile: &Profile<'_>, nonparabolic: bool) -> Result<SingleBands, 
             light: ladder(Band::Light)?,
             nodes: Nodes::of(profile, &grids[2]),
             coarser: Nodes::of(profile, &grids[1]),
+            halvings: finest,
         };
         let settled = [&bands.electron, &bands.heavy, &bands.light]
             .into_iter()
