@@ -30,7 +30,7 @@ pub(super) fn depth_ev(stack: &Stack, parabolas: &[Subband], doping: &NetDoping)
 
 /// Transitions at the zone centre, components of a valence state summed.
 pub(super) fn transitions(electrons: &[Level], mixed: &MixedBands) -> Vec<Transition> {
-    let mut transitions: Vec<Transition> = Vec::new();
+    let mut transitions = Vec::new();
     for (electron, (level, overlaps)) in electrons.iter().zip(&mixed.overlaps).enumerate() {
         for (state, (centre, &overlap)) in mixed.zone_centre.iter().zip(overlaps).enumerate() {
             let energy_ev = level.energy_ev - centre.energy_ev;
@@ -43,7 +43,6 @@ pub(super) fn transitions(electrons: &[Level], mixed: &MixedBands) -> Vec<Transi
             });
         }
     }
-    transitions.sort_by(|a, b| a.energy_ev.total_cmp(&b.energy_ev));
     transitions
 }
 

@@ -417,21 +417,25 @@ fn pairs(stack: &Stack, profile: &Profile<'_>, bands: &SingleBands) -> Vec<Pair>
     pairs
 }
 
-/// The transitions of all pairs, by rising energy.
-fn by_energy(pairs: &[Pair]) -> Vec<Transition> {
-    let mut transitions: Vec<Transition> = pairs
-        .iter()
-        .map(|pair| Transition {
-            electron: pair.electron + 1,
-            hole: match pair.kind {
-                Hole::Heavy => format!("hh{}", pair.hole + 1),
-                Hole::Light => format!("lh{}", pair.hole + 1),
-            },
-            energy_ev: pair.energy_ev(),
-            wavelength_nm: wavelength_nm(pair.energy_ev()),
-            overlap: pair.overlap,
-        })
-        .collect();
+/// The transitions between all levels, by rising energy: of the mixed valence states where there are
+/// any, else of heavy and light holes.
+fn every_pair(pairs: &[Pair], bands: &SingleBands, mixed: Option<&MixedBands>) -> Vec<Transition> {
+    let mut transitions: Vec<Transition> = match mixed {
+        Some(mixed) => mixed::transitions(&bands.electron, mixed),
+        None => pairs
+            .iter()
+            .map(|pair| Transition {
+                electron: pair.electron + 1,
+                hole: match pair.kind {
+                    Hole::Heavy => format!("hh{}", pair.hole + 1),
+                    Hole::Light => format!("lh{}", pair.hole + 1),
+                },
+                energy_ev: pair.energy_ev(),
+                wavelength_nm: wavelength_nm(pair.energy_ev()),
+                overlap: pair.overlap,
+            })
+            .collect(),
+    };
     transitions.sort_by(|a, b| a.energy_ev.total_cmp(&b.energy_ev));
     transitions
 }

@@ -102,16 +102,12 @@ impl Level {
 /// Levels of the three bands on common nodes.
 #[derive(Clone, Debug, Default, PartialEq)]
 pub struct SingleBands {
-    /// How often the coarsest step was halved to make the finest grid.
-    pub halvings: u32,
     /// Nodes of the envelopes.
     pub nodes: Nodes,
     /// How often the coarsest step was halved for `nodes`.
     pub(super) halvings: u32,
     /// Nodes of twice the step.
     pub(super) coarser: Nodes,
-    /// How often the coarsest step was halved for `nodes`.
-    pub(super) halvings: u32,
     /// Electron levels, rising.
     pub electron: Vec<Level>,
     /// Heavy-hole levels, from the band edge down.
@@ -217,7 +213,6 @@ pub fn single(profile: &Profile<'_>, nonparabolic: bool) -> Result<SingleBands, 
             .collect();
         let ladder = |band| levels(profile, &grids, band, nonparabolic);
         let bands = SingleBands {
-            halvings: finest,
             electron: ladder(Band::Electron)?,
             heavy: ladder(Band::Heavy)?,
             light: ladder(Band::Light)?,
