@@ -2,7 +2,7 @@
 //! of one to three wells, told to the program as files.
 
 use proptest::prelude::*;
-use proptest::test_runner::Config;
+use proptest::test_runner::{Config, RngSeed};
 use std::fmt::Write as _;
 use stepwell::evaluation::Evaluation;
 use stepwell::materials::Parameters;
@@ -176,6 +176,8 @@ fn cases(cases: u32) -> Config {
     Config {
         cases,
         failure_persistence: None,
+        // The same stacks in every run.
+        rng_seed: RngSeed::Fixed(1),
         ..Config::default()
     }
 }
@@ -323,7 +325,7 @@ proptest! {
 }
 
 proptest! {
-    #![proptest_config(cases(24))]
+    #![proptest_config(cases(14))]
 
     /// Bound levels are not complete: their overlaps sum to at most one.
     #[test]
@@ -387,7 +389,7 @@ proptest! {
         reversed.reverse();
         let upside_down = read(&recipe.text(&reversed, 0.0, SINGLE));
         for (a, b) in ladders(&recipe.stack(SINGLE)).iter().zip(ladders(&upside_down)) {
-            prop_assert!(apart(a, &b) < 1e-8, "{a:?} {b:?}");
+            prop_assert!(apart(a, &b) < SAME_EV, "{a:?} {b:?}");
         }
     }
 
@@ -483,7 +485,8 @@ proptest! {
                     let balance = point.spontaneous_per_ev_cm3_s / modes * -above.exp_m1();
                     prop_assert!(
                         (balance - mean(point)).abs() <= 1e-12 * most,
-                        "{balance} {point:?} at {photon}"
+                        "{:e} of the peak, mixed {mixed}, {above} kT above: {balance} {point:?} at {photon}",
+                        (balance - mean(point)).abs() / most
                     );
                 }
             }

@@ -231,7 +231,8 @@ impl Evaluation<'_> {
             points: emitter.sample(
                 occupation,
                 photon_ev[0],
-                photon_ev[1] - photon_ev[0],
+                // Not the first difference, whose rounding would grow with the index.
+                (photon_ev[photon_ev.len() - 1] - photon_ev[0]) / (photon_ev.len() - 1) as f64,
                 photon_ev.len(),
             ),
         }
