@@ -20,10 +20,10 @@ pub(super) struct Arrow {
 }
 
 /// The arrow of the first transition.
-pub(super) fn first_transition(
+pub(super) fn first_transition<'b>(
     evaluation: &Evaluation<'_>,
-    electrons: &[Bundle],
-    holes: &[Bundle],
+    electrons: &'b [Bundle],
+    holes: &'b [Bundle],
 ) -> Option<Arrow> {
     let first = evaluation.transitions.first()?;
     let electron_ev = evaluation
@@ -32,17 +32,16 @@ pub(super) fn first_transition(
         .get(first.electron.checked_sub(1)?)?
         .energy_ev;
     let hole_ev = electron_ev - first.energy_ev;
-    let density = |bundles: &[Bundle], energy_ev: f64| {
+    let density = |bundles: &'b [Bundle], energy_ev: f64| -> Option<&'b [f64]> {
         bundles
             .iter()
-            .find(|bundle| bundle.holds(energy_ev))
-            .and_then(|bundle| bundle.density_per_nm.clone())
+            .find_map(|bundle| bundle.density_of(energy_ev))
     };
     Some(Arrow {
         position_nm: meeting_place_nm(
             evaluation,
-            density(electrons, electron_ev).as_deref(),
-            density(holes, hole_ev).as_deref(),
+            density(electrons, electron_ev),
+            density(holes, hole_ev),
         ),
         hole_ev,
         electron_ev,
@@ -79,13 +78,4 @@ fn meeting_place_nm(
         .map(|place| place.0)
         .min_by(|a, b| (a - centre_nm).abs().total_cmp(&(b - centre_nm).abs()))
         .unwrap_or(centre_nm)
-}
-
-impl Bundle {
-    /// Whether a level of this energy belongs to the bundle.
-    fn holds(&self, energy_ev: f64) -> bool {
-        self.levels_ev
-            .iter()
-            .any(|level_ev| (level_ev - energy_ev).abs() < 1e-9)
-    }
 }

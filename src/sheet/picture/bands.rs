@@ -15,7 +15,7 @@ use crate::sheet::stamp::Stamp;
 use crate::structure::Role;
 
 /// How far the picture reaches beyond the outermost wells, nm.
-const REACH_NM: f64 = 20.0;
+const REACH_NM: f64 = 18.0;
 /// Height of both panels together without their air, px.
 const HEIGHT_PX: f64 = 500.0;
 /// Lowest panel, px.

@@ -5,9 +5,9 @@ use crate::evaluation::{Evaluation, Group, Ladder, Shares};
 use crate::subbands::{Band, Level};
 
 /// Bundles of one ladder; what lies beyond belongs to the last one.
-const MOST_BUNDLES: usize = 8;
+const MOST_BUNDLES: usize = 16;
 /// Groups of levels closer than this in the picture are one bundle, px.
-const CLOSE_PX: f64 = 4.0;
+const CLOSE_PX: f64 = 7.0;
 /// A mixed state this heavy is a heavy hole and nothing else: at zero in-plane wave number it does
 /// not couple to the others.
 const PURELY_HEAVY: f64 = 0.999;
@@ -21,9 +21,22 @@ pub(super) struct Bundle {
     pub(super) name: String,
     /// Energies, from the gap outwards, eV.
     pub(super) levels_ev: Vec<f64>,
-    /// |φ|² of what is nearest the gap, averaged over equal wells, 1/nm on the nodes; `None` where
-    /// the state has no envelope of its own band.
+    /// How many of these, from the gap outwards, are what equal wells share.
+    pub(super) shared: usize,
+    /// |φ|² of these, averaged, 1/nm on the nodes; `None` where the state has no envelope of its own
+    /// band.
     pub(super) density_per_nm: Option<Vec<f64>>,
+}
+
+impl Bundle {
+    /// |φ|² that belongs to the level of this energy, if it is what equal wells share; `None` if it
+    /// has none.
+    pub(super) fn density_of(&self, energy_ev: f64) -> Option<&[f64]> {
+        self.levels_ev[..self.shared]
+            .iter()
+            .any(|level_ev| (level_ev - energy_ev).abs() < 1e-9)
+            .then_some(self.density_per_nm.as_deref()?)
+    }
 }
 
 /// A bundle in the making.
@@ -95,6 +108,7 @@ impl Draft {
                 .iter()
                 .map(|rung| rung.energy_ev)
                 .collect(),
+            shared: first.count(),
             density_per_nm: own_levels(evaluation, ladder, &first).map(mean_density_per_nm),
         }
     }

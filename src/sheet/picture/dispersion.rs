@@ -1,12 +1,10 @@
 //! The mixed valence states over the in-plane wave number.
 
 use super::bundle::Bundle;
-use super::line_key;
+use super::{Kind, line_key};
 use crate::evaluation::Evaluation;
 use crate::sheet::figure::{Axis, Curve, Naming, Panel};
 use crate::subbands::MixedBands;
-
-use super::Kind;
 
 /// The picture ends where the highest state has fallen by so many kT: holes are not found beyond.
 const FALL_KT: f64 = 4.0;
@@ -29,7 +27,7 @@ pub(super) fn dispersion_panel(
         title: "Mixed valence states over the in-plane wave number".to_owned(),
         plot_height_px: 260.0,
         x: Axis::new("in-plane wave number", "nm⁻¹").over(0.0, mixed.k_per_nm[last]),
-        y: Axis::new("energy below v1 at zero", "meV"),
+        y: Axis::new("energy from v1 at zero", "meV"),
         keys: vec![
             line_key(
                 "mostly heavy at zero",

@@ -30,6 +30,7 @@ pub(super) fn gain_panel(spectrum: &Spectrum, densities: &Densities) -> Panel {
         curves: vec![without_carriers(spectrum)],
         ..Panel::default()
     };
+    panel.notes.extend(name_of_absorption(&panel));
     for (step, run) in spectrum.runs.iter().enumerate() {
         let ink = densities.ink(step);
         let has_peak = run.te.is_some() || run.tm.is_some();
@@ -75,7 +76,7 @@ pub(super) fn emission_panel(spectrum: &Spectrum, densities: &Densities) -> Pane
     });
     let rules = spectrum.pl.map(|pl| Rule {
         at: Place::X(photon_ev(pl.peak_nm)),
-        name: format!("photoluminescence {} nm", fixed(pl.peak_nm, 1)),
+        name: format!("photoluminescence peak, {} nm", fixed(pl.peak_nm, 1)),
         ink: Ink::Grey,
         dash: Dash::Dotted,
         width_px: 1.4,
@@ -83,10 +84,11 @@ pub(super) fn emission_panel(spectrum: &Spectrum, densities: &Densities) -> Pane
     Panel {
         plot_height_px: 210.0,
         x: photon_axis(spectrum),
-        y: Axis {
-            includes: Some(0.0),
-            ..Axis::new("spontaneous emission", "eV⁻¹ cm⁻³ s⁻¹")
-        },
+        // Room over the highest curve for its name.
+        y: Axis::new("spontaneous emission", "eV⁻¹ cm⁻³ s⁻¹").over(
+            0.0,
+            1.15 * largest(spectrum, |point| point.spontaneous_per_ev_cm3_s),
+        ),
         curves: curves.collect(),
         rules: rules.into_iter().collect(),
         ..Panel::default()
@@ -101,10 +103,6 @@ fn keys(spectrum: &Spectrum, densities: &Densities) -> Vec<Key> {
             name: "transparency".to_owned(),
             mark: Some(Mark::Ring),
             ..Key::default()
-        },
-        Key {
-            width_px: 1.0,
-            ..line_key("no carriers, TE", Ink::Grey, Dash::Solid)
         },
         word_key(densities.head()),
     ];
@@ -125,6 +123,22 @@ fn without_carriers(spectrum: &Spectrum) -> Curve {
         naming: Naming::Nowhere,
         ..Curve::through("", points.map(|(&photon_ev, &te_cm)| (photon_ev, -te_cm)))
     }
+}
+
+/// Names the absorption of the empty bands half way down the part of it that is in sight.
+fn name_of_absorption(panel: &Panel) -> Option<Note> {
+    let half_cm = 0.5 * panel.y.range?.0;
+    let points = &panel.curves.first()?.points;
+    let at = points
+        .iter()
+        .find(|point| point.1.is_some_and(|gain_cm| gain_cm < half_cm))?;
+    Some(Note {
+        at: (at.0, half_cm),
+        text: "TE without carriers".to_owned(),
+        ink: Ink::Grey,
+        mark: None,
+        standing: Standing::Near(Side::Right),
+    })
 }
 
 fn over_photons(
@@ -159,10 +173,14 @@ fn photon_axis(spectrum: &Spectrum) -> Axis {
         return axis;
     };
     let pl_ev = spectrum.pl.map(|pl| photon_ev(pl.peak_nm));
-    let from_ev = pl_ev.map_or(photons[first], |it| it.min(photons[first]));
-    let to_ev = pl_ev.map_or(photons[last], |it| it.max(photons[last]));
+    let air = (photons.len() / 30).max(1);
+    let from_ev = photons[first.saturating_sub(air)];
+    let to_ev = photons[(last + air).min(photons.len() - 1)];
     let air_ev = 0.03 * (to_ev - from_ev);
-    axis.over(from_ev - air_ev, to_ev + air_ev)
+    axis.over(
+        pl_ev.map_or(from_ev, |it| from_ev.min(it - air_ev)),
+        pl_ev.map_or(to_ev, |it| to_ev.max(it + air_ev)),
+    )
 }
 
 fn largest(spectrum: &Spectrum, of: impl Fn(&Point) -> f64) -> f64 {

@@ -1,8 +1,8 @@
 //! The two panels over the carrier density.
 
-use super::word_key;
+use super::{line_key, word_key};
 use crate::evaluation::{GainPeak, Run, Spectrum};
-use crate::sheet::figure::{Axis, Curve, Dash, Ink, Mark, Naming, Panel, Place, Rule};
+use crate::sheet::figure::{Axis, Curve, Dash, Ink, Key, Mark, Naming, Panel, Place, Rule};
 use crate::sheet::number::{significant, typeset};
 
 const HEIGHT_PX: f64 = 220.0;
@@ -11,18 +11,28 @@ const LAW_POINTS: usize = 60;
 
 /// Peak gain against density with the logarithmic law.
 pub(super) fn peak_panel(spectrum: &Spectrum) -> Panel {
-    let peaks = |name: &str, of: fn(&Run) -> Option<GainPeak>, ink: Ink, mark: Mark| Curve {
-        name: name.to_owned(),
-        ink,
+    let marks: [(&str, fn(&Run) -> Option<GainPeak>, Ink, Mark); 2] = [
+        ("TE", |run| run.te, Ink::Colour(0), Mark::Disc),
+        ("TM", |run| run.tm, Ink::Colour(1), Mark::Diamond),
+    ];
+    let curves = marks.iter().map(|(_, of, ink, mark)| Curve {
+        ink: *ink,
         width_px: 0.0,
-        mark: Some(mark),
+        mark: Some(*mark),
+        naming: Naming::Nowhere,
         points: spectrum
             .runs
             .iter()
             .map(|run| (run.density_cm3, of(run).map(|peak| peak.gain_cm)))
             .collect(),
         ..Curve::default()
-    };
+    });
+    let keys = marks.iter().map(|(name, _, ink, mark)| Key {
+        name: (*name).to_owned(),
+        ink: *ink,
+        mark: Some(*mark),
+        ..Key::default()
+    });
     let mut panel = Panel {
         title: "Peak gain".to_owned(),
         plot_height_px: HEIGHT_PX,
@@ -32,10 +42,8 @@ pub(super) fn peak_panel(spectrum: &Spectrum) -> Panel {
             includes: Some(0.0),
             ..Axis::new("peak gain", "cm⁻¹")
         },
-        curves: vec![
-            peaks("TE", |run| run.te, Ink::Colour(0), Mark::Disc),
-            peaks("TM", |run| run.tm, Ink::Colour(1), Mark::Diamond),
-        ],
+        curves: curves.collect(),
+        keys: keys.collect(),
         ..Panel::default()
     };
     if let Some((polarisation, fit)) = spectrum.fit {
@@ -52,8 +60,11 @@ pub(super) fn peak_panel(spectrum: &Spectrum) -> Panel {
         panel.curves.push(Curve {
             dash: Dash::Long,
             width_px: 1.2,
-            ..Curve::through(format!("g₀ ln(N/Nₜᵣ), {polarisation}"), law)
+            naming: Naming::Nowhere,
+            ..Curve::through("", law)
         });
+        let law_name = format!("g₀ ln(N/Nₜᵣ), {polarisation}");
+        panel.keys.push(line_key(law_name, Ink::Black, Dash::Long));
         panel
             .keys
             .push(word_key(format!("g₀ = {} cm⁻¹", significant(fit.g0_cm, 4))));
