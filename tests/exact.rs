@@ -8,7 +8,7 @@
 
 use std::fmt::Write as _;
 use stepwell::materials::{Composition, Offsets, Parameters};
-use stepwell::numerics::chain::{Chain, Run};
+use stepwell::numerics::chain::{Chain, Run, Workspace};
 use stepwell::profile::{Profile, REACH_NM};
 use stepwell::structure::{self, Overrides, Stack};
 use stepwell::subbands::{Band, CLUSTER_EV, Level, single};
@@ -552,7 +552,10 @@ fn the_order_is_two_and_four_once_extrapolated() {
                 }
             });
             let chain = Chain::new(runs.collect());
-            chain.lowest(1, None).expect("certified")[0].energy
+            chain
+                .lowest(&mut Workspace::default(), 1, None)
+                .expect("certified")[0]
+                .energy
         });
         let order = |coarse: f64, fine: f64| ((coarse - exact) / (fine - exact)).abs().log2();
         orders.0.push(order(raw[2], raw[3]));
