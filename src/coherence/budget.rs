@@ -417,7 +417,7 @@ mod tests {
         ));
         let left = other.active.expect("wells").mean.relaxed;
         let was = before.active.expect("wells").mean.relaxed;
-        assert!((left / was).abs() < 0.02, "{left} of {was}");
+        assert!((left / was).abs() < 0.05, "{left} of {was}");
     }
 
     #[test]
@@ -440,7 +440,9 @@ mod tests {
         let active = budget.active.expect("a well");
         assert!((active.thickness_nm - 32.0).abs() < 1e-12);
         let diluted = well.mismatch.relaxed * 8.0 / 32.0;
-        assert!((active.mean.relaxed / diluted - 1.0).abs() < 0.05);
+        // InGaAs is softer than GaAs and has a little less than its share.
+        let share = active.mean.relaxed / diluted;
+        assert!((0.9..1.0).contains(&share), "{share}");
         assert!(active.force_n_m > 0.0);
     }
 }

@@ -33,27 +33,24 @@ impl Mismatch {
     #[must_use]
     pub fn of(crystal: &Crystal, substrate_lattice_nm: f64) -> Self {
         let relaxed = (crystal.lattice_nm - substrate_lattice_nm) / substrate_lattice_nm;
-        Self {
-            relaxed,
-            perpendicular: stretch(crystal) * relaxed,
-        }
+        Self::from_relaxed(relaxed, crystal.c12_gpa / crystal.c11_gpa)
     }
 
-    /// From the perpendicular mismatch of a layer with the stiffness of `crystal`.
+    /// From the perpendicular mismatch of a layer of the stiffness ratio C12/C11.
     #[must_use]
-    pub fn from_perpendicular(perpendicular: f64, crystal: &Crystal) -> Self {
+    pub fn from_perpendicular(perpendicular: f64, c12_over_c11: f64) -> Self {
         Self {
-            relaxed: perpendicular / stretch(crystal),
+            relaxed: perpendicular / (1.0 + 2.0 * c12_over_c11),
             perpendicular,
         }
     }
 
-    /// From the relaxed mismatch of a layer with the stiffness of `crystal`.
+    /// From the relaxed mismatch of a layer of the stiffness ratio C12/C11.
     #[must_use]
-    pub fn from_relaxed(relaxed: f64, crystal: &Crystal) -> Self {
+    pub fn from_relaxed(relaxed: f64, c12_over_c11: f64) -> Self {
         Self {
             relaxed,
-            perpendicular: stretch(crystal) * relaxed,
+            perpendicular: (1.0 + 2.0 * c12_over_c11) * relaxed,
         }
     }
 
@@ -92,11 +89,6 @@ impl Mismatch {
             Sense::Tensile
         }
     }
-}
-
-/// f⊥/f of a coherent layer, 1 + 2 C12/C11.
-fn stretch(crystal: &Crystal) -> f64 {
-    1.0 + 2.0 * crystal.c12_gpa / crystal.c11_gpa
 }
 
 impl Crystal {
@@ -141,8 +133,9 @@ mod tests {
     fn each_kind_is_found_from_the_other() {
         let film = crystal("In0.6Ga0.4As");
         let mismatch = Mismatch::of(&film, crystal("InP").lattice_nm);
-        let from_relaxed = Mismatch::from_relaxed(mismatch.relaxed, &film);
-        let from_perpendicular = Mismatch::from_perpendicular(mismatch.perpendicular, &film);
+        let ratio = film.c12_gpa / film.c11_gpa;
+        let from_relaxed = Mismatch::from_relaxed(mismatch.relaxed, ratio);
+        let from_perpendicular = Mismatch::from_perpendicular(mismatch.perpendicular, ratio);
         assert!((from_relaxed.perpendicular - mismatch.perpendicular).abs() < 1e-16);
         assert!((from_perpendicular.relaxed - mismatch.relaxed).abs() < 1e-16);
     }
