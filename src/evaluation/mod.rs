@@ -10,7 +10,7 @@ mod remark;
 mod spectrum;
 
 pub use budget::{Budget, budget};
-pub use ladder::{Group, Ladder, Rung, TransitionGroup};
+pub use ladder::{Group, Ladder, Rung, Shares, TransitionGroup};
 pub use remark::Remark;
 pub use spectrum::{
     Absorption, GainPeak, PhotoLuminescence, Run, Spectrum, Spontaneous, Transparency,
@@ -142,7 +142,6 @@ pub struct Evaluation<'a> {
     pub remarks: Vec<Remark>,
     emitter: Box<dyn Emitter>,
     pairs: Vec<Pair>,
-    every_pair: Vec<Transition>,
     index: Result<f64, Failure>,
     electrons: Vec<Subband>,
     holes: Holes,
@@ -175,18 +174,18 @@ impl<'a> Evaluation<'a> {
             Bands::Single => None,
             Bands::Mixed => {
                 let depth_ev = mixed::depth_ev(stack, &parabolas, &doping);
-                Some(crate::subbands::mixed(&profile, &bands, depth_ev)?)
+                Some(match mixed::one_of_equal_wells(stack, &bands) {
+                    Some((wells, one)) => {
+                        let profile = Profile::new(&one, parameters)?;
+                        let bands = single(&profile, stack.model.nonparabolic)?;
+                        crate::subbands::mixed(&profile, &bands, depth_ev)?.of_equal_wells(wells)
+                    }
+                    None => crate::subbands::mixed(&profile, &bands, depth_ev)?,
+                })
             }
         };
-        let every_pair = mixed.as_ref().map_or_else(
-            || by_energy(&pairs),
-            |mixed| mixed::transitions(&bands.electron, mixed),
-        );
-        let transitions: Vec<Transition> = every_pair
-            .iter()
-            .filter(|transition| transition.overlap > LEAST_OVERLAP)
-            .cloned()
-            .collect();
+        let mut transitions = every_pair(&pairs, &bands, mixed.as_ref());
+        transitions.retain(|transition| transition.overlap > LEAST_OVERLAP);
         let first_ev = transitions.first().ok_or(Failure::NoTransition)?.energy_ev;
         let index = refractive_index(stack, parameters, first_ev);
         // Positions and widths do not hang on the index, which scales every spectrum as a whole.
@@ -198,7 +197,7 @@ impl<'a> Evaluation<'a> {
             }
             Some(mixed) => {
                 let kt = thermal_ev(stack.operation.temperature_k);
-                let (samples, edges, reach) = mixed::samples(&bands.electron, mixed, &line);
+                let (samples, edges, reach) = mixed::samples(mixed, &line);
                 let emitter =
                     Dispersive::new(samples, edges, reach, kane_energy_ev, wells_nm, scale, line);
                 (
@@ -218,7 +217,6 @@ impl<'a> Evaluation<'a> {
             remarks: Vec::new(),
             emitter,
             pairs,
-            every_pair,
             index,
             electrons,
             holes,
@@ -333,8 +331,8 @@ impl<'a> Evaluation<'a> {
     }
 
     /// Every pair of levels, however small its overlap, by rising energy.
-    fn every_pair(&self) -> &[Transition] {
-        &self.every_pair
+    fn every_pair(&self) -> Vec<Transition> {
+        every_pair(&self.pairs, &self.bands, self.mixed.as_ref())
     }
 
     fn low_injection(&self) -> Occupation {
@@ -419,21 +417,25 @@ fn pairs(stack: &Stack, profile: &Profile<'_>, bands: &SingleBands) -> Vec<Pair>
     pairs
 }
 
-/// The transitions of all pairs, by rising energy.
-fn by_energy(pairs: &[Pair]) -> Vec<Transition> {
-    let mut transitions: Vec<Transition> = pairs
-        .iter()
-        .map(|pair| Transition {
-            electron: pair.electron + 1,
-            hole: match pair.kind {
-                Hole::Heavy => format!("hh{}", pair.hole + 1),
-                Hole::Light => format!("lh{}", pair.hole + 1),
-            },
-            energy_ev: pair.energy_ev(),
-            wavelength_nm: wavelength_nm(pair.energy_ev()),
-            overlap: pair.overlap,
-        })
-        .collect();
+/// The transitions between all levels, by rising energy: of the mixed valence states where there are
+/// any, else of heavy and light holes.
+fn every_pair(pairs: &[Pair], bands: &SingleBands, mixed: Option<&MixedBands>) -> Vec<Transition> {
+    let mut transitions: Vec<Transition> = match mixed {
+        Some(mixed) => mixed::transitions(&bands.electron, mixed),
+        None => pairs
+            .iter()
+            .map(|pair| Transition {
+                electron: pair.electron + 1,
+                hole: match pair.kind {
+                    Hole::Heavy => format!("hh{}", pair.hole + 1),
+                    Hole::Light => format!("lh{}", pair.hole + 1),
+                },
+                energy_ev: pair.energy_ev(),
+                wavelength_nm: wavelength_nm(pair.energy_ev()),
+                overlap: pair.overlap,
+            })
+            .collect(),
+    };
     transitions.sort_by(|a, b| a.energy_ev.total_cmp(&b.energy_ev));
     transitions
 }

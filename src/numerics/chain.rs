@@ -464,7 +464,8 @@ impl Chain {
         sum
     }
 
-    /// Rayleigh-quotient iteration from each guess, [`LANES`] at a time.
+    /// Rayleigh-quotient iteration from each guess, [`LANES`] at a time. The energy of one that did
+    /// not converge is no number.
     fn rayleigh(&self, guesses: &[f64]) -> Vec<State> {
         let mut work = Twisted::new(self.nodes);
         let mut states = Vec::with_capacity(guesses.len());
@@ -474,13 +475,15 @@ impl Chain {
                 .windows(2)
                 .any(|pair| pair[1] - pair[0] < 4.0 * ORTHOGONAL_BELOW);
             let mut once_more = crowded;
+            let mut last = [f64::INFINITY; LANES];
             for _ in 0..12 {
                 let steps = work.iterate(self, &energies);
                 let mut largest = 0.0f64;
                 for lane in 0..LANES {
+                    last[lane] = steps[lane].abs();
                     if steps[lane].is_finite() {
                         energies[lane] += steps[lane];
-                        largest = largest.max(steps[lane].abs());
+                        largest = largest.max(last[lane]);
                     }
                 }
                 if largest < CONVERGED {
@@ -490,8 +493,13 @@ impl Chain {
                     once_more = false;
                 }
             }
+            // One that still moves is no level: its energy says so, and no certificate is given.
             states.extend((0..chunk.len()).map(|lane| State {
-                energy: energies[lane],
+                energy: if last[lane] < 10.0 * CONVERGED {
+                    energies[lane]
+                } else {
+                    f64::NAN
+                },
                 envelope: work.envelope(self, lane),
             }));
         }

@@ -3,9 +3,9 @@
 use rayon::prelude::*;
 
 use super::single::limit;
-use super::{Band, CLUSTER_EV, COARSEST_STEP_NM, Nodes, SingleBands, Uncertified};
+use super::{Band, CLUSTER_EV, COARSEST_STEP_NM, Level, Nodes, SingleBands, Uncertified};
 use crate::numerics::block::{BlockChain, BlockRun, Ladder, Three};
-use crate::profile::{Cells, Profile};
+use crate::profile::{Cells, Profile, Strained};
 use crate::units::HBAR2_OVER_2M0_EV_NM2;
 
 /// Steps of the in-plane wave number, 1/nm, and up to where each is taken: small enough to follow
@@ -39,6 +39,8 @@ pub struct ZoneCentre {
     pub error_ev: f64,
     /// Share inside the wells and the steps that belong to them.
     pub in_wells: f64,
+    /// Whether it lies within [`super::NEAR_EDGE_EV`] of the edge that confines it.
+    pub near_edge: bool,
 }
 
 /// Squared momentum matrix elements of one electron level and one valence state, in M_b² = m₀E_p/6,
@@ -96,8 +98,44 @@ pub struct MixedBands {
     pub k_per_nm: Vec<f64>,
     /// One block counted twice where the stack is its own mirror image, else the two blocks.
     pub blocks: Vec<Vec<Slice>>,
-    /// How many states each block stands for: 2 where one is counted twice.
+    /// How many states each block stands for: 2 where one is counted twice, times the number of
+    /// equal wells that were solved as one.
     pub degeneracy: f64,
+    /// How many equal, uncoupled wells were solved as one.
+    pub equal_wells: usize,
+    /// Electron levels that the matrix elements of the slices belong to.
+    pub electron: Vec<Level>,
+}
+
+impl MixedBands {
+    /// The bands of `wells` equal wells that do not feel each other, from those of one: every
+    /// zone-centre state stands once a well, and an overlap is shared evenly among the pairs, since
+    /// only sums over equal wells mean anything. The slices stay those of one well.
+    #[must_use]
+    pub fn of_equal_wells(self, wells: usize) -> Self {
+        let each = |row: &[f64]| -> Vec<f64> {
+            row.iter()
+                .flat_map(|overlap| std::iter::repeat_n(overlap / wells as f64, wells))
+                .collect()
+        };
+        let zone_centre = self
+            .zone_centre
+            .iter()
+            .flat_map(|state| std::iter::repeat_n(*state, wells))
+            .collect();
+        let overlaps = self
+            .overlaps
+            .iter()
+            .flat_map(|row| std::iter::repeat_n(each(row), wells))
+            .collect();
+        Self {
+            zone_centre,
+            overlaps,
+            degeneracy: self.degeneracy * wells as f64,
+            equal_wells: wells,
+            ..self
+        }
+    }
 }
 
 /// The valence states that belong to the wells, heavy, light and split-off holes mixed.
@@ -214,6 +252,8 @@ pub fn mixed(
         k_per_nm: wave_numbers()[..steps].to_vec(),
         degeneracy: if blocks.len() == 1 { 2.0 } else { 1.0 },
         blocks,
+        equal_wells: 1,
+        electron: single.electron.clone(),
     })
 }
 
@@ -305,7 +345,10 @@ impl Grid {
     /// Sets the forms of a block at an in-plane wave number.
     fn set(&self, chain: &mut BlockChain, k_per_nm: f64, sign: f64) {
         for (run, cell) in chain.runs_mut().iter_mut().zip(&self.cells) {
-            set_forms(run, cell, k_per_nm, sign);
+            *run = BlockRun {
+                intervals: cell.intervals,
+                ..interval(&cell.numbers, cell.tilt_ev, cell.length_nm, k_per_nm, sign)
+            };
         }
     }
 
@@ -333,6 +376,7 @@ impl Grid {
             split_off,
             error_ev: 0.0,
             in_wells,
+            near_edge: false,
         }
     }
 
@@ -357,18 +401,34 @@ impl Grid {
     }
 }
 
-/// The forms of one interval, upside down (hole energies).
-fn set_forms(run: &mut BlockRun, cell: &Cells, k: f64, s: f64) {
+/// The forms of one interval of uniform material, upside down: hole energies count upwards.
+///
+/// # Arguments
+///
+/// * `numbers` – material and edges of the interval
+/// * `tilt_ev` – potential energy of an electron in a field at its middle, eV
+/// * `length_nm` – its length, nm
+/// * `k_per_nm` – in-plane wave number, 1/nm
+/// * `sign` – +1 or −1, which of the two blocks
+#[must_use]
+pub fn interval(
+    numbers: &Strained,
+    tilt_ev: f64,
+    length_nm: f64,
+    k_per_nm: f64,
+    sign: f64,
+) -> BlockRun {
     use std::f64::consts::SQRT_2;
     const SQRT_3: f64 = 1.732_050_807_568_877_2;
     const SQRT_6: f64 = 2.449_489_742_783_178;
+    let (k, s) = (k_per_nm, sign);
     let unit = HBAR2_OVER_2M0_EV_NM2;
-    let [g1, g2, g3] = cell.numbers.crystal.luttinger;
+    let [g1, g2, g3] = numbers.crystal.luttinger;
     let axial = 0.5 * (g2 + g3);
     let minus = -(g1 - 2.0 * g2) - 1.0;
     let plus = -6.0 * g3 - minus;
-    let edges = &cell.numbers.edges;
-    let mean = edges.valence_mean_ev + cell.tilt_ev;
+    let edges = &numbers.edges;
+    let mean = edges.valence_mean_ev + tilt_ev;
     let (shear, k2) = (edges.shear_ev, k * k);
     let spike = s * k / 3.0 * (plus - minus) * unit;
     let mixing = s * k / (3.0 * SQRT_2) * unit;
@@ -395,7 +455,7 @@ fn set_forms(run: &mut BlockRun, cell: &Cells, k: f64, s: f64) {
         (
             2,
             2,
-            mean - cell.numbers.crystal.split_off_ev - unit * g1 * k2,
+            mean - numbers.crystal.split_off_ev - unit * g1 * k2,
             unit * g1,
             0.0,
             0.0,
@@ -429,7 +489,15 @@ fn set_forms(run: &mut BlockRun, cell: &Cells, k: f64, s: f64) {
             0.0,
         ),
     ];
-    let dz = run.length;
+    let dz = length_nm;
+    let empty: Three = [[0.0; 3]; 3];
+    let mut run = BlockRun {
+        intervals: 1,
+        length: dz,
+        lower: empty,
+        upper: empty,
+        coupling: empty,
+    };
     for (a, b, c0, c2, cp, cm, cd) in entries {
         let even = 0.5 * c0 * dz - c2 / dz;
         let odd = 0.5 * (cp - cm) - cd;
@@ -443,6 +511,7 @@ fn set_forms(run: &mut BlockRun, cell: &Cells, k: f64, s: f64) {
             run.coupling[b][a] = -(c2 / dz - slope);
         }
     }
+    run
 }
 
 /// Zone-centre states that belong to the wells, and the ladders to follow from.
@@ -526,10 +595,12 @@ impl Centre {
                 || (!in_field && energy_ev > edge)
             {
                 let error_ev = (second - first).abs() / 15.0 + 1e-9;
+                let near_edge = !in_field && energy_ev - edge < super::NEAR_EDGE_EV;
                 found.push((
                     ZoneCentre {
                         energy_ev,
                         error_ev,
+                        near_edge,
                         ..shares
                     },
                     place,
