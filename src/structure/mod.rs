@@ -8,6 +8,7 @@
 mod file;
 mod keys;
 mod layers;
+mod limits;
 mod magnitude;
 mod number;
 mod own_numbers;
@@ -21,6 +22,7 @@ mod syntax;
 mod validate;
 mod write;
 
+pub use limits::Limits;
 pub use magnitude::{Refusal, check_magnitude};
 pub use reference::key_reference;
 pub use remark::Remark;

@@ -6,7 +6,7 @@ use super::magnitude::check_magnitude;
 use super::number::shown;
 use super::palette::Palette;
 use super::reader::{Field, Findings, Given};
-use super::{Bands, Lineshape, Model, Operation, Overrides, Remark, Stack};
+use super::{Bands, Limits, Lineshape, Model, Operation, Overrides, Remark, Stack};
 use crate::materials::Parameters;
 use crate::source::Diagnostic;
 use crate::units::CELSIUS_ZERO_K;
@@ -31,6 +31,10 @@ pub(super) fn stack(
     }
     let operation = operation(&file.operation, overrides, findings);
     let model = model(&file.model, overrides);
+    let limits = file
+        .limits
+        .as_ref()
+        .map(|table| Limits::of(table, findings));
     let (palette, substrate) = Palette::of(file, text, parameters, findings);
     let mut reading = Layers::new(palette, parameters, operation.temperature_k);
     let layers = reading.expanded(file.layers.as_ref(), findings);
@@ -54,6 +58,7 @@ pub(super) fn stack(
         layers: layers?,
         operation,
         model,
+        limits,
     })
 }
 
