@@ -354,8 +354,14 @@ fn levels(
     let energies = |states: &[crate::numerics::chain::State]| -> Vec<f64> {
         states.iter().map(|state| state.energy).collect()
     };
-    let coarse = energies(&solve(&chains[0], None)?);
-    let half = solve(&chains[1], Some(&coarse))?;
+    let coarse = solve(&chains[0], None)?;
+    // What a grid says of its own error leads to the next.
+    let halved: Vec<f64> = coarse
+        .iter()
+        .map(|state| state.energy - 0.75 * chains[0].shift(state))
+        .collect();
+    let coarse = energies(&coarse);
+    let half = solve(&chains[1], Some(&halved))?;
     let middle = energies(&half);
     let guesses: Vec<f64> = middle
         .iter()
