@@ -45,14 +45,14 @@ impl SingleBand {
         let [x0, x1, x] = self.squares;
         let [first, second] = &self.coarse;
         let count = self.fine.count_below(DEPTH_EV);
-        let lower = first.lowest(work, count, None).expect("certified");
+        let lower = first.lowest_with(work, count, None).expect("certified");
         let slopes: Vec<f64> = lower.iter().map(|state| first.shift(state) / x0).collect();
         let guesses: Vec<f64> = lower
             .iter()
             .zip(&slopes)
             .map(|(state, slope)| state.energy + slope * (x1 - x0))
             .collect();
-        let upper = second.lowest(work, count, Some(&guesses)).expect("certified");
+        let upper = second.lowest_with(work, count, Some(&guesses)).expect("certified");
         let guesses: Vec<f64> = lower
             .iter()
             .zip(&slopes)
@@ -67,7 +67,7 @@ impl SingleBand {
             })
             .collect();
         self.fine
-            .lowest(work, count, Some(&guesses))
+            .lowest_with(work, count, Some(&guesses))
             .expect("certified")
     }
 }
