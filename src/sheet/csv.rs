@@ -60,8 +60,10 @@ macro_rules! row {
     ($($cell:expr),* $(,)?) => { vec![$(Cell::from($cell)),*] };
 }
 
+mod restatement;
 mod xray;
 
+pub use restatement::restatement;
 pub use xray::xray;
 
 impl CsvTable {

@@ -7,12 +7,14 @@ mod findings;
 mod layout;
 mod levels;
 mod materials;
+mod restatement;
 mod spectrum;
 mod xray;
 
 pub use findings::findings;
 pub use levels::levels;
 pub use materials::{descriptions, families};
+pub use restatement::restatement;
 pub use spectrum::spectrum;
 pub use xray::xray;
 
