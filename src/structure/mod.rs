@@ -9,6 +9,7 @@ mod file;
 mod keys;
 mod layers;
 mod magnitude;
+mod manuscript;
 mod number;
 mod own_numbers;
 mod palette;
@@ -22,11 +23,13 @@ mod validate;
 mod write;
 
 pub use magnitude::{Refusal, check_magnitude};
+pub use manuscript::{Condition, Form, Manuscript, Selection};
 pub use reference::key_reference;
 pub use remark::Remark;
 pub use schema::schema;
 pub use stack::{
-    Bands, Doping, Layer, Lineshape, Material, Model, Operation, Role, Stack, Substance,
+    Bands, Doping, Layer, Lineshape, Material, Medium, Model, Operation, Role, Stack, Substance,
+    Target, Wavelength,
 };
 pub use write::write;
 
