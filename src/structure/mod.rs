@@ -22,7 +22,7 @@ mod syntax;
 mod validate;
 mod write;
 
-pub use magnitude::{Refusal, check_magnitude};
+pub use magnitude::{Refusal, check_magnitude, thickness_range_nm};
 pub use manuscript::{Condition, Form, Manuscript, Selection};
 pub use reference::key_reference;
 pub use remark::Remark;
