@@ -112,8 +112,8 @@ pub(super) struct Materials {
     #[arg(long, value_name = "TEMPERATURE", allow_hyphen_values = true)]
     pub(super) at: Option<String>,
     /// Lay the numbers of a file over the shipped parameters
-    #[arg(long, value_name = "FILE")]
-    pub(super) materials: Option<PathBuf>,
+    #[arg(long = "materials", value_name = "FILE")]
+    pub(super) overlay: Option<PathBuf>,
     #[command(flatten)]
     pub(super) output: Output,
 }
@@ -124,8 +124,8 @@ pub(super) struct StructureFile {
     #[arg(value_name = "FILE")]
     pub(super) path: PathBuf,
     /// Lay the numbers of a file over the shipped parameters
-    #[arg(long, value_name = "FILE")]
-    pub(super) materials: Option<PathBuf>,
+    #[arg(long = "materials", value_name = "FILE")]
+    pub(super) overlay: Option<PathBuf>,
 }
 
 /// Conditions that go before those of the file.

@@ -406,10 +406,22 @@ impl Chain {
     fn certifies(&self, states: &[State]) -> bool {
         // (energy, levels below it): between levels, and just above the last.
         let mut points: Vec<(f64, usize)> = Vec::with_capacity(states.len() + 1);
+        let mut continues = false;
         for (index, state) in states.iter().enumerate() {
             if !state.energy.is_finite() {
                 return false;
             }
+            // One level found twice looks like a cluster: the whole of one must lie where its
+            // members do, which counts half-way to its neighbours do not tell.
+            let goes_on = states
+                .get(index + 1)
+                .is_some_and(|above| above.energy - state.energy < CLUSTER);
+            if goes_on && !continues {
+                points.push((state.energy - 0.25 * CLUSTER, index));
+            } else if continues && !goes_on {
+                points.push((state.energy + 0.25 * CLUSTER, index + 1));
+            }
+            continues = goes_on;
             match states.get(index + 1) {
                 Some(above) if above.energy < state.energy => return false,
                 // Inside a cluster only the whole is certified; its vectors are orthogonal.
@@ -452,7 +464,8 @@ impl Chain {
         sum
     }
 
-    /// Rayleigh-quotient iteration from each guess, [`LANES`] at a time.
+    /// Rayleigh-quotient iteration from each guess, [`LANES`] at a time. The energy of one that did
+    /// not converge is no number.
     fn rayleigh(&self, guesses: &[f64]) -> Vec<State> {
         let mut work = Twisted::new(self.nodes);
         let mut states = Vec::with_capacity(guesses.len());
@@ -462,13 +475,15 @@ impl Chain {
                 .windows(2)
                 .any(|pair| pair[1] - pair[0] < 4.0 * ORTHOGONAL_BELOW);
             let mut once_more = crowded;
+            let mut last = [f64::INFINITY; LANES];
             for _ in 0..12 {
                 let steps = work.iterate(self, &energies);
                 let mut largest = 0.0f64;
                 for lane in 0..LANES {
+                    last[lane] = steps[lane].abs();
                     if steps[lane].is_finite() {
                         energies[lane] += steps[lane];
-                        largest = largest.max(steps[lane].abs());
+                        largest = largest.max(last[lane]);
                     }
                 }
                 if largest < CONVERGED {
@@ -478,8 +493,13 @@ impl Chain {
                     once_more = false;
                 }
             }
+            // One that still moves is no level: its energy says so, and no certificate is given.
             states.extend((0..chunk.len()).map(|lane| State {
-                energy: energies[lane],
+                energy: if last[lane] < 10.0 * CONVERGED {
+                    energies[lane]
+                } else {
+                    f64::NAN
+                },
                 envelope: work.envelope(self, lane),
             }));
         }
@@ -489,8 +509,9 @@ impl Chain {
     /// `count` states that share one narrow bracket around `centre`: their span by inverse
     /// iteration, separated inside it.
     fn common_span(&self, centre: f64, count: usize) -> Vec<State> {
-        // A shift a little off the cluster keeps the factorisation away from zero pivots.
-        let shift = centre - 3.0 * CLUSTER;
+        // Close to the centre of the bracket, so that its levels are nearer than any neighbour, and
+        // a little off it, which keeps the factorisation away from zero pivots.
+        let shift = centre - CLUSTER / 64.0;
         let (diagonal, link) = self.pencil(shift);
         let factors = Factors::new(&diagonal, &link);
         let weights = self.weights();

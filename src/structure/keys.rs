@@ -418,7 +418,7 @@ pub(super) static MODEL: Table = Table {
         Key {
             name: "bands",
             kind: Kind::Word(|| [Bands::Mixed, Bands::Single].map(Bands::word).to_vec()),
-            default: "single",
+            default: "mixed",
             doc: "valence bands mixed, or heavy and light holes each by itself",
         },
         Key {

@@ -224,7 +224,7 @@ pub struct Model {
 impl Default for Model {
     fn default() -> Self {
         Self {
-            bands: Bands::Single,
+            bands: Bands::Mixed,
             nonparabolic: true,
             lineshape: Lineshape::Sech,
             intraband_fs: 100.0,

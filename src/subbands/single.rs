@@ -102,10 +102,10 @@ impl Level {
 /// Levels of the three bands on common nodes.
 #[derive(Clone, Debug, Default, PartialEq)]
 pub struct SingleBands {
-    /// How often the coarsest step was halved to make the finest grid.
-    pub halvings: u32,
     /// Nodes of the envelopes.
     pub nodes: Nodes,
+    /// How often the coarsest step was halved for `nodes`.
+    pub(super) halvings: u32,
     /// Nodes of twice the step.
     pub(super) coarser: Nodes,
     /// Electron levels, rising.
@@ -213,12 +213,12 @@ pub fn single(profile: &Profile<'_>, nonparabolic: bool) -> Result<SingleBands, 
             .collect();
         let ladder = |band| levels(profile, &grids, band, nonparabolic);
         let bands = SingleBands {
-            halvings: finest,
             electron: ladder(Band::Electron)?,
             heavy: ladder(Band::Heavy)?,
             light: ladder(Band::Light)?,
             nodes: Nodes::of(profile, &grids[2]),
             coarser: Nodes::of(profile, &grids[1]),
+            halvings: finest,
         };
         let settled = [&bands.electron, &bands.heavy, &bands.light]
             .into_iter()
@@ -301,7 +301,7 @@ fn chain(cells: &[Cells], band: Band, nonparabolic: bool) -> Chain {
 }
 
 /// Energy (counted upwards from the band edge) up to which levels are looked for.
-fn limit(profile: &Profile<'_>, band: Band) -> f64 {
+pub(super) fn limit(profile: &Profile<'_>, band: Band) -> f64 {
     let edges = profile
         .outside()
         .map(|numbers| band.sign() * band.edge_ev(numbers));
