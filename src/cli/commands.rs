@@ -16,7 +16,7 @@ use crate::subbands::{Band, hamiltonian};
 use clap::CommandFactory as _;
 
 /// Room temperature, at which materials are described unless asked otherwise, K.
-const ROOM_K: f64 = 300.0;
+pub(super) const ROOM_K: f64 = 300.0;
 
 /// `stepwell levels FILE`.
 pub(super) fn levels(flags: &flags::Levels, outlet: &Outlet) -> Result<Ending, Complaint> {

@@ -30,6 +30,9 @@ pub(super) enum Command {
     /// A structure against physics: barriers, strain, coupling, doping, odd numbers
     #[command(after_help = CHECK_EXAMPLES, term_width = COLUMNS)]
     Check(Check),
+    /// What X-rays see of the wafer: peaks, zero order, satellites, rocking curve
+    #[command(after_help = XRAY_EXAMPLES, term_width = COLUMNS)]
+    Xray(Xray),
     /// Parameters with their sources: all families, one alloy, or all that a file uses
     #[command(after_help = MATERIALS_EXAMPLES, term_width = COLUMNS)]
     Materials(Materials),
@@ -93,6 +96,23 @@ pub(super) struct Check {
     pub(super) file: StructureFile,
     #[command(flatten)]
     pub(super) conditions: Conditions,
+    #[command(flatten)]
+    pub(super) output: Output,
+}
+
+#[derive(Debug, Args)]
+pub(super) struct Xray {
+    #[command(flatten)]
+    pub(super) file: StructureFile,
+    /// Reflection of the (001) wafer: 002, 004 or 006
+    #[arg(long, value_name = "00L", default_value = "004")]
+    pub(super) reflection: String,
+    /// Temperature of the wafer on the diffractometer, if not 300 K: 25C or 298.15K
+    #[arg(long, value_name = "TEMPERATURE", allow_hyphen_values = true)]
+    pub(super) at: Option<String>,
+    /// Draw the rocking curve
+    #[arg(long, value_name = "PATH.svg")]
+    pub(super) figure: Option<PathBuf>,
     #[command(flatten)]
     pub(super) output: Output,
 }
@@ -238,6 +258,18 @@ Each finding has a code and stands ok (inside its limit), stated (a figure
 without a limit), look (worth a look) or outside. Exit code 5 if anything is
 outside.";
 
+const XRAY_EXAMPLES: &str = "\
+Examples:
+  stepwell xray my.toml
+  stepwell xray my.toml --reflection 002
+  stepwell xray my.toml --figure rocking.svg --csv rocking.csv
+
+X-rays are Cu K-alpha1 in an omega-2theta scan. Offsets are in omega, arcsec
+from the substrate's peak; a detector that reads 2theta moves twice as far.
+A wafer is measured at room temperature: the device's temperature in the file
+does not count here. It is a command of its own because it answers the grower,
+who has a diffractometer and no interest in levels or gain.";
+
 const MATERIALS_EXAMPLES: &str = "\
 Examples:
   stepwell materials
@@ -277,6 +309,7 @@ mod tests {
             LEVELS_EXAMPLES,
             SPECTRUM_EXAMPLES,
             CHECK_EXAMPLES,
+            XRAY_EXAMPLES,
             MATERIALS_EXAMPLES,
             NEW_EXAMPLES,
         ] {

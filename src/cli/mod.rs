@@ -11,6 +11,7 @@ mod flags;
 mod manual;
 mod outlet;
 mod shipped;
+mod wafer;
 mod welcome;
 mod wishes;
 
@@ -79,6 +80,7 @@ fn obey(flags: Flags, outlet: &Outlet) -> Result<Ending, Complaint> {
         Some(Command::Levels(flags)) => commands::levels(&flags, outlet),
         Some(Command::Spectrum(flags)) => commands::spectrum(&flags, outlet),
         Some(Command::Check(flags)) => commands::check(&flags, outlet),
+        Some(Command::Xray(flags)) => wafer::xray(&flags, outlet),
         Some(Command::Materials(flags)) => commands::materials(&flags, outlet),
         Some(Command::New { name }) => shipped::write(name.as_deref(), outlet),
         Some(Command::Schema) => commands::schema(),

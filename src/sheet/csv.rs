@@ -60,6 +60,10 @@ macro_rules! row {
     ($($cell:expr),* $(,)?) => { vec![$(Cell::from($cell)),*] };
 }
 
+mod xray;
+
+pub use xray::xray;
+
 impl CsvTable {
     fn new(name: &'static str, heads: &[&str]) -> Self {
         Self {

@@ -18,13 +18,15 @@ mod spectrum;
 mod stamp;
 mod starting;
 mod table;
+mod xray;
 
 pub use findings::findings;
 pub use levels::levels;
 pub use materials::{descriptions, families};
 pub use matrix::matrix_market;
-pub use picture::{levels_figure, spectrum_figure};
+pub use picture::{levels_figure, rocking_figure, spectrum_figure};
 pub use remark::{complaint, remark};
 pub use spectrum::spectrum;
 pub use stamp::{Stamp, Switches, sha256};
 pub use starting::starting_structures;
+pub use xray::xray;

@@ -15,6 +15,7 @@ pub(super) struct StructureFile {
     pub(super) operation: OperationTable,
     pub(super) model: ModelTable,
     pub(super) target: Option<TargetTable>,
+    pub(super) limits: Option<LimitsTable>,
 }
 
 pub(super) struct SubstrateTable {
@@ -94,6 +95,20 @@ pub(super) struct TargetTable {
     pub(super) tolerance_nm: Field<f64>,
 }
 
+pub(super) struct LimitsTable {
+    pub(super) strain_percent_max: Field<f64>,
+    pub(super) strain_thickness_percent_nm_max: Field<f64>,
+    pub(super) net_strain_percent_max: Field<f64>,
+    pub(super) critical_share_max: Field<f64>,
+    pub(super) mismatch_ppm_max: Field<f64>,
+    pub(super) layer_nm_min: Field<f64>,
+    pub(super) well_nm_min: Field<f64>,
+    pub(super) barrier_kt_min: Field<f64>,
+    pub(super) coupling_mev_max: Field<f64>,
+    pub(super) acceptor_setback_nm_min: Field<f64>,
+    pub(super) without_elements: Field<String>,
+}
+
 /// The same place with what `convert` makes of the value.
 fn map<T, U>(field: Field<T>, convert: impl FnOnce(T) -> U) -> Field<U> {
     field.map(|given| Given {
@@ -140,6 +155,10 @@ impl From<Values> for StructureFile {
                 .table("target")
                 .and_then(|given| given.value)
                 .map(TargetTable::from),
+            limits: values
+                .table("limits")
+                .and_then(|given| given.value)
+                .map(LimitsTable::from),
         }
     }
 }
@@ -237,6 +256,24 @@ impl From<Values> for TargetTable {
             density_cm3: values.number("density_cm3"),
             tolerance_nm: values.number("tolerance_nm"),
             span: values.span,
+        }
+    }
+}
+
+impl From<Values> for LimitsTable {
+    fn from(mut values: Values) -> Self {
+        Self {
+            strain_percent_max: values.number("strain_percent_max"),
+            strain_thickness_percent_nm_max: values.number("strain_thickness_percent_nm_max"),
+            net_strain_percent_max: values.number("net_strain_percent_max"),
+            critical_share_max: values.number("critical_share_max"),
+            mismatch_ppm_max: values.number("mismatch_ppm_max"),
+            layer_nm_min: values.number("layer_nm_min"),
+            well_nm_min: values.number("well_nm_min"),
+            barrier_kt_min: values.number("barrier_kt_min"),
+            coupling_mev_max: values.number("coupling_mev_max"),
+            acceptor_setback_nm_min: values.number("acceptor_setback_nm_min"),
+            without_elements: values.text("without_elements"),
         }
     }
 }

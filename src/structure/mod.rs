@@ -8,6 +8,7 @@
 mod file;
 mod keys;
 mod layers;
+mod limits;
 mod magnitude;
 mod manuscript;
 mod number;
@@ -22,6 +23,7 @@ mod syntax;
 mod validate;
 mod write;
 
+pub use limits::Limits;
 pub use magnitude::{Refusal, check_magnitude, thickness_range_nm};
 pub use manuscript::{Condition, Form, Manuscript, Selection};
 pub use reference::key_reference;

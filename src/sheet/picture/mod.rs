@@ -9,11 +9,13 @@ mod bundle;
 mod dispersion;
 mod gain;
 mod growth;
+mod rocking;
 mod spectra;
 #[cfg(test)]
 mod tests;
 
 pub use bands::levels_figure;
+pub use rocking::rocking_figure;
 pub use spectra::spectrum_figure;
 
 use super::figure::{Dash, Ink, Key};
