@@ -1,5 +1,8 @@
-//! Judgement of a design: what an evaluation means for the wafer.
+//! Judgement of a design: what an evaluation means for the wafer, which structures meet a target,
+//! and how they compare.
 
 mod check;
+mod movement;
 
 pub use check::{Carrier, Finding, Limits, Measure, Standing, check};
+pub use movement::{Immovable, Impossible, Move, Quantity, Variation};

@@ -22,7 +22,7 @@ use crate::numerics::roots::bracketed_root;
 use crate::profile::{Profile, Unsolvable};
 use crate::spectra::landmarks::View;
 use crate::spectra::{Dispersive, Emitter, Hole, Line, Occupation, Pair, Point, Staircase};
-use crate::structure::{Bands, Role, Stack, Substance};
+use crate::structure::{Bands, Role, Stack, Substance, Wavelength};
 use crate::subbands::{Band, Level, MixedBands, SingleBands, Uncertified, single};
 use crate::units::{thermal_ev, wavelength_nm};
 
@@ -315,6 +315,60 @@ impl<'a> Evaluation<'a> {
             gain_peak_nm: peak_nm(self.shrinkage_ev(filling.density_cm3)),
             gain_peak_unshrunk_nm: peak_nm(0.0),
         }
+    }
+
+    /// The wavelength of a kind, nm in vacuum: of peak gain at the working density. `None` where
+    /// there is no such peak.
+    #[must_use]
+    pub fn wavelength_nm(&self, kind: Wavelength) -> Option<f64> {
+        match kind {
+            Wavelength::Transition => Some(wavelength_nm(self.first_ev)),
+            Wavelength::Photoluminescence => self
+                .view(&self.low_injection())
+                .emission_peak()
+                .map(|peak| wavelength_nm(peak.photon_ev)),
+            Wavelength::Gain => {
+                let density_cm3 = self.stack.operation.working_density_cm3;
+                self.highest_gain(density_cm3).map(|(_, peak)| peak.peak_nm)
+            }
+        }
+    }
+
+    /// Peaks of TE and TM gain at a density, with shrinkage; `None` below transparency.
+    #[must_use]
+    pub fn gain_peaks_at(&self, density_cm3: f64) -> [Option<GainPeak>; 2] {
+        self.gain_peaks(
+            &self.filling(density_cm3),
+            &self.view(&self.carriers(density_cm3)),
+        )
+    }
+
+    /// The larger of these peaks, with the name of its polarisation.
+    #[must_use]
+    pub fn highest_gain(&self, density_cm3: f64) -> Option<(&'static str, GainPeak)> {
+        let [te, tm] = self.gain_peaks_at(density_cm3);
+        larger(te, tm)
+    }
+
+    /// The carriers at a density of pairs, with gap shrinkage.
+    #[must_use]
+    pub fn carriers(&self, density_cm3: f64) -> Occupation {
+        self.occupation(&self.filling(density_cm3), self.shrinkage_ev(density_cm3))
+    }
+
+    /// The current that spontaneous emission at a density takes, of all wells, A/cm².
+    #[must_use]
+    pub fn radiative_current_a_cm2(&self, density_cm3: f64) -> f64 {
+        let rate = self
+            .view(&self.carriers(density_cm3))
+            .total_rate_per_cm3_s();
+        crate::units::ELEMENTARY_CHARGE_C * rate * 1e-7 * self.profile.well_thickness_nm
+    }
+
+    /// What absorbs and emits.
+    #[must_use]
+    pub fn emitter(&self) -> &dyn Emitter {
+        &*self.emitter
     }
 
     /// Edge of the first transition with the gap shrinkage at a density, as a wavelength in vacuum,

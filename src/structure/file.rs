@@ -14,6 +14,7 @@ pub(super) struct StructureFile {
     pub(super) layers: Field<Vec<Row>>,
     pub(super) operation: OperationTable,
     pub(super) model: ModelTable,
+    pub(super) target: Option<TargetTable>,
     pub(super) limits: Option<LimitsTable>,
 }
 
@@ -84,6 +85,16 @@ pub(super) struct ModelTable {
     pub(super) index: Field<f64>,
 }
 
+pub(super) struct TargetTable {
+    pub(super) span: Range<usize>,
+    pub(super) kind: Field<String>,
+    pub(super) wavelength_nm: Field<f64>,
+    pub(super) medium: Field<String>,
+    pub(super) temperature_c: Field<f64>,
+    pub(super) density_cm3: Field<f64>,
+    pub(super) tolerance_nm: Field<f64>,
+}
+
 pub(super) struct LimitsTable {
     pub(super) strain_percent_max: Field<f64>,
     pub(super) strain_thickness_percent_nm_max: Field<f64>,
@@ -140,6 +151,10 @@ impl From<Values> for StructureFile {
                 .and_then(|given| given.value)
                 .map(ModelTable::from)
                 .unwrap_or_default(),
+            target: values
+                .table("target")
+                .and_then(|given| given.value)
+                .map(TargetTable::from),
             limits: values
                 .table("limits")
                 .and_then(|given| given.value)
@@ -227,6 +242,20 @@ impl From<Values> for ModelTable {
             conduction_share: values.number("conduction_share"),
             field_kv_cm: values.number("field_kv_cm"),
             index: values.number("index"),
+        }
+    }
+}
+
+impl From<Values> for TargetTable {
+    fn from(mut values: Values) -> Self {
+        Self {
+            kind: values.text("kind"),
+            wavelength_nm: values.number("wavelength_nm"),
+            medium: values.text("medium"),
+            temperature_c: values.number("temperature_c"),
+            density_cm3: values.number("density_cm3"),
+            tolerance_nm: values.number("tolerance_nm"),
+            span: values.span,
         }
     }
 }

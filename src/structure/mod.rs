@@ -10,6 +10,7 @@ mod keys;
 mod layers;
 mod limits;
 mod magnitude;
+mod manuscript;
 mod number;
 mod own_numbers;
 mod palette;
@@ -23,12 +24,14 @@ mod validate;
 mod write;
 
 pub use limits::Limits;
-pub use magnitude::{Refusal, check_magnitude};
+pub use magnitude::{Refusal, check_magnitude, thickness_range_nm};
+pub use manuscript::{Condition, Form, Manuscript, Selection};
 pub use reference::key_reference;
 pub use remark::Remark;
 pub use schema::schema;
 pub use stack::{
-    Bands, Doping, Layer, Lineshape, Material, Model, Operation, Role, Stack, Substance,
+    Bands, Doping, Layer, Lineshape, Material, Medium, Model, Operation, Role, Stack, Substance,
+    Target, Wavelength,
 };
 pub use write::write;
 
