@@ -14,7 +14,7 @@
 
 use std::fmt::Write as _;
 use stepwell::materials::{Composition, Offsets, Parameters};
-use stepwell::numerics::chain::{Chain, Run, Workspace};
+use stepwell::numerics::chain::{Chain, Run};
 use stepwell::profile::{Profile, REACH_NM};
 use stepwell::structure::{self, Overrides, Stack};
 use stepwell::subbands::{Band, CLUSTER_EV, Level, single};
