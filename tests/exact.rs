@@ -563,7 +563,7 @@ fn the_order_is_two_and_four_once_extrapolated() {
             });
             let chain = Chain::new(runs.collect());
             chain
-                .lowest(&mut Workspace::default(), 1, None)
+                .lowest(1, None)
                 .expect("certified")[0]
                 .energy
         });
