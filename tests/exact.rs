@@ -562,10 +562,7 @@ fn the_order_is_two_and_four_once_extrapolated() {
                 }
             });
             let chain = Chain::new(runs.collect());
-            chain
-                .lowest(1, None)
-                .expect("certified")[0]
-                .energy
+            chain.lowest(1, None).expect("certified")[0].energy
         });
         let order = |coarse: f64, fine: f64| ((coarse - exact) / (fine - exact)).abs().log2();
         orders.0.push(order(raw[2], raw[3]));

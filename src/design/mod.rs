@@ -6,3 +6,6 @@ mod movement;
 
 pub use check::{Carrier, Finding, Limits, Measure, Standing, check};
 pub use movement::{Immovable, Impossible, Move, Quantity, Variation};
+mod wafer;
+pub use check::{Carrier, Finding, Measure, Standing, check};
+pub use wafer::{StrainLimits, WaferFinding};
