@@ -3,6 +3,8 @@
 
 mod check;
 mod movement;
+mod wafer;
 
-pub use check::{Carrier, Finding, Limits, Measure, Standing, check};
+pub use check::{Carrier, Finding, Measure, Standing, check};
 pub use movement::{Immovable, Impossible, Move, Quantity, Variation};
+pub use wafer::{StrainLimits, WaferFinding};

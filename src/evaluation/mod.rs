@@ -173,7 +173,7 @@ impl<'a> Evaluation<'a> {
         let mixed = match stack.model.bands {
             Bands::Single => None,
             Bands::Mixed => {
-                let depth_ev = mixed::depth_ev(stack, &parabolas, &doping);
+                let depth_ev = mixed::depth_ev(stack, &parabolas, doping);
                 Some(match mixed::one_of_equal_wells(stack, &bands) {
                     Some((wells, one)) => {
                         let profile = Profile::new(&one, parameters)?;

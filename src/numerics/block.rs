@@ -829,7 +829,7 @@ fn groups(energies: &[f64]) -> Vec<Range<usize>> {
     let mut groups = Vec::new();
     let mut start = 0;
     for level in 1..=energies.len() {
-        let apart = level == energies.len() || !(energies[level] - energies[level - 1] < GROUP);
+        let apart = level == energies.len() || energies[level] - energies[level - 1] >= GROUP;
         if apart {
             groups.push(start..level);
             start = level;

@@ -1,5 +1,7 @@
 //! What a check found, in words.
 
+mod wafer;
+
 use super::number::{fixed, length_nm, plain, power, significant};
 use super::page::{Page, bold, padded, wrapped};
 use super::stamp::Stamp;
@@ -111,40 +113,21 @@ pub(super) fn message(finding: &Finding) -> String {
                 plain(*least_kt)
             )
         }
-        Finding::Strain {
-            role,
-            formula,
-            percent,
-            sense,
-            thickness_nm,
-            count,
-        } => {
-            let times = if *count > 1 {
-                format!("{count} × ")
-            } else {
-                String::new()
-            };
-            format!(
-                "{times}{} {formula}: {} % {} over {} nm, {} % nm each",
-                role.word(),
-                fixed(*percent, 2),
-                sense.word(),
-                length_nm(*thickness_nm),
-                significant(percent * thickness_nm, 3)
-            )
-        }
+        Finding::Wafer(finding) => wafer::message(finding),
         Finding::Coupling {
             carrier,
             spread_ev,
             most_ev,
+            is_house,
         } => format!(
-            "the first level of the {} spreads by {} meV over the wells (a look above {} meV)",
+            "the first level of the {} spreads by {} meV over the wells ({} {} meV)",
             carrier.word(),
             if *spread_ev < LEAST_SPREAD_EV {
                 format!("less than {}", plain(1e3 * LEAST_SPREAD_EV))
             } else {
                 significant(1e3 * spread_ev, 2)
             },
+            if *is_house { "at most" } else { "a look above" },
             plain(1e3 * most_ev)
         ),
         Finding::GroundHole { light, split_ev } => {
@@ -167,7 +150,14 @@ pub(super) fn message(finding: &Finding) -> String {
             net_cm3,
             acceptors_setback_nm,
             donors_setback_nm,
-        } => doping(*net_cm3, *acceptors_setback_nm, *donors_setback_nm),
+            least_nm,
+        } => {
+            let mut words = doping(*net_cm3, *acceptors_setback_nm, *donors_setback_nm);
+            if let Some(nm) = least_nm {
+                let _ = write!(words, " (acceptors at least {} nm)", length_nm(*nm));
+            }
+            words
+        }
     }
 }
 
@@ -206,7 +196,12 @@ pub(super) fn advice(finding: &Finding) -> Option<String> {
         Finding::File(Remark::DefaultTemperature { .. }) => Some("give `temperature_c`".to_owned()),
         Finding::File(remark) => Some(remark.advice()),
         Finding::Levels(remark) => remark.advice(),
-        Finding::Unsolved(_) | Finding::Strain { .. } | Finding::Doping { .. } => None,
+        Finding::Wafer(finding) => wafer::advice(finding),
+        Finding::Doping { .. } if finding.standing() == Standing::Outside => Some(
+            "acceptors move while the rest grows: a spacer, a sharper dopant, or a colder growth"
+                .to_owned(),
+        ),
+        Finding::Unsolved(_) | Finding::Doping { .. } => None,
         Finding::DirectWell { .. } => Some(
             "electrons spill into the valley and do not emit: less of the wide-gap element in the well"
                 .to_owned(),
