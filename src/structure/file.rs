@@ -3,7 +3,9 @@
 
 use std::ops::Range;
 
+use super::growth::GrowthTable;
 use super::reader::{Field, Given, Values};
+use super::target::TargetTable;
 
 pub(super) struct StructureFile {
     pub(super) format: Field<u64>,
@@ -14,6 +16,8 @@ pub(super) struct StructureFile {
     pub(super) layers: Field<Vec<Row>>,
     pub(super) operation: OperationTable,
     pub(super) model: ModelTable,
+    pub(super) target: Field<TargetTable>,
+    pub(super) growth: Field<GrowthTable>,
 }
 
 pub(super) struct SubstrateTable {
@@ -84,7 +88,7 @@ pub(super) struct ModelTable {
 }
 
 /// The same place with what `convert` makes of the value.
-fn map<T, U>(field: Field<T>, convert: impl FnOnce(T) -> U) -> Field<U> {
+pub(super) fn map<T, U>(field: Field<T>, convert: impl FnOnce(T) -> U) -> Field<U> {
     field.map(|given| Given {
         key: given.key,
         span: given.span,
@@ -125,6 +129,8 @@ impl From<Values> for StructureFile {
                 .and_then(|given| given.value)
                 .map(ModelTable::from)
                 .unwrap_or_default(),
+            target: map(values.table("target"), TargetTable::from),
+            growth: map(values.table("growth"), GrowthTable::from),
         }
     }
 }

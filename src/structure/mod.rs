@@ -6,6 +6,7 @@
 //! [`write()`] says a stack as a file.
 
 mod file;
+mod growth;
 mod keys;
 mod layers;
 mod magnitude;
@@ -18,9 +19,11 @@ mod remark;
 mod schema;
 mod stack;
 mod syntax;
+mod target;
 mod validate;
 mod write;
 
+pub use growth::{Fluxes, GROUP_III, Growth};
 pub use magnitude::{Refusal, check_magnitude};
 pub use reference::key_reference;
 pub use remark::Remark;
@@ -28,6 +31,7 @@ pub use schema::schema;
 pub use stack::{
     Bands, Doping, Layer, Lineshape, Material, Model, Operation, Role, Stack, Substance,
 };
+pub use target::{Emission, Medium, Target};
 pub use write::write;
 
 use std::ops::Range;

@@ -1,5 +1,6 @@
 //! The validated stack: what the file said, checked, expanded, in the trade's units.
 
+use super::{Growth, Target};
 use crate::materials::{Composition, Crystal};
 
 /// What a layer is made of.
@@ -249,6 +250,10 @@ pub struct Stack {
     pub operation: Operation,
     /// Switches of the model.
     pub model: Model,
+    /// The wavelength that the design is for, where the file names one.
+    pub target: Option<Target>,
+    /// Errors of growth, where the file states them.
+    pub growth: Option<Growth>,
 }
 
 impl Stack {

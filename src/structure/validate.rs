@@ -1,11 +1,13 @@
 //! From the file to a [`Stack`], collecting every complaint on the way.
 
 use super::file::{ModelTable, OperationTable, StructureFile};
+use super::growth::growth;
 use super::layers::Layers;
 use super::magnitude::check_magnitude;
 use super::number::shown;
 use super::palette::Palette;
 use super::reader::{Field, Findings, Given};
+use super::target::target;
 use super::{Bands, Lineshape, Model, Operation, Overrides, Remark, Stack};
 use crate::materials::Parameters;
 use crate::source::Diagnostic;
@@ -34,6 +36,8 @@ pub(super) fn stack(
     let (palette, substrate) = Palette::of(file, text, parameters, findings);
     let mut reading = Layers::new(palette, parameters, operation.temperature_k);
     let layers = reading.expanded(file.layers.as_ref(), findings);
+    let target = target(&file.target, findings);
+    let growth = growth(&file.growth, findings);
     let own_numbers = reading.palette().remarks(findings);
     if overrides.temperature_k.is_some() && !own_numbers.is_empty() {
         findings
@@ -54,6 +58,8 @@ pub(super) fn stack(
         layers: layers?,
         operation,
         model,
+        target,
+        growth,
     })
 }
 

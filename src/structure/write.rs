@@ -4,6 +4,7 @@ use std::fmt::Write as _;
 
 use super::number::exact;
 use super::{Layer, Material, Model, Operation, Stack, Substance};
+use super::{growth, target};
 use crate::materials::{Composition, Crystal, Element};
 
 /// The stack as a structure file: materials by composition or by numbers, groups folded where rows
@@ -25,6 +26,12 @@ pub fn write(stack: &Stack) -> String {
     }
     operation(&stack.operation, &mut text);
     model(&stack.model, &mut text);
+    if let Some(target) = &stack.target {
+        target::write(target, &mut text);
+    }
+    if let Some(growth) = &stack.growth {
+        growth::write(growth, &mut text);
+    }
     text
 }
 
