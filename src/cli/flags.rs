@@ -30,6 +30,9 @@ pub(super) enum Command {
     /// A structure against physics: barriers, strain, coupling, doping, odd numbers
     #[command(after_help = CHECK_EXAMPLES, term_width = COLUMNS)]
     Check(Check),
+    /// Growth errors to wavelength and yield: sensitivities and random wafers
+    #[command(after_help = SPREAD_EXAMPLES, term_width = COLUMNS)]
+    Spread(Spread),
     /// Parameters with their sources: all families, one alloy, or all that a file uses
     #[command(after_help = MATERIALS_EXAMPLES, term_width = COLUMNS)]
     Materials(Materials),
@@ -95,6 +98,34 @@ pub(super) struct Check {
     pub(super) conditions: Conditions,
     #[command(flatten)]
     pub(super) output: Output,
+}
+
+#[derive(Debug, Args)]
+pub(super) struct Spread {
+    #[command(flatten)]
+    pub(super) file: StructureFile,
+    #[command(flatten)]
+    pub(super) conditions: Conditions,
+    /// Of which wavelength: transition, pl or gain; goes before the kind of [target]
+    #[arg(long, value_name = "KIND")]
+    pub(super) kind: Option<String>,
+    /// How many wafers are drawn
+    #[arg(long, value_name = "COUNT", default_value = "100000")]
+    pub(super) draws: String,
+    /// Seed of the random numbers: the same seed draws the same wafers
+    #[arg(long, value_name = "NUMBER", default_value_t = 1)]
+    pub(super) seed: u64,
+    /// A yield in per cent: how small errors must be to reach it
+    #[arg(long = "yield", value_name = "PERCENT")]
+    pub(super) wanted_yield: Option<String>,
+    /// Solve every wafer in full, in place of the quadratic law (slow)
+    #[arg(long)]
+    pub(super) each_wafer: bool,
+    #[command(flatten)]
+    pub(super) output: Output,
+    /// Draw the distribution and the sensitivities
+    #[arg(long, value_name = "PATH.svg")]
+    pub(super) figure: Option<PathBuf>,
 }
 
 #[derive(Debug, Args)]
@@ -238,6 +269,19 @@ Each finding has a code and stands ok (inside its limit), stated (a figure
 without a limit), look (worth a look) or outside. Exit code 5 if anything is
 outside.";
 
+const SPREAD_EXAMPLES: &str = "\
+Examples:
+  stepwell spread my.toml
+  stepwell spread my.toml --yield 95 --figure spread.svg
+  stepwell spread my.toml --kind gain --draws 1e6 --seed 7 --json
+
+The file says in [growth] by how much growth varies from run to run, one sigma:
+  [growth]
+  rate_percent = 1.0
+  flux_percent = { In = 0.5, Ga = 0.5, Al = 0.5 }
+and in [target] which wavelength counts as good (`tolerance_nm`). An error of a
+flux moves thickness and composition of every layer that holds the element.";
+
 const MATERIALS_EXAMPLES: &str = "\
 Examples:
   stepwell materials
@@ -277,6 +321,7 @@ mod tests {
             LEVELS_EXAMPLES,
             SPECTRUM_EXAMPLES,
             CHECK_EXAMPLES,
+            SPREAD_EXAMPLES,
             MATERIALS_EXAMPLES,
             NEW_EXAMPLES,
         ] {

@@ -8,9 +8,11 @@ mod case;
 mod commands;
 mod complaint;
 mod flags;
+mod gauge;
 mod manual;
 mod outlet;
 mod shipped;
+mod wafer;
 mod welcome;
 mod wishes;
 
@@ -78,6 +80,7 @@ fn obey(flags: Flags, outlet: &Outlet) -> Result<Ending, Complaint> {
         None => welcome::greet(outlet),
         Some(Command::Levels(flags)) => commands::levels(&flags, outlet),
         Some(Command::Spectrum(flags)) => commands::spectrum(&flags, outlet),
+        Some(Command::Spread(flags)) => wafer::spread(&flags, outlet),
         Some(Command::Check(flags)) => commands::check(&flags, outlet),
         Some(Command::Materials(flags)) => commands::materials(&flags, outlet),
         Some(Command::New { name }) => shipped::write(name.as_deref(), outlet),

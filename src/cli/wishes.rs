@@ -86,7 +86,7 @@ pub(super) fn band(word: &str) -> Result<Band, Complaint> {
     )
 }
 
-fn one<T: Copy>(
+pub(super) fn one<T: Copy>(
     flag: &str,
     word: &str,
     known: &[T],

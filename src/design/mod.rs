@@ -1,5 +1,14 @@
 //! Judgement of a design: what an evaluation means for the wafer.
 
 mod check;
+mod draws;
+mod reactor;
+mod spread;
+mod surrogate;
 
 pub use check::{Carrier, Finding, Limits, Measure, Standing, check};
+pub use reactor::{Cause, Reactor, Variable};
+pub use spread::{
+    Histogram, LayerSpread, MODEL_NM, Miss, Moments, Request, Sensitivity, Solving, Spread,
+    SpreadError, Wanted, Yield, posed, spread, vacuum_nm, wavelength_nm,
+};

@@ -22,7 +22,7 @@ use crate::numerics::roots::bracketed_root;
 use crate::profile::{Profile, Unsolvable};
 use crate::spectra::landmarks::{emission_peak, gain_peak};
 use crate::spectra::{Dispersive, Emitter, Hole, Line, Occupation, Pair, Point, Staircase};
-use crate::structure::{Bands, Role, Stack, Substance};
+use crate::structure::{Bands, Role, Stack, Substance, Wavelength};
 use crate::subbands::{Band, Level, MixedBands, SingleBands, Uncertified, single};
 use crate::units::{thermal_ev, wavelength_nm};
 
@@ -314,6 +314,23 @@ impl<'a> Evaluation<'a> {
                 .map(|peak| wavelength_nm(peak.photon_ev)),
             gain_peak_nm: peak_nm(self.shrinkage_ev(filling.density_cm3)),
             gain_peak_unshrunk_nm: peak_nm(0.0),
+        }
+    }
+
+    /// The wavelength of one kind alone, nm in vacuum; `None` where there is no such peak.
+    #[must_use]
+    pub fn wavelength_nm(&self, kind: Wavelength) -> Option<f64> {
+        match kind {
+            Wavelength::Transition => Some(wavelength_nm(self.first_ev)),
+            Wavelength::Photoluminescence => self
+                .photoluminescence_peak()
+                .map(|peak| wavelength_nm(peak.photon_ev)),
+            Wavelength::Gain => {
+                let filling = self.filling(self.stack.operation.working_density_cm3);
+                let lowering_ev = self.shrinkage_ev(filling.density_cm3);
+                let [te, tm] = self.gain_peaks(&filling, lowering_ev);
+                larger(te, tm).map(|(_, peak)| peak.peak_nm)
+            }
         }
     }
 

@@ -60,6 +60,10 @@ macro_rules! row {
     ($($cell:expr),* $(,)?) => { vec![$(Cell::from($cell)),*] };
 }
 
+mod spread;
+
+pub use spread::spread;
+
 impl CsvTable {
     fn new(name: &'static str, heads: &[&str]) -> Self {
         Self {

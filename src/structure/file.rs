@@ -5,7 +5,6 @@ use std::ops::Range;
 
 use super::growth::GrowthTable;
 use super::reader::{Field, Given, Values};
-use super::target::TargetTable;
 
 pub(super) struct StructureFile {
     pub(super) format: Field<u64>,
@@ -15,8 +14,8 @@ pub(super) struct StructureFile {
     pub(super) materials: Vec<(String, Given<MaterialTable>)>,
     pub(super) layers: Field<Vec<Row>>,
     pub(super) operation: OperationTable,
+    pub(super) target: Option<TargetTable>,
     pub(super) model: ModelTable,
-    pub(super) target: Field<TargetTable>,
     pub(super) growth: Field<GrowthTable>,
 }
 
@@ -87,6 +86,16 @@ pub(super) struct ModelTable {
     pub(super) index: Field<f64>,
 }
 
+pub(super) struct TargetTable {
+    pub(super) span: Range<usize>,
+    pub(super) kind: Field<String>,
+    pub(super) wavelength_nm: Field<f64>,
+    pub(super) medium: Field<String>,
+    pub(super) temperature_c: Field<f64>,
+    pub(super) density_cm3: Field<f64>,
+    pub(super) tolerance_nm: Field<f64>,
+}
+
 /// The same place with what `convert` makes of the value.
 pub(super) fn map<T, U>(field: Field<T>, convert: impl FnOnce(T) -> U) -> Field<U> {
     field.map(|given| Given {
@@ -129,7 +138,10 @@ impl From<Values> for StructureFile {
                 .and_then(|given| given.value)
                 .map(ModelTable::from)
                 .unwrap_or_default(),
-            target: map(values.table("target"), TargetTable::from),
+            target: values
+                .table("target")
+                .and_then(|given| given.value)
+                .map(TargetTable::from),
             growth: map(values.table("growth"), GrowthTable::from),
         }
     }
@@ -214,6 +226,20 @@ impl From<Values> for ModelTable {
             conduction_share: values.number("conduction_share"),
             field_kv_cm: values.number("field_kv_cm"),
             index: values.number("index"),
+        }
+    }
+}
+
+impl From<Values> for TargetTable {
+    fn from(mut values: Values) -> Self {
+        Self {
+            kind: values.text("kind"),
+            wavelength_nm: values.number("wavelength_nm"),
+            medium: values.text("medium"),
+            temperature_c: values.number("temperature_c"),
+            density_cm3: values.number("density_cm3"),
+            tolerance_nm: values.number("tolerance_nm"),
+            span: values.span,
         }
     }
 }

@@ -2,8 +2,7 @@
 //! reference of the manual are all driven by it.
 
 use super::growth::GROWTH;
-use super::target::TARGET;
-use super::{Bands, Lineshape, Role};
+use super::{Bands, Lineshape, Medium, Role, Wavelength};
 
 /// One table of the file and the keys it may hold.
 pub(super) struct Table {
@@ -152,16 +151,16 @@ pub(super) static FILE: Table = Table {
             doc: "switches of the model",
         },
         Key {
-            name: "target",
-            kind: Kind::Table(&TARGET),
-            default: "",
-            doc: "the wavelength that the design is for",
-        },
-        Key {
             name: "growth",
             kind: Kind::Table(&GROWTH),
             default: "",
             doc: "by how much growth varies from run to run",
+        },
+        Key {
+            name: "target",
+            kind: Kind::Table(&TARGET),
+            default: "none",
+            doc: "the wavelength that the structure is meant to have",
         },
     ],
 };
@@ -470,6 +469,51 @@ pub(super) static MODEL: Table = Table {
             kind: number("", (1.0, 6.0), (2.7, 4.5)),
             default: "the index model at the first transition",
             doc: "refractive index of the wells",
+        },
+    ],
+};
+
+/// The wavelength that a structure is meant to have.
+pub(super) static TARGET: Table = Table {
+    path: "target",
+    doc: "What `aim` aims at and others hold a structure against. A wavelength means something \
+          only with its kind, its medium and its temperature.",
+    keys: &[
+        Key {
+            name: "kind",
+            kind: Kind::Word(|| Wavelength::ALL.map(Wavelength::word).to_vec()),
+            default: "pl",
+            doc: "of the first transition, of photoluminescence at low injection, or of peak gain",
+        },
+        Key {
+            name: "wavelength_nm",
+            kind: number("nm", (150.0, 20_000.0), (400.0, 5_000.0)),
+            default: "",
+            doc: "the wavelength; the one key that is needed",
+        },
+        Key {
+            name: "medium",
+            kind: Kind::Word(|| Medium::ALL.map(Medium::word).to_vec()),
+            default: "vacuum",
+            doc: "what the wavelength is measured in; air shortens it by about 0.03 %",
+        },
+        Key {
+            name: "temperature_c",
+            kind: number("C", (-272.15, 726.85), (-73.15, 176.85)),
+            default: "the temperature of [operation]",
+            doc: "temperature at which it is meant, Celsius",
+        },
+        Key {
+            name: "density_cm3",
+            kind: Kind::Number(DENSITY),
+            default: "the working density of [operation]",
+            doc: "carrier density of peak gain, for kind = \"gain\"",
+        },
+        Key {
+            name: "tolerance_nm",
+            kind: number("nm", (0.001, 1000.0), (0.5, 50.0)),
+            default: "none",
+            doc: "how far off is still accepted, to either side",
         },
     ],
 };

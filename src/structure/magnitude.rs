@@ -1,6 +1,6 @@
 //! Whether a number can be meant.
 
-use super::keys::{Kind, MODEL, Magnitude, OPERATION};
+use super::keys::{Kind, MODEL, Magnitude, OPERATION, TARGET};
 use super::number::shown;
 use super::reader::brief;
 use crate::source::one_of;
@@ -58,7 +58,7 @@ impl Magnitude {
     }
 }
 
-/// Whether a key of `[operation]` or `[model]` would accept a number: for values that reach a
+/// Whether a key of `[operation]`, `[model]` or `[target]` would accept a number: for values that reach a
 /// structure by another way than its file.
 ///
 /// # Errors
@@ -73,7 +73,10 @@ impl Magnitude {
 /// assert_eq!(refusal.message, "`temperature_k` is 3000 K: possible is 1 to 1000 K");
 /// ```
 pub fn check_magnitude(key: &str, value: f64) -> Result<(), Refusal> {
-    let known = OPERATION.key(key).or_else(|| MODEL.key(key));
+    let known = OPERATION
+        .key(key)
+        .or_else(|| MODEL.key(key))
+        .or_else(|| TARGET.key(key));
     match known.map(|key| &key.kind) {
         Some(Kind::Number(magnitude) | Kind::Numbers(magnitude, ..)) => magnitude.check(key, value),
         _ => Err(Refusal {

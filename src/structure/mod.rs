@@ -19,7 +19,6 @@ mod remark;
 mod schema;
 mod stack;
 mod syntax;
-mod target;
 mod validate;
 mod write;
 
@@ -29,9 +28,9 @@ pub use reference::key_reference;
 pub use remark::Remark;
 pub use schema::schema;
 pub use stack::{
-    Bands, Doping, Layer, Lineshape, Material, Model, Operation, Role, Stack, Substance,
+    Bands, Doping, Layer, Lineshape, Material, Medium, Model, Operation, Role, Stack, Substance,
+    Target, Wavelength,
 };
-pub use target::{Emission, Medium, Target};
 pub use write::write;
 
 use std::ops::Range;

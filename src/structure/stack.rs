@@ -1,6 +1,6 @@
 //! The validated stack: what the file said, checked, expanded, in the trade's units.
 
-use super::{Growth, Target};
+use super::Growth;
 use crate::materials::{Composition, Crystal};
 
 /// What a layer is made of.
@@ -237,6 +237,83 @@ impl Default for Model {
     }
 }
 
+/// Which wavelength of a structure is meant.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum Wavelength {
+    /// Of the first transition, without gap shrinkage.
+    Transition,
+    /// Of the peak of photoluminescence at low injection.
+    Photoluminescence,
+    /// Of peak gain at a carrier density, with gap shrinkage.
+    Gain,
+}
+
+impl Wavelength {
+    /// Every kind.
+    pub const ALL: [Self; 3] = [Self::Transition, Self::Photoluminescence, Self::Gain];
+
+    /// The word for it in files and reports.
+    #[must_use]
+    pub fn word(self) -> &'static str {
+        match self {
+            Self::Transition => "transition",
+            Self::Photoluminescence => "pl",
+            Self::Gain => "gain",
+        }
+    }
+
+    /// What it is, in a few words.
+    #[must_use]
+    pub fn meaning(self) -> &'static str {
+        match self {
+            Self::Transition => "first transition",
+            Self::Photoluminescence => "photoluminescence peak",
+            Self::Gain => "gain peak",
+        }
+    }
+}
+
+/// What a wavelength is measured in.
+#[derive(Clone, Copy, Debug, Default, PartialEq, Eq)]
+pub enum Medium {
+    /// Vacuum.
+    #[default]
+    Vacuum,
+    /// Standard air.
+    Air,
+}
+
+impl Medium {
+    /// Both.
+    pub const ALL: [Self; 2] = [Self::Vacuum, Self::Air];
+
+    /// The word for it in files and reports.
+    #[must_use]
+    pub fn word(self) -> &'static str {
+        match self {
+            Self::Vacuum => "vacuum",
+            Self::Air => "air",
+        }
+    }
+}
+
+/// The wavelength that a structure is meant to have.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct Target {
+    /// Which wavelength.
+    pub kind: Wavelength,
+    /// How long, nm in its medium.
+    pub wavelength_nm: f64,
+    /// The medium.
+    pub medium: Medium,
+    /// Temperature at which it is meant, K; `None` for that of the operation.
+    pub temperature_k: Option<f64>,
+    /// Carrier density of peak gain, cm⁻³; `None` for the working density.
+    pub density_cm3: Option<f64>,
+    /// How far off is still accepted, nm to either side.
+    pub tolerance_nm: Option<f64>,
+}
+
 /// A structure that has passed every check of its file.
 #[derive(Clone, Debug, PartialEq)]
 pub struct Stack {
@@ -250,7 +327,7 @@ pub struct Stack {
     pub operation: Operation,
     /// Switches of the model.
     pub model: Model,
-    /// The wavelength that the design is for, where the file names one.
+    /// The wavelength that it is meant to have, where the file says one.
     pub target: Option<Target>,
     /// Errors of growth, where the file states them.
     pub growth: Option<Growth>,

@@ -1,14 +1,15 @@
 //! From the file to a [`Stack`], collecting every complaint on the way.
 
-use super::file::{ModelTable, OperationTable, StructureFile};
+use super::file::{ModelTable, OperationTable, StructureFile, TargetTable};
 use super::growth::growth;
 use super::layers::Layers;
 use super::magnitude::check_magnitude;
 use super::number::shown;
 use super::palette::Palette;
 use super::reader::{Field, Findings, Given};
-use super::target::target;
-use super::{Bands, Lineshape, Model, Operation, Overrides, Remark, Stack};
+use super::{
+    Bands, Lineshape, Medium, Model, Operation, Overrides, Remark, Stack, Target, Wavelength,
+};
 use crate::materials::Parameters;
 use crate::source::Diagnostic;
 use crate::units::CELSIUS_ZERO_K;
@@ -33,10 +34,13 @@ pub(super) fn stack(
     }
     let operation = operation(&file.operation, overrides, findings);
     let model = model(&file.model, overrides);
+    let target = file
+        .target
+        .as_ref()
+        .and_then(|table| target(table, findings));
     let (palette, substrate) = Palette::of(file, text, parameters, findings);
     let mut reading = Layers::new(palette, parameters, operation.temperature_k);
     let layers = reading.expanded(file.layers.as_ref(), findings);
-    let target = target(&file.target, findings);
     let growth = growth(&file.growth, findings);
     let own_numbers = reading.palette().remarks(findings);
     if overrides.temperature_k.is_some() && !own_numbers.is_empty() {
@@ -60,6 +64,33 @@ pub(super) fn stack(
         model,
         target,
         growth,
+    })
+}
+
+fn target(table: &TargetTable, findings: &mut Findings) -> Option<Target> {
+    let Some(given) = &table.wavelength_nm else {
+        findings.faults.push(
+            Diagnostic::new(table.span.clone(), "the target has no `wavelength_nm`")
+                .with_help("say which wavelength it is: `wavelength_nm = 1310`"),
+        );
+        return None;
+    };
+    let word = |field: &Field<String>| field.as_ref().and_then(|given| given.value.clone());
+    let kind = word(&table.kind).and_then(|word| {
+        let mut kinds = Wavelength::ALL.into_iter();
+        kinds.find(|kind| kind.word() == word)
+    });
+    let medium = word(&table.medium).and_then(|word| {
+        let mut media = Medium::ALL.into_iter();
+        media.find(|medium| medium.word() == word)
+    });
+    Some(Target {
+        kind: kind.unwrap_or(Wavelength::Photoluminescence),
+        wavelength_nm: given.value?,
+        medium: medium.unwrap_or_default(),
+        temperature_k: number(table.temperature_c.as_ref()).map(|it| it + CELSIUS_ZERO_K),
+        density_cm3: number(table.density_cm3.as_ref()),
+        tolerance_nm: number(table.tolerance_nm.as_ref()),
     })
 }
 

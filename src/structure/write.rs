@@ -2,10 +2,11 @@
 
 use std::fmt::Write as _;
 
+use super::growth;
 use super::number::exact;
-use super::{Layer, Material, Model, Operation, Stack, Substance};
-use super::{growth, target};
+use super::{Layer, Material, Model, Operation, Stack, Substance, Target};
 use crate::materials::{Composition, Crystal, Element};
+use crate::units::CELSIUS_ZERO_K;
 
 /// The stack as a structure file: materials by composition or by numbers, groups folded where rows
 /// of the file were groups, every number to its last bit.
@@ -25,10 +26,10 @@ pub fn write(stack: &Stack) -> String {
         row(rows, &mut text);
     }
     operation(&stack.operation, &mut text);
-    model(&stack.model, &mut text);
-    if let Some(target) = &stack.target {
-        target::write(target, &mut text);
+    if let Some(wanted) = &stack.target {
+        target(wanted, &mut text);
     }
+    model(&stack.model, &mut text);
     if let Some(growth) = &stack.growth {
         growth::write(growth, &mut text);
     }
@@ -202,4 +203,32 @@ fn model(model: &Model, text: &mut String) {
     if let Some(index) = model.index {
         let _ = writeln!(text, "index = {}", exact(index));
     }
+}
+
+fn target(target: &Target, text: &mut String) {
+    let _ = writeln!(
+        text,
+        "\n[target]\nkind = {}\nwavelength_nm = {}\nmedium = {}",
+        quoted(target.kind.word()),
+        exact(target.wavelength_nm),
+        quoted(target.medium.word())
+    );
+    for (key, value) in [
+        ("temperature_c", target.temperature_k.map(celsius)),
+        ("density_cm3", target.density_cm3),
+        ("tolerance_nm", target.tolerance_nm),
+    ] {
+        if let Some(value) = value {
+            let _ = writeln!(text, "{key} = {}", exact(value));
+        }
+    }
+}
+
+/// The Celsius temperature that reads back to a kelvin one to the bit, where there is one.
+fn celsius(kelvin: f64) -> f64 {
+    let near = kelvin - CELSIUS_ZERO_K;
+    [near, near.next_up(), near.next_down()]
+        .into_iter()
+        .find(|celsius| (celsius + CELSIUS_ZERO_K).to_bits() == kelvin.to_bits())
+        .unwrap_or(near)
 }

@@ -8,11 +8,13 @@ mod layout;
 mod levels;
 mod materials;
 mod spectrum;
+mod spread;
 
 pub use findings::findings;
 pub use levels::levels;
 pub use materials::{descriptions, families};
 pub use spectrum::spectrum;
+pub use spread::spread;
 
 use serde::Serialize;
 
