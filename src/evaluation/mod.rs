@@ -317,7 +317,8 @@ impl<'a> Evaluation<'a> {
         }
     }
 
-    /// The wavelength of one kind alone, nm in vacuum; `None` where there is no such peak.
+    /// The wavelength of a kind, nm in vacuum: of peak gain at the working density. `None` where
+    /// there is no such peak.
     #[must_use]
     pub fn wavelength_nm(&self, kind: Wavelength) -> Option<f64> {
         match kind {
@@ -326,12 +327,35 @@ impl<'a> Evaluation<'a> {
                 .photoluminescence_peak()
                 .map(|peak| wavelength_nm(peak.photon_ev)),
             Wavelength::Gain => {
-                let filling = self.filling(self.stack.operation.working_density_cm3);
-                let lowering_ev = self.shrinkage_ev(filling.density_cm3);
-                let [te, tm] = self.gain_peaks(&filling, lowering_ev);
-                larger(te, tm).map(|(_, peak)| peak.peak_nm)
+                let density_cm3 = self.stack.operation.working_density_cm3;
+                self.highest_gain(density_cm3).map(|(_, peak)| peak.peak_nm)
             }
         }
+    }
+
+    /// Peaks of TE and TM gain at a density, with shrinkage; `None` below transparency.
+    #[must_use]
+    pub fn gain_peaks_at(&self, density_cm3: f64) -> [Option<GainPeak>; 2] {
+        self.gain_peaks(&self.filling(density_cm3), self.shrinkage_ev(density_cm3))
+    }
+
+    /// The larger of these peaks, with the name of its polarisation.
+    #[must_use]
+    pub fn highest_gain(&self, density_cm3: f64) -> Option<(&'static str, GainPeak)> {
+        let [te, tm] = self.gain_peaks_at(density_cm3);
+        larger(te, tm)
+    }
+
+    /// The carriers at a density of pairs, with gap shrinkage.
+    #[must_use]
+    pub fn carriers(&self, density_cm3: f64) -> Occupation {
+        self.occupation(&self.filling(density_cm3), self.shrinkage_ev(density_cm3))
+    }
+
+    /// What absorbs and emits.
+    #[must_use]
+    pub fn emitter(&self) -> &dyn Emitter {
+        &*self.emitter
     }
 
     /// Edge of the first transition with the gap shrinkage at a density, as a wavelength in vacuum,

@@ -154,6 +154,18 @@ impl Composition {
         }
     }
 
+    /// The same with another fraction of an element, the others as they were.
+    #[must_use]
+    pub fn with_fraction(mut self, element: Element, fraction: f64) -> Self {
+        let sublattice = if element.is_group_iii() {
+            &mut self.group_iii
+        } else {
+            &mut self.group_v
+        };
+        sublattice[element.place()] = fraction;
+        self
+    }
+
     /// The elements present.
     #[must_use]
     pub fn elements(&self) -> Elements {

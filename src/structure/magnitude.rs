@@ -1,6 +1,7 @@
 //! Whether a number can be meant.
 
-use super::keys::{Kind, MODEL, Magnitude, OPERATION, TARGET};
+use super::Role;
+use super::keys::{Kind, MODEL, Magnitude, OPERATION, ROW, TARGET, WELL_NM};
 use super::number::shown;
 use super::reader::brief;
 use crate::source::one_of;
@@ -83,5 +84,14 @@ pub fn check_magnitude(key: &str, value: f64) -> Result<(), Refusal> {
             message: format!("`{}` is no number of [operation] or [model]", brief(key)),
             help: format!("one of {}", one_of(OPERATION.names().chain(MODEL.names()))),
         }),
+    }
+}
+
+/// Thinnest and thickest layer of a role that a file may hold, nm.
+#[must_use]
+pub fn thickness_range_nm(role: Role) -> (f64, f64) {
+    match ROW.key("thickness_nm").map(|key| &key.kind) {
+        Some(Kind::Number(magnitude)) if role != Role::Well => magnitude.possible,
+        _ => WELL_NM,
     }
 }

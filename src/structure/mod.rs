@@ -10,6 +10,7 @@ mod growth;
 mod keys;
 mod layers;
 mod magnitude;
+mod manuscript;
 mod number;
 mod own_numbers;
 mod palette;
@@ -23,7 +24,8 @@ mod validate;
 mod write;
 
 pub use growth::{Fluxes, GROUP_III, Growth};
-pub use magnitude::{Refusal, check_magnitude};
+pub use magnitude::{Refusal, check_magnitude, thickness_range_nm};
+pub use manuscript::{Condition, Form, Manuscript, Selection};
 pub use reference::key_reference;
 pub use remark::Remark;
 pub use schema::schema;

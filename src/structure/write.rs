@@ -26,10 +26,10 @@ pub fn write(stack: &Stack) -> String {
         row(rows, &mut text);
     }
     operation(&stack.operation, &mut text);
+    model(&stack.model, &mut text);
     if let Some(wanted) = &stack.target {
         target(wanted, &mut text);
     }
-    model(&stack.model, &mut text);
     if let Some(growth) = &stack.growth {
         growth::write(growth, &mut text);
     }
