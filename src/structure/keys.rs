@@ -38,6 +38,8 @@ pub(super) enum Kind {
     Count(u64, u64),
     /// A number.
     Number(Magnitude),
+    /// A list of texts, so many at most.
+    Texts(usize),
     /// A list of numbers, as many as from the second to the third.
     Numbers(Magnitude, usize, usize),
     /// A table.
