@@ -3,15 +3,26 @@
 
 mod check;
 mod draws;
+mod house_offset;
 mod movement;
 mod reactor;
+mod reconcile;
 mod spread;
+mod superlattice;
 mod surrogate;
+mod unknown;
 
 pub use check::{Carrier, Finding, Limits, Measure, Standing, check};
+pub use house_offset::{HouseOffset, family};
 pub use movement::{Immovable, Impossible, Move, Quantity, Variation};
 pub use reactor::{Cause, Reactor, Variable};
+pub use reconcile::{
+    Correction, Datum, Deviation, Direction, Estimate, Readings, ReconcileError, Reconciliation,
+    SingleCause, modelled_pl_nm, reconcile,
+};
 pub use spread::{
     Histogram, LayerSpread, MODEL_NM, Miss, Moments, Request, Sensitivity, Solving, Spread,
-    SpreadError, Wanted, Yield, posed, spread, vacuum_nm, wavelength_nm,
+    SpreadError, Wanted, Yield, in_vacuum_nm, posed, spread, vacuum_nm, wavelength_nm,
 };
+pub use superlattice::Superlattice;
+pub use unknown::{Moved, Unknown, unknowns};

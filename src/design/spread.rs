@@ -218,10 +218,16 @@ pub fn posed(stack: &Stack, target: &Target) -> Stack {
 /// The wavelength of a target, nm in vacuum.
 #[must_use]
 pub fn vacuum_nm(target: &Target) -> f64 {
-    match target.medium {
-        Medium::Vacuum => target.wavelength_nm,
-        // The index varies by 1e-7 over the shift itself.
-        Medium::Air => target.wavelength_nm * air_index(target.wavelength_nm),
+    in_vacuum_nm(target.wavelength_nm, target.medium)
+}
+
+/// A wavelength in vacuum, nm, from that in a medium.
+#[must_use]
+pub fn in_vacuum_nm(wavelength_nm: f64, medium: Medium) -> f64 {
+    match medium {
+        Medium::Vacuum => wavelength_nm,
+        // Over the shift itself the index varies by less than 1e-9.
+        Medium::Air => wavelength_nm * air_index(wavelength_nm),
     }
 }
 

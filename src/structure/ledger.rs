@@ -93,7 +93,10 @@ static OFFSETS: Table = Table {
     path: "offsets",
     doc: "One run.",
     keys: &[
-        text("family", "alloy family of the wells and the substrate: \"AlGaInAs on InP\""),
+        text(
+            "family",
+            "alloy family of the wells and the substrate: \"AlGaInAs on InP\"",
+        ),
         text("run", "the grower's name of the run"),
         wavelength("modelled_nm", "the peak that the model gives, in vacuum"),
         wavelength("measured_nm", "the peak that was measured, in vacuum"),
@@ -103,8 +106,14 @@ static OFFSETS: Table = Table {
             default: "",
             doc: "temperature of both",
         },
-        text("bands", "valence bands of the model: \"single\" or \"mixed\""),
-        text("structure", "what the model was fed with: \"ordered\" or \"by X-ray\""),
+        text(
+            "bands",
+            "valence bands of the model: \"single\" or \"mixed\"",
+        ),
+        text(
+            "structure",
+            "what the model was fed with: \"ordered\" or \"by X-ray\"",
+        ),
     ],
 };
 
@@ -239,7 +248,12 @@ mod tests {
 
     #[test]
     fn entries_are_read_back_as_they_were_written_behind_each_other() {
-        let text = format!("{}{}{}", Ledger::HEAD, entry("A").text(), entry("B \"2\"").text());
+        let text = format!(
+            "{}{}{}",
+            Ledger::HEAD,
+            entry("A").text(),
+            entry("B \"2\"").text()
+        );
         let ledger = Ledger::read(&text).expect("sound");
         let read: Vec<LedgerEntry> = ledger.entries.into_iter().map(|(_, it)| it).collect();
         assert_eq!(read, [entry("A"), entry("B \"2\"")]);
@@ -257,7 +271,10 @@ mod tests {
         let text = format!("{first}{}{last}", entry("B").text());
         let ledger = Ledger::read(&text).expect("sound");
         let left = ledger.without_run(&text, &entry("B"));
-        assert_eq!(left.trim_end(), format!("{first}\n{}", entry("C").text().trim()).trim_end());
+        assert_eq!(
+            left.trim_end(),
+            format!("{first}\n{}", entry("C").text().trim()).trim_end()
+        );
     }
 
     #[test]

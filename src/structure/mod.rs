@@ -9,10 +9,10 @@ mod file;
 mod growth;
 mod keys;
 mod layers;
+mod ledger;
 mod magnitude;
 mod manuscript;
 mod number;
-mod ledger;
 mod own_numbers;
 mod palette;
 mod photoluminescence_map;
@@ -27,13 +27,16 @@ mod validate;
 mod write;
 
 pub use growth::{Fluxes, GROUP_III, Growth};
+pub use ledger::{Ledger, LedgerEntry};
 pub use magnitude::{Refusal, check_magnitude, thickness_range_nm};
 pub use manuscript::{Condition, Form, Manuscript, Selection};
-pub use ledger::{Ledger, LedgerEntry};
 pub use photoluminescence_map::{MapPoint, PhotoluminescenceMap};
 pub use reference::key_reference;
 pub use remark::Remark;
-pub use returned::{Assumptions, MeanMismatch, Measured, MismatchKind, PlPeak, Returned, ReturnedPl, ReturnedXray, read_returned};
+pub use returned::{
+    Assumptions, MeanMismatch, Measured, MismatchKind, PlPeak, Returned, ReturnedPl, ReturnedXray,
+    read_returned,
+};
 pub use schema::schema;
 pub use stack::{
     Bands, Doping, Layer, Lineshape, Material, Medium, Model, Operation, Role, Stack, Substance,

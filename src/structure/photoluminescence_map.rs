@@ -77,8 +77,11 @@ impl PhotoluminescenceMap {
         let separator = separator(head, &head_span, &mut assumptions)?;
         let heads: Vec<&str> = split(head, separator);
         if heads.iter().all(|head| head.trim().parse::<f64>().is_ok()) {
-            return Err(Diagnostic::new(head_span, "the first line holds numbers: the columns have no heads")
-                .with_help("write heads above them: `x,y,peak_nm`"));
+            return Err(Diagnostic::new(
+                head_span,
+                "the first line holds numbers: the columns have no heads",
+            )
+            .with_help("write heads above them: `x,y,peak_nm`"));
         }
         let peak = peak_column(&heads, &head_span)?;
         let place = |name: &str| {
@@ -117,15 +120,20 @@ impl PhotoluminescenceMap {
             assumptions.push("decimal commas".to_owned());
         }
         if written.is_empty() {
-            return Err(Diagnostic::new(head_span, "the map has no point with a peak")
-                .with_help("one line a point below the heads"));
+            return Err(
+                Diagnostic::new(head_span, "the map has no point with a peak")
+                    .with_help("one line a point below the heads"),
+            );
         }
         let factor = nm_per_unit(heads[peak], &written, &head_span, &mut assumptions)?;
         for (span, place, value) in written {
             let peak_nm = factor * value;
             if !(POSSIBLE_NM.0..=POSSIBLE_NM.1).contains(&peak_nm) {
-                return Err(Diagnostic::new(span, format!("a peak of {peak_nm} nm is not possible"))
-                    .with_help("check the column and its unit"));
+                return Err(Diagnostic::new(
+                    span,
+                    format!("a peak of {peak_nm} nm is not possible"),
+                )
+                .with_help("check the column and its unit"));
             }
             map.points.push(MapPoint { place, peak_nm });
         }
@@ -212,14 +220,19 @@ fn peak_column(heads: &[&str], span: &Range<usize>) -> Result<usize, Diagnostic>
     match found.as_slice() {
         [column] => Ok(*column),
         [] => {
-            let near = heads
-                .iter()
-                .find(|head| words(head).iter().any(|word| nearest(word, PEAK_WORDS).is_some()));
+            let near = heads.iter().find(|head| {
+                words(head)
+                    .iter()
+                    .any(|word| nearest(word, PEAK_WORDS).is_some())
+            });
             let help = near.map_or_else(
                 || "head it `peak_nm`".to_owned(),
                 |head| format!("is it `{head}`? head it `peak_nm`"),
             );
-            Err(Diagnostic::new(span.clone(), "no column is headed as the peak wavelength").with_help(help))
+            Err(
+                Diagnostic::new(span.clone(), "no column is headed as the peak wavelength")
+                    .with_help(help),
+            )
         }
         several => {
             let names: Vec<String> = several
@@ -258,8 +271,10 @@ fn number(
     };
     match plain.parse::<f64>() {
         Ok(value) if value.is_finite() => Ok(value),
-        _ => Err(Diagnostic::new(span.clone(), format!("`{cell}` is no number"))
-            .with_help("leave a cell without a value blank")),
+        _ => Err(
+            Diagnostic::new(span.clone(), format!("`{cell}` is no number"))
+                .with_help("leave a cell without a value blank"),
+        ),
     }
 }
 
@@ -279,8 +294,10 @@ fn nm_per_unit(
         return Ok(1e3);
     }
     if said(&["a", "å", "angstrom", "ev", "mev"]) {
-        return Err(Diagnostic::new(span.clone(), format!("`{head}` is not in nm or um"))
-            .with_help("write wavelengths in nm"));
+        return Err(
+            Diagnostic::new(span.clone(), format!("`{head}` is not in nm or um"))
+                .with_help("write wavelengths in nm"),
+        );
     }
     let all = |low: f64, high: f64| {
         written
@@ -294,10 +311,11 @@ fn nm_per_unit(
         assumptions.push("peaks in um, by their size".to_owned());
         Ok(1e3)
     } else {
-        Err(
-            Diagnostic::new(span.clone(), format!("`{head}` does not say its unit, and its numbers fit more than one"))
-                .with_help("head it `peak_nm`, with wavelengths in nm"),
+        Err(Diagnostic::new(
+            span.clone(),
+            format!("`{head}` does not say its unit, and its numbers fit more than one"),
         )
+        .with_help("head it `peak_nm`, with wavelengths in nm"))
     }
 }
 

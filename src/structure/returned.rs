@@ -328,8 +328,11 @@ fn returned(mut values: Values, findings: &mut Findings) -> Option<Returned> {
     let assumptions = assume.map(assumptions).unwrap_or_default();
     let Some(given) = values.table("returned") else {
         findings.faults.push(
-            Diagnostic::new(0..0, "the file says not what came back: there is no [returned]")
-                .with_help("write `[returned]` with `run`, then [returned.pl] and [returned.xray]"),
+            Diagnostic::new(
+                0..0,
+                "the file says not what came back: there is no [returned]",
+            )
+            .with_help("write `[returned]` with `run`, then [returned.pl] and [returned.xray]"),
         );
         return None;
     };
