@@ -33,6 +33,9 @@ pub(super) enum Command {
     /// Growth errors to wavelength and yield: sensitivities and random wafers
     #[command(after_help = SPREAD_EXAMPLES, term_width = COLUMNS)]
     Spread(Spread),
+    /// Measured photoluminescence and X-ray against the design: what was grown
+    #[command(after_help = RECONCILE_EXAMPLES, term_width = COLUMNS)]
+    Reconcile(Reconcile),
     /// Parameters with their sources: all families, one alloy, or all that a file uses
     #[command(after_help = MATERIALS_EXAMPLES, term_width = COLUMNS)]
     Materials(Materials),
@@ -126,6 +129,29 @@ pub(super) struct Spread {
     /// Draw the distribution and the sensitivities
     #[arg(long, value_name = "PATH.svg")]
     pub(super) figure: Option<PathBuf>,
+}
+
+#[derive(Debug, Args)]
+pub(super) struct Reconcile {
+    #[command(flatten)]
+    pub(super) file: StructureFile,
+    /// What came back with the wafer (TOML)
+    #[arg(value_name = "RETURNED")]
+    pub(super) returned: PathBuf,
+    /// Valence bands: mixed, or single (heavy and light holes each by itself)
+    #[arg(long, value_name = "BANDS")]
+    pub(super) bands: Option<String>,
+    /// House offsets: measured photoluminescence against the model, run by run
+    #[arg(long, value_name = "LEDGER.toml")]
+    pub(super) ledger: Option<PathBuf>,
+    /// Append this run to the ledger (--force replaces the same run)
+    #[arg(long, requires = "ledger")]
+    pub(super) record: bool,
+    /// Share of the estimate that a correction takes, above 0 to 1
+    #[arg(long, value_name = "SHARE", default_value = "0.7")]
+    pub(super) damping: String,
+    #[command(flatten)]
+    pub(super) output: Output,
 }
 
 #[derive(Debug, Args)]
@@ -282,6 +308,29 @@ The file says in [growth] by how much growth varies from run to run, one sigma:
 and in [target] which wavelength counts as good (`tolerance_nm`). An error of a
 flux moves thickness and composition of every layer that holds the element.";
 
+const RECONCILE_EXAMPLES: &str = "\
+Examples:
+  stepwell reconcile my.toml returned.toml
+  stepwell reconcile my.toml returned.toml --ledger house.toml --record
+
+The second file says what came back with the wafer:
+  [returned]
+  run = \"E-0417\"
+  [returned.pl]
+  peak_nm = 1314.2        # or map = \"e-0417.csv\", beside this file
+  temperature_c = 23
+  medium = \"air\"
+  [returned.xray]
+  period_nm = 14.62
+  mean_mismatch_ppm = 850
+  mismatch = \"perpendicular\"   # or \"relaxed\"
+  sense = \"compressive\"
+  [assume]                # what the data can't tell and you vouch for
+  barrier_ratio_fixed = true
+  moved = [\"well.thickness\", \"well.Ga\"]
+
+Exit code 4 where the data leave something open that no assumption settles.";
+
 const MATERIALS_EXAMPLES: &str = "\
 Examples:
   stepwell materials
@@ -322,6 +371,7 @@ mod tests {
             SPECTRUM_EXAMPLES,
             CHECK_EXAMPLES,
             SPREAD_EXAMPLES,
+            RECONCILE_EXAMPLES,
             MATERIALS_EXAMPLES,
             NEW_EXAMPLES,
         ] {

@@ -11,8 +11,9 @@ mod flags;
 mod gauge;
 mod manual;
 mod outlet;
+mod reconcile;
 mod shipped;
-mod wafer;
+mod spread;
 mod welcome;
 mod wishes;
 
@@ -34,6 +35,8 @@ enum Ending {
     Usage = 2,
     /// The input is wrong.
     Input = 3,
+    /// No answer inside the limits.
+    Unanswered = 4,
     /// Checked and found outside.
     Outside = 5,
 }
@@ -80,7 +83,8 @@ fn obey(flags: Flags, outlet: &Outlet) -> Result<Ending, Complaint> {
         None => welcome::greet(outlet),
         Some(Command::Levels(flags)) => commands::levels(&flags, outlet),
         Some(Command::Spectrum(flags)) => commands::spectrum(&flags, outlet),
-        Some(Command::Spread(flags)) => wafer::spread(&flags, outlet),
+        Some(Command::Spread(flags)) => spread::spread(&flags, outlet),
+        Some(Command::Reconcile(flags)) => reconcile::reconcile(&flags, outlet),
         Some(Command::Check(flags)) => commands::check(&flags, outlet),
         Some(Command::Materials(flags)) => commands::materials(&flags, outlet),
         Some(Command::New { name }) => shipped::write(name.as_deref(), outlet),

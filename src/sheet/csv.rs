@@ -60,8 +60,10 @@ macro_rules! row {
     ($($cell:expr),* $(,)?) => { vec![$(Cell::from($cell)),*] };
 }
 
+mod reconcile;
 mod spread;
 
+pub use reconcile::reconcile;
 pub use spread::spread;
 
 impl CsvTable {

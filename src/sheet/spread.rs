@@ -126,7 +126,7 @@ fn good(spread: &Spread, page: &mut Page) {
     );
     page.pair("if centred", &percent(good.centred));
     page.pair(
-        "with the model's error",
+        "with model error",
         &format!(
             "{}: an error of {} nm of the calculated wavelength itself, which measuring one wafer \
              removes",

@@ -7,12 +7,14 @@ mod findings;
 mod layout;
 mod levels;
 mod materials;
+mod reconcile;
 mod spectrum;
 mod spread;
 
 pub use findings::findings;
 pub use levels::levels;
 pub use materials::{descriptions, families};
+pub use reconcile::reconcile;
 pub use spectrum::spectrum;
 pub use spread::spread;
 

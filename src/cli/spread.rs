@@ -1,4 +1,4 @@
-//! The commands that look at wafers: how they will scatter, and what came back.
+//! The command `spread`: how wafers will scatter.
 
 use super::Ending;
 use super::case::{Case, remark_on_results};
