@@ -1,4 +1,5 @@
-//! How thick a strained film may grow before it is no longer coherent, and how strains balance.
+//! How thick a strained film may grow before it is no longer coherent, and how strains balance;
+//! [`StrainBudget`] draws up both for a stack.
 //!
 //! # Force on a dislocation
 //!
@@ -40,6 +41,10 @@
 //! Technol. 12, 126 (1975); I. J. Fritz et al., Appl. Phys. Lett. 46, 967 (1985) (the factors G);
 //! R. People, J. C. Bean, Appl. Phys. Lett. 47, 322 (1985), erratum 49, 229 (1986);
 //! N. J. Ekins-Daukes, K. Kawaguchi, J. Zhang, Cryst. Growth Des. 2, 287 (2002).
+
+mod budget;
+
+pub use budget::{ActiveStrain, Balance, CriticalBand, LayerStrain, StrainBudget};
 
 use crate::materials::Crystal;
 use crate::numerics::roots::bracketed_root;

@@ -19,7 +19,8 @@
 //! | 1 | [`materials`] | parameter data with their citations, alloys, temperature, strain law, index of refraction |
 //! | 2 | [`structure`] | the structure file, and the validated stack that all others use |
 //! | 3 | [`profile`] | band edges and masses along the stack |
-//! | 3 | [`coherence`] | critical thickness, balance of strains |
+//! | 3 | [`coherence`] | strain budget: critical thickness, balance of strains |
+//! | 3 | [`diffraction`] | what X-rays see: substrate, layers, satellites, rocking curve |
 //! | 4 | [`subbands`] | levels and envelopes |
 //! | 5 | [`carriers`] | occupation and quasi-Fermi levels |
 //! | 6 | [`spectra`] | transitions, lineshape, gain, spontaneous emission, landmarks |
@@ -39,6 +40,7 @@ pub mod carriers;
 pub mod cli;
 pub mod coherence;
 pub mod design;
+pub mod diffraction;
 pub mod evaluation;
 pub mod materials;
 pub mod numerics;

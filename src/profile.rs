@@ -138,12 +138,7 @@ impl<'a> Profile<'a> {
         let sections = region.sections(stack);
         let temperature_k = stack.operation.temperature_k;
         let offsets = offsets(stack, &sections, parameters);
-        let crystal = |substance: &Substance| match substance {
-            Substance::Alloy(composition) => {
-                parameters.crystal(composition, temperature_k, offsets)
-            }
-            Substance::Own { crystal, .. } => *crystal,
-        };
+        let crystal = |substance: &Substance| substance.crystal(parameters, temperature_k, offsets);
         let substrate = crystal(&stack.substrate.substance);
         let strained = |material: &Material| {
             let crystal = crystal(&material.substance);

@@ -43,7 +43,12 @@ fn one_fault(text: &str, marked: &str, message: &str) {
     assert!(fault.help.is_some(), "no advice with: {}", fault.message);
     let at = text.find(marked).expect("the mark is in the text");
     let (got, want) = (fault.place(text), Place::of(text, at));
-    assert_eq!((got.line, got.column), (want.line, want.column), "{}", fault.message);
+    assert_eq!(
+        (got.line, got.column),
+        (want.line, want.column),
+        "{}",
+        fault.message
+    );
 }
 
 fn with(from: &str, to: &str) -> String {
@@ -64,7 +69,10 @@ fn a_complete_file_is_read_with_its_units_and_senses() {
     assert!((period.value - 14.62).abs() < 1e-12 && (period.sigma - 0.03).abs() < 1e-12);
     let mismatch = xray.mismatch.expect("there");
     assert_eq!(mismatch.kind, MismatchKind::Perpendicular);
-    assert!((mismatch.ppm.value + 850.0).abs() < 1e-12, "tensile is negative inside");
+    assert!(
+        (mismatch.ppm.value + 850.0).abs() < 1e-12,
+        "tensile is negative inside"
+    );
     assert!(!mismatch.ppm.sigma_given);
     assert!(returned.assumptions.barrier_ratio_fixed);
 }
@@ -118,15 +126,27 @@ fn misspelt_keys_and_signs_and_impossible_numbers_are_refused() {
         "peek_nm",
         "unknown key `peek_nm`",
     );
-    one_fault(&with("= 850", "= -850"), "-850", "`mean_mismatch_ppm` is -850");
+    one_fault(
+        &with("= 850", "= -850"),
+        "-850",
+        "`mean_mismatch_ppm` is -850",
+    );
     one_fault(&with("1314.2", "1.3142"), "1.3142", "`peak_nm` is 1.3142");
     one_fault(
         &with("\"perpendicular\"", "\"vertical\""),
         "\"vertical\"",
         "no `mismatch`",
     );
-    one_fault(&with("[\"well.thickness\", \"well.Ga\"]", "[1, \"well.Ga\"]"), "1, \"well.Ga\"", "holds a number");
-    one_fault("[returned]\nrun = \"A\"\n", "[returned]", "nothing was measured");
+    one_fault(
+        &with("[\"well.thickness\", \"well.Ga\"]", "[1, \"well.Ga\"]"),
+        "1, \"well.Ga\"",
+        "holds a number",
+    );
+    one_fault(
+        "[returned]\nrun = \"A\"\n",
+        "[returned]",
+        "nothing was measured",
+    );
     let empty = faults("");
     assert!(empty[0].message.contains("what came back"), "{empty:#?}");
 }
@@ -175,7 +195,12 @@ fn stack() -> Stack {
 
 fn moved(words: &[&str]) -> Assumptions {
     Assumptions {
-        moved: Some(words.iter().map(|word| (3..9, (*word).to_owned())).collect()),
+        moved: Some(
+            words
+                .iter()
+                .map(|word| (3..9, (*word).to_owned()))
+                .collect(),
+        ),
         ..Assumptions::default()
     }
 }

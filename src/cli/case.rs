@@ -1,21 +1,21 @@
 //! The files that a command reads.
 
 use super::complaint::Complaint;
-use super::outlet::Outlet;
+use super::outlet::{Outlet, remark as write_remark};
 use super::shipped;
 use crate::evaluation;
 use crate::materials::{Offsets, Parameters};
 use crate::sheet::{self, Stamp};
 use crate::source::{LARGEST_TEXT_BYTES, Place, nearest, text};
-use crate::structure::{self, Bands, Overrides, Reading};
+use crate::structure::{self, Overrides, Reading};
 use std::fs::File;
 use std::io::{self, ErrorKind, Read as _};
 use std::path::Path;
 
-/// A text with the name that messages call it by.
+/// A file with the name that messages call it by.
 pub(super) struct Text {
     pub(super) name: String,
-    pub(super) text: String,
+    pub(super) content: String,
     pub(super) sha256: String,
     /// Whether the bytes began with a byte-order mark, which the text has not.
     pub(super) had_byte_order_mark: bool,
@@ -39,12 +39,12 @@ impl Text {
             File::open(path).and_then(|file| file.take(most).read_to_end(&mut bytes))
         };
         read.map_err(|error| unreadable(path, &name, &error))?;
-        let text = text(&bytes)
+        let content = text(&bytes)
             .map_err(|error| Complaint::input(format!("{name}: {error}")))?
             .to_owned();
         Ok(Self {
             name,
-            text,
+            content,
             sha256: sheet::sha256(&bytes),
             had_byte_order_mark: bytes.starts_with("\u{feff}".as_bytes()),
         })
@@ -81,9 +81,14 @@ pub(super) fn parameters(overlay: Option<&Path>, outlet: &Outlet) -> Result<Para
     };
     let overlay = Text::read(path)?;
     Parameters::shipped()
-        .with_overlay(&overlay.text, &overlay.name)
+        .with_overlay(&overlay.content, &overlay.name)
         .map_err(|faults| {
-            Complaint::faults(&faults, &overlay.name, &overlay.text, outlet.error_colour())
+            Complaint::faults(
+                &faults,
+                &overlay.name,
+                &overlay.content,
+                outlet.error_colour(),
+            )
         })
 }
 
@@ -104,14 +109,15 @@ impl Case {
     ) -> Result<Self, Complaint> {
         let parameters = parameters(overlay, outlet)?;
         let source = Text::read(path)?;
-        let reading = structure::read(&source.text, &parameters, overrides).map_err(|faults| {
-            Complaint::faults(&faults, &source.name, &source.text, outlet.error_colour())
-        })?;
-        // A result must not carry a stamp that it does not keep.
-        if reading.stack.model.bands == Bands::Mixed {
-            return Err(Complaint::input("mixed valence bands are not computed yet")
-                .with_remedy("bands = \"single\" in [model], or --bands single"));
-        }
+        let reading =
+            structure::read(&source.content, &parameters, overrides).map_err(|faults| {
+                Complaint::faults(
+                    &faults,
+                    &source.name,
+                    &source.content,
+                    outlet.error_colour(),
+                )
+            })?;
         Ok(Self {
             source,
             parameters,
@@ -134,9 +140,9 @@ impl Case {
         for remark in &self.reading.remarks {
             let line = remark
                 .span()
-                .map(|span| Place::of(&self.source.text, span.start).line);
+                .map(|span| Place::of(&self.source.content, span.start).line);
             let place = line.map(|line| (self.source.name.as_str(), line));
-            outlet.remark(&sheet::remark(
+            write_remark(&sheet::remark(
                 &remark.message(),
                 Some(&remark.advice()),
                 place,
@@ -152,7 +158,7 @@ pub(super) fn remark_on_results<'a>(
     outlet: &Outlet,
 ) {
     for remark in remarks {
-        outlet.remark(&sheet::remark(
+        write_remark(&sheet::remark(
             &remark.message(),
             remark.advice().as_deref(),
             None,

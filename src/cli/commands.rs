@@ -4,7 +4,7 @@ use super::Ending;
 use super::case::{Case, parameters, remark_on_results};
 use super::complaint::Complaint;
 use super::flags::{self, Flags};
-use super::outlet::Outlet;
+use super::outlet::{Outlet, print};
 use super::wishes::{Destinations, band, overrides, temperature_k};
 use crate::design::{Limits, Standing, check as findings_of};
 use crate::evaluation::Evaluation;
@@ -16,7 +16,7 @@ use crate::subbands::{Band, hamiltonian};
 use clap::CommandFactory as _;
 
 /// Room temperature, at which materials are described unless asked otherwise, K.
-const ROOM_K: f64 = 300.0;
+pub(super) const ROOM_K: f64 = 300.0;
 
 /// `stepwell levels FILE`.
 pub(super) fn levels(flags: &flags::Levels, outlet: &Outlet) -> Result<Ending, Complaint> {
@@ -33,6 +33,7 @@ pub(super) fn levels(flags: &flags::Levels, outlet: &Outlet) -> Result<Ending, C
         "emission",
         "edges",
         "envelopes",
+        "dispersion",
     ];
     let destinations = Destinations::new(
         &flags.output,
@@ -42,7 +43,7 @@ pub(super) fn levels(flags: &flags::Levels, outlet: &Outlet) -> Result<Ending, C
     )?;
     let case = Case::read(
         &flags.file.path,
-        flags.file.materials.as_deref(),
+        flags.file.overlay.as_deref(),
         &overrides,
         outlet,
     )?;
@@ -55,13 +56,13 @@ pub(super) fn levels(flags: &flags::Levels, outlet: &Outlet) -> Result<Ending, C
     }
     let stamp = case.stamp(Some(evaluation.profile.offsets));
     destinations.write_tables(|| csv::levels(&evaluation), &stamp)?;
+    destinations.write_figure(|| sheet::levels_figure(&evaluation, &stamp).svg())?;
     destinations.write_matrix(|| {
         let nonparabolic = case.reading.stack.model.nonparabolic;
         let matrix = hamiltonian(&evaluation.profile, &evaluation.bands, band, nonparabolic);
         sheet::matrix_market(&matrix, band, &stamp)
     })?;
     destinations.print(
-        outlet,
         || json::levels(&evaluation, &stamp),
         || sheet::levels(&evaluation, &stamp, outlet.colour()),
     )?;
@@ -75,7 +76,7 @@ pub(super) fn spectrum(flags: &flags::Spectrum, outlet: &Outlet) -> Result<Endin
     let destinations = Destinations::new(&flags.output, flags.figure.as_deref(), None, &tables)?;
     let case = Case::read(
         &flags.file.path,
-        flags.file.materials.as_deref(),
+        flags.file.overlay.as_deref(),
         &overrides,
         outlet,
     )?;
@@ -90,8 +91,8 @@ pub(super) fn spectrum(flags: &flags::Spectrum, outlet: &Outlet) -> Result<Endin
     }
     let stamp = case.stamp(Some(evaluation.profile.offsets));
     destinations.write_tables(|| csv::spectrum(&evaluation, &spectrum), &stamp)?;
+    destinations.write_figure(|| sheet::spectrum_figure(&evaluation, &spectrum, &stamp).svg())?;
     destinations.print(
-        outlet,
         || json::spectrum(&evaluation, &spectrum, &stamp),
         || sheet::spectrum(&evaluation, &spectrum, &stamp, outlet.colour()),
     )?;
@@ -104,7 +105,7 @@ pub(super) fn check(flags: &flags::Check, outlet: &Outlet) -> Result<Ending, Com
     let destinations = Destinations::new(&flags.output, None, None, &["findings"])?;
     let case = Case::read(
         &flags.file.path,
-        flags.file.materials.as_deref(),
+        flags.file.overlay.as_deref(),
         &overrides,
         outlet,
     )?;
@@ -119,7 +120,6 @@ pub(super) fn check(flags: &flags::Check, outlet: &Outlet) -> Result<Ending, Com
     let stamp = case.stamp(profile.map(|profile| profile.offsets));
     destinations.write_tables(|| csv::findings(&findings), &stamp)?;
     destinations.print(
-        outlet,
         || json::findings(stack, &findings, &stamp),
         || sheet::findings(stack, &findings, &stamp, outlet.colour()),
     )?;
@@ -142,16 +142,15 @@ pub(super) fn materials(flags: &flags::Materials, outlet: &Outlet) -> Result<End
             temperature_k: at_k,
             ..Overrides::default()
         };
-        let case = Case::read(path, flags.materials.as_deref(), &overrides, outlet)?;
+        let case = Case::read(path, flags.overlay.as_deref(), &overrides, outlet)?;
         let descriptions = used(&case)?;
         return show(&descriptions, &case.stamp(None), &destinations, outlet);
     }
-    let parameters = parameters(flags.materials.as_deref(), outlet)?;
+    let parameters = parameters(flags.overlay.as_deref(), outlet)?;
     let stamp = Stamp::of_parameters(&parameters);
     let Some(formula) = &flags.formula else {
         destinations.write_tables(|| csv::families(&parameters), &stamp)?;
         destinations.print(
-            outlet,
             || json::families(&parameters, &stamp),
             || sheet::families(&parameters, &stamp, outlet.colour()),
         )?;
@@ -180,7 +179,6 @@ fn show(
 ) -> Result<Ending, Complaint> {
     destinations.write_tables(|| csv::descriptions(descriptions), stamp)?;
     destinations.print(
-        outlet,
         || json::descriptions(descriptions, stamp),
         || sheet::descriptions(descriptions, stamp, outlet.colour()),
     )?;
@@ -233,18 +231,15 @@ fn composition(formula: &str, name: &str, outlet: &Outlet) -> Result<Composition
 }
 
 /// `stepwell schema`.
-pub(super) fn schema(outlet: &Outlet) -> Result<Ending, Complaint> {
-    outlet.print(&format!("{:#}\n", file_schema()))?;
+pub(super) fn schema() -> Result<Ending, Complaint> {
+    print(&format!("{:#}\n", file_schema()))?;
     Ok(Ending::Done)
 }
 
 /// `stepwell completions SHELL`.
-pub(super) fn completions(
-    shell: clap_complete::Shell,
-    outlet: &Outlet,
-) -> Result<Ending, Complaint> {
+pub(super) fn completions(shell: clap_complete::Shell) -> Result<Ending, Complaint> {
     let mut script = Vec::new();
     clap_complete::generate(shell, &mut Flags::command(), "stepwell", &mut script);
-    outlet.print(&String::from_utf8_lossy(&script))?;
+    print(&String::from_utf8_lossy(&script))?;
     Ok(Ending::Done)
 }

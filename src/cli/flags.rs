@@ -36,6 +36,9 @@ pub(super) enum Command {
     /// Measured photoluminescence and X-ray against the design: what was grown
     #[command(after_help = RECONCILE_EXAMPLES, term_width = COLUMNS)]
     Reconcile(Reconcile),
+    /// What X-rays see of the wafer: peaks, zero order, satellites, rocking curve
+    #[command(after_help = XRAY_EXAMPLES, term_width = COLUMNS)]
+    Xray(Xray),
     /// Parameters with their sources: all families, one alloy, or all that a file uses
     #[command(after_help = MATERIALS_EXAMPLES, term_width = COLUMNS)]
     Materials(Materials),
@@ -155,6 +158,23 @@ pub(super) struct Reconcile {
 }
 
 #[derive(Debug, Args)]
+pub(super) struct Xray {
+    #[command(flatten)]
+    pub(super) file: StructureFile,
+    /// Reflection of the (001) wafer: 002, 004 or 006
+    #[arg(long, value_name = "00L", default_value = "004")]
+    pub(super) reflection: String,
+    /// Temperature of the wafer on the diffractometer, if not 300 K: 25C or 298.15K
+    #[arg(long, value_name = "TEMPERATURE", allow_hyphen_values = true)]
+    pub(super) at: Option<String>,
+    /// Draw the rocking curve
+    #[arg(long, value_name = "PATH.svg")]
+    pub(super) figure: Option<PathBuf>,
+    #[command(flatten)]
+    pub(super) output: Output,
+}
+
+#[derive(Debug, Args)]
 pub(super) struct Materials {
     /// Formula of a material, elements in any order; none lists the families
     #[arg(value_name = "FORMULA", conflicts_with = "used_by")]
@@ -169,8 +189,8 @@ pub(super) struct Materials {
     #[arg(long, value_name = "TEMPERATURE", allow_hyphen_values = true)]
     pub(super) at: Option<String>,
     /// Lay the numbers of a file over the shipped parameters
-    #[arg(long, value_name = "FILE")]
-    pub(super) materials: Option<PathBuf>,
+    #[arg(long = "materials", value_name = "FILE")]
+    pub(super) overlay: Option<PathBuf>,
     #[command(flatten)]
     pub(super) output: Output,
 }
@@ -181,8 +201,8 @@ pub(super) struct StructureFile {
     #[arg(value_name = "FILE")]
     pub(super) path: PathBuf,
     /// Lay the numbers of a file over the shipped parameters
-    #[arg(long, value_name = "FILE")]
-    pub(super) materials: Option<PathBuf>,
+    #[arg(long = "materials", value_name = "FILE")]
+    pub(super) overlay: Option<PathBuf>,
 }
 
 /// Conditions that go before those of the file.
@@ -331,6 +351,18 @@ The second file says what came back with the wafer:
 
 Exit code 4 where the data leave something open that no assumption settles.";
 
+const XRAY_EXAMPLES: &str = "\
+Examples:
+  stepwell xray my.toml
+  stepwell xray my.toml --reflection 002
+  stepwell xray my.toml --figure rocking.svg --csv rocking.csv
+
+X-rays are Cu K-alpha1 in an omega-2theta scan. Offsets are in omega, arcsec
+from the substrate's peak; a detector that reads 2theta moves twice as far.
+A wafer is measured at room temperature: the device's temperature in the file
+does not count here. It is a command of its own because it answers the grower,
+who has a diffractometer and no interest in levels or gain.";
+
 const MATERIALS_EXAMPLES: &str = "\
 Examples:
   stepwell materials
@@ -372,6 +404,7 @@ mod tests {
             CHECK_EXAMPLES,
             SPREAD_EXAMPLES,
             RECONCILE_EXAMPLES,
+            XRAY_EXAMPLES,
             MATERIALS_EXAMPLES,
             NEW_EXAMPLES,
         ] {

@@ -3,7 +3,7 @@
 use super::Ending;
 use super::complaint::Complaint;
 use super::flags::Flags;
-use super::outlet::Outlet;
+use super::outlet::print;
 use crate::structure::{Role, key_reference};
 use clap::{Command, CommandFactory as _};
 use clap_mangen::Man;
@@ -40,7 +40,7 @@ const EXAMPLES: [(&str, &str); 5] = [
 ];
 
 /// `stepwell manual`: the page in the language of `man`.
-pub(super) fn write(outlet: &Outlet) -> Result<Ending, Complaint> {
+pub(super) fn write() -> Result<Ending, Complaint> {
     let mut page = Vec::new();
     render(&mut page).map_err(|error| {
         Complaint::new(
@@ -48,7 +48,7 @@ pub(super) fn write(outlet: &Outlet) -> Result<Ending, Complaint> {
             format!("the manual can't be written: {error}"),
         )
     })?;
-    outlet.print(&String::from_utf8_lossy(&page))?;
+    print(&String::from_utf8_lossy(&page))?;
     Ok(Ending::Done)
 }
 

@@ -14,13 +14,14 @@ mod outlet;
 mod reconcile;
 mod shipped;
 mod spread;
+mod wafer;
 mod welcome;
 mod wishes;
 
 use clap::{CommandFactory as _, FromArgMatches as _};
 use complaint::Complaint;
 use flags::{Command, Flags};
-use outlet::Outlet;
+use outlet::{Outlet, print};
 use std::ffi::OsString;
 use std::process::ExitCode;
 
@@ -68,7 +69,7 @@ fn flags(
         Err(error) if error.use_stderr() => Err(Complaint::of_flags(&error, outlet)),
         Err(help) => {
             let text = help.render();
-            outlet.print(&if outlet.has_colour() {
+            print(&if outlet.has_colour() {
                 text.ansi().to_string()
             } else {
                 text.to_string()
@@ -80,16 +81,17 @@ fn flags(
 
 fn obey(flags: Flags, outlet: &Outlet) -> Result<Ending, Complaint> {
     match flags.command {
-        None => welcome::greet(outlet),
+        None => welcome::greet(),
         Some(Command::Levels(flags)) => commands::levels(&flags, outlet),
         Some(Command::Spectrum(flags)) => commands::spectrum(&flags, outlet),
         Some(Command::Spread(flags)) => spread::spread(&flags, outlet),
         Some(Command::Reconcile(flags)) => reconcile::reconcile(&flags, outlet),
         Some(Command::Check(flags)) => commands::check(&flags, outlet),
+        Some(Command::Xray(flags)) => wafer::xray(&flags, outlet),
         Some(Command::Materials(flags)) => commands::materials(&flags, outlet),
         Some(Command::New { name }) => shipped::write(name.as_deref(), outlet),
-        Some(Command::Schema) => commands::schema(outlet),
-        Some(Command::Completions { shell }) => commands::completions(shell, outlet),
-        Some(Command::Manual) => manual::write(outlet),
+        Some(Command::Schema) => commands::schema(),
+        Some(Command::Completions { shell }) => commands::completions(shell),
+        Some(Command::Manual) => manual::write(),
     }
 }

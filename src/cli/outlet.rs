@@ -7,7 +7,7 @@ use std::fs;
 use std::io::{self, ErrorKind, IsTerminal as _, Write as _};
 use std::path::{Path, PathBuf};
 
-/// Where texts go.
+/// The colours of standard output and standard error.
 #[derive(Debug)]
 pub(super) struct Outlet {
     /// Of standard output.
@@ -53,28 +53,28 @@ impl Outlet {
         self.error_colour == Colour::Always
     }
 
-    /// Writes a result. A reader that has gone away is no fault.
-    pub(super) fn print(&self, text: &str) -> Result<(), Complaint> {
-        let mut out = io::stdout().lock();
-        let written = out.write_all(text.as_bytes()).and_then(|()| out.flush());
-        match written {
-            Err(error) if error.kind() != ErrorKind::BrokenPipe => Err(Complaint::new(
-                Ending::Failed,
-                format!("standard output can't be written: {error}"),
-            )),
-            _ => Ok(()),
-        }
-    }
-
-    /// Writes a remark to standard error; nobody has to read it.
-    pub(super) fn remark(&self, text: &str) {
-        let _ = io::stderr().lock().write_all(text.as_bytes());
-    }
-
     /// Writes a complaint to standard error.
     pub(super) fn complain(&self, complaint: &Complaint) {
-        self.remark(&complaint.text(self.error_colour));
+        remark(&complaint.text(self.error_colour));
     }
+}
+
+/// Writes a result to standard output. A reader that has gone away is no fault.
+pub(super) fn print(text: &str) -> Result<(), Complaint> {
+    let mut out = io::stdout().lock();
+    let written = out.write_all(text.as_bytes()).and_then(|()| out.flush());
+    match written {
+        Err(error) if error.kind() != ErrorKind::BrokenPipe => Err(Complaint::new(
+            Ending::Failed,
+            format!("standard output can't be written: {error}"),
+        )),
+        _ => Ok(()),
+    }
+}
+
+/// Writes a remark to standard error; nobody has to read it.
+pub(super) fn remark(text: &str) {
+    let _ = io::stderr().lock().write_all(text.as_bytes());
 }
 
 /// Files that a run will write, looked at before the work and written after it.
@@ -92,8 +92,28 @@ impl Files {
         }
     }
 
-    /// Announces a file, so that one that is in the way is complained of before any work.
+    /// Announces a file in a folder that is there, so that what is in the way is complained of
+    /// before any work.
     pub(super) fn announce(&mut self, path: &Path, flag: &str) -> Result<(), Complaint> {
+        if let Some(folder) = path.parent()
+            && !folder.as_os_str().is_empty()
+            && !folder.is_dir()
+        {
+            return Err(Complaint::usage(format!(
+                "{flag} {}: there is no such folder",
+                path.display()
+            ))
+            .with_remedy("make the folder first"));
+        }
+        self.announce_in_any_folder(path, flag)
+    }
+
+    /// Announces a file in a folder that is made when it is written.
+    pub(super) fn announce_in_any_folder(
+        &mut self,
+        path: &Path,
+        flag: &str,
+    ) -> Result<(), Complaint> {
         if path.as_os_str().is_empty() {
             return Err(Complaint::usage(format!("{flag} has an empty path"))
                 .with_remedy("give the name of a file"));

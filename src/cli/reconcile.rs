@@ -32,12 +32,12 @@ pub(super) fn reconcile(flags: &flags::Reconcile, outlet: &Outlet) -> Result<End
     let destinations = Destinations::new(&flags.output, None, None, &tables)?;
     let mut case = Case::read(
         &flags.file.path,
-        flags.file.materials.as_deref(),
+        flags.file.overlay.as_deref(),
         &overrides,
         outlet,
     )?;
     let source = Text::read(&flags.returned)?;
-    let returned = read_returned(&source.text).map_err(|it| faults(&it, &source, outlet))?;
+    let returned = read_returned(&source.content).map_err(|it| faults(&it, &source, outlet))?;
     let unknowns = unknowns_of(&case.reading.stack, &returned.assumptions)
         .map_err(|it| faults(&it, &source, outlet))?;
     let map = map(&returned, &flags.returned, outlet)?;
@@ -57,7 +57,7 @@ pub(super) fn reconcile(flags: &flags::Reconcile, outlet: &Outlet) -> Result<End
     };
     let ledger = match &text {
         None => Ledger::default(),
-        Some(text) => Ledger::read(&text.text).map_err(|it| faults(&it, text, outlet))?,
+        Some(text) => Ledger::read(&text.content).map_err(|it| faults(&it, text, outlet))?,
     };
     let recorder = match &flags.ledger {
         Some(path) if flags.record => {
@@ -96,7 +96,6 @@ pub(super) fn reconcile(flags: &flags::Reconcile, outlet: &Outlet) -> Result<End
         recorder.write()?;
     }
     destinations.print(
-        outlet,
         || json::reconcile(&wafer, &stamp),
         || sheet::reconcile(&wafer, &stamp, outlet.colour()),
     )?;
@@ -108,7 +107,7 @@ pub(super) fn reconcile(flags: &flags::Reconcile, outlet: &Outlet) -> Result<End
 }
 
 fn faults(faults: &[Diagnostic], source: &Text, outlet: &Outlet) -> Complaint {
-    Complaint::faults(faults, &source.name, &source.text, outlet.error_colour())
+    Complaint::faults(faults, &source.name, &source.content, outlet.error_colour())
 }
 
 /// The map that the returned data speak of: a file beside theirs.
@@ -122,7 +121,7 @@ fn map(
     };
     let folder = beside.parent().unwrap_or_else(|| Path::new(""));
     let source = Text::read(&folder.join(name))?;
-    let mut map = PhotoluminescenceMap::read(&source.text)
+    let mut map = PhotoluminescenceMap::read(&source.content)
         .map_err(|fault| faults(&[fault], &source, outlet))?;
     if source.had_byte_order_mark {
         map.assumptions
@@ -194,7 +193,7 @@ impl<'a> Recorder<'a> {
                     ))
                     .with_remedy("leave --record out, or replace the entry with --force"));
                 }
-                let kept = ledger.without_run(&text.text, &entry);
+                let kept = ledger.without_run(&text.content, &entry);
                 Some(format!("{}\n{}", kept.trim_end(), entry.text()))
             }
             _ => None,
@@ -234,6 +233,9 @@ impl From<ReconcileError> for Complaint {
                 .with_remedy("name one in [assume]: moved = [\"well.thickness\"]"),
             ReconcileError::NoPeriod => {
                 Self::input(error.to_string()).with_remedy("leave [returned.xray] out")
+            }
+            ReconcileError::NoReflection(_) => {
+                Self::input(error.to_string()).with_remedy("give another `reflection`, 002 or 004")
             }
             ReconcileError::NoEmission => Self::new(Ending::Failed, error.to_string()),
         }

@@ -2,7 +2,7 @@
 
 use super::Ending;
 use super::complaint::Complaint;
-use super::outlet::Outlet;
+use super::outlet::{Outlet, print};
 use crate::sheet;
 use crate::source::{nearest, one_of};
 
@@ -37,7 +37,7 @@ pub(super) fn names() -> impl Iterator<Item = &'static str> {
 pub(super) fn write(name: Option<&str>, outlet: &Outlet) -> Result<Ending, Complaint> {
     let Some(name) = name else {
         let entries = STRUCTURES.map(|(name, text)| (name, purpose(text)));
-        outlet.print(&sheet::starting_structures(&entries, outlet.colour()))?;
+        print(&sheet::starting_structures(&entries, outlet.colour()))?;
         return Ok(Ending::Done);
     };
     let plain = name.strip_suffix(".toml").unwrap_or(name);
@@ -48,7 +48,7 @@ pub(super) fn write(name: Option<&str>, outlet: &Outlet) -> Result<Ending, Compl
             |near| format!("did you mean `{near}`?"),
         )));
     };
-    outlet.print(text)?;
+    print(text)?;
     Ok(Ending::Done)
 }
 

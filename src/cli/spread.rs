@@ -27,7 +27,7 @@ pub(super) fn spread(flags: &flags::Spread, outlet: &Outlet) -> Result<Ending, C
     let destinations = Destinations::new(&flags.output, flags.figure.as_deref(), None, &tables)?;
     let mut case = Case::read(
         &flags.file.path,
-        flags.file.materials.as_deref(),
+        flags.file.overlay.as_deref(),
         &overrides,
         outlet,
     )?;
@@ -105,7 +105,6 @@ fn write(
     destinations.write_tables(|| csv::spread(result), stamp)?;
     destinations.write_figure(|| sheet::spread_figure(stack, result, stamp).svg())?;
     destinations.print(
-        outlet,
         || json::spread(stack, result, stamp),
         || sheet::spread(stack, result, stamp, outlet.colour()),
     )?;

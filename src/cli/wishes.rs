@@ -2,7 +2,7 @@
 
 use super::complaint::Complaint;
 use super::flags::{Conditions, Output};
-use super::outlet::{Files, Outlet};
+use super::outlet::{Files, print};
 use crate::sheet::Stamp;
 use crate::sheet::csv::CsvTable;
 use crate::source::{nearest, one_of};
@@ -122,6 +122,22 @@ enum Csv {
     Folder(PathBuf),
 }
 
+/// Figures are SVG: a path that promises another kind of picture is refused.
+fn require_svg(path: &Path) -> Result<(), Complaint> {
+    let ending = path.extension().and_then(|ending| ending.to_str());
+    if ending.is_some_and(|ending| ending.eq_ignore_ascii_case("svg")) {
+        return Ok(());
+    }
+    let complaint = Complaint::usage(format!(
+        "--figure: `{}` does not end in .svg, the one kind of picture that is written",
+        path.display()
+    ));
+    Err(complaint.with_remedy(format!(
+        "--figure {}; any browser shows it and prints it as PDF",
+        path.with_extension("svg").display()
+    )))
+}
+
 impl Destinations {
     /// Where the results of a command go; every file that is in the way is found now.
     ///
@@ -147,10 +163,13 @@ impl Destinations {
             Some(Csv::File(path)) => files.announce(path, "--csv")?,
             Some(Csv::Folder(folder)) => {
                 for table in tables {
-                    files.announce(&folder.join(format!("{table}.csv")), "--csv")?;
+                    files.announce_in_any_folder(&folder.join(format!("{table}.csv")), "--csv")?;
                 }
             }
             None => {}
+        }
+        if let Some(path) = figure {
+            require_svg(path)?;
         }
         for (path, flag) in [(figure, "--figure"), (matrix, "--matrix")] {
             if let Some(path) = path {
@@ -208,11 +227,10 @@ impl Destinations {
     /// The result on standard output: the document, or the page.
     pub(super) fn print(
         &self,
-        outlet: &Outlet,
         json: impl FnOnce() -> String,
         page: impl FnOnce() -> String,
     ) -> Result<(), Complaint> {
-        outlet.print(&if self.json { json() } else { page() })
+        print(&if self.json { json() } else { page() })
     }
 }
 

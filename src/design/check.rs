@@ -243,10 +243,11 @@ impl Finding {
             }
         };
         match self {
-            Self::File(Remark::DefaultTemperature { .. }) | Self::Strain { .. } => Standing::Stated,
-            Self::File(_) => Standing::Noted,
-            Self::Levels(evaluation::Remark::MassBounded) => Standing::Stated,
-            Self::Levels(_) => Standing::Noted,
+            Self::File(Remark::DefaultTemperature { .. })
+            | Self::Levels(evaluation::Remark::MassBounded)
+            | Self::Strain { .. }
+            | Self::Doping { .. } => Standing::Stated,
+            Self::File(_) | Self::Levels(_) => Standing::Noted,
             Self::Unsolved(_) => Standing::Outside,
             Self::DirectWell {
                 margin_ev,
@@ -270,7 +271,6 @@ impl Finding {
                 spread_ev, most_ev, ..
             } => look(spread_ev > most_ev),
             Self::GroundHole { light, .. } => look(*light),
-            Self::Doping { .. } => Standing::Stated,
         }
     }
 
@@ -451,11 +451,21 @@ fn barriers(evaluation: &Evaluation<'_>, limits: &Limits) -> Vec<Finding> {
 }
 
 fn ground_hole(evaluation: &Evaluation<'_>) -> Option<Finding> {
-    let first = |band| {
-        let levels = evaluation.bands.of(band);
-        levels.first().map(|level| level.energy_ev)
+    let ladders = evaluation.ladders();
+    let first = |light: bool| {
+        let is_light = |symbol: &str, rung: &evaluation::Rung| {
+            rung.shares
+                .map_or(symbol == "lh", |shares| shares.light > shares.heavy)
+        };
+        ladders
+            .iter()
+            .skip(1)
+            .flat_map(|ladder| ladder.rungs.iter().map(|rung| (ladder.symbol, rung)))
+            .filter(|(symbol, rung)| is_light(symbol, rung) == light)
+            .map(|(_, rung)| rung.energy_ev)
+            .reduce(f64::max)
     };
-    let (heavy, light) = (first(Band::Heavy), first(Band::Light));
+    let (heavy, light) = (first(false), first(true));
     let split_ev = heavy.zip(light).map(|(heavy, light)| (heavy - light).abs());
     let light_first = match (heavy, light) {
         (Some(heavy), Some(light)) => light > heavy,

@@ -8,7 +8,6 @@ mod movement;
 mod reactor;
 mod reconcile;
 mod spread;
-mod superlattice;
 mod surrogate;
 mod unknown;
 
@@ -24,5 +23,4 @@ pub use spread::{
     Histogram, LayerSpread, MODEL_NM, Miss, Moments, Request, Sensitivity, Solving, Spread,
     SpreadError, Wanted, Yield, in_vacuum_nm, posed, spread, vacuum_nm, wavelength_nm,
 };
-pub use superlattice::Superlattice;
 pub use unknown::{Moved, Unknown, unknowns};

@@ -29,8 +29,8 @@
 
 use super::house_offset::HouseOffset;
 use super::spread::in_vacuum_nm;
-use super::superlattice::Superlattice;
 use super::unknown::{Unknown, every_cause};
+use crate::diffraction::{Diffraction, NoReflection, Reflection};
 use crate::evaluation::{Evaluation, Failure};
 use crate::materials::Parameters;
 use crate::structure::{
@@ -39,6 +39,9 @@ use crate::structure::{
 use crate::units::{photon_ev, wavelength_nm};
 use nalgebra::{DMatrix, DVector, SymmetricEigen};
 
+/// Temperature of the wafer on the diffractometer, K. Mismatches of compounds on each other change
+/// by a few ppm per 10 K, below what a wafer is measured to.
+const DIFFRACTOMETER_K: f64 = 300.0;
 /// Steps of derivatives, in prior sigmas.
 const STEP: f64 = 0.2;
 /// Most steps of the iteration.
@@ -57,6 +60,8 @@ pub struct Readings {
     pub pl_nm: Option<Measured>,
     /// Temperature of the wafer on the bench, K.
     pub temperature_k: Option<f64>,
+    /// The reflection in which X-rays were measured.
+    pub reflection: Reflection,
     /// Period, nm.
     pub period_nm: Option<Measured>,
     /// Mean mismatch of a period.
@@ -86,6 +91,9 @@ impl Readings {
         Self {
             pl_nm,
             temperature_k: returned.pl.as_ref().map(|pl| pl.temperature_k),
+            reflection: xray
+                .and_then(|xray| xray.reflection.parse().ok())
+                .unwrap_or_default(),
             period_nm: xray.and_then(|xray| xray.period_nm),
             mismatch: xray.and_then(|xray| xray.mismatch),
         }
@@ -249,8 +257,13 @@ pub enum ReconcileError {
     #[error("nothing may have moved: there is no unknown to estimate")]
     NoUnknown,
     /// X-ray data of a stack without a period.
-    #[error("the structure has fewer than two wells: it has no period for X-ray data to speak of")]
+    #[error(
+        "the wells of the structure do not repeat: there is no period for X-ray data to speak of"
+    )]
     NoPeriod,
+    /// The reflection is out of reach.
+    #[error(transparent)]
+    NoReflection(#[from] NoReflection),
     /// No photoluminescence.
     #[error("the structure emits no photoluminescence peak")]
     NoEmission,
@@ -267,25 +280,27 @@ struct Problem<'a> {
     /// Errors of the data, the model's included.
     sigmas: Vec<f64>,
     offset_mev: f64,
+    reflection: Reflection,
 }
 
 impl Problem<'_> {
     /// What the model gives for a stack, in the order of the data.
     fn predicted(&self, stack: &Stack, pl_shift_nm: f64) -> Result<Vec<f64>, ReconcileError> {
         let wants_xray = self.data.iter().any(|(datum, _)| *datum != Datum::Pl);
-        let superlattice = if wants_xray {
-            Some(Superlattice::of(stack, self.parameters).ok_or(ReconcileError::NoPeriod)?)
+        let multi_well = if wants_xray {
+            let seen = Diffraction::new(stack, self.parameters, self.reflection, DIFFRACTOMETER_K)?;
+            Some(seen.multi_well.ok_or(ReconcileError::NoPeriod)?)
         } else {
             None
         };
         self.data
             .iter()
-            .map(|(datum, _)| match (datum, &superlattice) {
+            .map(|(datum, _)| match (datum, &multi_well) {
                 (Datum::Period, Some(seen)) => Ok(seen.period_nm),
                 (Datum::Mismatch(MismatchKind::Perpendicular), Some(seen)) => {
-                    Ok(seen.perpendicular_ppm)
+                    Ok(seen.mean.perpendicular_ppm())
                 }
-                (Datum::Mismatch(MismatchKind::Relaxed), Some(seen)) => Ok(seen.relaxed_ppm),
+                (Datum::Mismatch(MismatchKind::Relaxed), Some(seen)) => Ok(seen.mean.relaxed_ppm()),
                 (Datum::Pl, _) | (_, None) => {
                     let peak_nm = Evaluation::new(stack, self.parameters)?
                         .wavelength_nm(Wavelength::Photoluminescence)
@@ -535,6 +550,7 @@ fn problem<'a>(
         data,
         sigmas,
         offset_mev: offset.offset_mev,
+        reflection: readings.reflection,
     }
 }
 

@@ -16,8 +16,26 @@ pub struct Budget {
     pub electron_ev: f64,
     /// Hole level below the highest edge of its kind in the wells.
     pub hole_ev: f64,
-    /// The first transition.
+    /// What mixing of the valence bands adds (zero where heavy and light holes are taken each by
+    /// itself, or the first hole is heavy).
+    pub mixing_ev: f64,
+    /// The first transition: the sum of all others.
     pub transition_ev: f64,
+}
+
+impl Budget {
+    /// The terms in the order in which they add up, with their names.
+    #[must_use]
+    pub fn terms(&self) -> [(&'static str, f64); 6] {
+        [
+            ("gap of the well material, unstrained", self.bulk_gap_ev),
+            ("strain", self.strain_ev),
+            ("wells that differ from each other", self.between_wells_ev),
+            ("confinement of the electron", self.electron_ev),
+            ("confinement of the hole", self.hole_ev),
+            ("mixing of the valence bands", self.mixing_ev),
+        ]
+    }
 }
 
 /// The budget of the first transition. In a field the confinement terms count from the flat edges
@@ -57,6 +75,7 @@ pub fn budget(evaluation: &Evaluation<'_>) -> Option<Budget> {
         between_wells_ev: (lowest - highest) - strained,
         electron_ev: pair.electron_ev - lowest,
         hole_ev: highest - pair.hole_ev,
+        mixing_ev: first - pair.energy_ev(),
         transition_ev: first,
     })
 }

@@ -2,7 +2,7 @@
 
 use super::{Evaluation, LEAST_OVERLAP, Transition};
 use crate::structure::Layer;
-use crate::subbands::{Band, CLUSTER_EV, Level};
+use crate::subbands::{Band, CLUSTER_EV, Level, ZoneCentre};
 use crate::units::wavelength_nm;
 
 /// Levels that equal wells share are one group if they lie within this, eV: less than half of kT
@@ -12,9 +12,9 @@ const GROUP_EV: f64 = 0.010;
 /// The levels of one kind, from the band edge.
 #[derive(Clone, Debug, PartialEq)]
 pub struct Ladder {
-    /// What the levels are of: `electron`, `heavy hole`, `light hole`.
+    /// What the levels are of: `electron`, `heavy hole`, `light hole`, `valence`.
     pub name: &'static str,
-    /// What a level is called before its number: `e`, `hh`, `lh`.
+    /// What a level is called before its number: `e`, `hh`, `lh`, `v`.
     pub symbol: &'static str,
     /// Deepest edge of this kind in the wells, eV.
     pub edge_ev: f64,
@@ -39,6 +39,47 @@ pub struct Rung {
     pub in_wells: f64,
     /// Whether it lies close to the edge that confines it.
     pub near_edge: bool,
+    /// What a valence state is made of, where the bands are mixed.
+    pub shares: Option<Shares>,
+}
+
+/// Shares of the bands in a state at zero in-plane wave number; they sum to 1.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct Shares {
+    /// Of the heavy-hole band.
+    pub heavy: f64,
+    /// Of the light-hole band.
+    pub light: f64,
+    /// Of the split-off band.
+    pub split_off: f64,
+}
+
+impl Rung {
+    fn of_level(level: &Level) -> Self {
+        Self {
+            energy_ev: level.energy_ev,
+            in_plane_mass: Some(level.in_plane_mass),
+            error_ev: level.error_ev,
+            in_wells: level.in_wells,
+            near_edge: level.near_edge,
+            shares: None,
+        }
+    }
+
+    fn of_state(state: &ZoneCentre) -> Self {
+        Self {
+            energy_ev: state.energy_ev,
+            in_plane_mass: None,
+            error_ev: state.error_ev,
+            in_wells: state.in_wells,
+            near_edge: state.near_edge,
+            shares: Some(Shares {
+                heavy: state.heavy,
+                light: state.light,
+                split_off: state.split_off,
+            }),
+        }
+    }
 }
 
 /// Levels that equal wells share.
@@ -48,7 +89,7 @@ pub struct Group {
     pub first: usize,
     /// Number of the last level.
     pub last: usize,
-    /// The level nearest the gap, with the mean mass and share and the largest error of all.
+    /// The level nearest the gap, with the mean mass and share in the wells and the largest error of all.
     pub rung: Rung,
     /// From the first level to the last, eV, at least zero.
     pub spread_ev: f64,
@@ -131,6 +172,7 @@ impl Ladder {
                 error_ev: members.iter().map(|rung| rung.error_ev).fold(0.0, f64::max),
                 in_wells: members.iter().map(|rung| rung.in_wells).sum::<f64>() / count,
                 near_edge: members.iter().any(|rung| rung.near_edge),
+                shares: members[0].shares,
             },
             spread_ev: self.distance(start, end - 1),
         }
@@ -156,17 +198,36 @@ pub struct TransitionGroup {
 }
 
 impl Evaluation<'_> {
-    /// The levels, one ladder a kind; a kind without levels has an empty one.
+    /// The levels that carriers fill, one ladder a kind, electrons first: heavy and light holes, or
+    /// the mixed valence states. A kind without levels has an empty ladder.
     #[must_use]
     pub fn ladders(&self) -> Vec<Ladder> {
+        let mut ladders = self.single_ladders();
+        if let Some(mixed) = &self.mixed {
+            let edge_ev = ladders[1].edge_ev.max(ladders[2].edge_ev);
+            ladders.truncate(1);
+            ladders.push(Ladder {
+                name: "valence",
+                symbol: "v",
+                edge_ev,
+                sign: -1.0,
+                rungs: mixed.zone_centre.iter().map(Rung::of_state).collect(),
+                wells: self.stack.well_count(),
+            });
+        }
+        ladders
+    }
+
+    /// The levels of the bands one at a time: electron, heavy hole, light hole.
+    #[must_use]
+    pub fn single_ladders(&self) -> Vec<Ladder> {
         [
-            (Band::Electron, "electron", "e"),
-            (Band::Heavy, "heavy hole", "hh"),
-            (Band::Light, "light hole", "lh"),
+            (Band::Electron, "electron", "e", 1.0),
+            (Band::Heavy, "heavy hole", "hh", -1.0),
+            (Band::Light, "light hole", "lh", -1.0),
         ]
         .into_iter()
-        .map(|(band, name, symbol)| {
-            let sign = if band == Band::Electron { 1.0 } else { -1.0 };
+        .map(|(band, name, symbol, sign)| {
             let depth = self
                 .profile
                 .wells(self.stack)
@@ -177,11 +238,39 @@ impl Evaluation<'_> {
                 symbol,
                 edge_ev: sign * depth,
                 sign,
-                rungs: self.bands.of(band).iter().map(rung).collect(),
+                rungs: self.bands.of(band).iter().map(Rung::of_level).collect(),
                 wells: self.stack.well_count(),
             }
         })
         .collect()
+    }
+
+    /// Energies of the highest mixed valence states over the in-plane wave number in 1/nm, eV, from
+    /// the highest down: one of each pair where the blocks are equal. Empty without mixing.
+    #[must_use]
+    pub fn dispersion(&self) -> Vec<(f64, Vec<f64>)> {
+        let Some(mixed) = &self.mixed else {
+            return Vec::new();
+        };
+        let states = mixed
+            .blocks
+            .first()
+            .map_or(0, |slices| slices[0].energy_ev.len());
+        mixed
+            .k_per_nm
+            .iter()
+            .enumerate()
+            .map(|(place, &k_per_nm)| {
+                let mut energies: Vec<f64> = mixed
+                    .blocks
+                    .iter()
+                    .filter_map(|slices| slices.get(place))
+                    .flat_map(|slice| slice.energy_ev.iter().take(states).copied())
+                    .collect();
+                energies.sort_by(|a, b| b.total_cmp(a));
+                (k_per_nm, energies)
+            })
+            .collect()
     }
 
     /// The transitions between groups of levels, by rising energy.
@@ -252,16 +341,6 @@ impl Evaluation<'_> {
     }
 }
 
-fn rung(level: &Level) -> Rung {
-    Rung {
-        energy_ev: level.energy_ev,
-        in_plane_mass: Some(level.in_plane_mass),
-        error_ev: level.error_ev,
-        in_wells: level.in_wells,
-        near_edge: level.near_edge,
-    }
-}
-
 #[cfg(test)]
 mod tests {
     use super::*;
@@ -280,6 +359,7 @@ mod tests {
                     error_ev: 1e-8,
                     in_wells: 0.9,
                     near_edge: false,
+                    shares: None,
                 })
                 .collect(),
             wells,

@@ -3,8 +3,8 @@
 use super::Transition;
 use crate::carriers::{NetDoping, Reservoir, Subband};
 use crate::spectra::{Dispersion, Line, Sample};
-use crate::structure::Stack;
-use crate::subbands::{Level, MixedBands};
+use crate::structure::{Layer, Role, Stack};
+use crate::subbands::{Level, MixedBands, SingleBands};
 use crate::units::{HBAR2_OVER_2M0_EV_NM2, thermal_ev, wavelength_nm};
 
 /// How far the highest valence state must fall along the wave number, eV: past every hole that
@@ -28,9 +28,9 @@ pub(super) fn depth_ev(stack: &Stack, parabolas: &[Subband], doping: &NetDoping)
     ((fermi - edge).max(0.0) + 13.0 * kt).max(0.2)
 }
 
-/// Zone-centre transitions by rising energy, components of a valence state summed.
+/// Transitions at the zone centre, components of a valence state summed.
 pub(super) fn transitions(electrons: &[Level], mixed: &MixedBands) -> Vec<Transition> {
-    let mut transitions: Vec<Transition> = Vec::new();
+    let mut transitions = Vec::new();
     for (electron, (level, overlaps)) in electrons.iter().zip(&mixed.overlaps).enumerate() {
         for (state, (centre, &overlap)) in mixed.zone_centre.iter().zip(overlaps).enumerate() {
             let energy_ev = level.energy_ev - centre.energy_ev;
@@ -43,7 +43,6 @@ pub(super) fn transitions(electrons: &[Level], mixed: &MixedBands) -> Vec<Transi
             });
         }
     }
-    transitions.sort_by(|a, b| a.energy_ev.total_cmp(&b.energy_ev));
     transitions
 }
 
@@ -56,7 +55,7 @@ fn energies(slices: &[crate::subbands::Slice], state: usize) -> Vec<f64> {
 pub(super) fn hole_states(mixed: &MixedBands, thermal_ev: f64) -> Vec<(f64, f64)> {
     let mut states = Vec::new();
     for slices in &mixed.blocks {
-        for state in 0..mixed.zone_centre.len() {
+        for state in 0..slices[0].energy_ev.len() {
             let hole_ev = energies(slices, state);
             let along = Dispersion {
                 k_per_nm: &mixed.k_per_nm,
@@ -79,11 +78,7 @@ pub(super) fn hole_states(mixed: &MixedBands, thermal_ev: f64) -> Vec<(f64, f64)
 
 /// Samples of every pair over the wave number, the lowest edge of each pair, and the highest
 /// transition energy that the wave numbers reach.
-pub(super) fn samples(
-    electrons: &[Level],
-    mixed: &MixedBands,
-    line: &Line,
-) -> (Vec<Sample>, Vec<f64>, f64) {
+pub(super) fn samples(mixed: &MixedBands, line: &Line) -> (Vec<Sample>, Vec<f64>, f64) {
     /// Pairs weaker than this everywhere are not seen.
     const LEAST_DIPOLE: f64 = 1e-7;
 
@@ -92,9 +87,9 @@ pub(super) fn samples(
     let mut reach = f64::INFINITY;
     let last = mixed.k_per_nm.last().copied().unwrap_or(0.0);
     for slices in &mixed.blocks {
-        for state in 0..mixed.zone_centre.len() {
+        for state in 0..slices[0].energy_ev.len() {
             let hole_ev = energies(slices, state);
-            for (electron, level) in electrons.iter().enumerate() {
+            for (electron, level) in mixed.electron.iter().enumerate() {
                 let te: Vec<f64> = slices
                     .iter()
                     .map(|slice| slice.dipoles[electron][state].te)
@@ -138,4 +133,41 @@ pub(super) fn samples(
         }
     }
     (samples, edges, reach)
+}
+
+/// One of several equal wells that do not feel each other, with what stands on either side of all of
+/// them; `None` where wells differ, or where the single bands show that they are coupled.
+pub(super) fn one_of_equal_wells(stack: &Stack, bands: &SingleBands) -> Option<(usize, Stack)> {
+    /// Levels of equal wells that are closer than this do not feel the other wells, eV.
+    const UNCOUPLED_EV: f64 = 2e-6;
+
+    let is_well = |layer: &Layer| layer.role == Role::Well;
+    let first = stack.layers.iter().position(is_well)?;
+    let last = stack.layers.iter().rposition(is_well)?;
+    let wells = stack.well_count();
+    let model = &stack.layers[first];
+    let alike = stack.wells().all(|well| {
+        well.material.substance == model.material.substance
+            && well.grade_to.is_none()
+            && (well.thickness_nm - model.thickness_nm).abs() < 1e-9
+    });
+    // A step belongs to its well: such stacks are solved whole.
+    let steps = stack.layers.iter().any(|layer| layer.role == Role::Step);
+    if wells < 2 || !alike || steps || stack.model.field_kv_cm != 0.0 {
+        return None;
+    }
+    let uncoupled = [&bands.electron, &bands.heavy, &bands.light]
+        .into_iter()
+        .all(|ladder| {
+            ladder.len() % wells == 0
+                && ladder.chunks(wells).all(|group| {
+                    (group[0].energy_ev - group[wells - 1].energy_ev).abs() < UNCOUPLED_EV
+                })
+        });
+    if !uncoupled {
+        return None;
+    }
+    let mut one = stack.clone();
+    one.layers.drain(first + 1..=last);
+    Some((wells, one))
 }

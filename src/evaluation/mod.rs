@@ -10,7 +10,7 @@ mod remark;
 mod spectrum;
 
 pub use budget::{Budget, budget};
-pub use ladder::{Group, Ladder, Rung, TransitionGroup};
+pub use ladder::{Group, Ladder, Rung, Shares, TransitionGroup};
 pub use remark::Remark;
 pub use spectrum::{
     Absorption, GainPeak, PhotoLuminescence, Run, Spectrum, Spontaneous, Transparency,
@@ -20,7 +20,7 @@ use crate::carriers::{NetDoping, Reservoir, Subband};
 use crate::materials::Parameters;
 use crate::numerics::roots::bracketed_root;
 use crate::profile::{Profile, Unsolvable};
-use crate::spectra::landmarks::{emission_peak, gain_peak};
+use crate::spectra::landmarks::View;
 use crate::spectra::{Dispersive, Emitter, Hole, Line, Occupation, Pair, Point, Staircase};
 use crate::structure::{Bands, Role, Stack, Substance, Wavelength};
 use crate::subbands::{Band, Level, MixedBands, SingleBands, Uncertified, single};
@@ -142,7 +142,6 @@ pub struct Evaluation<'a> {
     pub remarks: Vec<Remark>,
     emitter: Box<dyn Emitter>,
     pairs: Vec<Pair>,
-    every_pair: Vec<Transition>,
     index: Result<f64, Failure>,
     electrons: Vec<Subband>,
     holes: Holes,
@@ -175,18 +174,18 @@ impl<'a> Evaluation<'a> {
             Bands::Single => None,
             Bands::Mixed => {
                 let depth_ev = mixed::depth_ev(stack, &parabolas, &doping);
-                Some(crate::subbands::mixed(&profile, &bands, depth_ev)?)
+                Some(match mixed::one_of_equal_wells(stack, &bands) {
+                    Some((wells, one)) => {
+                        let profile = Profile::new(&one, parameters)?;
+                        let bands = single(&profile, stack.model.nonparabolic)?;
+                        crate::subbands::mixed(&profile, &bands, depth_ev)?.of_equal_wells(wells)
+                    }
+                    None => crate::subbands::mixed(&profile, &bands, depth_ev)?,
+                })
             }
         };
-        let every_pair = mixed.as_ref().map_or_else(
-            || by_energy(&pairs),
-            |mixed| mixed::transitions(&bands.electron, mixed),
-        );
-        let transitions: Vec<Transition> = every_pair
-            .iter()
-            .filter(|transition| transition.overlap > LEAST_OVERLAP)
-            .cloned()
-            .collect();
+        let mut transitions = every_pair(&pairs, &bands, mixed.as_ref());
+        transitions.retain(|transition| transition.overlap > LEAST_OVERLAP);
         let first_ev = transitions.first().ok_or(Failure::NoTransition)?.energy_ev;
         let index = refractive_index(stack, parameters, first_ev);
         // Positions and widths do not hang on the index, which scales every spectrum as a whole.
@@ -198,7 +197,7 @@ impl<'a> Evaluation<'a> {
             }
             Some(mixed) => {
                 let kt = thermal_ev(stack.operation.temperature_k);
-                let (samples, edges, reach) = mixed::samples(&bands.electron, mixed, &line);
+                let (samples, edges, reach) = mixed::samples(mixed, &line);
                 let emitter =
                     Dispersive::new(samples, edges, reach, kane_energy_ev, wells_nm, scale, line);
                 (
@@ -218,7 +217,6 @@ impl<'a> Evaluation<'a> {
             remarks: Vec::new(),
             emitter,
             pairs,
-            every_pair,
             index,
             electrons,
             holes,
@@ -304,13 +302,15 @@ impl<'a> Evaluation<'a> {
     pub fn emission(&self) -> Emission {
         let filling = self.filling(self.stack.operation.working_density_cm3);
         let peak_nm = |lowering_ev: f64| {
-            let [te, tm] = self.gain_peaks(&filling, lowering_ev);
+            let view = self.view(&self.occupation(&filling, lowering_ev));
+            let [te, tm] = self.gain_peaks(&filling, &view);
             larger(te, tm).map(|(_, peak)| peak.peak_nm)
         };
         Emission {
             first_transition_nm: wavelength_nm(self.first_ev),
             pl_nm: self
-                .photoluminescence_peak()
+                .view(&self.low_injection())
+                .emission_peak()
                 .map(|peak| wavelength_nm(peak.photon_ev)),
             gain_peak_nm: peak_nm(self.shrinkage_ev(filling.density_cm3)),
             gain_peak_unshrunk_nm: peak_nm(0.0),
@@ -324,7 +324,8 @@ impl<'a> Evaluation<'a> {
         match kind {
             Wavelength::Transition => Some(wavelength_nm(self.first_ev)),
             Wavelength::Photoluminescence => self
-                .photoluminescence_peak()
+                .view(&self.low_injection())
+                .emission_peak()
                 .map(|peak| wavelength_nm(peak.photon_ev)),
             Wavelength::Gain => {
                 let density_cm3 = self.stack.operation.working_density_cm3;
@@ -336,7 +337,8 @@ impl<'a> Evaluation<'a> {
     /// Peaks of TE and TM gain at a density, with shrinkage; `None` below transparency.
     #[must_use]
     pub fn gain_peaks_at(&self, density_cm3: f64) -> [Option<GainPeak>; 2] {
-        self.gain_peaks(&self.filling(density_cm3), self.shrinkage_ev(density_cm3))
+        let view = self.view(&self.carriers(density_cm3));
+        self.gain_peaks(&self.filling(density_cm3), &view)
     }
 
     /// The larger of these peaks, with the name of its polarisation.
@@ -372,26 +374,26 @@ impl<'a> Evaluation<'a> {
     }
 
     /// Every pair of levels, however small its overlap, by rising energy.
-    fn every_pair(&self) -> &[Transition] {
-        &self.every_pair
+    fn every_pair(&self) -> Vec<Transition> {
+        every_pair(&self.pairs, &self.bands, self.mixed.as_ref())
     }
 
     fn low_injection(&self) -> Occupation {
         self.occupation(&self.filling(PL_DENSITY_CM3), 0.0)
     }
 
-    fn photoluminescence_peak(&self) -> Option<crate::spectra::landmarks::Peak> {
-        emission_peak(&*self.emitter, &self.low_injection())
+    /// A view of the spectrum at some carriers. There is always a transition to see.
+    fn view(&self, occupation: &Occupation) -> View<'_> {
+        View::new(&*self.emitter, occupation).expect("an evaluation has a transition")
     }
 
     /// Peaks of TE and TM gain; `None` below transparency.
-    fn gain_peaks(&self, filling: &Filling, lowering_ev: f64) -> [Option<GainPeak>; 2] {
+    fn gain_peaks(&self, filling: &Filling, view: &View<'_>) -> [Option<GainPeak>; 2] {
         if !self.is_transparent(filling) {
             return [None, None];
         }
-        let occupation = self.occupation(filling, lowering_ev);
         let peak = |pick: fn(&Point) -> f64| {
-            gain_peak(&*self.emitter, &occupation, pick).map(|peak| GainPeak {
+            view.gain_peak(pick).map(|peak| GainPeak {
                 gain_cm: peak.height,
                 peak_nm: wavelength_nm(peak.photon_ev),
                 peak_ev: peak.photon_ev,
@@ -458,21 +460,25 @@ fn pairs(stack: &Stack, profile: &Profile<'_>, bands: &SingleBands) -> Vec<Pair>
     pairs
 }
 
-/// The transitions of all pairs, by rising energy.
-fn by_energy(pairs: &[Pair]) -> Vec<Transition> {
-    let mut transitions: Vec<Transition> = pairs
-        .iter()
-        .map(|pair| Transition {
-            electron: pair.electron + 1,
-            hole: match pair.kind {
-                Hole::Heavy => format!("hh{}", pair.hole + 1),
-                Hole::Light => format!("lh{}", pair.hole + 1),
-            },
-            energy_ev: pair.energy_ev(),
-            wavelength_nm: wavelength_nm(pair.energy_ev()),
-            overlap: pair.overlap,
-        })
-        .collect();
+/// The transitions between all levels, by rising energy: of the mixed valence states where there are
+/// any, else of heavy and light holes.
+fn every_pair(pairs: &[Pair], bands: &SingleBands, mixed: Option<&MixedBands>) -> Vec<Transition> {
+    let mut transitions: Vec<Transition> = match mixed {
+        Some(mixed) => mixed::transitions(&bands.electron, mixed),
+        None => pairs
+            .iter()
+            .map(|pair| Transition {
+                electron: pair.electron + 1,
+                hole: match pair.kind {
+                    Hole::Heavy => format!("hh{}", pair.hole + 1),
+                    Hole::Light => format!("lh{}", pair.hole + 1),
+                },
+                energy_ev: pair.energy_ev(),
+                wavelength_nm: wavelength_nm(pair.energy_ev()),
+                overlap: pair.overlap,
+            })
+            .collect(),
+    };
     transitions.sort_by(|a, b| a.energy_ev.total_cmp(&b.energy_ev));
     transitions
 }

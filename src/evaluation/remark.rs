@@ -10,6 +10,13 @@ use crate::subbands::Band;
 pub enum Remark {
     /// The valence bands were taken one at a time.
     SingleBands,
+    /// Equal wells that do not feel each other were solved as one.
+    EqualWells {
+        /// How many.
+        count: usize,
+    },
+    /// In a field valence states are followed by their character.
+    FollowedInField,
     /// The energy-dependent electron mass met its lower bound.
     MassBounded,
     /// Levels close to the edge that confines them.
@@ -62,6 +69,16 @@ impl Remark {
                  twice too high, transparency 35 to 50 % too low, and TM gain is not to be believed"
                     .to_owned()
             }
+            Self::EqualWells { count } => format!(
+                "the {count} wells are equal and do not feel each other (levels within 2 µeV): their \
+                 mixed valence bands are those of one of them, {count} times"
+            ),
+            Self::FollowedInField => {
+                "in a field box states stand between those of the wells: mixed states are certified at \
+                 zero in-plane wave number and followed from there by their character; spectra are good \
+                 to about 1 %"
+                    .to_owned()
+            }
             Self::MassBounded => {
                 "the energy-dependent electron mass met its lower bound, a tenth of the edge mass, in a \
                  layer far above the levels"
@@ -110,7 +127,10 @@ impl Remark {
     pub fn advice(&self) -> Option<String> {
         let text = match self {
             Self::SingleBands => "treat absolute gain and polarisation as trends only",
-            Self::MassBounded | Self::LightHoleFirst => return None,
+            Self::EqualWells { .. }
+            | Self::FollowedInField
+            | Self::MassBounded
+            | Self::LightHoleFirst => return None,
             Self::NearEdge { .. } => {
                 "do not build on these levels; raise the barrier or widen the well"
             }
@@ -131,28 +151,49 @@ pub(super) fn of_levels(evaluation: &Evaluation<'_>) -> Vec<Remark> {
     if bands.electron.iter().any(|level| level.mass_bounded) {
         remarks.push(Remark::MassBounded);
     }
-    let near: Vec<String> = [
-        (Band::Electron, "e"),
-        (Band::Heavy, "hh"),
-        (Band::Light, "lh"),
-    ]
-    .into_iter()
-    .flat_map(|(band, name)| {
-        bands
-            .of(band)
-            .iter()
-            .enumerate()
-            .filter(|(_, level)| level.near_edge)
-            .map(move |(index, _)| format!("{name}{}", index + 1))
-    })
-    .collect();
+    if let Some(mixed) = &evaluation.mixed {
+        if mixed.equal_wells > 1 {
+            remarks.push(Remark::EqualWells {
+                count: mixed.equal_wells,
+            });
+        }
+        if evaluation.profile.slope_ev_nm != 0.0 {
+            remarks.push(Remark::FollowedInField);
+        }
+    }
+    let near: Vec<String> = evaluation
+        .ladders()
+        .iter()
+        .flat_map(|ladder| {
+            let marked = ladder
+                .rungs
+                .iter()
+                .enumerate()
+                .filter(|(_, rung)| rung.near_edge);
+            marked
+                .map(|(index, _)| format!("{}{}", ladder.symbol, index + 1))
+                .collect::<Vec<_>>()
+        })
+        .collect();
     if !near.is_empty() {
         remarks.push(Remark::NearEdge { levels: near });
     }
-    let first_is_light = evaluation
-        .transitions
-        .first()
-        .is_some_and(|transition| transition.hole.starts_with("lh"));
+    let first_is_light = evaluation.transitions.first().is_some_and(|transition| {
+        let mixed = |number: &str| {
+            let place: usize = number.parse().ok()?;
+            evaluation
+                .mixed
+                .as_ref()?
+                .zone_centre
+                .get(place.checked_sub(1)?)
+        };
+        transition.hole.starts_with("lh")
+            || transition
+                .hole
+                .strip_prefix('v')
+                .and_then(mixed)
+                .is_some_and(|state| state.heavy < 0.5)
+    });
     if first_is_light {
         remarks.push(Remark::LightHoleFirst);
     }

@@ -1,9 +1,7 @@
 //! The record of a spectrum.
 
 use super::{Evaluation, Failure, PL_DENSITY_CM3, Remark, larger, remark};
-use crate::spectra::landmarks::{
-    LogarithmicFit, emission_peak, emission_width_ev, logarithmic_fit, total_rate_per_cm3_s,
-};
+use crate::spectra::landmarks::{LogarithmicFit, logarithmic_fit};
 use crate::spectra::{Emitter, Occupation, Point};
 use crate::units::{ELEMENTARY_CHARGE_C, wavelength_nm};
 
@@ -115,7 +113,6 @@ impl Evaluation<'_> {
     /// [`Failure::NoIndex`] if the refractive index of a well is not known.
     pub fn spectrum(&self) -> Result<Spectrum, Failure> {
         let refractive_index = self.refractive_index()?;
-        let emitter: &dyn Emitter = &*self.emitter;
         let densities = &self.stack.operation.densities_cm3;
         let occupations: Vec<Occupation> = densities
             .iter()
@@ -129,9 +126,10 @@ impl Evaluation<'_> {
             .collect();
 
         let low = self.low_injection();
-        let pl = emission_peak(emitter, &low).map(|peak| PhotoLuminescence {
+        let low_view = self.view(&low);
+        let pl = low_view.emission_peak().map(|peak| PhotoLuminescence {
             peak_nm: wavelength_nm(peak.photon_ev),
-            fwhm_mev: 1e3 * emission_width_ev(emitter, &low, &peak),
+            fwhm_mev: 1e3 * low_view.emission_width_ev(&peak),
         });
         let polarisation = runs
             .last()
@@ -212,8 +210,9 @@ impl Evaluation<'_> {
 
     fn run(&self, density_cm3: f64, occupation: &Occupation, photon_ev: &[f64]) -> Run {
         let emitter: &dyn Emitter = &*self.emitter;
-        let [te, tm] = self.gain_peaks(&self.filling(density_cm3), occupation.lowering_ev);
-        let total_per_cm3_s = total_rate_per_cm3_s(emitter, occupation);
+        let view = self.view(occupation);
+        let [te, tm] = self.gain_peaks(&self.filling(density_cm3), &view);
+        let total_per_cm3_s = view.total_rate_per_cm3_s();
         let wells_cm = 1e-7 * self.profile.well_thickness_nm;
         Run {
             density_cm3,
@@ -224,7 +223,7 @@ impl Evaluation<'_> {
             shrinkage_mev: 1e3 * occupation.lowering_ev,
             te,
             tm,
-            spontaneous: emission_peak(emitter, occupation).map(|peak| Spontaneous {
+            spontaneous: view.emission_peak().map(|peak| Spontaneous {
                 peak_nm: wavelength_nm(peak.photon_ev),
                 total_per_cm3_s,
                 current_a_cm2: ELEMENTARY_CHARGE_C * total_per_cm3_s * wells_cm,
@@ -232,7 +231,8 @@ impl Evaluation<'_> {
             points: emitter.sample(
                 occupation,
                 photon_ev[0],
-                photon_ev[1] - photon_ev[0],
+                // Not the first difference, whose rounding would grow with the index.
+                (photon_ev[photon_ev.len() - 1] - photon_ev[0]) / (photon_ev.len() - 1) as f64,
                 photon_ev.len(),
             ),
         }
@@ -253,7 +253,7 @@ impl Evaluation<'_> {
             return None;
         }
         let emitter: &dyn Emitter = &*self.emitter;
-        let rate = rate_per_cm3_s.unwrap_or_else(|| total_rate_per_cm3_s(emitter, occupation));
+        let rate = rate_per_cm3_s.unwrap_or_else(|| self.view(occupation).total_rate_per_cm3_s());
         let ratio = rate / emitter.sharp_rate_per_cm3_s(occupation);
         (ratio > TOO_STRONG).then_some(Remark::ColdEmission { density_cm3, ratio })
     }

@@ -4,7 +4,7 @@ use super::interpolation::ternary_elements;
 use super::table::{Material, compounds, pair};
 use super::{
     Alternate, Composition, Crystal, Edges, Elements, Entry, IndexAdvice, MissingTernary, Offsets,
-    Parameters, SHIPPED_NAME,
+    Parameters, SHIPPED_NAME, Sense,
 };
 use crate::units::wavelength_nm;
 use std::collections::BTreeMap;
@@ -373,8 +373,12 @@ impl Behind<'_> {
             title: "on the substrate",
             figures: vec![
                 self.figure(
-                    "in-plane strain (negative: compressive)",
-                    vec![100.0 * edges.in_plane_strain],
+                    match edges.sense() {
+                        Sense::Compressive => "in-plane strain, compressive",
+                        Sense::Tensile => "in-plane strain, tensile",
+                        Sense::Matched => "in-plane strain, matched",
+                    },
+                    vec![edges.strain_percent()],
                     "%",
                     lattice,
                 ),

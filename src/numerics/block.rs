@@ -370,6 +370,36 @@ impl BlockChain {
         false
     }
 
+    /// Follows states of a neighbouring problem by their character, wherever they stand in the order:
+    /// each converges to the state nearest its energy and vector. Returns whether all did, to
+    /// different states; that none was missed is not known.
+    pub fn pursue(&mut self, ladder: &mut Ladder, floor: f64) -> bool {
+        for _ in 0..8 {
+            let Some(sweep) = self.sweep(ladder, floor, floor) else {
+                return false;
+            };
+            if !ladder.energies.iter().all(|energy| energy.is_finite()) {
+                return false;
+            }
+            let mut order: Vec<usize> = (0..ladder.energies.len()).collect();
+            order.sort_by(|&a, &b| ladder.energies[a].total_cmp(&ladder.energies[b]));
+            ladder.energies = order.iter().map(|&index| ladder.energies[index]).collect();
+            ladder.vectors = order
+                .iter()
+                .map(|&index| ladder.vectors[index].clone())
+                .collect();
+            let residuals = order.iter().map(|&index| sweep.residuals[index]).collect();
+            let residuals = self.separate(ladder, residuals);
+            if residuals
+                .iter()
+                .all(|&residual| residual < LARGEST_RESIDUAL)
+            {
+                return ladder.energies.windows(2).all(|pair| pair[1] > pair[0]);
+            }
+        }
+        false
+    }
+
     /// One step of inverse iteration for every state of a ladder, [`LANES`] at a time; `None` if a
     /// state lies below the floor. Free lanes count the levels below the floor and below `point`.
     fn sweep(&mut self, ladder: &mut Ladder, floor: f64, point: f64) -> Option<Sweep> {

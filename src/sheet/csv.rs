@@ -65,6 +65,9 @@ mod spread;
 
 pub use reconcile::reconcile;
 pub use spread::spread;
+mod xray;
+
+pub use xray::xray;
 
 impl CsvTable {
     fn new(name: &'static str, heads: &[&str]) -> Self {
@@ -76,6 +79,10 @@ impl CsvTable {
     }
 
     /// The table as a file.
+    ///
+    /// # Panics
+    ///
+    /// Never: the text is written to memory, and every row has the cells of the head.
     #[must_use]
     pub fn text(&self, stamp: &Stamp) -> String {
         let mut writer = csv::Writer::from_writer(format!("# {}\n", stamp.line()).into_bytes());
@@ -111,7 +118,28 @@ pub fn levels(evaluation: &Evaluation<'_>) -> Vec<CsvTable> {
         emission(evaluation),
         edges(evaluation),
         envelopes(evaluation),
+        dispersion(evaluation),
     ]
+}
+
+/// Energies of the mixed valence states over the in-plane wave number; no rows without mixing.
+fn dispersion(evaluation: &Evaluation<'_>) -> CsvTable {
+    let mut table = CsvTable::new("dispersion", &["k_per_nm"]);
+    let rows = evaluation.dispersion();
+    let states = rows.first().map_or(0, |(_, energies)| energies.len());
+    table
+        .heads
+        .extend((1..=states).map(|state| format!("state{state}_ev")));
+    table.rows = rows
+        .iter()
+        .map(|(k_per_nm, energies)| {
+            std::iter::once(k_per_nm)
+                .chain(energies)
+                .map(|&number| Cell::from(number))
+                .collect()
+        })
+        .collect();
+    table
 }
 
 fn ladders(evaluation: &Evaluation<'_>) -> CsvTable {
@@ -126,6 +154,9 @@ fn ladders(evaluation: &Evaluation<'_>) -> CsvTable {
             "in_wells_percent",
             "error_ev",
             "near_edge",
+            "heavy_percent",
+            "light_percent",
+            "split_off_percent",
         ],
     );
     for ladder in evaluation.ladders() {
@@ -139,6 +170,9 @@ fn ladders(evaluation: &Evaluation<'_>) -> CsvTable {
                 100.0 * rung.in_wells,
                 rung.error_ev,
                 if rung.near_edge { "yes" } else { "no" },
+                rung.shares.map(|shares| 100.0 * shares.heavy),
+                rung.shares.map(|shares| 100.0 * shares.light),
+                rung.shares.map(|shares| 100.0 * shares.split_off),
             ]);
         }
     }
@@ -232,13 +266,7 @@ fn budget_terms(evaluation: &Evaluation<'_>) -> CsvTable {
         return table;
     };
     let mut sum_ev = 0.0;
-    for (term, adds_ev) in [
-        ("gap of the unstrained well material", budget.bulk_gap_ev),
-        ("strain", budget.strain_ev),
-        ("wells that differ", budget.between_wells_ev),
-        ("electron confinement", budget.electron_ev),
-        ("hole confinement", budget.hole_ev),
-    ] {
+    for (term, adds_ev) in budget.terms() {
         sum_ev += adds_ev;
         table
             .rows

@@ -6,6 +6,7 @@ use super::stamp::Stamp;
 use crate::design::{Carrier, Finding, Standing};
 use crate::source::Colour;
 use crate::structure::{Remark, Stack};
+use std::fmt::Write as _;
 
 /// Width of the column that says how a finding stands.
 const STANDING_COLUMNS: usize = 9;
@@ -166,32 +167,33 @@ pub(super) fn message(finding: &Finding) -> String {
             net_cm3,
             acceptors_setback_nm,
             donors_setback_nm,
-        } => {
-            let net = if *net_cm3 == 0.0 {
-                "the wells and their barriers are not doped".to_owned()
-            } else {
-                let kind = if *net_cm3 > 0.0 {
-                    "donors"
-                } else {
-                    "acceptors"
-                };
-                format!(
-                    "wells and barriers hold {} cm⁻³ net of {kind}, per volume of the wells",
-                    power(net_cm3.abs(), 4)
-                )
-            };
-            let setback = |kind: &str, nm: &Option<f64>| {
-                nm.map_or(String::new(), |nm| {
-                    format!("; {kind} begin {} nm from the wells", length_nm(nm))
-                })
-            };
-            format!(
-                "{net}{}{}",
-                setback("acceptors", acceptors_setback_nm),
-                setback("donors", donors_setback_nm)
-            )
+        } => doping(*net_cm3, *acceptors_setback_nm, *donors_setback_nm),
+    }
+}
+
+fn doping(
+    net_cm3: f64,
+    acceptors_setback_nm: Option<f64>,
+    donors_setback_nm: Option<f64>,
+) -> String {
+    let mut words = if net_cm3 == 0.0 {
+        "the wells and their barriers are not doped".to_owned()
+    } else {
+        let kind = if net_cm3 > 0.0 { "donors" } else { "acceptors" };
+        format!(
+            "wells and barriers hold {} cm⁻³ net of {kind}, per volume of the wells",
+            power(net_cm3.abs(), 4)
+        )
+    };
+    for (kind, setback_nm) in [
+        ("acceptors", acceptors_setback_nm),
+        ("donors", donors_setback_nm),
+    ] {
+        if let Some(nm) = setback_nm {
+            let _ = write!(words, "; {kind} begin {} nm from the wells", length_nm(nm));
         }
     }
+    words
 }
 
 /// What to do about it; `None` where nothing needs doing.

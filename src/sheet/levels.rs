@@ -4,14 +4,18 @@ use super::number::{ABSENT, fixed, length_nm, power, signed, significant, temper
 use super::page::Page;
 use super::stamp::Stamp;
 use super::table::{Table, numbers, words};
-use crate::evaluation::{Budget, Evaluation, Ladder, PL_DENSITY_CM3, budget};
+use crate::evaluation::{Budget, Evaluation, Ladder, PL_DENSITY_CM3, Rung, budget};
 use crate::materials::Sense;
 use crate::source::Colour;
 use crate::structure::{Layer, Stack};
 use crate::units::wavelength_nm;
+use std::fmt::Write as _;
 
 /// Longer ladders and lists are cut: a page is read, a file is searched.
 const MOST_ROWS: usize = 12;
+
+/// Terms of the budget that most structures do not have are left out below this, eV.
+const SMALLEST_TERM_EV: f64 = 5e-5;
 
 /// What a first design misses by, and why; meV.
 ///
@@ -141,12 +145,17 @@ fn layers(evaluation: &Evaluation<'_>, page: &mut Page) {
 
 fn ladders(evaluation: &Evaluation<'_>, page: &mut Page) {
     page.heading("Levels");
+    let character = if evaluation.mixed.is_some() {
+        numbers("mass, m0, or\nshares %")
+    } else {
+        numbers("in-plane\nmass, m0")
+    };
     let mut table = Table::new([
         words("level"),
         numbers("from edge\nmeV"),
         numbers("energy\neV"),
         numbers("spread\nmeV"),
-        numbers("in-plane\nmass, m0"),
+        character,
         numbers("in wells\n%"),
         numbers("error\nµeV"),
     ]);
@@ -191,7 +200,7 @@ fn ladder_rows(ladder: &Ladder, table: &mut Table, notes: &mut Notes) {
         notes.near_edge |= rung.near_edge;
         let mut name = group.name(ladder.symbol);
         if many {
-            name.push_str(&format!(" (×{})", group.count()));
+            let _ = write!(name, " (×{})", group.count());
         }
         if rung.near_edge {
             name.push_str(" *");
@@ -205,8 +214,7 @@ fn ladder_rows(ladder: &Ladder, table: &mut Table, notes: &mut Notes) {
             } else {
                 String::new()
             },
-            rung.in_plane_mass
-                .map_or(ABSENT.to_owned(), |mass| fixed(mass, 4)),
+            character(rung),
             fixed(100.0 * rung.in_wells, 0),
             significant(1e6 * rung.error_ev, 1),
         ]);
@@ -217,6 +225,25 @@ fn ladder_rows(ladder: &Ladder, table: &mut Table, notes: &mut Notes) {
             ladder.rungs.len() + 1 - next.first,
             fixed(1e3 * ladder.above_edge_ev(last.energy_ev), 1)
         ));
+    }
+}
+
+/// The in-plane mass, or what a mixed state is made of.
+fn character(rung: &Rung) -> String {
+    match (rung.shares, rung.in_plane_mass) {
+        (Some(shares), _) => [
+            (shares.heavy, "hh"),
+            (shares.light, "lh"),
+            (shares.split_off, "so"),
+        ]
+        .into_iter()
+        .map(|(share, name)| (fixed(100.0 * share, 0), name))
+        .filter(|(percent, _)| percent != "0")
+        .map(|(percent, name)| format!("{percent} {name}"))
+        .collect::<Vec<_>>()
+        .join(", "),
+        (None, Some(mass)) => fixed(mass, 4),
+        (None, None) => ABSENT.to_owned(),
     }
 }
 
@@ -272,17 +299,11 @@ fn sum(budget: &Budget, page: &mut Page) {
         numbers("sum\nmeV"),
         numbers("sum as\nwavelength nm"),
     ]);
-    let terms = [
-        ("gap of the well material, unstrained", budget.bulk_gap_ev),
-        ("strain", budget.strain_ev),
-        ("wells that differ from each other", budget.between_wells_ev),
-        ("confinement of the electron", budget.electron_ev),
-        ("confinement of the hole", budget.hole_ev),
-    ];
     let mut so_far_ev = 0.0;
-    for (place, (name, adds_ev)) in terms.into_iter().enumerate() {
+    for (place, (name, adds_ev)) in budget.terms().into_iter().enumerate() {
         so_far_ev += adds_ev;
-        if place == 2 && adds_ev.abs() < 1e-9 {
+        let is_exceptional = matches!(place, 2 | 5);
+        if is_exceptional && adds_ev.abs() < SMALLEST_TERM_EV {
             continue;
         }
         let adds = 1e3 * adds_ev;

@@ -102,15 +102,15 @@ fn describe(description: &Description, page: &mut Page) {
         temperature(description.temperature_k)
     ));
     page.paragraph(2, &description.offsets);
+    let mut table = Table::new([
+        words("quantity"),
+        numbers("value"),
+        words("unit"),
+        words("source"),
+        words("known"),
+    ]);
     for section in &description.sections {
-        page.gap();
-        let mut table = Table::new([
-            words(section.title),
-            numbers("value"),
-            words("unit"),
-            words("source"),
-            words("known"),
-        ]);
+        table.common(section.title);
         for figure in &section.figures {
             let values: Vec<String> = figure
                 .values
@@ -126,8 +126,9 @@ fn describe(description: &Description, page: &mut Page) {
                 figure.statuses.join(" "),
             ]);
         }
-        page.table(&table);
     }
+    page.gap();
+    page.table(&table);
     page.gap();
     let mut table = Table::new([
         words("refractive index, 300 K"),

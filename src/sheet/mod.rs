@@ -1,4 +1,5 @@
-//! Numbers become text here, and nowhere else: pages for a terminal, JSON, comma-separated values.
+//! Numbers become text here, and nowhere else: pages for a terminal, JSON, comma-separated
+//! values, figures.
 //!
 //! Writers read the records of `evaluation` and `design` and compute no physics.
 
@@ -11,6 +12,7 @@ mod materials;
 mod matrix;
 mod number;
 mod page;
+mod picture;
 mod reconcile;
 mod remark;
 mod spectrum;
@@ -18,14 +20,17 @@ mod spread;
 mod stamp;
 mod starting;
 mod table;
+mod xray;
 
 pub use findings::findings;
 pub use levels::levels;
 pub use materials::{descriptions, families};
 pub use matrix::matrix_market;
+pub use picture::{levels_figure, rocking_figure, spectrum_figure};
 pub use reconcile::{Wafer, reconcile};
 pub use remark::{complaint, remark};
 pub use spectrum::spectrum;
 pub use spread::{spread, spread_figure};
 pub use stamp::{Stamp, Switches, sha256};
 pub use starting::starting_structures;
+pub use xray::xray;

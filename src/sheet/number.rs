@@ -35,8 +35,16 @@ pub(super) fn significant(value: f64, digits: usize) -> String {
     if !(1e-3..1e6).contains(&size) {
         return power(value, digits);
     }
-    let before = size.log10().floor() as i32 + 1;
-    let decimals = (digits as i32 - before).max(0) as usize;
+    let mut decimals = digits.saturating_sub(1);
+    let mut scale = size;
+    while scale >= 10.0 {
+        scale /= 10.0;
+        decimals = decimals.saturating_sub(1);
+    }
+    while scale < 1.0 {
+        scale *= 10.0;
+        decimals += 1;
+    }
     fixed(value, decimals)
 }
 
@@ -53,6 +61,34 @@ pub(super) fn power(value: f64, digits: usize) -> String {
             format!("{mantissa}e{exponent}")
         }
         _ => text,
+    }
+}
+
+/// A number as mantissa and power of ten, as it is set in print: `1.704×10¹⁸`, `10¹⁸`.
+pub(super) fn typeset(value: f64, digits: usize) -> String {
+    let text = power(value, digits);
+    let Some((mantissa, exponent)) = text.split_once('e') else {
+        return text;
+    };
+    let raised: String = exponent
+        .chars()
+        .map(|character| match character {
+            '0' => '⁰',
+            '1' => '¹',
+            '2' => '²',
+            '3' => '³',
+            '4' => '⁴',
+            '5' => '⁵',
+            '6' => '⁶',
+            '7' => '⁷',
+            '8' => '⁸',
+            '9' => '⁹',
+            _ => '⁻',
+        })
+        .collect();
+    match mantissa {
+        "1" => format!("10{raised}"),
+        _ => format!("{mantissa}×10{raised}"),
     }
 }
 
@@ -135,6 +171,14 @@ mod tests {
         assert_eq!(power(1.5e18, 4), "1.5e18");
         assert_eq!(power(9.654134e17, 4), "9.654e17");
         assert_eq!(power(1e18, 1), "1e18");
+    }
+
+    #[test]
+    fn powers_are_raised_in_print() {
+        assert_eq!(typeset(1.7041e18, 4), "1.704×10¹⁸");
+        assert_eq!(typeset(1e18, 3), "10¹⁸");
+        assert_eq!(typeset(-2.5e-9, 3), "-2.5×10⁻⁹");
+        assert_eq!(typeset(f64::NAN, 3), ABSENT);
     }
 
     #[test]

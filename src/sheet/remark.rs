@@ -2,6 +2,7 @@
 
 use super::page::{COLUMNS, bold, wrapped};
 use crate::source::Colour;
+use std::fmt::Write as _;
 
 /// A remark with what to do about it, as lines of at most 80 columns.
 ///
@@ -17,7 +18,7 @@ pub fn remark(
 ) -> String {
     let mut words = message.to_owned();
     if let Some((name, line)) = place {
-        words.push_str(&format!(" ({name}, line {line})"));
+        let _ = write!(words, " ({name}, line {line})");
     }
     entry("remark: ", &words, advice, colour)
 }

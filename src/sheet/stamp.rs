@@ -130,6 +130,10 @@ impl Stamp {
             };
             words.push(format!("{}{note}", temperature(kelvin)));
         }
+        words.extend(
+            self.working_density_cm3
+                .map(|density| format!("working density {} cm⁻³", power(density, 6))),
+        );
         words.extend(self.model.iter().flat_map(Switches::words));
         if let Some(seed) = self.seed {
             words.push(format!("seed {seed}"));

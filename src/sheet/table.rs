@@ -63,9 +63,14 @@ impl Table {
     /// The lines of the table, none wider than `width`: where it would be, the widest columns of
     /// words are wrapped.
     pub(super) fn lines(&self, width: usize, colour: Colour) -> Vec<String> {
-        let gap = self.gap(width);
-        let widths = self.widths(width, gap);
-        let total = widths.iter().sum::<usize>() + gap * widths.len().saturating_sub(1);
+        // Rows stand in under what they have in common.
+        let is_divided = self.rows.iter().any(|row| matches!(row, Row::Common(_)));
+        let margin = if is_divided { 2 } else { 0 };
+        let indented = |line: String| format!("{:margin$}{line}", "");
+        let room = width.saturating_sub(margin);
+        let gap = self.gap(room);
+        let widths = self.widths(room, gap);
+        let total = margin + widths.iter().sum::<usize>() + gap * widths.len().saturating_sub(1);
         let heads: Vec<Vec<&str>> = self
             .columns
             .iter()
@@ -80,7 +85,7 @@ impl Table {
                     .checked_sub(height)
                     .map_or("", |index| head[index])
             });
-            lines.push(self.joined(cells, &widths, gap));
+            lines.push(indented(self.joined(cells, &widths, gap)));
         }
         lines.push("─".repeat(total));
         for row in &self.rows {
@@ -88,7 +93,9 @@ impl Table {
                 Row::Common(words) => {
                     lines.extend(wrapped(words, width).iter().map(|line| bold(line, colour)));
                 }
-                Row::Cells(cells) => lines.extend(self.cells(cells, &widths, gap)),
+                Row::Cells(cells) => {
+                    lines.extend(self.cells(cells, &widths, gap).into_iter().map(indented));
+                }
             }
         }
         lines
@@ -176,12 +183,12 @@ mod tests {
         table.common("outside");
         table.row(["barrier".to_owned(), "10.0".to_owned()]);
         let expected = [
-            "         thickness",
-            "layer           nm",
-            "──────────────────",
-            "well           5.5",
+            "           thickness",
+            "  layer           nm",
+            "────────────────────",
+            "  well           5.5",
             "outside",
-            "barrier       10.0",
+            "  barrier       10.0",
         ];
         assert_eq!(table.lines(78, Colour::Never), expected);
     }

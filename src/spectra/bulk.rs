@@ -409,7 +409,9 @@ mod tests {
         let occupation = bulk.occupation(density, 0.02, kt);
         let edge = bulk.gap_ev() - 0.02;
         assert!((occupation.splitting_ev() - edge).abs() < 1e-9);
-        let broad = crate::spectra::landmarks::total_rate_per_cm3_s(&bulk, &occupation);
+        let broad = crate::spectra::landmarks::View::new(&bulk, &occupation)
+            .expect("a transition")
+            .total_rate_per_cm3_s();
         let sharp = bulk.sharp_rate_per_cm3_s(&occupation);
         assert!((broad / sharp - 1.0).abs() < 1e-3, "{broad} {sharp}");
     }

@@ -17,6 +17,7 @@ pub(super) struct StructureFile {
     pub(super) target: Option<TargetTable>,
     pub(super) model: ModelTable,
     pub(super) growth: Field<GrowthTable>,
+    pub(super) limits: Option<LimitsTable>,
 }
 
 pub(super) struct SubstrateTable {
@@ -96,6 +97,20 @@ pub(super) struct TargetTable {
     pub(super) tolerance_nm: Field<f64>,
 }
 
+pub(super) struct LimitsTable {
+    pub(super) strain_percent_max: Field<f64>,
+    pub(super) strain_thickness_percent_nm_max: Field<f64>,
+    pub(super) net_strain_percent_max: Field<f64>,
+    pub(super) critical_share_max: Field<f64>,
+    pub(super) mismatch_ppm_max: Field<f64>,
+    pub(super) layer_nm_min: Field<f64>,
+    pub(super) well_nm_min: Field<f64>,
+    pub(super) barrier_kt_min: Field<f64>,
+    pub(super) coupling_mev_max: Field<f64>,
+    pub(super) acceptor_setback_nm_min: Field<f64>,
+    pub(super) without_elements: Field<String>,
+}
+
 /// The same place with what `convert` makes of the value.
 pub(super) fn map<T, U>(field: Field<T>, convert: impl FnOnce(T) -> U) -> Field<U> {
     field.map(|given| Given {
@@ -143,6 +158,10 @@ impl From<Values> for StructureFile {
                 .and_then(|given| given.value)
                 .map(TargetTable::from),
             growth: map(values.table("growth"), GrowthTable::from),
+            limits: values
+                .table("limits")
+                .and_then(|given| given.value)
+                .map(LimitsTable::from),
         }
     }
 }
@@ -240,6 +259,24 @@ impl From<Values> for TargetTable {
             density_cm3: values.number("density_cm3"),
             tolerance_nm: values.number("tolerance_nm"),
             span: values.span,
+        }
+    }
+}
+
+impl From<Values> for LimitsTable {
+    fn from(mut values: Values) -> Self {
+        Self {
+            strain_percent_max: values.number("strain_percent_max"),
+            strain_thickness_percent_nm_max: values.number("strain_thickness_percent_nm_max"),
+            net_strain_percent_max: values.number("net_strain_percent_max"),
+            critical_share_max: values.number("critical_share_max"),
+            mismatch_ppm_max: values.number("mismatch_ppm_max"),
+            layer_nm_min: values.number("layer_nm_min"),
+            well_nm_min: values.number("well_nm_min"),
+            barrier_kt_min: values.number("barrier_kt_min"),
+            coupling_mev_max: values.number("coupling_mev_max"),
+            acceptor_setback_nm_min: values.number("acceptor_setback_nm_min"),
+            without_elements: values.text("without_elements"),
         }
     }
 }

@@ -164,6 +164,12 @@ pub(super) static FILE: Table = Table {
             default: "none",
             doc: "the wavelength that the structure is meant to have",
         },
+        Key {
+            name: "limits",
+            kind: Kind::Table(&LIMITS),
+            default: "",
+            doc: "limits of the house, for `check`",
+        },
     ],
 };
 
@@ -427,7 +433,7 @@ pub(super) static MODEL: Table = Table {
         Key {
             name: "bands",
             kind: Kind::Word(|| [Bands::Mixed, Bands::Single].map(Bands::word).to_vec()),
-            default: "single",
+            default: "mixed",
             doc: "valence bands mixed, or heavy and light holes each by itself",
         },
         Key {
@@ -516,6 +522,81 @@ pub(super) static TARGET: Table = Table {
             kind: number("nm", (0.001, 1000.0), (0.5, 50.0)),
             default: "none",
             doc: "how far off is still accepted, to either side",
+        },
+    ],
+};
+
+/// Limits of the house.
+pub(super) static LIMITS: Table = Table {
+    path: "limits",
+    doc: "What the house accepts. Every key is optional; a limit is compared where it is given and \
+          never assumed.",
+    keys: &[
+        Key {
+            name: "strain_percent_max",
+            kind: number("%", (0.0, 10.0), (0.1, 3.0)),
+            default: "none",
+            doc: "largest in-plane strain of a layer, either sense",
+        },
+        Key {
+            name: "strain_thickness_percent_nm_max",
+            kind: number("% nm", (0.0, 10_000.0), (1.0, 100.0)),
+            default: "none",
+            doc: "largest product of strain and thickness of a layer",
+        },
+        Key {
+            name: "net_strain_percent_max",
+            kind: number("%", (0.0, 10.0), (0.01, 2.0)),
+            default: "none",
+            doc: "largest mean strain of wells and barriers together",
+        },
+        Key {
+            name: "critical_share_max",
+            kind: number("", (0.0, 100.0), (0.3, 3.0)),
+            default: "none",
+            doc: "largest share of the critical thickness by force balance that a layer may use",
+        },
+        Key {
+            name: "mismatch_ppm_max",
+            kind: number("ppm", (0.0, 100_000.0), (100.0, 5_000.0)),
+            default: "none",
+            doc: "largest relaxed mismatch of buffer, cladding, contact and cap, either sense",
+        },
+        Key {
+            name: "layer_nm_min",
+            kind: number("nm", (0.0, 1_000.0), (0.2, 20.0)),
+            default: "none",
+            doc: "thinnest layer that the grower controls",
+        },
+        Key {
+            name: "well_nm_min",
+            kind: number("nm", (0.0, 1_000.0), (0.5, 20.0)),
+            default: "none",
+            doc: "thinnest well",
+        },
+        Key {
+            name: "barrier_kt_min",
+            kind: number("kT", (0.0, 1_000.0), (1.0, 20.0)),
+            default: "4, common practice",
+            doc: "least height of the barriers above the first level, at the working temperature",
+        },
+        Key {
+            name: "coupling_mev_max",
+            kind: number("meV", (0.0, 1_000.0), (0.1, 50.0)),
+            default: "none; above 2 it is remarked",
+            doc: "widest spread of the first level over equal wells",
+        },
+        Key {
+            name: "acceptor_setback_nm_min",
+            kind: number("nm", (0.0, 100_000.0), (5.0, 1_000.0)),
+            default: "none",
+            doc: "least distance from the wells to a layer with acceptors",
+        },
+        Key {
+            name: "without_elements",
+            kind: Kind::Text,
+            default: "none",
+            doc: "elements that no layer may hold, by symbol: \"Al, Sb\"",
         },
     ],
 };

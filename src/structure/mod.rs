@@ -10,6 +10,7 @@ mod growth;
 mod keys;
 mod layers;
 mod ledger;
+mod limits;
 mod magnitude;
 mod manuscript;
 mod number;
@@ -28,6 +29,7 @@ mod write;
 
 pub use growth::{Fluxes, GROUP_III, Growth};
 pub use ledger::{Ledger, LedgerEntry};
+pub use limits::Limits;
 pub use magnitude::{Refusal, check_magnitude, thickness_range_nm};
 pub use manuscript::{Condition, Form, Manuscript, Selection};
 pub use photoluminescence_map::{MapPoint, PhotoluminescenceMap};

@@ -1,7 +1,7 @@
 //! The validated stack: what the file said, checked, expanded, in the trade's units.
 
-use super::Growth;
-use crate::materials::{Composition, Crystal};
+use super::{Growth, Limits};
+use crate::materials::{Composition, Crystal, Offsets, Parameters};
 
 /// What a layer is made of.
 #[derive(Clone, Copy, Debug, PartialEq)]
@@ -15,6 +15,31 @@ pub enum Substance {
         /// Its refractive index, where the file gives one.
         index: Option<f64>,
     },
+}
+
+impl Substance {
+    /// Its numbers at a temperature; own numbers hold at every temperature and under every rule.
+    #[must_use]
+    pub fn crystal(
+        &self,
+        parameters: &Parameters,
+        temperature_k: f64,
+        offsets: Offsets,
+    ) -> Crystal {
+        match self {
+            Self::Alloy(composition) => parameters.crystal(composition, temperature_k, offsets),
+            Self::Own { crystal, .. } => *crystal,
+        }
+    }
+
+    /// Its composition, where it has one.
+    #[must_use]
+    pub fn composition(&self) -> Option<&Composition> {
+        match self {
+            Self::Alloy(composition) => Some(composition),
+            Self::Own { .. } => None,
+        }
+    }
 }
 
 /// A substance under the name that the file gives it.
@@ -142,6 +167,17 @@ pub struct Layer {
     pub row: usize,
 }
 
+impl Layer {
+    /// The materials at its substrate-side and its surface-side end: the same where it is uniform.
+    #[must_use]
+    pub fn ends(&self) -> [&Material; 2] {
+        [
+            &self.material,
+            self.grade_to.as_ref().unwrap_or(&self.material),
+        ]
+    }
+}
+
 /// Temperature and densities.
 #[derive(Clone, Debug, PartialEq)]
 pub struct Operation {
@@ -225,7 +261,7 @@ pub struct Model {
 impl Default for Model {
     fn default() -> Self {
         Self {
-            bands: Bands::Single,
+            bands: Bands::Mixed,
             nonparabolic: true,
             lineshape: Lineshape::Sech,
             intraband_fs: 100.0,
@@ -331,6 +367,8 @@ pub struct Stack {
     pub target: Option<Target>,
     /// Errors of growth, where the file states them.
     pub growth: Option<Growth>,
+    /// Limits of the house, where the file gives any.
+    pub limits: Option<Limits>,
 }
 
 impl Stack {

@@ -8,7 +8,8 @@ use super::number::shown;
 use super::palette::Palette;
 use super::reader::{Field, Findings, Given};
 use super::{
-    Bands, Lineshape, Medium, Model, Operation, Overrides, Remark, Stack, Target, Wavelength,
+    Bands, Limits, Lineshape, Medium, Model, Operation, Overrides, Remark, Stack, Target,
+    Wavelength,
 };
 use crate::materials::Parameters;
 use crate::source::Diagnostic;
@@ -38,6 +39,10 @@ pub(super) fn stack(
         .target
         .as_ref()
         .and_then(|table| target(table, findings));
+    let limits = file
+        .limits
+        .as_ref()
+        .map(|table| Limits::of(table, findings));
     let (palette, substrate) = Palette::of(file, text, parameters, findings);
     let mut reading = Layers::new(palette, parameters, operation.temperature_k);
     let layers = reading.expanded(file.layers.as_ref(), findings);
@@ -64,6 +69,7 @@ pub(super) fn stack(
         model,
         target,
         growth,
+        limits,
     })
 }
 

@@ -33,6 +33,22 @@ pub fn write(stack: &Stack) -> String {
     if let Some(growth) = &stack.growth {
         growth::write(growth, &mut text);
     }
+    if let Some(limits) = &stack.limits {
+        text.push_str("\n[limits]\n");
+        for (key, value) in limits.numbers() {
+            if let Some(value) = value {
+                let _ = writeln!(text, "{key} = {}", exact(value));
+            }
+        }
+        if !limits.without_elements.is_empty() {
+            let symbols: Vec<&str> = limits
+                .without_elements
+                .iter()
+                .map(|it| it.symbol())
+                .collect();
+            let _ = writeln!(text, "without_elements = {}", quoted(&symbols.join(", ")));
+        }
+    }
     text
 }
 

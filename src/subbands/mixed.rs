@@ -2,9 +2,10 @@
 
 use rayon::prelude::*;
 
-use super::{CLUSTER_EV, COARSEST_STEP_NM, Nodes, SingleBands, Uncertified};
+use super::single::limit;
+use super::{Band, CLUSTER_EV, COARSEST_STEP_NM, Level, Nodes, SingleBands, Uncertified};
 use crate::numerics::block::{BlockChain, BlockRun, Ladder, Three};
-use crate::profile::{Cells, Profile};
+use crate::profile::{Cells, Profile, Strained};
 use crate::units::HBAR2_OVER_2M0_EV_NM2;
 
 /// Steps of the in-plane wave number, 1/nm, and up to where each is taken: small enough to follow
@@ -38,6 +39,8 @@ pub struct ZoneCentre {
     pub error_ev: f64,
     /// Share inside the wells and the steps that belong to them.
     pub in_wells: f64,
+    /// Whether it lies within [`super::NEAR_EDGE_EV`] of the edge that confines it.
+    pub near_edge: bool,
 }
 
 /// Squared momentum matrix elements of one electron level and one valence state, in M_b² = m₀E_p/6,
@@ -95,8 +98,44 @@ pub struct MixedBands {
     pub k_per_nm: Vec<f64>,
     /// One block counted twice where the stack is its own mirror image, else the two blocks.
     pub blocks: Vec<Vec<Slice>>,
-    /// How many states each block stands for: 2 where one is counted twice.
+    /// How many states each block stands for: 2 where one is counted twice, times the number of
+    /// equal wells that were solved as one.
     pub degeneracy: f64,
+    /// How many equal, uncoupled wells were solved as one.
+    pub equal_wells: usize,
+    /// Electron levels that the matrix elements of the slices belong to.
+    pub electron: Vec<Level>,
+}
+
+impl MixedBands {
+    /// The bands of `wells` equal wells that do not feel each other, from those of one: every
+    /// zone-centre state stands once a well, and an overlap is shared evenly among the pairs, since
+    /// only sums over equal wells mean anything. The slices stay those of one well.
+    #[must_use]
+    pub fn of_equal_wells(self, wells: usize) -> Self {
+        let each = |row: &[f64]| -> Vec<f64> {
+            row.iter()
+                .flat_map(|overlap| std::iter::repeat_n(overlap / wells as f64, wells))
+                .collect()
+        };
+        let zone_centre = self
+            .zone_centre
+            .iter()
+            .flat_map(|state| std::iter::repeat_n(*state, wells))
+            .collect();
+        let overlaps = self
+            .overlaps
+            .iter()
+            .flat_map(|row| std::iter::repeat_n(each(row), wells))
+            .collect();
+        Self {
+            zone_centre,
+            overlaps,
+            degeneracy: self.degeneracy * wells as f64,
+            equal_wells: wells,
+            ..self
+        }
+    }
 }
 
 /// The valence states that belong to the wells, heavy, light and split-off holes mixed.
@@ -213,6 +252,8 @@ pub fn mixed(
         k_per_nm: wave_numbers()[..steps].to_vec(),
         degeneracy: if blocks.len() == 1 { 2.0 } else { 1.0 },
         blocks,
+        equal_wells: 1,
+        electron: single.electron.clone(),
     })
 }
 
@@ -304,7 +345,10 @@ impl Grid {
     /// Sets the forms of a block at an in-plane wave number.
     fn set(&self, chain: &mut BlockChain, k_per_nm: f64, sign: f64) {
         for (run, cell) in chain.runs_mut().iter_mut().zip(&self.cells) {
-            set_forms(run, cell, k_per_nm, sign);
+            *run = BlockRun {
+                intervals: cell.intervals,
+                ..interval(&cell.numbers, cell.tilt_ev, cell.length_nm, k_per_nm, sign)
+            };
         }
     }
 
@@ -332,6 +376,7 @@ impl Grid {
             split_off,
             error_ev: 0.0,
             in_wells,
+            near_edge: false,
         }
     }
 
@@ -356,18 +401,34 @@ impl Grid {
     }
 }
 
-/// The forms of one interval, upside down (hole energies).
-fn set_forms(run: &mut BlockRun, cell: &Cells, k: f64, s: f64) {
+/// The forms of one interval of uniform material, upside down: hole energies count upwards.
+///
+/// # Arguments
+///
+/// * `numbers` – material and edges of the interval
+/// * `tilt_ev` – potential energy of an electron in a field at its middle, eV
+/// * `length_nm` – its length, nm
+/// * `k_per_nm` – in-plane wave number, 1/nm
+/// * `sign` – +1 or −1, which of the two blocks
+#[must_use]
+pub fn interval(
+    numbers: &Strained,
+    tilt_ev: f64,
+    length_nm: f64,
+    k_per_nm: f64,
+    sign: f64,
+) -> BlockRun {
     use std::f64::consts::SQRT_2;
     const SQRT_3: f64 = 1.732_050_807_568_877_2;
     const SQRT_6: f64 = 2.449_489_742_783_178;
+    let (k, s) = (k_per_nm, sign);
     let unit = HBAR2_OVER_2M0_EV_NM2;
-    let [g1, g2, g3] = cell.numbers.crystal.luttinger;
+    let [g1, g2, g3] = numbers.crystal.luttinger;
     let axial = 0.5 * (g2 + g3);
     let minus = -(g1 - 2.0 * g2) - 1.0;
     let plus = -6.0 * g3 - minus;
-    let edges = &cell.numbers.edges;
-    let mean = edges.valence_mean_ev + cell.tilt_ev;
+    let edges = &numbers.edges;
+    let mean = edges.valence_mean_ev + tilt_ev;
     let (shear, k2) = (edges.shear_ev, k * k);
     let spike = s * k / 3.0 * (plus - minus) * unit;
     let mixing = s * k / (3.0 * SQRT_2) * unit;
@@ -394,7 +455,7 @@ fn set_forms(run: &mut BlockRun, cell: &Cells, k: f64, s: f64) {
         (
             2,
             2,
-            mean - cell.numbers.crystal.split_off_ev - unit * g1 * k2,
+            mean - numbers.crystal.split_off_ev - unit * g1 * k2,
             unit * g1,
             0.0,
             0.0,
@@ -428,7 +489,15 @@ fn set_forms(run: &mut BlockRun, cell: &Cells, k: f64, s: f64) {
             0.0,
         ),
     ];
-    let dz = run.length;
+    let dz = length_nm;
+    let empty: Three = [[0.0; 3]; 3];
+    let mut run = BlockRun {
+        intervals: 1,
+        length: dz,
+        lower: empty,
+        upper: empty,
+        coupling: empty,
+    };
     for (a, b, c0, c2, cp, cm, cd) in entries {
         let even = 0.5 * c0 * dz - c2 / dz;
         let odd = 0.5 * (cp - cm) - cd;
@@ -442,13 +511,17 @@ fn set_forms(run: &mut BlockRun, cell: &Cells, k: f64, s: f64) {
             run.coupling[b][a] = -(c2 / dz - slope);
         }
     }
+    run
 }
 
 /// Zone-centre states that belong to the wells, and the ladders to follow from.
 struct Centre {
     states: Vec<ZoneCentre>,
-    /// Index of each state in the ladders.
-    places: Vec<usize>,
+    /// Index of each state in the three ladders.
+    places: Vec<[usize; 3]>,
+    /// Whether states are followed by their character: in a field box states stand between them, and
+    /// only the order of all states could be certified by counting.
+    by_character: bool,
     ladders: Vec<Ladder>,
 }
 
@@ -463,7 +536,6 @@ impl Centre {
             .outside()
             .map(|n| n.edges.light_ev)
             .fold(f64::NEG_INFINITY, f64::max);
-        let lowest = heavy_edge.min(light_edge);
         let mut chains: Vec<BlockChain> = grids
             .iter()
             .map(|grid| {
@@ -472,55 +544,67 @@ impl Centre {
                 chain
             })
             .collect();
-        let wanted = chains[2].count_below(-lowest + 1e-3);
+        // Hole energies between which states may belong to the wells.
+        let (low, high) = if in_field {
+            let bottom = grids[2]
+                .cells
+                .iter()
+                .filter(|cell| profile.sections[cell.section].in_wells)
+                .map(|cell| {
+                    let edges = &cell.numbers.edges;
+                    -(edges.heavy_ev.max(edges.light_ev) + cell.tilt_ev)
+                })
+                .fold(f64::INFINITY, f64::min);
+            let top = limit(profile, Band::Heavy).max(limit(profile, Band::Light));
+            (bottom, top)
+        } else {
+            (grids[2].floor, -heavy_edge.min(light_edge) + 1e-3)
+        };
+        let wanted = chains[2].count_below(low)..chains[2].count_below(high);
         let ladders: Vec<Ladder> = chains
             .iter_mut()
             .zip(grids)
             .map(|(chain, grid)| {
-                chain
-                    .lowest(wanted, grid.floor)
-                    .map_err(|e| uncertified(e, 0.0))
+                if in_field {
+                    // A coarser grid may put the first of them a little lower.
+                    chain.levels(wanted.clone(), low - 0.05)
+                } else {
+                    chain.lowest(wanted.end, grid.floor)
+                }
+                .map_err(|error| uncertified(error, 0.0))
             })
             .collect::<Result<_, _>>()?;
-        // At k = 0 the heavy hole stands alone: heavy states and the others cross freely from grid to
-        // grid, so that each family is numbered by itself.
-        let families: Vec<[Vec<usize>; 2]> = ladders
-            .iter()
-            .zip(grids)
-            .map(|(ladder, grid)| {
-                let (heavy, other) =
-                    (0..wanted).partition(|&index| grid.shares(&ladder.vectors[index]).heavy > 0.5);
-                [heavy, other]
-            })
-            .collect();
-        let mut found: Vec<(ZoneCentre, usize)> = Vec::new();
-        for (family, edge) in [(0, heavy_edge), (1, light_edge)] {
-            let members = families
-                .iter()
-                .map(|grid| grid[family].len())
-                .min()
-                .unwrap_or(0);
-            for member in 0..members {
-                let [coarse, middle, fine] =
-                    [0, 1, 2].map(|grid| ladders[grid].energies[families[grid][family][member]]);
-                let first = middle + (middle - coarse) / 3.0;
-                let second = fine + (fine - middle) / 3.0;
-                let energy_ev = -(second + (second - first) / 15.0);
-                let place = families[2][family][member];
-                let shares = grids[2].shares(&ladders[2].vectors[place]);
-                let belongs = if in_field {
-                    shares.in_wells > 0.5
-                } else {
-                    energy_ev > edge
-                };
-                if belongs {
-                    let state = ZoneCentre {
+        let places = if in_field {
+            same_by_likeness(grids, &ladders)
+        } else {
+            same_by_family(grids, &ladders)
+        };
+        let mut found: Vec<(ZoneCentre, [usize; 3])> = Vec::new();
+        for place in places {
+            let [coarse, middle, fine] = [0, 1, 2].map(|grid| ladders[grid].energies[place[grid]]);
+            let first = middle + (middle - coarse) / 3.0;
+            let second = fine + (fine - middle) / 3.0;
+            let energy_ev = -(second + (second - first) / 15.0);
+            let shares = grids[2].shares(&ladders[2].vectors[place[2]]);
+            let edge = if shares.heavy > 0.5 {
+                heavy_edge
+            } else {
+                light_edge
+            };
+            if (in_field && shares.in_wells > 0.5 && shares.split_off < 0.5)
+                || (!in_field && energy_ev > edge)
+            {
+                let error_ev = (second - first).abs() / 15.0 + 1e-9;
+                let near_edge = !in_field && energy_ev - edge < super::NEAR_EDGE_EV;
+                found.push((
+                    ZoneCentre {
                         energy_ev,
-                        error_ev: (second - first).abs() / 15.0 + 1e-9,
+                        error_ev,
+                        near_edge,
                         ..shares
-                    };
-                    found.push((state, place));
-                }
+                    },
+                    place,
+                ));
             }
         }
         found.sort_by(|a, b| b.0.energy_ev.total_cmp(&a.0.energy_ev));
@@ -528,6 +612,7 @@ impl Centre {
         Ok(Self {
             states,
             places,
+            by_character: in_field,
             ladders,
         })
     }
@@ -547,13 +632,13 @@ impl Centre {
                     .iter()
                     .map(|&place| {
                         let fine = grids[2]
-                            .projection(&level.envelope, &self.ladders[2].vectors[place])
+                            .projection(&level.envelope, &self.ladders[2].vectors[place[2]])
                             .overlap();
                         let coarse = grids[1]
-                            .projection(&level.coarser, &self.ladders[1].vectors[place])
+                            .projection(&level.coarser, &self.ladders[1].vectors[place[1]])
                             .overlap();
                         let single_choice = level.is_alone()
-                            && !crowded(&self.ladders[2].energies, place)
+                            && !crowded(&self.ladders[2].energies, place[2])
                             && fine > 1e-6;
                         let overlap = if single_choice {
                             fine + (fine - coarse) / 3.0
@@ -566,6 +651,60 @@ impl Centre {
             })
             .collect()
     }
+}
+
+/// Places of one state in the ladders of the three grids, state by state. At k = 0 the heavy hole
+/// stands alone: heavy states and the others cross freely from grid to grid, so that each family is
+/// numbered by itself.
+fn same_by_family(grids: &[Grid], ladders: &[Ladder]) -> Vec<[usize; 3]> {
+    let families: Vec<[Vec<usize>; 2]> = ladders
+        .iter()
+        .zip(grids)
+        .map(|(ladder, grid)| {
+            let (heavy, other) = (0..ladder.energies.len())
+                .partition(|&index| grid.shares(&ladder.vectors[index]).heavy > 0.5);
+            [heavy, other]
+        })
+        .collect();
+    (0..2)
+        .flat_map(|family| {
+            let members = families
+                .iter()
+                .map(|grid| grid[family].len())
+                .min()
+                .unwrap_or(0);
+            let families = &families;
+            (0..members)
+                .map(move |member| [0, 1, 2].map(|grid: usize| families[grid][family][member]))
+        })
+        .collect()
+}
+
+/// The same where states are picked from the middle of the order: by the likeness of their vectors.
+fn same_by_likeness(grids: &[Grid], ladders: &[Ladder]) -> Vec<[usize; 3]> {
+    // Every second node of a grid is one of the grid before it.
+    let likest = |grid: usize, fine: &[f64], stride: usize| {
+        let likeness = |vector: &[f64]| -> f64 {
+            vector
+                .chunks_exact(3)
+                .zip(fine.chunks_exact(3).skip(stride - 1).step_by(stride))
+                .zip(&grids[grid].nodes.weights_nm)
+                .map(|((a, b), weight)| weight * (a[0] * b[0] + a[1] * b[1] + a[2] * b[2]))
+                .sum::<f64>()
+                .abs()
+        };
+        let ladder = &ladders[grid];
+        (0..ladder.vectors.len())
+            .max_by(|&a, &b| likeness(&ladder.vectors[a]).total_cmp(&likeness(&ladder.vectors[b])))
+            .unwrap_or(0)
+    };
+    (0..ladders[2].energies.len())
+        .filter(|&index| grids[2].shares(&ladders[2].vectors[index]).in_wells > 0.5)
+        .map(|index| {
+            let fine = &ladders[2].vectors[index];
+            [likest(0, fine, 4), likest(1, fine, 2), index]
+        })
+        .collect()
 }
 
 fn uncertified(error: crate::numerics::block::Uncertified, k_per_nm: f64) -> Uncertified {
@@ -594,11 +733,25 @@ fn follow(
     const GUARDS: usize = 2;
     let count = centre.states.len();
     let start = &centre.ladders[which];
-    let kept = (count + GUARDS).min(start.energies.len()).max(count);
+    let picked: Vec<usize> = if centre.by_character {
+        centre.places.iter().map(|place| place[which]).collect()
+    } else {
+        (0..(count + GUARDS).min(start.energies.len())).collect()
+    };
     let mut chain = grid.chain();
     let mut ladder = Ladder {
-        energies: start.energies[..kept].to_vec(),
-        vectors: start.vectors[..kept].to_vec(),
+        energies: picked.iter().map(|&index| start.energies[index]).collect(),
+        vectors: picked
+            .iter()
+            .map(|&index| start.vectors[index].clone())
+            .collect(),
+    };
+    let hold = |chain: &mut BlockChain, ladder: &mut Ladder| {
+        if centre.by_character {
+            chain.pursue(ladder, grid.floor)
+        } else {
+            chain.follow(ladder, count, grid.floor)
+        }
     };
     let mut before = ladder.clone();
     let mut track = Vec::new();
@@ -629,9 +782,34 @@ fn follow(
         };
         grid.set(&mut chain, to, sign);
         let mut next = ahead(&chain, &before, &ladder, ratio);
-        if !chain.follow(&mut next, count, grid.floor) {
-            next = creep(grid, &mut chain, sign, count, &ladder, (from, to))
-                .map_err(|error| uncertified(error, to))?;
+        if !hold(&mut chain, &mut next) {
+            // Smaller and smaller steps, then from nothing where even these lose the states.
+            let crept = [2u32, 4, 8].into_iter().find_map(|parts| {
+                let mut crept = ladder.clone();
+                (1..=parts)
+                    .all(|part| {
+                        let k = from + (to - from) * f64::from(part) / f64::from(parts);
+                        grid.set(&mut chain, k, sign);
+                        hold(&mut chain, &mut crept)
+                    })
+                    .then_some(crept)
+            });
+            grid.set(&mut chain, to, sign);
+            next = match crept {
+                Some(crept) => crept,
+                None if centre.by_character => {
+                    let energy_ev = -ladder.energies[0];
+                    return Err(Uncertified {
+                        band: "valence in-plane",
+                        level: 1,
+                        energy_ev,
+                    });
+                }
+                None => chain
+                    .lowest(ladder.energies.len(), grid.floor)
+                    .or_else(|_| chain.lowest(count, grid.floor))
+                    .map_err(|error| uncertified(error, to))?,
+            };
         }
         before = std::mem::replace(&mut ladder, next);
         track.push(slice(&ladder));
@@ -640,33 +818,6 @@ fn follow(
         }
     }
     Ok(track)
-}
-
-/// From the ladder at one wave number to that at the next in smaller and smaller steps, and from
-/// nothing where even these do not keep hold of the states.
-fn creep(
-    grid: &Grid,
-    chain: &mut BlockChain,
-    sign: f64,
-    count: usize,
-    start: &Ladder,
-    (from, to): (f64, f64),
-) -> Result<Ladder, crate::numerics::block::Uncertified> {
-    for parts in [2, 4] {
-        let mut ladder = start.clone();
-        let kept_hold = (1..=parts).all(|part| {
-            let k = from + (to - from) * f64::from(part) / f64::from(parts);
-            grid.set(chain, k, sign);
-            chain.follow(&mut ladder, count, grid.floor)
-        });
-        if kept_hold {
-            return Ok(ladder);
-        }
-    }
-    grid.set(chain, to, sign);
-    chain
-        .lowest(start.energies.len(), grid.floor)
-        .or_else(|_| chain.lowest(count, grid.floor))
 }
 
 /// Energies and vectors continued in a straight line through two slices, `ratio` being the step to

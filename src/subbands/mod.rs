@@ -3,7 +3,7 @@
 mod mixed;
 mod single;
 
-pub use mixed::{Dipole, MixedBands, Slice, ZoneCentre, mixed};
+pub use mixed::{Dipole, MixedBands, Slice, ZoneCentre, interval, mixed};
 pub use single::{Band, Hamiltonian, Level, Overlaps, SingleBands, hamiltonian, single};
 
 use crate::profile::{Cells, Profile};

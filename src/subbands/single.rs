@@ -4,7 +4,7 @@ use super::{
     CLUSTER_EV, COARSEST_STEP_NM, LARGEST_MASS_CORRECTION, MOST_HALVINGS, NEAR_EDGE_EV, Nodes,
     Uncertified, WANTED_ERROR_EV,
 };
-use crate::numerics::chain::{Chain, LEAST_SOFTENING_FACTOR, Run};
+use crate::numerics::chain::{Chain, LEAST_SOFTENING_FACTOR, Run, Workspace};
 use crate::profile::{Cells, Profile, Section, Strained};
 use crate::units::HBAR2_OVER_2M0_EV_NM2;
 
@@ -102,10 +102,10 @@ impl Level {
 /// Levels of the three bands on common nodes.
 #[derive(Clone, Debug, Default, PartialEq)]
 pub struct SingleBands {
-    /// How often the coarsest step was halved to make the finest grid.
-    pub halvings: u32,
     /// Nodes of the envelopes.
     pub nodes: Nodes,
+    /// How often the coarsest step was halved for `nodes`.
+    pub(super) halvings: u32,
     /// Nodes of twice the step.
     pub(super) coarser: Nodes,
     /// Electron levels, rising.
@@ -207,18 +207,19 @@ impl SingleBands {
 /// D. A. Kleinman, Phys. Rev. B 35, 7770 (1987).
 pub fn single(profile: &Profile<'_>, nonparabolic: bool) -> Result<SingleBands, Uncertified> {
     let mut finest = 2;
+    let mut work = Workspace::default();
     loop {
         let grids: Vec<Vec<Cells>> = (finest - 2..=finest)
             .map(|halvings| profile.grid(COARSEST_STEP_NM, halvings))
             .collect();
-        let ladder = |band| levels(profile, &grids, band, nonparabolic);
+        let mut ladder = |band| levels(&mut work, profile, &grids, band, nonparabolic);
         let bands = SingleBands {
-            halvings: finest,
             electron: ladder(Band::Electron)?,
             heavy: ladder(Band::Heavy)?,
             light: ladder(Band::Light)?,
             nodes: Nodes::of(profile, &grids[2]),
             coarser: Nodes::of(profile, &grids[1]),
+            halvings: finest,
         };
         let settled = [&bands.electron, &bands.heavy, &bands.light]
             .into_iter()
@@ -301,7 +302,7 @@ fn chain(cells: &[Cells], band: Band, nonparabolic: bool) -> Chain {
 }
 
 /// Energy (counted upwards from the band edge) up to which levels are looked for.
-fn limit(profile: &Profile<'_>, band: Band) -> f64 {
+pub(super) fn limit(profile: &Profile<'_>, band: Band) -> f64 {
     let edges = profile
         .outside()
         .map(|numbers| band.sign() * band.edge_ev(numbers));
@@ -325,6 +326,7 @@ fn limit(profile: &Profile<'_>, band: Band) -> f64 {
 }
 
 fn levels(
+    work: &mut Workspace,
     profile: &Profile<'_>,
     grids: &[Vec<Cells>],
     band: Band,
@@ -346,8 +348,9 @@ fn levels(
         level: error.level,
         energy_ev: band.sign() * error.energy,
     };
-    let solve =
-        |chain: &Chain, guesses: Option<&[f64]>| chain.lowest(count, guesses).map_err(uncertified);
+    let mut solve = |chain: &Chain, guesses: Option<&[f64]>| {
+        chain.lowest(work, count, guesses).map_err(uncertified)
+    };
     let energies = |states: &[crate::numerics::chain::State]| -> Vec<f64> {
         states.iter().map(|state| state.energy).collect()
     };

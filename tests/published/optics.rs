@@ -7,7 +7,7 @@ use serde::Deserialize;
 use std::f64::consts::PI;
 use stepwell::carriers::{Reservoir, Subband};
 use stepwell::materials::Parameters;
-use stepwell::spectra::landmarks::{gain_peak, logarithmic_fit, total_rate_per_cm3_s};
+use stepwell::spectra::landmarks::{View, logarithmic_fit};
 use stepwell::spectra::{Bulk, Emitter, Hole, Line, Occupation, Pair, Staircase};
 use stepwell::structure::Lineshape;
 use stepwell::units::{ELEMENTARY_CHARGE_C, HBAR2_OVER_2M0_EV_NM2, thermal_ev};
@@ -186,7 +186,9 @@ impl Problem for PairProblem {
                     ..SHARP
                 });
                 let occupation = self.occupation()?;
-                total_rate_per_cm3_s(&narrow, &occupation)
+                View::new(&narrow, &occupation)
+                    .ok_or("no transition")?
+                    .total_rate_per_cm3_s()
                     / narrow.sharp_rate_per_cm3_s(&occupation)
             }
             "filled_rate_per_s" => self.filled_rate_per_s()?,
@@ -245,7 +247,8 @@ impl Problem for BulkProblem {
                     .into_iter()
                     .filter_map(|density| {
                         let occupation = bulk.occupation(density, 0.0, kt);
-                        let peak = gain_peak(&bulk, &occupation, |point| point.te_gain_cm)?;
+                        let view = View::new(&bulk, &occupation)?;
+                        let peak = view.gain_peak(|point| point.te_gain_cm)?;
                         Some((density, peak.height))
                     })
                     .collect();

@@ -42,7 +42,7 @@ mod plot;
 mod scene;
 mod svg;
 #[cfg(test)]
-mod tests;
+pub(crate) mod tests;
 
 pub use panel::{
     Area, Axis, Curve, Dash, Figure, Ink, Joint, Key, Mark, Naming, Note, Panel, Place, Row, Rule,

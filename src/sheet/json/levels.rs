@@ -21,8 +21,8 @@ struct Document<'a> {
     heavy_hole: Vec<LevelEntry>,
     light_hole: Vec<LevelEntry>,
     /// Of mixed bands only, like the dispersion.
-    valence: [(); 0],
-    dispersion: [(); 0],
+    valence: Vec<StateEntry>,
+    dispersion: Vec<DispersionEntry>,
     transitions: Vec<TransitionEntry<'a>>,
     emission: EmissionEntry,
 }
@@ -72,6 +72,21 @@ struct LevelEntry {
 }
 
 #[derive(Serialize)]
+struct StateEntry {
+    level: usize,
+    energy_ev: f64,
+    heavy: Option<f64>,
+    light: Option<f64>,
+    split_off: Option<f64>,
+}
+
+#[derive(Serialize)]
+struct DispersionEntry {
+    k_per_nm: f64,
+    energy_ev: Vec<f64>,
+}
+
+#[derive(Serialize)]
 struct TransitionEntry<'a> {
     electron: usize,
     hole: &'a str,
@@ -80,6 +95,10 @@ struct TransitionEntry<'a> {
     overlap: f64,
 }
 
+#[expect(
+    clippy::struct_field_names,
+    reason = "they are the keys of the document"
+)]
 #[derive(Serialize)]
 struct EmissionEntry {
     first_transition_nm: f64,
@@ -92,11 +111,13 @@ struct EmissionEntry {
 #[must_use]
 pub fn levels(evaluation: &Evaluation<'_>, stamp: &Stamp) -> String {
     let stack = evaluation.stack;
-    let ladders = evaluation.ladders();
+    let ladders = evaluation.single_ladders();
     let ladder = |symbol| {
         let found = ladders.iter().find(|ladder| ladder.symbol == symbol);
         found.map(entries).unwrap_or_default()
     };
+    let filled = evaluation.ladders();
+    let valence = filled.iter().find(|ladder| ladder.symbol == "v");
     super::text(&Document {
         format: FORMAT,
         stamp,
@@ -116,8 +137,15 @@ pub fn levels(evaluation: &Evaluation<'_>, stamp: &Stamp) -> String {
         electron: ladder("e"),
         heavy_hole: ladder("hh"),
         light_hole: ladder("lh"),
-        valence: [],
-        dispersion: [],
+        valence: valence.map(states).unwrap_or_default(),
+        dispersion: evaluation
+            .dispersion()
+            .into_iter()
+            .map(|(k_per_nm, energy_ev)| DispersionEntry {
+                k_per_nm,
+                energy_ev,
+            })
+            .collect(),
         transitions: evaluation
             .transitions
             .iter()
@@ -137,6 +165,21 @@ fn entries(ladder: &Ladder) -> Vec<LevelEntry> {
             energy_ev: rung.energy_ev,
             in_plane_mass: rung.in_plane_mass,
             error_ev: rung.error_ev,
+        })
+        .collect()
+}
+
+fn states(ladder: &Ladder) -> Vec<StateEntry> {
+    ladder
+        .rungs
+        .iter()
+        .enumerate()
+        .map(|(index, rung)| StateEntry {
+            level: index + 1,
+            energy_ev: rung.energy_ev,
+            heavy: rung.shares.map(|shares| shares.heavy),
+            light: rung.shares.map(|shares| shares.light),
+            split_off: rung.shares.map(|shares| shares.split_off),
         })
         .collect()
 }

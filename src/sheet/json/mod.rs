@@ -10,6 +10,7 @@ mod materials;
 mod reconcile;
 mod spectrum;
 mod spread;
+mod xray;
 
 pub use findings::findings;
 pub use levels::levels;
@@ -17,6 +18,7 @@ pub use materials::{descriptions, families};
 pub use reconcile::reconcile;
 pub use spectrum::spectrum;
 pub use spread::spread;
+pub use xray::xray;
 
 use serde::Serialize;
 

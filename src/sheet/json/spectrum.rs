@@ -64,6 +64,10 @@ struct RunEntry<'a> {
     spontaneous_per_ev_cm3_s: Vec<f64>,
 }
 
+#[expect(
+    clippy::struct_field_names,
+    reason = "they are the keys of the document"
+)]
 #[derive(Serialize)]
 struct PeakEntry {
     peak_gain_cm: Option<f64>,

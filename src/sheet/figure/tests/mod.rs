@@ -13,7 +13,7 @@ use scene::Shape;
 use examples::{band_figure, spectrum_figure};
 
 /// Everything that holds for every figure, whatever is in it.
-fn assert_in_order(figure: &Figure) {
+pub(crate) fn assert_in_order(figure: &Figure) {
     // Sums of lengths may differ in the last digits.
     const HAIR_PX: f64 = 1e-6;
     let mut layout = figure.layout();
