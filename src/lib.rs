@@ -17,6 +17,7 @@
 //! | 0 | [`numerics`] | tridiagonal eigenproblems, roots, quadrature, Fermi integrals; no physics |
 //! | 0 | [`source`] | text with places: what is wrong in a file, where, and how to mend it |
 //! | 1 | [`materials`] | parameter data with their citations, alloys, temperature, strain law, index of refraction |
+//! | 2 | [`restatement`] | one quantity said another way |
 //! | 2 | [`structure`] | the structure file, and the validated stack that all others use |
 //! | 3 | [`profile`] | band edges and masses along the stack |
 //! | 3 | [`coherence`] | strain budget: critical thickness, balance of strains |
@@ -45,6 +46,7 @@ pub mod evaluation;
 pub mod materials;
 pub mod numerics;
 pub mod profile;
+pub mod restatement;
 pub mod sheet;
 pub mod source;
 pub mod spectra;

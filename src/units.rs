@@ -1,5 +1,7 @@
 //! Physical constants (CODATA 2022), typed once, and every factor derived from them.
 
+pub mod air;
+
 /// Elementary charge, C (exact).
 pub const ELEMENTARY_CHARGE_C: f64 = 1.602176634e-19;
 /// Planck constant, J s (exact).

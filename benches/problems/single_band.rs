@@ -13,12 +13,13 @@ const MASSES: [f64; 2] = [0.067, 0.09];
 /// Gaps of wells and barriers, eV: what softens the masses.
 const GAPS_EV: [f64; 2] = [1.42, 1.8];
 
-/// Grids of the problem, the finest last: each has half the step of the one before, except the last.
+/// The problem on a grid to be solved, and on two coarse ones to start from.
 pub struct SingleBand {
-    coarse: Vec<Chain>,
+    coarse: [Chain; 2],
+    /// The matrix to be solved.
     pub fine: Chain,
-    /// Steps of the grids, nm.
-    steps_nm: Vec<f64>,
+    /// h² of the coarse grids and of the fine one, nm².
+    squares: [f64; 3],
     work: Workspace,
 }
 
@@ -26,60 +27,49 @@ impl SingleBand {
     /// The problem with `nodes` inner nodes: 599 or 2399.
     pub fn new(nodes: usize, softened: bool) -> Self {
         let fine_nm = 60.0 / (nodes + 1) as f64;
-        let steps_nm = if nodes > 1000 {
-            vec![0.4, 0.2, 0.1, fine_nm]
-        } else {
-            vec![0.8, 0.4, 0.2, fine_nm]
-        };
-        let mut grids: Vec<Chain> = steps_nm.iter().map(|&step| chain(step, softened)).collect();
-        let fine = grids.pop().expect("four grids");
-        assert_eq!(fine.nodes(), nodes);
+        let coarse_nm = if nodes > 1000 { [0.4, 0.2] } else { [0.8, 0.4] };
+        let fine = chain(fine_nm, softened);
+        assert_eq!(fine.nodes(), nodes, "a multiple of the coarse grids");
         Self {
-            coarse: grids,
+            coarse: coarse_nm.map(|step_nm| chain(step_nm, softened)),
             fine,
-            steps_nm,
+            squares: [coarse_nm[0].powi(2), coarse_nm[1].powi(2), fine_nm.powi(2)],
             work: Workspace::default(),
         }
     }
 
     /// Every level below the barriers with its vector, certified. The coarsest grid is solved from
-    /// nothing; what each grid says of its own error, and then the grids together, start the next.
+    /// nothing; what it says of its own error starts the next, and both start the last.
     pub fn solve(&mut self) -> Vec<State> {
         let work = &mut self.work;
+        let [x0, x1, x] = self.squares;
+        let [first, second] = &self.coarse;
         let count = self.fine.count_below(DEPTH_EV);
-        let coarsest = &self.coarse[0];
-        let states = coarsest.lowest(work, count, None).expect("certified");
-        let halved = |state: &State| state.energy - 0.75 * coarsest.shift(state);
-        let mut guesses: Vec<f64> = states.iter().map(halved).collect();
-        let mut ladders: Vec<Vec<f64>> = Vec::with_capacity(self.coarse.len());
-        ladders.push(states.iter().map(|state| state.energy).collect());
-        for grid in &self.coarse[1..] {
-            ladders.push(grid.energies(work, &guesses).expect("certified"));
-            guesses = ahead(&ladders, &self.steps_nm);
-        }
+        let lower = first.lowest_with(work, count, None).expect("certified");
+        let slopes: Vec<f64> = lower.iter().map(|state| first.shift(state) / x0).collect();
+        let guesses: Vec<f64> = lower
+            .iter()
+            .zip(&slopes)
+            .map(|(state, slope)| state.energy + slope * (x1 - x0))
+            .collect();
+        let upper = second.lowest_with(work, count, Some(&guesses)).expect("certified");
+        let guesses: Vec<f64> = lower
+            .iter()
+            .zip(&slopes)
+            .zip(&upper)
+            .map(|((lower, slope), upper)| {
+                // The first power of h² from the shifts, extrapolated; the second from the energies.
+                let own = second.shift(upper) / x1;
+                let slope = own + (own - slope) * x1 / (x0 - x1);
+                let change = upper.energy - lower.energy - slope * (x1 - x0);
+                let curvature = change / (x1 * x1 - x0 * x0);
+                upper.energy + slope * (x - x1) + curvature * (x * x - x1 * x1)
+            })
+            .collect();
         self.fine
-            .lowest(work, count, Some(&guesses))
+            .lowest_with(work, count, Some(&guesses))
             .expect("certified")
     }
-}
-
-/// Energies on the next grid: the polynomial in h² through those on the grids before.
-fn ahead(ladders: &[Vec<f64>], steps_nm: &[f64]) -> Vec<f64> {
-    let squares: Vec<f64> = steps_nm.iter().map(|step| step * step).collect();
-    let next = squares[ladders.len()];
-    let share = |own: usize| -> f64 {
-        (0..ladders.len())
-            .filter(|&other| other != own)
-            .map(|other| (next - squares[other]) / (squares[own] - squares[other]))
-            .product()
-    };
-    let shares: Vec<f64> = (0..ladders.len()).map(share).collect();
-    (0..ladders[0].len())
-        .map(|level| {
-            let terms = ladders.iter().zip(&shares);
-            terms.map(|(ladder, share)| share * ladder[level]).sum()
-        })
-        .collect()
 }
 
 fn chain(step_nm: f64, softened: bool) -> Chain {

@@ -222,7 +222,11 @@ fn describe(
 }
 
 /// A formula from the command line.
-fn composition(formula: &str, name: &str, outlet: &Outlet) -> Result<Composition, Complaint> {
+pub(super) fn composition(
+    formula: &str,
+    name: &str,
+    outlet: &Outlet,
+) -> Result<Composition, Complaint> {
     Composition::parse(formula).map_err(|fault| {
         let mut complaint = Complaint::faults(&[fault], name, formula, outlet.error_colour());
         complaint.ending = Ending::Usage;

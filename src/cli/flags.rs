@@ -39,6 +39,9 @@ pub(super) enum Command {
     /// What X-rays see of the wafer: peaks, zero order, satellites, rocking curve
     #[command(after_help = XRAY_EXAMPLES, term_width = COLUMNS)]
     Xray(Xray),
+    /// One quantity said another way: nm and eV, air and vacuum, kinds of mismatch
+    #[command(after_help = RESTATE_EXAMPLES, term_width = COLUMNS)]
+    Restate(Restate),
     /// Parameters with their sources: all families, one alloy, or all that a file uses
     #[command(after_help = MATERIALS_EXAMPLES, term_width = COLUMNS)]
     Materials(Materials),
@@ -170,6 +173,48 @@ pub(super) struct Xray {
     /// Draw the rocking curve
     #[arg(long, value_name = "PATH.svg")]
     pub(super) figure: Option<PathBuf>,
+    #[command(flatten)]
+    pub(super) output: Output,
+}
+
+#[derive(Debug, Args)]
+pub(super) struct Restate {
+    /// A number with its unit, and the sense of a mismatch or a strain: 850ppm tensile
+    #[arg(value_name = "QUANTITY", required = true, allow_hyphen_values = true)]
+    pub(super) quantity: Vec<String>,
+    /// The wavelength was read in air, not in vacuum
+    #[arg(long)]
+    pub(super) air: bool,
+    /// It is the peak of bulk photoluminescence, not the gap
+    #[arg(long)]
+    pub(super) pl: bool,
+    /// Temperature, if not 300 K: 25C or 298.15K
+    #[arg(long, value_name = "TEMPERATURE", allow_hyphen_values = true)]
+    pub(super) at: Option<String>,
+    /// It is a width of this line: 1310nm or 0.946eV, in vacuum
+    #[arg(long, value_name = "LINE")]
+    pub(super) around: Option<String>,
+    /// The thickness that carriers share: 5.5nm
+    #[arg(long, value_name = "THICKNESS")]
+    pub(super) over: Option<String>,
+    /// Kind of a mismatch in ppm: relaxed or perpendicular
+    #[arg(long, value_name = "KIND")]
+    pub(super) mismatch: Option<String>,
+    /// The substrate, by formula
+    #[arg(long, value_name = "FORMULA")]
+    pub(super) on: Option<String>,
+    /// The layer of a mismatch or a strain, by formula
+    #[arg(long, value_name = "FORMULA")]
+    pub(super) layer: Option<String>,
+    /// Elements whose composition has this gap: InGaAsP
+    #[arg(long, value_name = "ELEMENTS", requires = "on")]
+    pub(super) alloy: Option<String>,
+    /// Strain of that alloy: matched, 1%compressive or 0.4%tensile
+    #[arg(long, value_name = "STRAIN", requires = "alloy")]
+    pub(super) strain: Option<String>,
+    /// Lay the numbers of a file over the shipped parameters
+    #[arg(long = "materials", value_name = "FILE")]
+    pub(super) overlay: Option<PathBuf>,
     #[command(flatten)]
     pub(super) output: Output,
 }
@@ -363,6 +408,21 @@ A wafer is measured at room temperature: the device's temperature in the file
 does not count here. It is a command of its own because it answers the grower,
 who has a diffractometer and no interest in levels or gain.";
 
+const RESTATE_EXAMPLES: &str = "\
+Examples:
+  stepwell restate 1310nm
+  stepwell restate 1309.6nm --air
+  stepwell restate 1100nm --pl --at 25C
+  stepwell restate 1250nm --alloy InGaAsP --strain matched --on InP
+  stepwell restate 850ppm --mismatch relaxed --on InP
+  stepwell restate 1% compressive --layer In0.7Ga0.3As
+  stepwell restate 35nm --around 1310nm
+  stepwell restate 2e12cm-2 --over 5.5nm
+  stepwell restate 85C
+
+A wavelength is also taken as a gap. What a quantity does not say by itself
+(kind of mismatch, thickness) is asked for and never assumed.";
+
 const MATERIALS_EXAMPLES: &str = "\
 Examples:
   stepwell materials
@@ -405,6 +465,7 @@ mod tests {
             SPREAD_EXAMPLES,
             RECONCILE_EXAMPLES,
             XRAY_EXAMPLES,
+            RESTATE_EXAMPLES,
             MATERIALS_EXAMPLES,
             NEW_EXAMPLES,
         ] {

@@ -88,6 +88,7 @@ fn obey(flags: Flags, outlet: &Outlet) -> Result<Ending, Complaint> {
         Some(Command::Reconcile(flags)) => reconcile::reconcile(&flags, outlet),
         Some(Command::Check(flags)) => commands::check(&flags, outlet),
         Some(Command::Xray(flags)) => wafer::xray(&flags, outlet),
+        Some(Command::Restate(flags)) => wafer::restate(&flags, outlet),
         Some(Command::Materials(flags)) => commands::materials(&flags, outlet),
         Some(Command::New { name }) => shipped::write(name.as_deref(), outlet),
         Some(Command::Schema) => commands::schema(),

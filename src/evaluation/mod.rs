@@ -337,8 +337,10 @@ impl<'a> Evaluation<'a> {
     /// Peaks of TE and TM gain at a density, with shrinkage; `None` below transparency.
     #[must_use]
     pub fn gain_peaks_at(&self, density_cm3: f64) -> [Option<GainPeak>; 2] {
-        let view = self.view(&self.carriers(density_cm3));
-        self.gain_peaks(&self.filling(density_cm3), &view)
+        self.gain_peaks(
+            &self.filling(density_cm3),
+            &self.view(&self.carriers(density_cm3)),
+        )
     }
 
     /// The larger of these peaks, with the name of its polarisation.
@@ -352,6 +354,15 @@ impl<'a> Evaluation<'a> {
     #[must_use]
     pub fn carriers(&self, density_cm3: f64) -> Occupation {
         self.occupation(&self.filling(density_cm3), self.shrinkage_ev(density_cm3))
+    }
+
+    /// The current that spontaneous emission at a density takes, of all wells, A/cm².
+    #[must_use]
+    pub fn radiative_current_a_cm2(&self, density_cm3: f64) -> f64 {
+        let rate = self
+            .view(&self.carriers(density_cm3))
+            .total_rate_per_cm3_s();
+        crate::units::ELEMENTARY_CHARGE_C * rate * 1e-7 * self.profile.well_thickness_nm
     }
 
     /// What absorbs and emits.

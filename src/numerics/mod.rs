@@ -2,6 +2,8 @@
 
 pub mod block;
 pub mod chain;
+pub mod contour;
 pub mod fermi;
 pub mod quadrature;
 pub mod roots;
+pub mod survey;

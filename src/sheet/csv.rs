@@ -63,10 +63,12 @@ macro_rules! row {
 mod reconcile;
 mod spread;
 
-pub use reconcile::reconcile;
-pub use spread::spread;
+mod restatement;
 mod xray;
 
+pub use reconcile::reconcile;
+pub use restatement::restatement;
+pub use spread::spread;
 pub use xray::xray;
 
 impl CsvTable {

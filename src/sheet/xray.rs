@@ -75,11 +75,10 @@ fn layers(seen: &Diffraction, page: &mut Page) {
         words("layer"),
         words("material"),
         numbers("nm"),
-        numbers("mismatch\nrelaxed\nppm"),
-        numbers("mismatch\nperp.\nppm"),
+        numbers("relaxed\nppm"),
+        numbers("perpen-\ndicular\nppm"),
         words("sense"),
         numbers("peak\narcsec"),
-        numbers("fringes\narcsec"),
     ]);
     for layer in &seen.layers {
         table.row(cells(layer));
@@ -87,13 +86,13 @@ fn layers(seen: &Diffraction, page: &mut Page) {
     page.table(&table);
     page.paragraph(
         2,
-        "Relaxed: of the free alloy, what a composition has; perpendicular: of the coherent layer, \
+        "Mismatch, relaxed: of the free alloy, what a composition has; perpendicular: of the coherent layer, \
          what the reflection sees. Peaks are offsets in ω from the substrate's, left of it (minus) for \
          compressive layers; in 2θ they are twice as large.",
     );
 }
 
-fn cells(layer: &LayerPeak) -> [String; 8] {
+fn cells(layer: &LayerPeak) -> [String; 7] {
     let role = match (layer.is_upper_end, layer.count) {
         (true, _) => "  graded to".to_owned(),
         (false, 1) => layer.role.word().to_owned(),
@@ -116,7 +115,6 @@ fn cells(layer: &LayerPeak) -> [String; 8] {
         layer
             .peak
             .map_or(ABSENT.to_owned(), |peak| signed(peak.offset_arcsec, 1)),
-        of_layer(fixed(layer.fringe_arcsec, 1)),
     ]
 }
 

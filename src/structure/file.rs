@@ -14,8 +14,8 @@ pub(super) struct StructureFile {
     pub(super) materials: Vec<(String, Given<MaterialTable>)>,
     pub(super) layers: Field<Vec<Row>>,
     pub(super) operation: OperationTable,
-    pub(super) target: Option<TargetTable>,
     pub(super) model: ModelTable,
+    pub(super) target: Option<TargetTable>,
     pub(super) growth: Field<GrowthTable>,
     pub(super) limits: Option<LimitsTable>,
 }

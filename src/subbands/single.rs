@@ -349,13 +349,19 @@ fn levels(
         energy_ev: band.sign() * error.energy,
     };
     let mut solve = |chain: &Chain, guesses: Option<&[f64]>| {
-        chain.lowest(work, count, guesses).map_err(uncertified)
+        chain.lowest_with(work, count, guesses).map_err(uncertified)
     };
     let energies = |states: &[crate::numerics::chain::State]| -> Vec<f64> {
         states.iter().map(|state| state.energy).collect()
     };
-    let coarse = energies(&solve(&chains[0], None)?);
-    let half = solve(&chains[1], Some(&coarse))?;
+    let coarse = solve(&chains[0], None)?;
+    // What a grid says of its own error leads to the next.
+    let halved: Vec<f64> = coarse
+        .iter()
+        .map(|state| state.energy - 0.75 * chains[0].shift(state))
+        .collect();
+    let coarse = energies(&coarse);
+    let half = solve(&chains[1], Some(&halved))?;
     let middle = energies(&half);
     let guesses: Vec<f64> = middle
         .iter()

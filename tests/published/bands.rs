@@ -17,7 +17,7 @@ use stepwell::units::{
 /// The constants of the program.
 #[derive(Deserialize)]
 #[serde(deny_unknown_fields)]
-pub struct Constants {
+pub(crate) struct Constants {
     name: String,
     check: Vec<Check>,
 }
@@ -59,7 +59,7 @@ impl Problem for Constants {
 /// field (zero at the lower wall) or a parabola about the middle.
 #[derive(Deserialize)]
 #[serde(deny_unknown_fields)]
-pub struct Walls {
+pub(crate) struct Walls {
     name: String,
     mass: f64,
     length_nm: f64,
@@ -153,7 +153,7 @@ const AIRY_DIFFERENCE: f64 = 4.087_949_444_131 - 2.338_107_410_46;
 /// Fermi-Dirac integrals, normalised; `at` is the reduced Fermi energy.
 #[derive(Deserialize)]
 #[serde(deny_unknown_fields)]
-pub struct FermiIntegral {
+pub(crate) struct FermiIntegral {
     name: String,
     check: Vec<Check>,
 }
@@ -188,7 +188,7 @@ impl Problem for FermiIntegral {
 /// One parabolic subband.
 #[derive(Deserialize)]
 #[serde(deny_unknown_fields)]
-pub struct SubbandProblem {
+pub(crate) struct SubbandProblem {
     name: String,
     mass: f64,
     temperature_k: f64,
@@ -232,7 +232,7 @@ impl Problem for SubbandProblem {
 /// Parabolic bands of a bulk crystal.
 #[derive(Deserialize)]
 #[serde(deny_unknown_fields)]
-pub struct BulkBandsProblem {
+pub(crate) struct BulkBandsProblem {
     name: String,
     electron_mass: f64,
     hole_mass: f64,

@@ -7,11 +7,11 @@ use serde::Deserialize;
 /// One number to compare.
 #[derive(Clone, Debug, Deserialize)]
 #[serde(deny_unknown_fields)]
-pub struct Check {
+pub(crate) struct Check {
     /// What is asked, in the words of the problem.
-    pub quantity: String,
+    pub(crate) quantity: String,
     /// Where it is asked, if the quantity depends on something.
-    pub at: Option<f64>,
+    pub(crate) at: Option<f64>,
     value: Option<f64>,
     range: Option<[f64; 2]>,
     /// In the unit of the value.
@@ -27,7 +27,7 @@ pub struct Check {
 
 impl Check {
     /// A question without an expected answer.
-    pub fn asking(quantity: &str) -> Self {
+    pub(crate) fn asking(quantity: &str) -> Self {
         Self {
             quantity: quantity.to_owned(),
             at: None,
@@ -41,7 +41,7 @@ impl Check {
         }
     }
 
-    pub fn title(&self) -> String {
+    pub(crate) fn title(&self) -> String {
         self.at.map_or_else(
             || self.quantity.clone(),
             |at| format!("{} at {at}", self.quantity),
@@ -88,14 +88,24 @@ impl Check {
 }
 
 /// A number with six digits, as the table shows it.
-pub fn digits(value: f64) -> String {
+pub(crate) fn digits(value: f64) -> String {
     let size = value.abs();
     if value == 0.0 {
         "0".to_owned()
     } else if (1e-3..1e6).contains(&size) {
-        let before = size.log10().floor();
-        let decimals = (5.0 - before).max(0.0);
-        let text = format!("{value:.*}", decimals as usize);
+        let mut decimals = 5;
+        let mut ten = 10.0;
+        while ten <= size && decimals > 0 {
+            decimals -= 1;
+            ten *= 10.0;
+        }
+        // Below one the zeros after the point are no digits.
+        let mut one = 1.0;
+        while size < one {
+            decimals += 1;
+            one *= 0.1;
+        }
+        let text = format!("{value:.decimals$}");
         if text.contains('.') {
             text.trim_end_matches('0').trim_end_matches('.').to_owned()
         } else {
@@ -110,19 +120,19 @@ pub fn digits(value: f64) -> String {
 }
 
 /// How a row came out.
-pub struct Verdict {
+pub(crate) struct Verdict {
     /// What is published.
-    pub published: String,
+    pub(crate) published: String,
     /// What the program says.
-    pub computed: String,
+    pub(crate) computed: String,
     /// Whether it is inside the tolerance.
-    pub met: bool,
+    pub(crate) met: bool,
     /// Why it was expected to be missed.
-    pub expected_miss: Option<String>,
+    pub(crate) expected_miss: Option<String>,
 }
 
 impl Verdict {
-    pub fn of(check: &Check, answer: Answer) -> Self {
+    pub(crate) fn of(check: &Check, answer: Answer) -> Self {
         let (low, high, published) = check.accepted();
         let (met, computed) = match answer {
             // Written so that NaN is a miss.
@@ -137,7 +147,7 @@ impl Verdict {
         }
     }
 
-    pub fn of_order(values: Result<Vec<f64>, String>, expected_miss: Option<&str>) -> Self {
+    pub(crate) fn of_order(values: Result<Vec<f64>, String>, expected_miss: Option<&str>) -> Self {
         let (met, computed) = match values {
             Ok(values) => (
                 values.len() > 1 && values.windows(2).all(|pair| pair[0] < pair[1]),
@@ -157,7 +167,7 @@ impl Verdict {
         }
     }
 
-    pub fn outcome(&self) -> Result<(), Failed> {
+    pub(crate) fn outcome(&self) -> Result<(), Failed> {
         match (self.met, &self.expected_miss) {
             (true, None) | (false, Some(_)) => Ok(()),
             (false, None) => {

@@ -123,6 +123,10 @@ fn files() -> Vec<(String, String)> {
     files
 }
 
+fn each<P: Problem>(problems: &[P]) -> impl Iterator<Item = &dyn Problem> {
+    problems.iter().map(|problem| problem as &dyn Problem)
+}
+
 fn compare(file: &str, reference: &Reference) -> Vec<Compared> {
     for statement in [
         &reference.citation,
@@ -132,19 +136,16 @@ fn compare(file: &str, reference: &Reference) -> Vec<Compared> {
     ] {
         assert!(!statement.is_empty(), "{file} leaves a statement empty");
     }
-    fn of<P: Problem>(problems: &[P]) -> impl Iterator<Item = &dyn Problem> {
-        problems.iter().map(|problem| problem as &dyn Problem)
-    }
-    let problems: Vec<&dyn Problem> = of(&reference.constants)
-        .chain(of(&reference.walls))
-        .chain(of(&reference.fermi_integral))
-        .chain(of(&reference.subband))
-        .chain(of(&reference.bulk_bands))
-        .chain(of(&reference.stack))
-        .chain(of(&reference.pair))
-        .chain(of(&reference.bulk))
-        .chain(of(&reference.film))
-        .chain(of(&reference.balance))
+    let problems: Vec<&dyn Problem> = each(&reference.constants)
+        .chain(each(&reference.walls))
+        .chain(each(&reference.fermi_integral))
+        .chain(each(&reference.subband))
+        .chain(each(&reference.bulk_bands))
+        .chain(each(&reference.stack))
+        .chain(each(&reference.pair))
+        .chain(each(&reference.bulk))
+        .chain(each(&reference.film))
+        .chain(each(&reference.balance))
         .collect();
     let mut compared = Vec::new();
     for problem in &problems {

@@ -15,7 +15,7 @@ use stepwell::units::{ELEMENTARY_CHARGE_C, HBAR2_OVER_2M0_EV_NM2, thermal_ev};
 /// One pair of an electron and a heavy-hole subband with the zone-centre dipole at every energy.
 #[derive(Deserialize)]
 #[serde(deny_unknown_fields)]
-pub struct PairProblem {
+pub(crate) struct PairProblem {
     name: String,
     edge_ev: f64,
     electron_mass: f64,
@@ -213,7 +213,7 @@ impl Problem for PairProblem {
 /// A bulk crystal.
 #[derive(Deserialize)]
 #[serde(deny_unknown_fields)]
-pub struct BulkProblem {
+pub(crate) struct BulkProblem {
     name: String,
     material: String,
     substrate: String,

@@ -14,7 +14,7 @@ use stepwell::subbands::Level;
 /// A structure: its layers from the substrate up, materials by formula or by own numbers.
 #[derive(Deserialize)]
 #[serde(deny_unknown_fields)]
-pub struct StackProblem {
+pub(crate) struct StackProblem {
     name: String,
     /// A formula; without one every material is of own numbers, on the lattice of the first.
     substrate: Option<String>,

@@ -6,11 +6,11 @@ use serde::Deserialize;
 use stepwell::coherence::{Film, Setting, balancing_thickness_nm, plane_stiffness_gpa};
 use stepwell::materials::{Composition, Crystal, Offsets, Parameters};
 
-pub fn composition(formula: &str) -> Result<Composition, String> {
+pub(crate) fn composition(formula: &str) -> Result<Composition, String> {
     Composition::parse(formula).map_err(|fault| fault.message)
 }
 
-pub fn crystal(formula: &str) -> Result<Crystal, String> {
+pub(crate) fn crystal(formula: &str) -> Result<Crystal, String> {
     let composition = composition(formula)?;
     Ok(Parameters::shipped().crystal(&composition, 300.0, Offsets::Table))
 }
@@ -19,7 +19,7 @@ pub fn crystal(formula: &str) -> Result<Crystal, String> {
 /// second end.
 #[derive(Deserialize)]
 #[serde(deny_unknown_fields)]
-pub struct FilmProblem {
+pub(crate) struct FilmProblem {
     name: String,
     between: [String; 2],
     substrate: String,
@@ -55,7 +55,7 @@ impl Problem for FilmProblem {
 /// Two layers that balance on a substrate.
 #[derive(Deserialize)]
 #[serde(deny_unknown_fields)]
-pub struct BalanceProblem {
+pub(crate) struct BalanceProblem {
     name: String,
     layer: String,
     thickness_nm: f64,

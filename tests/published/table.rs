@@ -9,7 +9,7 @@ const START: &str = "<!-- computed: start -->";
 const END: &str = "<!-- computed: end -->";
 
 /// The tables of rows and of misses.
-pub fn of(rows: &[Compared]) -> String {
+pub(crate) fn of(rows: &[Compared]) -> String {
     let mut text = String::new();
     let misses: Vec<&Compared> = rows.iter().filter(|row| !row.verdict.met).collect();
     let _ = writeln!(
@@ -52,7 +52,7 @@ pub fn of(rows: &[Compared]) -> String {
 }
 
 /// Whether the README holds exactly these tables; writes them where that is asked for.
-pub fn is_shown(shown: &str) -> Result<(), Failed> {
+pub(crate) fn is_shown(shown: &str) -> Result<(), Failed> {
     let path = folder().join("README.md");
     let text = fs::read_to_string(&path)?;
     let outside = || -> Option<(&str, &str, &str)> {

@@ -7,8 +7,9 @@ impl Chain {
     /// `count` states that share one narrow bracket around `centre`: their span by inverse
     /// iteration, separated inside it.
     pub(super) fn common_span(&self, centre: f64, count: usize) -> Vec<State> {
-        // A shift a little off the cluster keeps the factorisation away from zero pivots.
-        let shift = centre - 3.0 * CLUSTER;
+        // Close to the centre of the bracket, so that its levels are nearer than any neighbour, and
+        // a little off it, which keeps the factorisation away from zero pivots.
+        let shift = centre - CLUSTER / 64.0;
         let (diagonal, link) = self.pencil(shift);
         let factors = Factors::new(&diagonal, &link);
         let weights = self.weights();

@@ -209,7 +209,7 @@ impl Chain {
     ///
     /// The solution φ of the continuous problem, put into T(E), leaves at a node inside a run
     /// −(h³/12)(E − V)²/p φ, and between runs, with J = p dφ/dz, J (h_b² k_b² − h_a² k_a²)/6 where
-    /// k² = (E − V)/p; the shift is φ times that, summed, over φ (−T′) φ.
+    /// k² = (E − V)/p; the shift is φ times that, summed, over φ (−T′) φ (1 where nothing is softened).
     #[must_use]
     pub fn shift(&self, state: &State) -> f64 {
         let energy = state.energy;
@@ -228,9 +228,9 @@ impl Chain {
             let excess = energy - run.potential;
             // h² k².
             let strength = run.length * run.length * excess / stiffness;
-            let squares: f64 = (node..node + run.intervals)
-                .map(|node| 0.5 * (at(node).powi(2) + at(node + 1).powi(2)))
-                .sum();
+            let inner = &state.envelope[node..node + run.intervals - 1];
+            let squares = inner.iter().map(|value| value * value).sum::<f64>()
+                + 0.5 * (at(node).powi(2) + at(node + run.intervals).powi(2));
             sum -= run.length * squares * strength * excess / 12.0;
             if index > 0 {
                 let flux = stiffness * (at(node + 1) - at(node)) / run.length
@@ -239,6 +239,9 @@ impl Chain {
             }
             strength_below = strength;
             node += run.intervals;
+        }
+        if self.runs.iter().all(|run| run.softening == 0.0) {
+            return sum;
         }
         sum / self.slope(energy, &state.envelope)
     }

@@ -24,7 +24,16 @@ impl Chain {
     /// # Errors
     ///
     /// [`Uncertified`] if a level cannot be told from its neighbours by counting.
-    pub fn lowest(
+    pub fn lowest(&self, count: usize, guesses: Option<&[f64]>) -> Result<Vec<State>, Uncertified> {
+        self.lowest_with(&mut Workspace::default(), count, guesses)
+    }
+
+    /// The same in room that is kept from one chain to the next.
+    ///
+    /// # Errors
+    ///
+    /// [`Uncertified`] if a level cannot be told from its neighbours by counting.
+    pub fn lowest_with(
         &self,
         work: &mut Workspace,
         count: usize,
@@ -60,7 +69,7 @@ impl Chain {
         let states = if refined.tells_all() {
             refined.states
         } else {
-            self.lowest(work, count, Some(guesses))?
+            self.lowest_with(work, count, Some(guesses))?
         };
         Ok(states.iter().map(|state| state.energy).collect())
     }
@@ -144,6 +153,9 @@ impl Chain {
         // Counts tell where: the first level at which they disagree.
         let wrong = (0..states.len())
             .find(|&index| {
+                if !states[index].energy.is_finite() {
+                    return true;
+                }
                 let between = states.get(index + 1).map_or_else(
                     || states[index].energy + CLUSTER,
                     |above| 0.5 * (states[index].energy + above.energy),
@@ -170,11 +182,10 @@ impl Chain {
         const ROUNDS: usize = 100;
         let mut own: Vec<(f64, f64)> = levels.iter().map(|&level| brackets[level]).collect();
         let mut energies: Vec<f64> = own.iter().map(|(low, high)| 0.5 * (low + high)).collect();
-        let mut settled = false;
-        for _ in 0..ROUNDS {
+        for round in 1..=ROUNDS {
             let shifts: Lanes = std::array::from_fn(|lane| energies[lane.min(own.len() - 1)]);
             let sweep = work.sweep(self, &shifts);
-            let mut inside = true;
+            let mut outside = [false; LANES];
             for (lane, (low, high)) in own.iter_mut().enumerate() {
                 if sweep.counts[lane] > levels[lane] {
                     *high = high.min(shifts[lane]);
@@ -184,16 +195,21 @@ impl Chain {
                 let next = shifts[lane] + sweep.steps[lane];
                 let stays = next > *low - SLACK && next < *high + SLACK;
                 energies[lane] = if stays { next } else { 0.5 * (*low + *high) };
-                inside &= stays;
+                outside[lane] = !stays;
             }
-            settled = inside && Wanted::States.is_met(&energies, &sweep.steps);
-            if settled {
+            let good = Wanted::States.are_met(&energies, &sweep.steps);
+            if good
+                .iter()
+                .zip(outside)
+                .all(|(&good, outside)| good && !outside)
+            {
                 break;
             }
-        }
-        // What has not settled is no level, and the certificate refuses it.
-        if !settled {
-            energies.fill(f64::NAN);
+            if round == ROUNDS {
+                for lane in (0..own.len()).filter(|&lane| outside[lane] || !good[lane]) {
+                    energies[lane] = f64::NAN;
+                }
+            }
         }
         let envelopes = work.envelopes(self, own.len());
         energies
@@ -249,7 +265,7 @@ impl Chain {
     }
 
     /// Rayleigh-quotient iteration from each guess, [`LANES`] at a time; the envelopes are left empty
-    /// where only energies are wanted.
+    /// where only energies are wanted. The energy of one that did not converge is no number.
     fn rayleigh(&self, work: &mut Workspace, guesses: &[f64], wanted: Wanted) -> Refined {
         let mut refined = Refined {
             states: Vec::with_capacity(guesses.len()),
@@ -260,26 +276,27 @@ impl Chain {
             let own = chunk.len();
             let mut energies: Lanes = std::array::from_fn(|lane| chunk[lane.min(own - 1)]);
             let mut rounds = 0;
-            let (shifts, sweep, settled) = loop {
+            let (shifts, sweep) = loop {
                 let mut shifts = energies;
                 // Free lanes count the levels below a point just above the last.
                 shifts[own..].fill(energies[own - 1] + CEILING);
                 let sweep = work.sweep(self, &shifts);
                 for lane in 0..own {
-                    if sweep.steps[lane].is_finite() {
-                        energies[lane] += sweep.steps[lane];
-                    }
+                    energies[lane] += sweep.steps[lane];
                 }
                 rounds += 1;
-                let settled = wanted.is_met(&energies[..own], &sweep.steps);
-                if settled || rounds == MOST_ROUNDS {
-                    break (shifts, sweep, settled);
+                let good = wanted.are_met(&energies[..own], &sweep.steps);
+                if good.iter().all(|&good| good) {
+                    break (shifts, sweep);
+                }
+                if rounds == MOST_ROUNDS {
+                    // One that still moves is no level: its energy says so, and none certifies it.
+                    for (energy, _) in energies.iter_mut().zip(good).filter(|(_, good)| !good) {
+                        *energy = f64::NAN;
+                    }
+                    break (shifts, sweep);
                 }
             };
-            // What still moves is no level: its energy says so, and no certificate is given.
-            if !settled {
-                energies = [f64::NAN; LANES];
-            }
             let mut envelopes = match wanted {
                 Wanted::Energies => vec![Vec::new(); own],
                 Wanted::States => work.envelopes(self, own),
@@ -306,14 +323,16 @@ enum Wanted {
 }
 
 impl Wanted {
-    /// Whether every Rayleigh-quotient step was so small that the energies after it (and the vectors
-    /// before it) are good. A step over the distance of the next level is about the share of that
-    /// level in the vector; the energy is wrong by the square of this share times the distance.
-    fn is_met(self, energies: &[f64], steps: &Lanes) -> bool {
-        (0..energies.len()).all(|lane| {
-            let distance = |other: Option<&f64>| {
-                other.map_or(USUAL_DISTANCE, |other| (other - energies[lane]).abs())
+    /// Which Rayleigh-quotient steps were so small that the energy after them (and the vector before
+    /// them) is good. A step over the distance of the next level is about the share of that level in
+    /// the vector; the energy is wrong by the square of this share times the distance.
+    fn are_met(self, energies: &[f64], steps: &Lanes) -> [bool; LANES] {
+        std::array::from_fn(|lane| {
+            let Some(energy) = energies.get(lane) else {
+                return true;
             };
+            let distance =
+                |other: Option<&f64>| other.map_or(USUAL_DISTANCE, |other| (other - energy).abs());
             let below = distance(lane.checked_sub(1).and_then(|below| energies.get(below)));
             let nearest = below.min(distance(energies.get(lane + 1)));
             let most = match self {
@@ -338,13 +357,14 @@ impl Refined {
     /// Whether the states are the lowest, each found once: brackets that do not touch hold one level
     /// each, and no more levels than these lie below a point above them.
     fn tells_all(&self) -> bool {
+        let found = self.states.iter().all(|state| state.energy.is_finite());
         let apart = self
             .brackets
             .windows(2)
             .all(|pair| pair[0].1 + CLUSTER < pair[1].0);
         let last = self.brackets.last().map_or(f64::NAN, |bracket| bracket.1);
-        apart
-            && self.states.iter().all(|state| state.energy.is_finite())
+        found
+            && apart
             && self
                 .ceiling
                 .is_some_and(|(point, count)| last < point && count == self.states.len())

@@ -130,12 +130,10 @@ impl March {
         }
     }
 
-    fn mark(&self) -> Mark {
-        Mark {
-            before: self.before,
-            sum: self.sum,
-            powers: self.powers,
-        }
+    fn mark(&self, mark: &mut Mark) {
+        mark.before = self.before;
+        mark.sum = self.sum;
+        mark.powers = self.powers;
     }
 
     /// Adds a chunk's share of the slope: Σ w φ² + Σ fall (Δφ)².
@@ -292,7 +290,7 @@ impl Workspace {
     fn run_down(&mut self, chain: &Chain) {
         let mut march = March::new();
         for (index, chunk) in self.chunks.iter().enumerate().rev() {
-            self.down_marks[index] = march.mark();
+            march.mark(&mut self.down_marks[index]);
             let node = Node::new(chain, &self.coefficients, chunk.above, chunk.below);
             let values = &mut self.down[chunk.start..chunk.end];
             if chunk.below != chunk.above {
@@ -314,7 +312,7 @@ impl Workspace {
         let mut places = [0; LANES];
         let mut sizes = [i32::MIN; LANES];
         for (index, chunk) in self.chunks.iter().enumerate() {
-            self.up_marks[index] = march.mark();
+            march.mark(&mut self.up_marks[index]);
             let node = Node::new(chain, &self.coefficients, chunk.below, chunk.above);
             let values = &mut self.up[chunk.start..chunk.end];
             let first = march.last;

@@ -58,9 +58,7 @@ fn matrix_of_three_nodes_across_a_mass_step() {
 #[test]
 fn toeplitz_matrix_has_its_cosines() {
     let chain = Chain::new(vec![run(10.0, 10.0, 0.0, 0.067)]);
-    let states = chain
-        .lowest(&mut Workspace::default(), 12, None)
-        .expect("certified");
+    let states = chain.lowest(12, None).expect("certified");
     for (n, state) in (1u8..).zip(&states) {
         let cosine = (f64::from(n) * std::f64::consts::PI / 100.0).cos();
         let exact = C / 0.067 / 0.01 * 2.0 * (1.0 - cosine);
@@ -90,9 +88,7 @@ fn random_chains_agree_with_a_dense_solver() {
             .collect();
         let chain = Chain::new(runs);
         let exact = dense(&chain);
-        let states = chain
-            .lowest(&mut Workspace::default(), 9, None)
-            .expect("certified");
+        let states = chain.lowest(9, None).expect("certified");
         for (state, value) in states.iter().zip(&exact) {
             assert!(
                 (state.energy - value).abs() < 2e-11,
@@ -103,9 +99,7 @@ fn random_chains_agree_with_a_dense_solver() {
         assert_eq!(chain.count_below(exact[8] + 1e-9), 9);
         // Guesses from elsewhere lead to the same levels.
         let guesses: Vec<f64> = exact[..9].iter().map(|value| value + 1e-4).collect();
-        let again = chain
-            .lowest(&mut Workspace::default(), 9, Some(&guesses))
-            .expect("certified");
+        let again = chain.lowest(9, Some(&guesses)).expect("certified");
         assert!(
             again
                 .iter()
@@ -124,9 +118,7 @@ fn clusters_of_far_wells_are_spanned_by_orthogonal_vectors() {
     }
     let chain = Chain::new(runs);
     let count = chain.count_below(0.299);
-    let states = chain
-        .lowest(&mut Workspace::default(), count, None)
-        .expect("certified");
+    let states = chain.lowest(count, None).expect("certified");
     assert_eq!(count % 5, 0);
     let exact = dense(&chain);
     for (a, state) in states.iter().enumerate() {
@@ -143,9 +135,7 @@ fn clusters_of_far_wells_are_spanned_by_orthogonal_vectors() {
         }
     }
     let guesses: Vec<f64> = states.iter().map(|state| state.energy).collect();
-    let again = chain
-        .lowest(&mut Workspace::default(), count, Some(&guesses))
-        .expect("certified");
+    let again = chain.lowest(count, Some(&guesses)).expect("certified");
     assert!(
         again
             .iter()
@@ -167,9 +157,7 @@ fn softened_levels_are_eigenvalues_of_the_matrix_at_their_own_energy() {
         soft(20.0, 0.35, 0.08, 0.7),
     ]);
     let count = chain.count_below(0.35);
-    let states = chain
-        .lowest(&mut Workspace::default(), count, None)
-        .expect("certified");
+    let states = chain.lowest(count, None).expect("certified");
     assert!(count >= 3);
     for (index, state) in states.iter().enumerate() {
         let frozen = chain
@@ -199,10 +187,7 @@ fn second_order() {
             run(10.0, per_nm, 0.0, 0.05),
             run(30.0, per_nm, 0.25, 0.3),
         ]);
-        chain
-            .lowest(&mut Workspace::default(), 1, None)
-            .expect("certified")[0]
-            .energy
+        chain.lowest(1, None).expect("certified")[0].energy
     };
     let (coarse, middle, fine) = (level(4.0), level(8.0), level(16.0));
     let order = ((coarse - middle) / (middle - fine)).log2();
@@ -226,10 +211,9 @@ fn the_shift_of_a_level_is_that_of_its_grid() {
                 soft(20.0, per_nm, 0.35, 0.12, softening),
             ])
         };
-        let work = &mut Workspace::default();
         let (coarse, fine) = (grid(10.0), grid(20.0));
-        let lower = coarse.lowest(work, 4, None).expect("certified");
-        let upper = fine.lowest(work, 4, None).expect("certified");
+        let lower = coarse.lowest(4, None).expect("certified");
+        let upper = fine.lowest(4, None).expect("certified");
         for (a, b) in lower.iter().zip(&upper) {
             let ratio = (a.energy - b.energy) / (0.75 * coarse.shift(a));
             assert!((ratio - 1.0).abs() < 0.02, "{} {ratio}", a.energy);
