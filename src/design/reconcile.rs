@@ -27,78 +27,28 @@
 //! state of a Kalman filter; R. E. Kalman, J. Basic Eng. 82, 35 (1960)), so that noise is not
 //! chased. Where the estimate is smaller than its own sigma there is no correction.
 
+mod causes;
+mod problem;
+mod readings;
+
+pub use causes::SingleCause;
+pub use readings::Readings;
+
 use super::house_offset::HouseOffset;
-use super::spread::in_vacuum_nm;
-use super::unknown::{Unknown, every_cause};
-use crate::diffraction::{Diffraction, NoReflection, Reflection};
+use super::unknown::Unknown;
+use crate::diffraction::NoReflection;
 use crate::evaluation::{Evaluation, Failure};
 use crate::materials::Parameters;
-use crate::structure::{
-    MeanMismatch, Measured, MismatchKind, PhotoluminescenceMap, PlPeak, Returned, Stack, Wavelength,
-};
-use crate::units::{photon_ev, wavelength_nm};
-use nalgebra::{DMatrix, DVector, SymmetricEigen};
+use crate::structure::{MismatchKind, Stack, Wavelength};
+use causes::causes;
+use nalgebra::{DMatrix, SymmetricEigen};
+use problem::{Posterior, Problem, grown, posterior, problem};
 
-/// Temperature of the wafer on the diffractometer, K. Mismatches of compounds on each other change
-/// by a few ppm per 10 K, below what a wafer is measured to.
-const DIFFRACTOMETER_K: f64 = 300.0;
-/// Steps of derivatives, in prior sigmas.
-const STEP: f64 = 0.2;
-/// Most steps of the iteration.
-const MOST_ITERATIONS: usize = 12;
-/// Longest step of the iteration, in prior sigmas.
-const LONGEST_STEP: f64 = 2.0;
+/// Sums of squares of none to three normal deviates that are exceeded once in a thousand times
+/// (M. Abramowitz, I. A. Stegun, Handbook of Mathematical Functions (1964), table 26.8).
+const POOR_FIT: [f64; 4] = [0.0, 10.828, 13.816, 16.266];
 /// A component of a direction smaller than this share of it is not named.
 const LEAST_COMPONENT: f64 = 0.15;
-/// Prior error of the temperature of a bench, K (common practice).
-const BENCH_K: f64 = 3.0;
-
-/// What was measured, in the units of the model.
-#[derive(Clone, Copy, Debug, Default, PartialEq)]
-pub struct Readings {
-    /// Peak of photoluminescence, nm in vacuum.
-    pub pl_nm: Option<Measured>,
-    /// Temperature of the wafer on the bench, K.
-    pub temperature_k: Option<f64>,
-    /// The reflection in which X-rays were measured.
-    pub reflection: Reflection,
-    /// Period, nm.
-    pub period_nm: Option<Measured>,
-    /// Mean mismatch of a period.
-    pub mismatch: Option<MeanMismatch>,
-}
-
-impl Readings {
-    /// Those of a file of returned data.
-    ///
-    /// # Arguments
-    ///
-    /// * `map` – the map of the wafer, where the file speaks of one: its median counts
-    #[must_use]
-    pub fn of(returned: &Returned, map: Option<&PhotoluminescenceMap>) -> Self {
-        let pl_nm = returned.pl.as_ref().and_then(|pl| {
-            let peak_nm = match &pl.peak {
-                PlPeak::Nm(peak_nm) => *peak_nm,
-                PlPeak::Map(_) => map?.median_nm(),
-            };
-            Some(Measured {
-                value: in_vacuum_nm(peak_nm, pl.medium),
-                sigma: pl.sigma_nm,
-                sigma_given: pl.sigma_given,
-            })
-        });
-        let xray = returned.xray.as_ref();
-        Self {
-            pl_nm,
-            temperature_k: returned.pl.as_ref().map(|pl| pl.temperature_k),
-            reflection: xray
-                .and_then(|xray| xray.reflection.parse().ok())
-                .unwrap_or_default(),
-            period_nm: xray.and_then(|xray| xray.period_nm),
-            mismatch: xray.and_then(|xray| xray.mismatch),
-        }
-    }
-}
 
 /// Which number was measured.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
@@ -188,25 +138,6 @@ pub struct Direction {
     pub left: f64,
 }
 
-/// One thing that may have gone wrong by itself.
-#[derive(Clone, Debug, PartialEq)]
-pub struct SingleCause {
-    /// What: `well.thickness`, `growth rate`, `bench temperature`.
-    pub name: String,
-    /// Its unit; empty for a fraction.
-    pub unit: &'static str,
-    /// The amount that explains the data best.
-    pub amount: f64,
-    /// Its error.
-    pub sigma: f64,
-    /// What it leaves of each datum, in sigmas, in the order of the deviations.
-    pub leaves: Vec<f64>,
-    /// Sum of their squares.
-    pub chi_square: f64,
-    /// The amount in sigmas of what is usual.
-    pub unusual: f64,
-}
-
 /// A change for the next order.
 #[derive(Clone, Debug, PartialEq)]
 pub struct Correction {
@@ -239,7 +170,8 @@ pub struct Reconciliation {
     pub causes: Vec<SingleCause>,
     /// Share of the estimate that a correction takes.
     pub damping: f64,
-    /// Changes for the next order; none where something is undetermined.
+    /// Changes for the next order; none where something is undetermined, or no structure explains the
+    /// data.
     pub corrections: Vec<Correction>,
     /// Unknowns whose estimate is smaller than its sigma.
     pub silent: Vec<String>,
@@ -248,6 +180,15 @@ pub struct Reconciliation {
     pub expected_pl_nm: Option<(f64, f64)>,
     /// The house offset that was counted in.
     pub offset: HouseOffset,
+}
+
+impl Reconciliation {
+    /// Whether a structure within the unknowns explains the data: a sum of squares that so many
+    /// normal deviates exceed less often than once in a thousand times does not.
+    #[must_use]
+    pub fn explains_the_data(&self) -> bool {
+        self.estimated_chi_square <= POOR_FIT[self.deviations.len().min(3)]
+    }
 }
 
 /// Why nothing came out.
@@ -270,149 +211,6 @@ pub enum ReconcileError {
     /// The model failed.
     #[error(transparent)]
     Failure(#[from] Failure),
-}
-
-/// Unknowns and data.
-struct Problem<'a> {
-    stack: Stack,
-    parameters: &'a Parameters,
-    data: Vec<(Datum, Measured)>,
-    /// Errors of the data, the model's included.
-    sigmas: Vec<f64>,
-    offset_mev: f64,
-    reflection: Reflection,
-}
-
-impl Problem<'_> {
-    /// What the model gives for a stack, in the order of the data.
-    fn predicted(&self, stack: &Stack, pl_shift_nm: f64) -> Result<Vec<f64>, ReconcileError> {
-        let wants_xray = self.data.iter().any(|(datum, _)| *datum != Datum::Pl);
-        let multi_well = if wants_xray {
-            let seen = Diffraction::new(stack, self.parameters, self.reflection, DIFFRACTOMETER_K)?;
-            Some(seen.multi_well.ok_or(ReconcileError::NoPeriod)?)
-        } else {
-            None
-        };
-        self.data
-            .iter()
-            .map(|(datum, _)| match (datum, &multi_well) {
-                (Datum::Period, Some(seen)) => Ok(seen.period_nm),
-                (Datum::Mismatch(MismatchKind::Perpendicular), Some(seen)) => {
-                    Ok(seen.mean.perpendicular_ppm())
-                }
-                (Datum::Mismatch(MismatchKind::Relaxed), Some(seen)) => Ok(seen.mean.relaxed_ppm()),
-                (Datum::Pl, _) | (_, None) => {
-                    let peak_nm = Evaluation::new(stack, self.parameters)?
-                        .wavelength_nm(Wavelength::Photoluminescence)
-                        .ok_or(ReconcileError::NoEmission)?;
-                    let photon = photon_ev(peak_nm) + 1e-3 * self.offset_mev;
-                    Ok(wavelength_nm(photon) + pl_shift_nm)
-                }
-            })
-            .collect()
-    }
-
-    /// The same with the unknowns at so many prior sigmas.
-    fn moved(&self, unknowns: &[Unknown], v: &DVector<f64>) -> Result<Vec<f64>, ReconcileError> {
-        self.predicted(&grown(&self.stack, unknowns, v), 0.0)
-    }
-
-    /// Derivatives of the predictions, in sigmas of the data for a prior sigma of each unknown.
-    fn jacobian(
-        &self,
-        unknowns: &[Unknown],
-        v: &DVector<f64>,
-    ) -> Result<DMatrix<f64>, ReconcileError> {
-        let mut jacobian = DMatrix::zeros(self.data.len(), unknowns.len());
-        for unknown in 0..unknowns.len() {
-            let side = |step: f64| {
-                let mut moved = v.clone();
-                moved[unknown] += step;
-                self.moved(unknowns, &moved)
-            };
-            let (above, below) = (side(STEP)?, side(-STEP)?);
-            for datum in 0..self.data.len() {
-                jacobian[(datum, unknown)] =
-                    (above[datum] - below[datum]) / (2.0 * STEP * self.sigmas[datum]);
-            }
-        }
-        Ok(jacobian)
-    }
-
-    /// Measured less predicted, in sigmas.
-    fn misses(&self, predicted: &[f64]) -> DVector<f64> {
-        DVector::from_iterator(
-            self.data.len(),
-            self.data
-                .iter()
-                .zip(predicted)
-                .zip(&self.sigmas)
-                .map(|(((_, measured), predicted), sigma)| (measured.value - predicted) / sigma),
-        )
-    }
-}
-
-/// The stack with unknowns at so many prior sigmas.
-fn grown(stack: &Stack, unknowns: &[Unknown], v: &DVector<f64>) -> Stack {
-    let mut grown = stack.clone();
-    for (unknown, v) in unknowns.iter().zip(v.iter()) {
-        unknown.shift(&mut grown, v * unknown.prior_sigma);
-    }
-    grown
-}
-
-/// The most likely unknowns.
-struct Posterior {
-    /// In prior sigmas.
-    v: DVector<f64>,
-    predicted: Vec<f64>,
-    jacobian: DMatrix<f64>,
-    /// (JᵀJ + 1)⁻¹.
-    covariance: DMatrix<f64>,
-}
-
-fn posterior(problem: &Problem<'_>, unknowns: &[Unknown]) -> Result<Posterior, ReconcileError> {
-    let count = unknowns.len();
-    let one = DMatrix::<f64>::identity(count, count);
-    let inverse = |jacobian: &DMatrix<f64>| {
-        (jacobian.transpose() * jacobian + &one)
-            .cholesky()
-            .expect("a square and the unit matrix make a positive definite one")
-            .inverse()
-    };
-    let mut v = DVector::zeros(count);
-    let mut predicted = problem.moved(unknowns, &v)?;
-    // The derivatives change little along the way: they are taken at the start and once more at the
-    // end, where they make the covariance.
-    let mut jacobian = problem.jacobian(unknowns, &v)?;
-    let mut covariance = inverse(&jacobian);
-    for _ in 0..MOST_ITERATIONS {
-        let gradient = jacobian.transpose() * problem.misses(&predicted) - &v;
-        let step = &covariance * gradient;
-        let length = step.norm();
-        let factor = if length > LONGEST_STEP {
-            LONGEST_STEP / length
-        } else {
-            1.0
-        };
-        v += factor * step;
-        predicted = problem.moved(unknowns, &v)?;
-        if length < 1e-3 {
-            break;
-        }
-        if length > 0.5 {
-            jacobian = problem.jacobian(unknowns, &v)?;
-            covariance = inverse(&jacobian);
-        }
-    }
-    let jacobian = problem.jacobian(unknowns, &v)?;
-    let covariance = inverse(&jacobian);
-    Ok(Posterior {
-        v,
-        predicted,
-        jacobian,
-        covariance,
-    })
 }
 
 /// What was grown, what the data cannot tell, what may have caused it, what to change.
@@ -480,7 +278,7 @@ pub fn reconcile(
         estimates,
         undetermined,
     };
-    if result.undetermined.is_empty() {
+    if result.undetermined.is_empty() && result.explains_the_data() {
         correct(&mut result, &problem, unknowns, &found)?;
     }
     Ok(result)
@@ -517,41 +315,6 @@ pub fn modelled_pl_nm(
     Evaluation::new(&grown, parameters)?
         .wavelength_nm(Wavelength::Photoluminescence)
         .ok_or(ReconcileError::NoEmission)
-}
-
-fn problem<'a>(
-    stack: &Stack,
-    parameters: &'a Parameters,
-    readings: &Readings,
-    offset: &HouseOffset,
-) -> Problem<'a> {
-    let mut stack = stack.clone();
-    if let Some(temperature_k) = readings.temperature_k {
-        stack.operation.temperature_k = temperature_k;
-    }
-    let mut data = Vec::new();
-    let mut sigmas = Vec::new();
-    if let Some(pl) = readings.pl_nm {
-        let nm_per_mev = 1e-3 * pl.value / photon_ev(pl.value);
-        data.push((Datum::Pl, pl));
-        sigmas.push(pl.sigma.hypot(nm_per_mev * offset.sigma_mev));
-    }
-    if let Some(period) = readings.period_nm {
-        data.push((Datum::Period, period));
-        sigmas.push(period.sigma);
-    }
-    if let Some(mismatch) = readings.mismatch {
-        data.push((Datum::Mismatch(mismatch.kind), mismatch.ppm));
-        sigmas.push(mismatch.ppm.sigma);
-    }
-    Problem {
-        stack,
-        parameters,
-        data,
-        sigmas,
-        offset_mev: offset.offset_mev,
-        reflection: readings.reflection,
-    }
 }
 
 fn correlation(covariance: &DMatrix<f64>) -> Vec<Vec<f64>> {
@@ -598,130 +361,6 @@ fn undetermined(unknowns: &[Unknown], jacobian: &DMatrix<f64>) -> Vec<Direction>
     }
     found.sort_by(|a, b| a.0.total_cmp(&b.0));
     found.into_iter().map(|(_, direction)| direction).collect()
-}
-
-/// A single cause before it is fitted.
-struct Suspect {
-    name: String,
-    unit: &'static str,
-    /// What is usual of it, one sigma.
-    usual: f64,
-    acts: Act,
-}
-
-enum Act {
-    Unknowns(Vec<(Unknown, f64)>),
-    BenchTemperature,
-    BenchWavelength,
-}
-
-impl Suspect {
-    fn predicted(&self, problem: &Problem<'_>, amount: f64) -> Result<Vec<f64>, ReconcileError> {
-        let mut stack = problem.stack.clone();
-        match &self.acts {
-            Act::Unknowns(unknowns) => {
-                for (unknown, per_amount) in unknowns {
-                    unknown.shift(&mut stack, amount * per_amount);
-                }
-                problem.predicted(&stack, 0.0)
-            }
-            Act::BenchTemperature => {
-                stack.operation.temperature_k = (stack.operation.temperature_k + amount).max(1.0);
-                problem.predicted(&stack, 0.0)
-            }
-            Act::BenchWavelength => problem.predicted(&stack, amount),
-        }
-    }
-}
-
-/// Each possible cause by itself, with the amount that explains the data best.
-fn causes(problem: &Problem<'_>, unknowns: &[Unknown]) -> Result<Vec<SingleCause>, ReconcileError> {
-    let mut found = Vec::new();
-    for suspect in suspects(problem, unknowns) {
-        let derivative = |at: f64| -> Result<DVector<f64>, ReconcileError> {
-            let step = STEP * suspect.usual;
-            let above = problem.misses(&suspect.predicted(problem, at + step)?);
-            let below = problem.misses(&suspect.predicted(problem, at - step)?);
-            Ok((below - above) / (2.0 * step))
-        };
-        let slope = derivative(0.0)?;
-        let weight = slope.norm_squared();
-        // What moves no datum by a hundredth of its error within what is usual explains nothing.
-        if weight.sqrt() * suspect.usual < 1e-2 {
-            continue;
-        }
-        let mut amount = 0.0;
-        let mut misses = problem.misses(&suspect.predicted(problem, amount)?);
-        for _ in 0..6 {
-            let step = slope.dot(&misses) / weight;
-            amount += step.clamp(-10.0 * suspect.usual, 10.0 * suspect.usual);
-            misses = problem.misses(&suspect.predicted(problem, amount)?);
-            if step.abs() < 1e-3 * suspect.usual {
-                break;
-            }
-        }
-        found.push(SingleCause {
-            name: suspect.name,
-            unit: suspect.unit,
-            amount,
-            sigma: weight.sqrt().recip(),
-            chi_square: misses.norm_squared(),
-            unusual: amount / suspect.usual,
-            leaves: misses.iter().copied().collect(),
-        });
-    }
-    let cost = |cause: &SingleCause| cause.chi_square + cause.unusual * cause.unusual;
-    found.sort_by(|a, b| cost(a).total_cmp(&cost(b)));
-    Ok(found)
-}
-
-fn suspects(problem: &Problem<'_>, unknowns: &[Unknown]) -> Vec<Suspect> {
-    let mut suspects: Vec<Suspect> = every_cause(&problem.stack, unknowns)
-        .into_iter()
-        .map(|(name, moved)| {
-            let first = &moved[0];
-            // A rate is said in per cent, all else in the unit of the unknown.
-            let (unit, usual, per_amount): (_, _, fn(&Unknown) -> f64) = if moved.len() > 1 {
-                let percent = 100.0 * first.prior_sigma / first.ordered;
-                ("%", percent, |unknown| 0.01 * unknown.ordered)
-            } else {
-                (first.unit(), first.prior_sigma, |_| 1.0)
-            };
-            Suspect {
-                name,
-                unit,
-                usual,
-                acts: Act::Unknowns(
-                    moved
-                        .into_iter()
-                        .map(|unknown| {
-                            let per_amount = per_amount(&unknown);
-                            (unknown, per_amount)
-                        })
-                        .collect(),
-                ),
-            }
-        })
-        .collect();
-    let pl = problem
-        .data
-        .iter()
-        .position(|(datum, _)| *datum == Datum::Pl);
-    if let Some(index) = pl {
-        suspects.push(Suspect {
-            name: "bench temperature".to_owned(),
-            unit: "K",
-            usual: BENCH_K,
-            acts: Act::BenchTemperature,
-        });
-        suspects.push(Suspect {
-            name: "model or bench wavelength".to_owned(),
-            unit: "nm",
-            usual: problem.sigmas[index],
-            acts: Act::BenchWavelength,
-        });
-    }
-    suspects
 }
 
 /// Fills in what to change, and what peak is to be expected then.

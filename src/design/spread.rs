@@ -14,29 +14,40 @@
 //! solves of wafers of its own drawing, and the miss is part of the record. `Solving::EachWafer`
 //! leaves the quadratic out.
 
-use super::draws::{BLOCK, Normals, normal_below};
+mod layers;
+mod statistics;
+mod wafers;
+
+pub use layers::LayerSpread;
+pub use statistics::{Histogram, Moments, Yield};
+
+use super::draws::Normals;
 use super::reactor::{Reactor, Variable};
 use super::surrogate::{Quadratic, points};
 use crate::evaluation::{Evaluation, Failure};
 use crate::materials::Parameters;
-use crate::structure::{Medium, Role, Stack, Substance, Target, Wavelength};
+use crate::structure::{Medium, Stack, Target, Wavelength};
 use crate::units::air_index;
+use layers::layers;
 use rayon::prelude::*;
-use std::sync::atomic::{AtomicUsize, Ordering};
+use statistics::{histogram, moments, quantile, shares};
+use wafers::Wafers;
 
 /// Error of the calculated wavelength where nobody states it, nm (common practice for a first
 /// design without house offsets: 5 to 20 nm).
 pub const MODEL_NM: f64 = 10.0;
+
 /// Wafers whose full solution is compared with the quadratic.
 const CHECKED: usize = 32;
+
 /// The block of draws that the check takes, far from those of the wafers.
 const CHECK_BLOCK: u64 = u64::MAX;
+
 /// Shares of the wafers whose wavelengths are reported.
 const QUANTILES: [f64; 7] = [0.01, 0.05, 0.16, 0.5, 0.84, 0.95, 0.99];
-/// Largest factor by which errors are scaled to reach a yield.
-const LARGEST_FACTOR: f64 = 1e3;
-/// Wafers that the factor for a wanted yield is found with, at most.
-const FACTOR_WAFERS: usize = 100_000;
+
+/// √3: from the middle to the outer nodes of Gauss and Hermite's three-point rule, in sigmas.
+const STEP: f64 = 1.732_050_807_568_877_2;
 
 /// How the wavelength of a wafer is had.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
@@ -96,15 +107,6 @@ pub struct Sensitivity {
     pub share: f64,
 }
 
-/// Mean and sigma of a wavelength, nm in vacuum.
-#[derive(Clone, Copy, Debug, PartialEq)]
-pub struct Moments {
-    /// Mean.
-    pub mean_nm: f64,
-    /// Standard deviation.
-    pub sigma_nm: f64,
-}
-
 /// How well the quadratic stands for full solutions.
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub struct Miss {
@@ -118,25 +120,6 @@ pub struct Miss {
     pub worst_nm: f64,
 }
 
-/// The share of good wafers, by several roads.
-#[derive(Clone, Copy, Debug, PartialEq)]
-pub struct Yield {
-    /// The window, nm in vacuum.
-    pub target_nm: f64,
-    /// Its half width, nm.
-    pub tolerance_nm: f64,
-    /// Of the wafers drawn.
-    pub sampled: f64,
-    /// Standard error of that share, from the number of draws.
-    pub standard_error: f64,
-    /// By the linear law.
-    pub linear: f64,
-    /// Of the wafers drawn, if the design's median stood on the target.
-    pub centred: f64,
-    /// Of the wafers drawn, with the error of the model unknown as it is.
-    pub with_model: f64,
-}
-
 /// Errors that a wanted yield takes.
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub struct Wanted {
@@ -147,30 +130,8 @@ pub struct Wanted {
     pub factor: Option<f64>,
     /// The sigma of the wavelength that goes with it, nm.
     pub sigma_nm: Option<f64>,
-}
-
-/// What growth does to one figure of the layers.
-#[derive(Clone, Debug, PartialEq)]
-pub struct LayerSpread {
-    /// What it is: `well thickness`, `period`, `Ga in the wells`.
-    pub name: String,
-    /// As designed.
-    pub value: f64,
-    /// One sigma (linear).
-    pub sigma: f64,
-    /// Its unit; empty for a fraction.
-    pub unit: &'static str,
-}
-
-/// Bars of equal width.
-#[derive(Clone, Debug, PartialEq)]
-pub struct Histogram {
-    /// Where the first bar begins, nm.
-    pub from_nm: f64,
-    /// Width of a bar, nm.
-    pub width_nm: f64,
-    /// Wafers in each.
-    pub counts: Vec<usize>,
+    /// The factor if the design stood in the middle of the window.
+    pub factor_if_centred: Option<f64>,
 }
 
 /// Everything that came out.
@@ -330,9 +291,6 @@ pub fn spread(
     })
 }
 
-/// √3: from the middle to the outer nodes of Gauss and Hermite's three-point rule, in sigmas.
-const STEP: f64 = 1.732_050_807_568_877_2;
-
 fn length(vector: &[f64]) -> f64 {
     vector.iter().map(|x| x * x).sum::<f64>().sqrt()
 }
@@ -380,255 +338,4 @@ fn miss(
         rms_nm: length(&misses) / (checked.max(1) as f64).sqrt(),
         worst_nm: misses.iter().fold(0.0, |worst, miss| worst.max(miss.abs())),
     })
-}
-
-/// Wafers to be drawn.
-struct Wafers<'a> {
-    variables: usize,
-    request: &'a Request,
-    progress: &'a (dyn Fn(usize) + Sync),
-}
-
-impl Wafers<'_> {
-    /// The wavelengths of `count` wafers in the order of their draws.
-    fn drawn(
-        &self,
-        count: usize,
-        wavelength_nm: impl Fn(&[f64]) -> Option<f64> + Sync,
-    ) -> Vec<Option<f64>> {
-        let done = AtomicUsize::new(0);
-        (0..count.div_ceil(BLOCK))
-            .into_par_iter()
-            .flat_map_iter(|block| {
-                let size = BLOCK.min(count - block * BLOCK);
-                let mut normals = Normals::of_block(self.request.seed, block as u64);
-                let mut point = vec![0.0; self.variables];
-                let wavelengths: Vec<Option<f64>> = (0..size)
-                    .map(|wafer| {
-                        point.fill_with(|| normals.draw());
-                        if wafer % 64 == 63 {
-                            let done = done.fetch_add(64, Ordering::Relaxed) + 64;
-                            (self.progress)(done);
-                        }
-                        wavelength_nm(&point)
-                    })
-                    .collect();
-                wavelengths
-            })
-            .collect()
-    }
-
-    /// The factor on all errors at which a share of the wafers is good.
-    ///
-    /// The share falls as the errors grow wherever the design stands inside the window: bisection
-    /// on the logarithm of the factor.
-    fn wanted(
-        &self,
-        share: f64,
-        (target_nm, tolerance_nm): (f64, f64),
-        quadratic: &Quadratic,
-    ) -> Wanted {
-        let count = self.request.draws.min(FACTOR_WAFERS);
-        let silent = Wafers {
-            progress: &|_| {},
-            ..*self
-        };
-        let at = |factor: f64| {
-            let drawn = silent.drawn(count, |x| {
-                let scaled: Vec<f64> = x.iter().map(|x| factor * x).collect();
-                Some(quadratic.at(&scaled))
-            });
-            drawn.into_iter().flatten().collect::<Vec<f64>>()
-        };
-        let reached = |factor: f64| {
-            let inside = at(factor)
-                .into_iter()
-                .filter(|nm| (nm - target_nm).abs() <= tolerance_nm)
-                .count();
-            inside as f64 >= share * count as f64
-        };
-        let mut low = 1.0 / LARGEST_FACTOR;
-        let mut high = LARGEST_FACTOR;
-        let factor = if !reached(low) {
-            None
-        } else if reached(high) {
-            Some(high)
-        } else {
-            while high / low > 1.0 + 1e-4 {
-                let middle = (low * high).sqrt();
-                if reached(middle) {
-                    low = middle;
-                } else {
-                    high = middle;
-                }
-            }
-            Some(low)
-        };
-        Wanted {
-            share,
-            factor,
-            sigma_nm: factor.map(|factor| moments(&at(factor)).sigma_nm),
-        }
-    }
-}
-
-fn moments(values: &[f64]) -> Moments {
-    let count = values.len() as f64;
-    let mean_nm = values.iter().sum::<f64>() / count;
-    let squares: f64 = values.iter().map(|nm| (nm - mean_nm).powi(2)).sum();
-    Moments {
-        mean_nm,
-        sigma_nm: (squares / (count - 1.0).max(1.0)).sqrt(),
-    }
-}
-
-/// The value below which a share of sorted values lies, straight between neighbours.
-fn quantile(sorted: &[f64], share: f64) -> f64 {
-    let place = share * (sorted.len() - 1) as f64;
-    let below = place.floor() as usize;
-    let above = (below + 1).min(sorted.len() - 1);
-    sorted[below] + (sorted[above] - sorted[below]) * (place - below as f64)
-}
-
-fn shares(
-    sorted: &[f64],
-    lost: usize,
-    (target_nm, tolerance_nm): (f64, f64),
-    linear: Moments,
-    model_nm: f64,
-) -> Yield {
-    let count = (sorted.len() + lost) as f64;
-    let within = |shift_nm: f64| {
-        let inside = sorted
-            .iter()
-            .filter(|nm| (*nm + shift_nm - target_nm).abs() <= tolerance_nm);
-        inside.count() as f64 / count
-    };
-    let normal = |mean_nm: f64, sigma_nm: f64| {
-        let bound =
-            |side: f64| normal_below((target_nm + side * tolerance_nm - mean_nm) / sigma_nm);
-        bound(1.0) - bound(-1.0)
-    };
-    let sampled = within(0.0);
-    let with_model = if model_nm > 0.0 {
-        sorted.iter().map(|nm| normal(*nm, model_nm)).sum::<f64>() / count
-    } else {
-        sampled
-    };
-    Yield {
-        target_nm,
-        tolerance_nm,
-        sampled,
-        standard_error: (sampled * (1.0 - sampled) / count).sqrt(),
-        linear: if linear.sigma_nm > 0.0 {
-            normal(linear.mean_nm, linear.sigma_nm)
-        } else {
-            f64::from((linear.mean_nm - target_nm).abs() <= tolerance_nm)
-        },
-        centred: within(target_nm - quantile(sorted, 0.5)),
-        with_model,
-    }
-}
-
-/// Bars over all wafers but the outermost thousandth at either end, which join the end bars.
-fn histogram(sorted: &[f64]) -> Histogram {
-    const BARS: usize = 48;
-    let (low, high) = (quantile(sorted, 0.0005), quantile(sorted, 0.9995));
-    let width_nm = ((high - low) / BARS as f64).max(1e-6);
-    let mut counts = vec![0; BARS];
-    for nm in sorted {
-        let bar = ((nm - low) / width_nm).max(0.0) as usize;
-        counts[bar.min(BARS - 1)] += 1;
-    }
-    Histogram {
-        from_nm: low,
-        width_nm,
-        counts,
-    }
-}
-
-/// Linear sigmas of the figures that a grower measures.
-fn layers(reactor: &Reactor<'_>, stack: &Stack) -> Vec<LayerSpread> {
-    /// In sigmas; small enough for a slope, large enough for its digits.
-    const STEP: f64 = 0.05;
-
-    let variables = reactor.variables.len();
-    let moved: Vec<(Stack, Stack)> = (0..variables)
-        .map(|variable| {
-            let side = |step: f64| {
-                let mut point = vec![0.0; variables];
-                point[variable] = step;
-                reactor.grown(&point)
-            };
-            (side(STEP), side(-STEP))
-        })
-        .collect();
-    figures(stack)
-        .into_iter()
-        .map(|figure| {
-            let slopes: Vec<f64> = moved
-                .iter()
-                .map(|(above, below)| ((figure.of)(above) - (figure.of)(below)) / (2.0 * STEP))
-                .collect();
-            LayerSpread {
-                name: figure.name,
-                value: (figure.of)(stack),
-                sigma: length(&slopes),
-                unit: figure.unit,
-            }
-        })
-        .collect()
-}
-
-/// A figure of the layers.
-struct LayerFigure {
-    name: String,
-    unit: &'static str,
-    of: Box<dyn Fn(&Stack) -> f64>,
-}
-
-/// Thickness of the first well, the period, and every mixed fraction of the first well.
-fn figures(stack: &Stack) -> Vec<LayerFigure> {
-    let first_well = |stack: &Stack| {
-        stack
-            .layers
-            .iter()
-            .position(|layer| layer.role == Role::Well)
-            .unwrap_or(0)
-    };
-    let well = first_well(stack);
-    let mut figures = vec![LayerFigure {
-        name: "well thickness".to_owned(),
-        unit: "nm",
-        of: Box::new(move |stack| stack.layers[well].thickness_nm),
-    }];
-    if let Some(next) =
-        (well + 1..stack.layers.len()).find(|&layer| stack.layers[layer].role == Role::Well)
-    {
-        figures.push(LayerFigure {
-            name: "period".to_owned(),
-            unit: "nm",
-            of: Box::new(move |stack| {
-                let layers = &stack.layers[well..next];
-                layers.iter().map(|layer| layer.thickness_nm).sum()
-            }),
-        });
-    }
-    if let Substance::Alloy(composition) = &stack.layers[well].material.substance {
-        let mixed = composition
-            .elements()
-            .iter()
-            .filter(|element| composition.fraction(*element) < 1.0);
-        for element in mixed {
-            figures.push(LayerFigure {
-                name: format!("{} in the wells", element.symbol()),
-                unit: "",
-                of: Box::new(move |stack| match &stack.layers[well].material.substance {
-                    Substance::Alloy(composition) => composition.fraction(element),
-                    Substance::Own { .. } => 0.0,
-                }),
-            });
-        }
-    }
-    figures
 }

@@ -9,8 +9,6 @@ use crate::design::{Datum, Direction, Reconciliation};
 use crate::source::Colour;
 use crate::structure::{PhotoluminescenceMap, Returned, Stack};
 
-/// Sum of squares per datum above which the estimate does not explain the data.
-const POOR_FIT: f64 = 4.0;
 /// Single causes that are shown.
 const CAUSES: usize = 6;
 
@@ -153,7 +151,7 @@ fn estimates(wafer: &Wafer<'_>, page: &mut Page) {
     if !pairs.is_empty() {
         page.pair("correlations", &pairs.join(", "));
     }
-    if result.estimated_chi_square > POOR_FIT * result.deviations.len() as f64 {
+    if !result.explains_the_data() {
         page.paragraph(
             2,
             "No structure within these unknowns explains the data: look at the bench, at which layer \
@@ -305,7 +303,7 @@ fn short(datum: Datum) -> &'static str {
 
 fn corrections(wafer: &Wafer<'_>, page: &mut Page) {
     let result = wafer.result;
-    if !result.undetermined.is_empty() {
+    if !result.undetermined.is_empty() || !result.explains_the_data() {
         return;
     }
     page.heading("For the next order");

@@ -85,7 +85,7 @@ fn distribution(spread: &Spread, page: &mut Page) {
     let quantiles: Vec<String> = spread
         .quantiles
         .iter()
-        .map(|(share, nm)| format!("{} % {}", plain(100.0 * share), fixed(*nm, 1)))
+        .map(|(share, nm)| format!("{}%: {}", plain(100.0 * share), fixed(*nm, 1)))
         .collect();
     page.pair("lie below, nm", &quantiles.join(" · "));
     if spread.lost > 0 {
@@ -162,6 +162,12 @@ fn good(spread: &Spread, page: &mut Page) {
                 .to_owned(),
         };
         page.pair(&format!("{} good", percent(wanted.share)), &text);
+        if let Some(factor) = wanted.factor_if_centred {
+            page.pair(
+                "if centred",
+                &format!("{} times these errors do", significant(factor, 3)),
+            );
+        }
     }
 }
 

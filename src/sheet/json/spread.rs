@@ -61,6 +61,7 @@ struct Wanted {
     share: f64,
     factor: Option<f64>,
     sigma_nm: Option<f64>,
+    factor_if_centred: Option<f64>,
 }
 
 #[derive(Serialize)]
@@ -134,6 +135,7 @@ pub fn spread(stack: &Stack, spread: &Spread, stamp: &Stamp) -> String {
             share: wanted.share,
             factor: wanted.factor,
             sigma_nm: wanted.sigma_nm,
+            factor_if_centred: wanted.factor_if_centred,
         }),
         sensitivities: spread
             .sensitivities
