@@ -465,7 +465,7 @@ const STAMP: &str = "program input_sha256 parameters_sha256 parameter_files temp
 #[test]
 fn the_document_of_levels_has_its_keys() {
     for path in structures() {
-        let document = document(&["levels", &path, "--json", "--quiet"]);
+        let document = document(&["levels", &path, "--json", "--quiet", "--bands", "single"]);
         has_keys(
             &document,
             "format stamp title temperature_k shrinkage_mev wells layers electron heavy_hole light_hole \
