@@ -61,6 +61,7 @@ macro_rules! row {
 }
 
 mod restatement;
+mod strain;
 mod xray;
 
 pub use restatement::restatement;
@@ -116,6 +117,7 @@ pub fn levels(evaluation: &Evaluation<'_>) -> Vec<CsvTable> {
         edges(evaluation),
         envelopes(evaluation),
         dispersion(evaluation),
+        strain::strain(&evaluation.strain_budget()),
     ]
 }
 

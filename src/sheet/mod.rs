@@ -18,6 +18,7 @@ mod restatement;
 mod spectrum;
 mod stamp;
 mod starting;
+mod strain;
 mod table;
 mod xray;
 

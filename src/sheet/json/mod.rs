@@ -9,6 +9,7 @@ mod levels;
 mod materials;
 mod restatement;
 mod spectrum;
+mod strain;
 mod xray;
 
 pub use findings::findings;
