@@ -16,7 +16,9 @@ use std::path::Path;
 pub(super) struct Text {
     pub(super) name: String,
     pub(super) content: String,
-    sha256: String,
+    pub(super) sha256: String,
+    /// Whether the bytes began with a byte-order mark, which the text has not.
+    pub(super) had_byte_order_mark: bool,
 }
 
 impl Text {
@@ -44,6 +46,7 @@ impl Text {
             name,
             content,
             sha256: sheet::sha256(&bytes),
+            had_byte_order_mark: bytes.starts_with("\u{feff}".as_bytes()),
         })
     }
 }

@@ -30,6 +30,12 @@ pub(super) enum Command {
     /// A structure against physics: barriers, strain, coupling, doping, odd numbers
     #[command(after_help = CHECK_EXAMPLES, term_width = COLUMNS)]
     Check(Check),
+    /// Growth errors to wavelength and yield: sensitivities and random wafers
+    #[command(after_help = SPREAD_EXAMPLES, term_width = COLUMNS)]
+    Spread(Spread),
+    /// Measured photoluminescence and X-ray against the design: what was grown
+    #[command(after_help = RECONCILE_EXAMPLES, term_width = COLUMNS)]
+    Reconcile(Reconcile),
     /// What X-rays see of the wafer: peaks, zero order, satellites, rocking curve
     #[command(after_help = XRAY_EXAMPLES, term_width = COLUMNS)]
     Xray(Xray),
@@ -99,6 +105,57 @@ pub(super) struct Check {
     pub(super) file: StructureFile,
     #[command(flatten)]
     pub(super) conditions: Conditions,
+    #[command(flatten)]
+    pub(super) output: Output,
+}
+
+#[derive(Debug, Args)]
+pub(super) struct Spread {
+    #[command(flatten)]
+    pub(super) file: StructureFile,
+    #[command(flatten)]
+    pub(super) conditions: Conditions,
+    /// Of which wavelength: transition, pl or gain; goes before the kind of [target]
+    #[arg(long, value_name = "KIND")]
+    pub(super) kind: Option<String>,
+    /// How many wafers are drawn
+    #[arg(long, value_name = "COUNT", default_value = "100000")]
+    pub(super) draws: String,
+    /// Seed of the random numbers: the same seed draws the same wafers
+    #[arg(long, value_name = "NUMBER", default_value_t = 1)]
+    pub(super) seed: u64,
+    /// A yield in per cent: how small errors must be to reach it
+    #[arg(long = "yield", value_name = "PERCENT")]
+    pub(super) wanted_yield: Option<String>,
+    /// Solve every wafer in full, in place of the quadratic law (slow)
+    #[arg(long)]
+    pub(super) each_wafer: bool,
+    #[command(flatten)]
+    pub(super) output: Output,
+    /// Draw the distribution and the sensitivities
+    #[arg(long, value_name = "PATH.svg")]
+    pub(super) figure: Option<PathBuf>,
+}
+
+#[derive(Debug, Args)]
+pub(super) struct Reconcile {
+    #[command(flatten)]
+    pub(super) file: StructureFile,
+    /// What came back with the wafer (TOML)
+    #[arg(value_name = "RETURNED")]
+    pub(super) returned: PathBuf,
+    /// Valence bands: mixed, or single (heavy and light holes each by itself)
+    #[arg(long, value_name = "BANDS")]
+    pub(super) bands: Option<String>,
+    /// House offsets: measured photoluminescence against the model, run by run
+    #[arg(long, value_name = "LEDGER.toml")]
+    pub(super) ledger: Option<PathBuf>,
+    /// Append this run to the ledger (--force replaces the same run)
+    #[arg(long, requires = "ledger")]
+    pub(super) record: bool,
+    /// Share of the estimate that a correction takes, above 0 to 1
+    #[arg(long, value_name = "SHARE", default_value = "0.7")]
+    pub(super) damping: String,
     #[command(flatten)]
     pub(super) output: Output,
 }
@@ -306,6 +363,42 @@ Each finding has a code and stands ok (inside its limit), stated (a figure
 without a limit), look (worth a look) or outside. Exit code 5 if anything is
 outside.";
 
+const SPREAD_EXAMPLES: &str = "\
+Examples:
+  stepwell spread my.toml
+  stepwell spread my.toml --yield 95 --figure spread.svg
+  stepwell spread my.toml --kind gain --draws 1e6 --seed 7 --json
+
+The file says in [growth] by how much growth varies from run to run, one sigma:
+  [growth]
+  rate_percent = 1.0
+  flux_percent = { In = 0.5, Ga = 0.5, Al = 0.5 }
+and in [target] which wavelength counts as good (`tolerance_nm`). An error of a
+flux moves thickness and composition of every layer that holds the element.";
+
+const RECONCILE_EXAMPLES: &str = "\
+Examples:
+  stepwell reconcile my.toml returned.toml
+  stepwell reconcile my.toml returned.toml --ledger house.toml --record
+
+The second file says what came back with the wafer:
+  [returned]
+  run = \"E-0417\"
+  [returned.pl]
+  peak_nm = 1314.2        # or map = \"e-0417.csv\", beside this file
+  temperature_c = 23
+  medium = \"air\"
+  [returned.xray]
+  period_nm = 14.62
+  mean_mismatch_ppm = 850
+  mismatch = \"perpendicular\"   # or \"relaxed\"
+  sense = \"compressive\"
+  [assume]                # what the data can't tell and you vouch for
+  barrier_ratio_fixed = true
+  moved = [\"well.thickness\", \"well.Ga\"]
+
+Exit code 4 where the data leave something open that no assumption settles.";
+
 const XRAY_EXAMPLES: &str = "\
 Examples:
   stepwell xray my.toml
@@ -372,6 +465,8 @@ mod tests {
             LEVELS_EXAMPLES,
             SPECTRUM_EXAMPLES,
             CHECK_EXAMPLES,
+            SPREAD_EXAMPLES,
+            RECONCILE_EXAMPLES,
             XRAY_EXAMPLES,
             RESTATE_EXAMPLES,
             MATERIALS_EXAMPLES,

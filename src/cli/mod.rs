@@ -8,9 +8,12 @@ mod case;
 mod commands;
 mod complaint;
 mod flags;
+mod gauge;
 mod manual;
 mod outlet;
+mod reconcile;
 mod shipped;
+mod spread;
 mod wafer;
 mod welcome;
 mod wishes;
@@ -33,6 +36,8 @@ enum Ending {
     Usage = 2,
     /// The input is wrong.
     Input = 3,
+    /// No answer inside the limits.
+    Unanswered = 4,
     /// Checked and found outside.
     Outside = 5,
 }
@@ -79,6 +84,8 @@ fn obey(flags: Flags, outlet: &Outlet) -> Result<Ending, Complaint> {
         None => welcome::greet(),
         Some(Command::Levels(flags)) => commands::levels(&flags, outlet),
         Some(Command::Spectrum(flags)) => commands::spectrum(&flags, outlet),
+        Some(Command::Spread(flags)) => spread::spread(&flags, outlet),
+        Some(Command::Reconcile(flags)) => reconcile::reconcile(&flags, outlet),
         Some(Command::Check(flags)) => commands::check(&flags, outlet),
         Some(Command::Xray(flags)) => wafer::xray(&flags, outlet),
         Some(Command::Restate(flags)) => wafer::restate(&flags, outlet),

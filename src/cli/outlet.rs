@@ -172,6 +172,20 @@ impl Files {
     }
 }
 
+/// Writes behind what a file holds; a file that is not there is made, with `head` before.
+pub(super) fn append(path: &Path, head: &str, text: &str) -> Result<(), Complaint> {
+    let opened = fs::OpenOptions::new().append(true).open(path);
+    match opened {
+        Ok(mut file) => file
+            .write_all(text.as_bytes())
+            .map_err(|error| unwritable(path, &error)),
+        Err(error) if error.kind() == ErrorKind::NotFound => {
+            Files::new(false).write(path, &format!("{head}{text}"))
+        }
+        Err(error) => Err(unwritable(path, &error)),
+    }
+}
+
 fn is_in_the_way(path: &Path) -> bool {
     match fs::symlink_metadata(path) {
         Ok(found) if found.is_symlink() => fs::metadata(path).is_ok_and(|it| it.is_file()),

@@ -66,7 +66,7 @@ fn refused(flag: &str, word: &str, refusal: &Refusal) -> Complaint {
     Complaint::usage(format!("{flag} {word}: {}", refusal.message)).with_remedy(&refusal.help)
 }
 
-fn bands(word: &str) -> Result<Bands, Complaint> {
+pub(super) fn bands(word: &str) -> Result<Bands, Complaint> {
     one("--bands", word, &[Bands::Mixed, Bands::Single], |it| {
         it.word()
     })
@@ -86,7 +86,7 @@ pub(super) fn band(word: &str) -> Result<Band, Complaint> {
     )
 }
 
-fn one<T: Copy>(
+pub(super) fn one<T: Copy>(
     flag: &str,
     word: &str,
     known: &[T],

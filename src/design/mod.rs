@@ -2,9 +2,27 @@
 //! and how they compare.
 
 mod check;
+mod draws;
+mod house_offset;
 mod movement;
+mod reactor;
+mod reconcile;
+mod spread;
+mod surrogate;
+mod unknown;
 mod wafer;
 
 pub use check::{Carrier, Finding, Measure, Standing, check};
+pub use house_offset::{HouseOffset, family};
 pub use movement::{Immovable, Impossible, Move, Quantity, Variation};
+pub use reactor::{Cause, Reactor, Variable};
+pub use reconcile::{
+    Correction, Datum, Deviation, Direction, Estimate, Readings, ReconcileError, Reconciliation,
+    SingleCause, modelled_pl_nm, reconcile,
+};
+pub use spread::{
+    Histogram, LayerSpread, MODEL_NM, Miss, Moments, Request, Sensitivity, Solving, Spread,
+    SpreadError, Wanted, Yield, in_vacuum_nm, posed, spread, vacuum_nm, wavelength_nm,
+};
+pub use unknown::{Moved, Unknown, unknowns};
 pub use wafer::{StrainLimits, WaferFinding};

@@ -43,7 +43,7 @@ pub type Three = [[f64; 3]; 3];
 /// Levels closer than this are spanned together.
 const CLUSTER: f64 = 1e-7;
 /// Levels closer than this are separated inside their span at every step.
-const GROUP: f64 = 2e-4;
+const GROUP: f64 = 5e-5;
 /// Largest residual of an accepted state: the energy is good to its square over the distance of the
 /// next level.
 const LARGEST_RESIDUAL: f64 = 3e-6;

@@ -60,11 +60,16 @@ macro_rules! row {
     ($($cell:expr),* $(,)?) => { vec![$(Cell::from($cell)),*] };
 }
 
+mod reconcile;
+mod spread;
+
 mod restatement;
 mod strain;
 mod xray;
 
+pub use reconcile::reconcile;
 pub use restatement::restatement;
+pub use spread::spread;
 pub use xray::xray;
 
 impl CsvTable {

@@ -3,6 +3,7 @@
 
 use std::ops::Range;
 
+use super::growth::GrowthTable;
 use super::reader::{Field, Given, Values};
 
 pub(super) struct StructureFile {
@@ -15,6 +16,7 @@ pub(super) struct StructureFile {
     pub(super) operation: OperationTable,
     pub(super) model: ModelTable,
     pub(super) target: Option<TargetTable>,
+    pub(super) growth: Field<GrowthTable>,
     pub(super) limits: Option<LimitsTable>,
 }
 
@@ -110,7 +112,7 @@ pub(super) struct LimitsTable {
 }
 
 /// The same place with what `convert` makes of the value.
-fn map<T, U>(field: Field<T>, convert: impl FnOnce(T) -> U) -> Field<U> {
+pub(super) fn map<T, U>(field: Field<T>, convert: impl FnOnce(T) -> U) -> Field<U> {
     field.map(|given| Given {
         key: given.key,
         span: given.span,
@@ -155,6 +157,7 @@ impl From<Values> for StructureFile {
                 .table("target")
                 .and_then(|given| given.value)
                 .map(TargetTable::from),
+            growth: map(values.table("growth"), GrowthTable::from),
             limits: values
                 .table("limits")
                 .and_then(|given| given.value)

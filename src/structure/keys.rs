@@ -1,6 +1,7 @@
 //! Every key of the structure file, in one table: the reader, the editor schema and the key
 //! reference of the manual are all driven by it.
 
+use super::growth::GROWTH;
 use super::{Bands, Lineshape, Medium, Role, Wavelength};
 
 /// One table of the file and the keys it may hold.
@@ -37,6 +38,8 @@ pub(super) enum Kind {
     Count(u64, u64),
     /// A number.
     Number(Magnitude),
+    /// A list of texts, so many at most.
+    Texts(usize),
     /// A list of numbers, as many as from the second to the third.
     Numbers(Magnitude, usize, usize),
     /// A table.
@@ -74,7 +77,7 @@ impl Table {
     }
 }
 
-const fn number(unit: &'static str, possible: (f64, f64), usual: (f64, f64)) -> Kind {
+pub(super) const fn number(unit: &'static str, possible: (f64, f64), usual: (f64, f64)) -> Kind {
     Kind::Number(Magnitude {
         unit,
         possible,
@@ -96,7 +99,7 @@ pub(super) const USUAL_WELL_NM: (f64, f64) = (2.0, 30.0);
 /// Furthest that the first and the last well may stand apart, outer edges, nm.
 pub(super) const LONGEST_ACTIVE_REGION_NM: f64 = 10_000.0;
 
-const DENSITY: Magnitude = Magnitude {
+pub(super) const DENSITY: Magnitude = Magnitude {
     unit: "cm^-3",
     possible: (1e12, 1e21),
     usual: (1e16, 2e19),
@@ -148,6 +151,12 @@ pub(super) static FILE: Table = Table {
             kind: Kind::Table(&MODEL),
             default: "",
             doc: "switches of the model",
+        },
+        Key {
+            name: "growth",
+            kind: Kind::Table(&GROWTH),
+            default: "",
+            doc: "by how much growth varies from run to run",
         },
         Key {
             name: "target",

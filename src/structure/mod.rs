@@ -6,28 +6,39 @@
 //! [`write()`] says a stack as a file.
 
 mod file;
+mod growth;
 mod keys;
 mod layers;
+mod ledger;
 mod limits;
 mod magnitude;
 mod manuscript;
 mod number;
 mod own_numbers;
 mod palette;
+mod photoluminescence_map;
 mod reader;
 mod reference;
 mod remark;
+mod returned;
 mod schema;
 mod stack;
 mod syntax;
 mod validate;
 mod write;
 
+pub use growth::{Fluxes, GROUP_III, Growth};
+pub use ledger::{Ledger, LedgerEntry};
 pub use limits::Limits;
 pub use magnitude::{Refusal, check_magnitude, thickness_range_nm};
 pub use manuscript::{Condition, Form, Manuscript, Selection};
+pub use photoluminescence_map::{MapPoint, PhotoluminescenceMap};
 pub use reference::key_reference;
 pub use remark::Remark;
+pub use returned::{
+    Assumptions, MeanMismatch, Measured, MismatchKind, PlPeak, Returned, ReturnedPl, ReturnedXray,
+    read_returned,
+};
 pub use schema::schema;
 pub use stack::{
     Bands, Doping, Layer, Lineshape, Material, Medium, Model, Operation, Role, Stack, Substance,
@@ -117,7 +128,7 @@ pub fn read(
     overrides: &Overrides,
 ) -> Result<Reading, Vec<Diagnostic>> {
     let (table, broken) = syntax::table(text);
-    let mut findings = reader::Findings::default();
+    let mut findings = reader::Findings::in_file_of(&keys::FILE);
     let values = reader::read(&table, &mut findings);
     if !broken.is_empty() {
         return Err(with_broken_syntax(text, broken, findings.faults));

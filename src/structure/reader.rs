@@ -8,7 +8,7 @@ use toml::Spanned;
 use toml::de::{DeTable, DeValue};
 
 use super::Remark;
-use super::keys::{FILE, Key, Kind, MISNOMERS, Magnitude, Table};
+use super::keys::{Key, Kind, MISNOMERS, Magnitude, Table};
 use crate::source::{Diagnostic, nearest, one_of};
 
 /// Longest text value, characters.
@@ -17,12 +17,24 @@ const LONGEST_TEXT: usize = 200;
 const MOST_KEYS: usize = 200;
 
 /// What the walk finds on its way.
-#[derive(Default)]
 pub(super) struct Findings {
+    /// The table of the whole file, in which misplaced keys are looked for.
+    root: &'static Table,
     /// Faults: the file is refused.
     pub(super) faults: Vec<Diagnostic>,
     /// Remarks.
     pub(super) remarks: Vec<Remark>,
+}
+
+impl Findings {
+    /// None yet, in a file whose keys are those of `root`.
+    pub(super) fn in_file_of(root: &'static Table) -> Self {
+        Self {
+            root,
+            faults: Vec::new(),
+            remarks: Vec::new(),
+        }
+    }
 }
 
 /// A value in its place; without one where it was refused.
@@ -53,6 +65,7 @@ enum Value {
     Flag(bool),
     Count(u64),
     Number(f64),
+    Texts(Vec<(Range<usize>, String)>),
     Numbers(Vec<(Range<usize>, f64)>),
     Table(Values),
     Named(Vec<(String, Given<Values>)>),
@@ -66,6 +79,11 @@ impl Values {
             span: given.span,
             value: given.value.and_then(convert),
         })
+    }
+
+    /// Names of the keys that are there, refused values among them.
+    pub(super) fn names(&self) -> impl Iterator<Item = &'static str> {
+        self.entries.keys().copied()
     }
 
     pub(super) fn text(&mut self, name: &str) -> Field<String> {
@@ -92,6 +110,13 @@ impl Values {
     pub(super) fn number(&mut self, name: &str) -> Field<f64> {
         self.take(name, |value| match value {
             Value::Number(number) => Some(number),
+            _ => None,
+        })
+    }
+
+    pub(super) fn texts(&mut self, name: &str) -> Field<Vec<(Range<usize>, String)>> {
+        self.take(name, |value| match value {
+            Value::Texts(texts) => Some(texts),
             _ => None,
         })
     }
@@ -127,7 +152,7 @@ impl Values {
 
 /// The whole file.
 pub(super) fn read(table: &DeTable<'_>, findings: &mut Findings) -> Values {
-    values(&FILE, 0..0, table, findings)
+    values(findings.root, 0..0, table, findings)
 }
 
 fn values(
@@ -185,7 +210,7 @@ fn unknown(
         (misnomer.help.to_owned(), Some(key))
     } else if let Some(key) = near() {
         (format!("did you mean `{}`?", key.name), Some(key))
-    } else if let Some(path) = home(&FILE, word, 0) {
+    } else if let Some(path) = home(findings.root, word, 0) {
         (format!("`{word}` belongs in {path}"), None)
     } else {
         (format!("known here: {}", one_of(table.names())), None)
@@ -248,6 +273,9 @@ fn checked(
         }
         (Kind::Number(magnitude), number @ (DeValue::Integer(_) | DeValue::Float(_))) => {
             possible(key.name, *magnitude, as_number(number)?, span, findings).map(Value::Number)
+        }
+        (Kind::Texts(most), DeValue::Array(items)) => {
+            texts(key, *most, items.iter(), span, findings)
         }
         (Kind::Numbers(magnitude, fewest, most), DeValue::Array(items)) => {
             let wanted = (*fewest, *most);
@@ -478,6 +506,39 @@ fn numbers<'a, 'i: 'a>(
     complete.then_some(Value::Numbers(numbers))
 }
 
+fn texts<'a, 'i: 'a>(
+    key: &'static Key,
+    most: usize,
+    items: impl ExactSizeIterator<Item = &'a Spanned<DeValue<'i>>>,
+    span: Range<usize>,
+    findings: &mut Findings,
+) -> Option<Value> {
+    if !(1..=most).contains(&items.len()) {
+        let message = format!(
+            "`{}` has {} texts: 1 to {most} are wanted",
+            key.name,
+            items.len()
+        );
+        findings
+            .faults
+            .push(Diagnostic::new(span, message).with_help(key.doc));
+        return None;
+    }
+    let mut texts = Vec::with_capacity(items.len());
+    let mut complete = true;
+    for item in items {
+        if let DeValue::String(text) = item.get_ref() {
+            texts.push((item.span(), text.trim().to_owned()));
+        } else {
+            findings
+                .faults
+                .push(wrong_item(key, item.get_ref(), item.span()));
+            complete = false;
+        }
+    }
+    complete.then_some(Value::Texts(texts))
+}
+
 fn wrong_kind(key: &'static Key, found: &DeValue<'_>, span: Range<usize>) -> Diagnostic {
     let (wanted, help) = match &key.kind {
         Kind::Text | Kind::Word(_) => ("a text", format!("put it in quotes: {}", key.doc)),
@@ -496,6 +557,10 @@ fn wrong_kind(key: &'static Key, found: &DeValue<'_>, span: Range<usize>) -> Dia
                 format!("write a number{unit}, without quotes and without the unit"),
             )
         }
+        Kind::Texts(_) => (
+            "a list of texts",
+            format!("write `{} = [\"...\"]`: {}", key.name, key.doc),
+        ),
         Kind::Numbers(..) => (
             "a list of numbers",
             format!("write `{} = [...]`: {}", key.name, key.doc),
@@ -527,6 +592,7 @@ fn wrong_item(key: &'static Key, found: &DeValue<'_>, span: Range<usize>) -> Dia
             "tables",
             "write `[[layers]]` above each layer, or `layers = [{ role = ... }, ...]`",
         ),
+        Kind::Texts(_) => ("texts", "write one list of texts in quotes"),
         _ => (
             "numbers",
             "write one list of numbers, without quotes: `[1e18, 2e18]`",

@@ -60,6 +60,7 @@ fn entry(key: &'static Key, text: &mut String) {
                 magnitude.unit
             )
         }
+        Kind::Texts(most) => format!("list of 1 to {most} texts in quotes"),
         Kind::Numbers(magnitude, fewest, most) => {
             let (lowest, highest) = magnitude.possible;
             let count = if fewest == most {

@@ -68,6 +68,12 @@ fn described(key: &'static Key, definitions: &mut Map<String, Value>) -> Value {
             json!({ "type": "integer", "minimum": lowest, "maximum": highest })
         }
         Kind::Number(magnitude) => number(*magnitude),
+        Kind::Texts(most) => json!({
+            "type": "array",
+            "items": { "type": "string", "minLength": 1 },
+            "minItems": 1,
+            "maxItems": most,
+        }),
         Kind::Numbers(magnitude, fewest, most) => json!({
             "type": "array",
             "items": number(*magnitude),

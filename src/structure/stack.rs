@@ -1,6 +1,6 @@
 //! The validated stack: what the file said, checked, expanded, in the trade's units.
 
-use super::Limits;
+use super::{Growth, Limits};
 use crate::materials::{Composition, Crystal, Offsets, Parameters};
 
 /// What a layer is made of.
@@ -365,6 +365,8 @@ pub struct Stack {
     pub model: Model,
     /// The wavelength that it is meant to have, where the file says one.
     pub target: Option<Target>,
+    /// Errors of growth, where the file states them.
+    pub growth: Option<Growth>,
     /// Limits of the house, where the file gives any.
     pub limits: Option<Limits>,
 }

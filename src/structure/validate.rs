@@ -1,6 +1,7 @@
 //! From the file to a [`Stack`], collecting every complaint on the way.
 
 use super::file::{ModelTable, OperationTable, StructureFile, TargetTable};
+use super::growth::growth;
 use super::layers::Layers;
 use super::magnitude::check_magnitude;
 use super::number::shown;
@@ -45,6 +46,7 @@ pub(super) fn stack(
     let (palette, substrate) = Palette::of(file, text, parameters, findings);
     let mut reading = Layers::new(palette, parameters, operation.temperature_k);
     let layers = reading.expanded(file.layers.as_ref(), findings);
+    let growth = growth(&file.growth, findings);
     let own_numbers = reading.palette().remarks(findings);
     if overrides.temperature_k.is_some() && !own_numbers.is_empty() {
         findings
@@ -66,6 +68,7 @@ pub(super) fn stack(
         operation,
         model,
         target,
+        growth,
         limits,
     })
 }

@@ -2,6 +2,7 @@
 
 use std::fmt::Write as _;
 
+use super::growth;
 use super::number::exact;
 use super::{Layer, Material, Model, Operation, Stack, Substance, Target};
 use crate::materials::{Composition, Crystal, Element};
@@ -28,6 +29,9 @@ pub fn write(stack: &Stack) -> String {
     model(&stack.model, &mut text);
     if let Some(wanted) = &stack.target {
         target(wanted, &mut text);
+    }
+    if let Some(growth) = &stack.growth {
+        growth::write(growth, &mut text);
     }
     if let Some(limits) = &stack.limits {
         text.push_str("\n[limits]\n");

@@ -7,16 +7,20 @@ mod findings;
 mod layout;
 mod levels;
 mod materials;
+mod reconcile;
 mod restatement;
 mod spectrum;
+mod spread;
 mod strain;
 mod xray;
 
 pub use findings::findings;
 pub use levels::levels;
 pub use materials::{descriptions, families};
+pub use reconcile::reconcile;
 pub use restatement::restatement;
 pub use spectrum::spectrum;
+pub use spread::spread;
 pub use xray::xray;
 
 use serde::Serialize;
