@@ -426,3 +426,34 @@ fn remarks_for_the_grower_come_where_they_belong() {
     let (fence, _) = findings(&one_sided);
     assert_eq!(standing(&fence, "barrier-count"), ["look"]);
 }
+
+/// The promise of [target] against the layers: kept, broken, finer than a map can tell, and without
+/// a tolerance.
+#[test]
+fn the_promise_of_the_file_is_recomputed() {
+    let structure = wells(2, 0.2, 8.0, 20.0, 0.0);
+    let folder = tempfile::tempdir().expect("a folder");
+    let path = folder.path().join("case.toml");
+    std::fs::write(&path, &structure).expect("written");
+    let levels = document(&["levels", &path.display().to_string(), "--json", "--quiet"]);
+    let photoluminescence_nm = levels["emission"]["pl_nm"].as_f64().expect("a peak");
+    let check = |wavelength_nm: f64, more: &str| {
+        let target = format!("[target]\nkind = \"pl\"\nwavelength_nm = {wavelength_nm}\n{more}");
+        let (findings, _) = findings(&format!("{structure}{target}"));
+        standing(&findings, "target").concat()
+    };
+    assert_eq!(
+        check(photoluminescence_nm + 2.0, "tolerance_nm = 3\n"),
+        "ok"
+    );
+    assert_eq!(
+        check(photoluminescence_nm + 4.0, "tolerance_nm = 3\n"),
+        "outside"
+    );
+    assert_eq!(check(photoluminescence_nm, "tolerance_nm = 0.5\n"), "look");
+    assert_eq!(check(photoluminescence_nm, ""), "look");
+    // 1000 nm in air is 0.27 nm longer in vacuum: inside by one measure, outside by the other.
+    let air = "medium = \"air\"\ntolerance_nm = 1.1\n";
+    assert_eq!(check(photoluminescence_nm + 1.0, air), "outside");
+    assert_eq!(check(photoluminescence_nm - 1.0, air), "ok");
+}
