@@ -468,7 +468,7 @@ fn the_document_of_levels_has_its_keys() {
         let document = document(&["levels", &path, "--json", "--quiet", "--bands", "single"]);
         has_keys(
             &document,
-            "format stamp title temperature_k shrinkage_mev wells layers electron heavy_hole light_hole \
+            "format stamp title temperature_k shrinkage_mev wells layers strain_budget electron heavy_hole light_hole \
              valence dispersion transitions emission",
         );
         assert_eq!(document["format"], 1);
@@ -697,6 +697,12 @@ fn a_folder_takes_every_table_with_units_in_the_heads() {
             "electron hole energy_ev wavelength_nm overlap",
         ),
         ("budget", "term adds_mev sum_ev sum_nm"),
+        (
+            "strain",
+            "layer formula count thickness_nm strain_percent strain relaxed_mismatch_ppm \
+             perpendicular_mismatch_ppm critical_single_nm critical_buried_nm critical_energy_nm \
+             critical_share",
+        ),
         ("emission", "of_what shrinkage_mev wavelength_nm"),
         (
             "edges",
