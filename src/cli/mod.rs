@@ -7,11 +7,14 @@
 mod case;
 mod commands;
 mod complaint;
+mod design;
 mod flags;
 mod manual;
+mod moves;
 mod outlet;
 mod shipped;
 mod wafer;
+mod watch;
 mod welcome;
 mod wishes;
 
@@ -33,8 +36,12 @@ enum Ending {
     Usage = 2,
     /// The input is wrong.
     Input = 3,
+    /// There is no answer inside the limits.
+    NoAnswer = 4,
     /// Checked and found outside.
     Outside = 5,
+    /// Interrupted by the user, as shells count it (128 and the number of the signal).
+    Interrupted = 130,
 }
 
 /// Runs the program on its words, the first of which is its own name.
@@ -80,6 +87,9 @@ fn obey(flags: Flags, outlet: &Outlet) -> Result<Ending, Complaint> {
         Some(Command::Levels(flags)) => commands::levels(&flags, outlet),
         Some(Command::Spectrum(flags)) => commands::spectrum(&flags, outlet),
         Some(Command::Check(flags)) => commands::check(&flags, outlet),
+        Some(Command::Aim(flags)) => design::aim(&flags, outlet),
+        Some(Command::Chart(flags)) => design::chart(&flags, outlet),
+        Some(Command::Weigh(flags)) => design::weigh(&flags, outlet),
         Some(Command::Xray(flags)) => wafer::xray(&flags, outlet),
         Some(Command::Materials(flags)) => commands::materials(&flags, outlet),
         Some(Command::New { name }) => shipped::write(name.as_deref(), outlet),

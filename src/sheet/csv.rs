@@ -60,8 +60,12 @@ macro_rules! row {
     ($($cell:expr),* $(,)?) => { vec![$(Cell::from($cell)),*] };
 }
 
+mod chart;
+mod design;
 mod xray;
 
+pub use chart::ChartTable;
+pub use design::{aim, weigh};
 pub use xray::xray;
 
 impl CsvTable {
