@@ -10,13 +10,14 @@ use clap_mangen::Man;
 use clap_mangen::roff::{Roff, bold, roman};
 use std::io;
 
-const ENDINGS: [(&str, &str); 6] = [
+const ENDINGS: [(&str, &str); 7] = [
     ("0", "done"),
     ("1", "the computation failed"),
     ("2", "the command line is wrong"),
     ("3", "the input is wrong"),
     ("4", "no answer inside the limits"),
     ("5", "checked and found outside"),
+    ("130", "interrupted"),
 ];
 
 const EXAMPLES: [(&str, &str); 7] = [

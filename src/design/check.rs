@@ -1,6 +1,7 @@
 //! A structure against physics and the limits of the house: does it confine, can it be grown, what
 //! is unusual about it.
 
+use super::figures_of_merit::barriers_ev;
 use super::spread::{posed, vacuum_nm};
 use super::wafer::{WaferFinding, wafer};
 use crate::evaluation::{self, Evaluation, Failure};
@@ -433,27 +434,9 @@ fn target(stack: &Stack, parameters: &Parameters) -> Option<Finding> {
 /// Heights from the lowest level to the lowest edge outside the wells. In a field they hang on where
 /// one looks, and are left out.
 fn barriers(evaluation: &Evaluation<'_>, limits: &Bounds) -> Vec<Finding> {
-    if evaluation.profile.slope_ev_nm != 0.0 {
-        return Vec::new();
-    }
-    let outside = || evaluation.profile.outside().map(|numbers| &numbers.edges);
-    let conduction = outside()
-        .map(|edges| edges.conduction_ev)
-        .fold(f64::INFINITY, f64::min);
-    let valence = outside()
-        .map(|edges| edges.heavy_ev.max(edges.light_ev))
-        .fold(f64::NEG_INFINITY, f64::max);
-    let ladders = evaluation.ladders();
-    let first = |ladder: &crate::evaluation::Ladder| Some(ladder.rungs.first()?.energy_ev);
-    let Some((electrons, holes)) = ladders.split_first() else {
-        return Vec::new();
-    };
-    let electron = first(electrons).map(|level| (Carrier::Electrons, conduction - level));
-    let hole = holes
-        .iter()
-        .filter_map(first)
-        .reduce(f64::max)
-        .map(|level| (Carrier::Holes, level - valence));
+    let [electrons, holes] = barriers_ev(evaluation);
+    let electron = electrons.map(|height_ev| (Carrier::Electrons, height_ev));
+    let hole = holes.map(|height_ev| (Carrier::Holes, height_ev));
     electron
         .into_iter()
         .chain(hole)

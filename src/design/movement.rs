@@ -641,6 +641,13 @@ impl<'a> Variation<'a> {
         nearest(original, found)
     }
 
+    /// Values with the digits that go into a file.
+    #[must_use]
+    pub fn rounded(&self, values: &[f64]) -> Vec<f64> {
+        let moves = self.moves.iter().zip(values);
+        moves.map(|(moved, &value)| moved.rounded(value)).collect()
+    }
+
     /// The text of the file with the values in it, rounded to what a file needs.
     ///
     /// # Errors
@@ -649,12 +656,7 @@ impl<'a> Variation<'a> {
     pub fn text(&self, manuscript: &str, values: &[f64]) -> Result<String, Impossible> {
         let mut manuscript = Manuscript::new(manuscript)
             .map_err(|_| Impossible::Composition("the file is no TOML".to_owned()))?;
-        let values: Vec<f64> = self
-            .moves
-            .iter()
-            .zip(values)
-            .map(|(moved, &value)| moved.rounded(value))
-            .collect();
+        let values = self.rounded(values);
         for (index, selection) in &self.thicknesses {
             manuscript.set_thickness_nm(selection, values[*index]);
         }

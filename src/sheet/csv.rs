@@ -60,13 +60,16 @@ macro_rules! row {
     ($($cell:expr),* $(,)?) => { vec![$(Cell::from($cell)),*] };
 }
 
+mod chart;
+mod design;
 mod reconcile;
-mod spread;
-
 mod restatement;
+mod spread;
 mod strain;
 mod xray;
 
+pub use chart::ChartTable;
+pub use design::{aim, weigh};
 pub use reconcile::reconcile;
 pub use restatement::restatement;
 pub use spread::spread;
