@@ -8,6 +8,8 @@ use tempfile::TempDir;
 
 /// A shipped structure with a window and errors of growth.
 const ADDED: &str = r#"
+[model]
+bands = "single"
 [target]
 kind = "transition"
 wavelength_nm = 1290
