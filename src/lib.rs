@@ -30,6 +30,44 @@
 //! | 9 | [`sheet`] | numbers become text here: terminal tables, CSV, JSON, figures |
 //! | 10 | [`cli`] | words in, files and exit code out; the only place that prints |
 //!
+//! # Example
+//!
+//! ```
+//! use stepwell::evaluation::Evaluation;
+//! use stepwell::materials::Parameters;
+//! use stepwell::structure::{Overrides, read};
+//!
+//! let file = r#"
+//!     format = 1
+//!     [substrate]
+//!     material = "GaAs"
+//!     [[layers]]
+//!     role = "barrier"
+//!     material = "Al0.3Ga0.7As"
+//!     thickness_nm = 30
+//!     [[layers]]
+//!     role = "well"
+//!     material = "GaAs"
+//!     thickness_nm = 8
+//!     [[layers]]
+//!     role = "barrier"
+//!     material = "Al0.3Ga0.7As"
+//!     thickness_nm = 30
+//!     [operation]
+//!     temperature_k = 300
+//! "#;
+//! let parameters = Parameters::shipped();
+//! let reading = read(file, &parameters, &Overrides::default()).expect("a sound file");
+//! let evaluation = Evaluation::new(&reading.stack, &parameters)?;
+//! let emission = evaluation.emission();
+//! // The rule of thumb for 8 nm of GaAs: 840 nm (common practice, no source).
+//! assert!((emission.first_transition_nm - 840.0).abs() < 8.0);
+//! let spectrum = evaluation.spectrum()?;
+//! let densest = spectrum.runs.last().expect("a density");
+//! println!("{:?} at {:e} per cm³", densest.te, densest.density_cm3);
+//! # Ok::<(), stepwell::evaluation::Failure>(())
+//! ```
+//!
 //! # Units
 //!
 //! Energies are in eV, lengths in nm, temperatures in K, masses in free-electron masses, volume

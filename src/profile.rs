@@ -181,6 +181,10 @@ impl<'a> Profile<'a> {
     }
 
     /// Lowest and highest position of the solved region, nm above the substrate.
+    ///
+    /// # Panics
+    ///
+    /// Never: a region has sections.
     #[must_use]
     pub fn walls_nm(&self) -> (f64, f64) {
         let first = self.sections.first().expect("a region has sections");

@@ -14,7 +14,7 @@
 
 use std::fmt::Write as _;
 use stepwell::materials::{Composition, Offsets, Parameters};
-use stepwell::numerics::chain::{Chain, Run, Workspace};
+use stepwell::numerics::chain::{Chain, Run};
 use stepwell::profile::{Profile, REACH_NM};
 use stepwell::structure::{self, Overrides, Stack};
 use stepwell::subbands::{Band, CLUSTER_EV, Level, single};
@@ -562,10 +562,7 @@ fn the_order_is_two_and_four_once_extrapolated() {
                 }
             });
             let chain = Chain::new(runs.collect());
-            chain
-                .lowest(&mut Workspace::default(), 1, None)
-                .expect("certified")[0]
-                .energy
+            chain.lowest(1, None).expect("certified")[0].energy
         });
         let order = |coarse: f64, fine: f64| ((coarse - exact) / (fine - exact)).abs().log2();
         orders.0.push(order(raw[2], raw[3]));

@@ -319,7 +319,8 @@ proptest! {
                     parts.map(|((a, b), w)| a * b * w).sum::<f64>().powi(2)
                 })
                 .sum();
-            prop_assert!((sum - 1.0).abs() < 1e-6, "{sum}");
+            // Vectors of neighbours are orthogonal as far as their iteration went.
+            prop_assert!((sum - 1.0).abs() < 1e-5, "{sum}");
         }
     }
 }

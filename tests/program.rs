@@ -105,10 +105,6 @@ fn fits_the_page(words: &[&str], page: &str) {
 fn every_command_answers_for_every_structure_inside_80_columns() {
     for path in structures() {
         for command in ["levels", "spectrum", "check"] {
-            // The wide well has a hundred levels; its spectrum takes a second.
-            if path.contains("bulk") && command == "spectrum" {
-                continue;
-            }
             let words = [command, path.as_str()];
             let output = run(&words);
             let codes: &[i32] = if command == "check" { &[0, 5] } else { &[0] };
@@ -366,10 +362,10 @@ fn a_file_that_can_not_be_written_is_named() {
     assert_eq!(code, 2);
     assert!(errors.contains("make the folder first"), "{errors}");
     assert!(!errors.contains("remark"), "before any work: {errors}");
-    let (code, errors) = refusal(&["levels", TENSILE, "--figure", &shown(folder.path())]);
+    let (code, errors) = refusal(&["levels", TENSILE, "--matrix", &shown(folder.path())]);
     assert_eq!(code, 2);
     assert!(errors.contains("is a folder"), "{errors}");
-    let twice = shown(&folder.path().join("a"));
+    let twice = shown(&folder.path().join("a.svg"));
     let (code, errors) = refusal(&["levels", TENSILE, "--figure", &twice, "--csv", &twice]);
     assert_eq!(code, 2);
     assert!(errors.contains("asked for twice"), "{errors}");
@@ -469,10 +465,10 @@ const STAMP: &str = "program input_sha256 parameters_sha256 parameter_files temp
 #[test]
 fn the_document_of_levels_has_its_keys() {
     for path in structures() {
-        let document = document(&["levels", &path, "--json", "--quiet"]);
+        let document = document(&["levels", &path, "--json", "--quiet", "--bands", "single"]);
         has_keys(
             &document,
-            "format stamp title temperature_k shrinkage_mev wells layers electron heavy_hole light_hole \
+            "format stamp title temperature_k shrinkage_mev wells layers strain_budget electron heavy_hole light_hole \
              valence dispersion transitions emission",
         );
         assert_eq!(document["format"], 1);
@@ -701,6 +697,12 @@ fn a_folder_takes_every_table_with_units_in_the_heads() {
             "electron hole energy_ev wavelength_nm overlap",
         ),
         ("budget", "term adds_mev sum_ev sum_nm"),
+        (
+            "strain",
+            "layer formula count thickness_nm strain_percent strain relaxed_mismatch_ppm \
+             perpendicular_mismatch_ppm critical_single_nm critical_buried_nm critical_energy_nm \
+             critical_share",
+        ),
         ("emission", "of_what shrinkage_mev wavelength_nm"),
         (
             "edges",

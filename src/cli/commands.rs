@@ -6,7 +6,7 @@ use super::complaint::Complaint;
 use super::flags::{self, Flags};
 use super::outlet::{Outlet, print};
 use super::wishes::{Destinations, band, overrides, temperature_k};
-use crate::design::{Limits, Standing, check as findings_of};
+use crate::design::{Standing, check as findings_of};
 use crate::evaluation::Evaluation;
 use crate::materials::{Composition, Description, Parameters};
 use crate::profile::Profile;
@@ -34,6 +34,7 @@ pub(super) fn levels(flags: &flags::Levels, outlet: &Outlet) -> Result<Ending, C
         "edges",
         "envelopes",
         "dispersion",
+        "strain",
     ];
     let destinations = Destinations::new(
         &flags.output,
@@ -110,12 +111,7 @@ pub(super) fn check(flags: &flags::Check, outlet: &Outlet) -> Result<Ending, Com
         outlet,
     )?;
     let stack = &case.reading.stack;
-    let findings = findings_of(
-        stack,
-        &case.parameters,
-        &case.reading.remarks,
-        &Limits::default(),
-    );
+    let findings = findings_of(stack, &case.parameters, &case.reading.remarks);
     let profile = Profile::new(stack, &case.parameters).ok();
     let stamp = case.stamp(profile.map(|profile| profile.offsets));
     destinations.write_tables(|| csv::findings(&findings), &stamp)?;

@@ -179,9 +179,12 @@ pub(super) struct Xray {
 
 #[derive(Debug, Args)]
 pub(super) struct Restate {
-    /// A number with its unit, and the sense of a mismatch or a strain: 850ppm tensile
-    #[arg(value_name = "QUANTITY", required = true, allow_hyphen_values = true)]
-    pub(super) quantity: Vec<String>,
+    /// A number with its unit: 1310nm, 0.946eV, 850ppm
+    #[arg(value_name = "QUANTITY", allow_hyphen_values = true)]
+    pub(super) quantity: String,
+    /// Of a mismatch or a strain its sense: compressive or tensile
+    #[arg(value_name = "SENSE")]
+    pub(super) sense: Option<String>,
     /// The wavelength was read in air, not in vacuum
     #[arg(long)]
     pub(super) air: bool,

@@ -1,33 +1,50 @@
-//! A structure against physics: does it confine, how strained is it, what is unusual about it.
+//! A structure against physics and the limits of the house: does it confine, can it be grown, what
+//! is unusual about it.
 
+use super::spread::{posed, vacuum_nm};
+use super::wafer::{WaferFinding, wafer};
 use crate::evaluation::{self, Evaluation, Failure};
-use crate::materials::{Parameters, Sense};
-use crate::profile::{Profile, Strained};
-use crate::structure::{Remark, Role, Stack};
+use crate::materials::Parameters;
+use crate::profile::Profile;
+use crate::structure::{Limits, Remark, Role, Stack, Wavelength};
 use crate::subbands::Band;
 use crate::units::thermal_ev;
 
-/// Limits that findings are held against.
+/// What findings about levels are held against.
 #[derive(Clone, Copy, Debug, PartialEq)]
-pub struct Limits {
+struct Bounds {
     /// Least height of the barriers above the lowest level, in kT at the working temperature.
-    ///
-    /// Default 4 (common practice: at 4 kT about one carrier in fifty has the energy to leave).
-    pub barrier_kt_min: f64,
-    /// Widest spread of the lowest level over equal wells that is not remarked, eV.
-    ///
-    /// Default 2 meV (common practice: well below the width of any line at room temperature).
-    pub coupling_ev_max: f64,
+    barrier_kt_min: f64,
+    /// Widest spread of the lowest level over equal wells, eV.
+    coupling_ev_max: f64,
+    /// Whether that spread is a limit of the house.
+    coupling_is_house: bool,
+    /// Least distance of acceptors from the wells, nm.
+    acceptor_setback_nm_min: Option<f64>,
 }
 
-impl Default for Limits {
-    fn default() -> Self {
+impl Bounds {
+    /// Where the house gives no barrier height: at 4 kT about one carrier in fifty has the energy to
+    /// leave (common practice).
+    const BARRIER_KT: f64 = 4.0;
+    /// Where the house gives no spread: well below the width of any line at room temperature
+    /// (common practice).
+    const COUPLING_EV: f64 = 0.002;
+
+    fn of(limits: Option<&Limits>) -> Self {
+        let limit = |of: fn(&Limits) -> Option<f64>| limits.and_then(of);
+        let coupling_mev = limit(|limits| limits.coupling_mev_max);
         Self {
-            barrier_kt_min: 4.0,
-            coupling_ev_max: 0.002,
+            barrier_kt_min: limit(|limits| limits.barrier_kt_min).unwrap_or(Self::BARRIER_KT),
+            coupling_ev_max: coupling_mev.map_or(Self::COUPLING_EV, |mev| 1e-3 * mev),
+            coupling_is_house: coupling_mev.is_some(),
+            acceptor_setback_nm_min: limit(|limits| limits.acceptor_setback_nm_min),
         }
     }
 }
+
+/// A tolerance below this is finer than a wafer map tells, nm (common practice: ±1 nm).
+const LEAST_TOLERANCE_NM: f64 = 1.0;
 
 /// How a finding stands.
 #[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord)]
@@ -118,20 +135,20 @@ pub enum Finding {
         /// Height wanted, in kT.
         least_kt: f64,
     },
-    /// A strained layer.
-    Strain {
-        /// Its role.
-        role: Role,
-        /// Its formula; of a graded layer that of its more strained end.
-        formula: String,
-        /// Strain, %, at least zero.
-        percent: f64,
-        /// Sense of the strain.
-        sense: Sense,
-        /// Thickness of one such layer, nm.
-        thickness_nm: f64,
-        /// How many such layers there are.
-        count: usize,
+    /// Something about the wafer.
+    Wafer(WaferFinding),
+    /// The wavelength that the file promises against the one that its layers have.
+    Target {
+        /// Which wavelength.
+        kind: Wavelength,
+        /// Temperature at which it is meant, K.
+        temperature_k: f64,
+        /// The promise, nm in vacuum.
+        promised_nm: f64,
+        /// What the layers have, nm in vacuum; `None` where they have no such peak.
+        computed_nm: Option<f64>,
+        /// How far off is still accepted, nm.
+        tolerance_nm: Option<f64>,
     },
     /// Spread of the lowest level over equal wells.
     Coupling {
@@ -141,6 +158,8 @@ pub enum Finding {
         spread_ev: f64,
         /// Widest that is not remarked, eV.
         most_ev: f64,
+        /// Whether that is a limit of the house.
+        is_house: bool,
     },
     /// Which hole lies nearest the gap.
     GroundHole {
@@ -159,6 +178,8 @@ pub enum Finding {
         acceptors_setback_nm: Option<f64>,
         /// The same for donors.
         donors_setback_nm: Option<f64>,
+        /// Least distance of acceptors that the house accepts, nm.
+        least_nm: Option<f64>,
     },
 }
 
@@ -168,17 +189,15 @@ pub enum Finding {
 ///
 /// * `remarks` – what the reader of the file remarked
 #[must_use]
-pub fn check(
-    stack: &Stack,
-    parameters: &Parameters,
-    remarks: &[Remark],
-    limits: &Limits,
-) -> Vec<Finding> {
+pub fn check(stack: &Stack, parameters: &Parameters, remarks: &[Remark]) -> Vec<Finding> {
+    let bounds = Bounds::of(stack.limits.as_ref());
+    let limits = &bounds;
     let mut findings: Vec<Finding> = remarks.iter().cloned().map(Finding::File).collect();
     if let Ok(profile) = Profile::new(stack, parameters) {
         findings.extend(direct_wells(stack, &profile, limits));
-        findings.extend(strained_layers(stack, &profile));
     }
+    findings.extend(wafer(stack, parameters).into_iter().map(Finding::Wafer));
+    findings.extend(target(stack, parameters));
     match Evaluation::new(stack, parameters) {
         Err(failure) => findings.push(Finding::Unsolved(failure)),
         Ok(evaluation) => {
@@ -192,7 +211,7 @@ pub fn check(
                 .filter(|remark| **remark != evaluation::Remark::LightHoleFirst)
                 .cloned();
             findings.extend(of_levels.map(Finding::Levels));
-            findings.push(doping(&evaluation));
+            findings.push(doping(&evaluation, limits));
         }
     }
     findings
@@ -219,7 +238,8 @@ impl Finding {
                 ..
             } => "electron-barrier",
             Self::Barrier { .. } => "hole-barrier",
-            Self::Strain { .. } => "strain",
+            Self::Wafer(finding) => finding.code(),
+            Self::Target { .. } => "target",
             Self::Coupling { .. } => "coupling",
             Self::GroundHole { .. } => "ground-hole",
             Self::Levels(remark) => match remark {
@@ -242,10 +262,33 @@ impl Finding {
                 Standing::Within
             }
         };
+        let outside = |broken: bool| {
+            if broken {
+                Standing::Outside
+            } else {
+                Standing::Within
+            }
+        };
         match self {
+            Self::Wafer(finding) => finding.standing(),
+            Self::Target {
+                promised_nm,
+                computed_nm,
+                tolerance_nm,
+                ..
+            } => match (computed_nm, tolerance_nm) {
+                (None, _) => Standing::Outside,
+                (Some(nm), Some(most)) if (nm - promised_nm).abs() > *most => Standing::Outside,
+                (Some(_), Some(most)) => look(*most < LEAST_TOLERANCE_NM),
+                (Some(_), None) => Standing::Noted,
+            },
+            Self::Doping {
+                acceptors_setback_nm,
+                least_nm: Some(least_nm),
+                ..
+            } => outside(acceptors_setback_nm.is_some_and(|nm| nm < *least_nm)),
             Self::File(Remark::DefaultTemperature { .. })
             | Self::Levels(evaluation::Remark::MassBounded)
-            | Self::Strain { .. }
             | Self::Doping { .. } => Standing::Stated,
             Self::File(_) | Self::Levels(_) => Standing::Noted,
             Self::Unsolved(_) => Standing::Outside,
@@ -260,13 +303,13 @@ impl Finding {
                 thermal_ev,
                 least_kt,
                 ..
-            } => {
-                if *height_ev < least_kt * thermal_ev {
-                    Standing::Outside
-                } else {
-                    Standing::Within
-                }
-            }
+            } => outside(*height_ev < least_kt * thermal_ev),
+            Self::Coupling {
+                spread_ev,
+                most_ev,
+                is_house: true,
+                ..
+            } => outside(spread_ev > most_ev),
             Self::Coupling {
                 spread_ev, most_ev, ..
             } => look(spread_ev > most_ev),
@@ -303,15 +346,21 @@ impl Finding {
                 measure("height_kt", height_ev / thermal_ev, Some(*least_kt)),
                 measure("height_mev", 1e3 * height_ev, None),
             ],
-            Self::Strain {
-                percent,
-                thickness_nm,
+            Self::Wafer(finding) => finding.measures(),
+            Self::Target {
+                promised_nm,
+                computed_nm,
+                tolerance_nm,
                 ..
-            } => vec![
-                measure("strain_percent", *percent, None),
-                measure("thickness_nm", *thickness_nm, None),
-                measure("strain_thickness_percent_nm", percent * thickness_nm, None),
-            ],
+            } => computed_nm
+                .iter()
+                .flat_map(|nm| {
+                    [
+                        measure("computed_nm", *nm, None),
+                        measure("miss_nm", (nm - promised_nm).abs(), *tolerance_nm),
+                    ]
+                })
+                .collect(),
             Self::Coupling {
                 spread_ev, most_ev, ..
             } => vec![measure("spread_mev", 1e3 * spread_ev, Some(1e3 * most_ev))],
@@ -323,14 +372,15 @@ impl Finding {
                 net_cm3,
                 acceptors_setback_nm,
                 donors_setback_nm,
+                least_nm,
             } => {
                 let mut measures = vec![measure("net_cm3", *net_cm3, None)];
                 let setbacks = [
-                    ("acceptors_setback_nm", acceptors_setback_nm),
-                    ("donors_setback_nm", donors_setback_nm),
+                    ("acceptors_setback_nm", acceptors_setback_nm, *least_nm),
+                    ("donors_setback_nm", donors_setback_nm, None),
                 ];
-                for (name, setback) in setbacks {
-                    measures.extend(setback.map(|nm| measure(name, nm, None)));
+                for (name, setback, limit) in setbacks {
+                    measures.extend(setback.map(|nm| measure(name, nm, limit)));
                 }
                 measures
             }
@@ -339,7 +389,7 @@ impl Finding {
 }
 
 /// The well that is direct by the smallest margin. Materials of own numbers have no valleys.
-fn direct_wells(stack: &Stack, profile: &Profile<'_>, limits: &Limits) -> Option<Finding> {
+fn direct_wells(stack: &Stack, profile: &Profile<'_>, limits: &Bounds) -> Option<Finding> {
     let margins = stack
         .layers
         .iter()
@@ -365,58 +415,24 @@ fn direct_wells(stack: &Stack, profile: &Profile<'_>, limits: &Limits) -> Option
     })
 }
 
-/// Every strained layer, equal layers of one role once.
-fn strained_layers(stack: &Stack, profile: &Profile<'_>) -> Vec<Finding> {
-    /// Strain below this is what a matched layer has for rounding or temperature, %.
-    const LEAST_PERCENT: f64 = 0.05;
-    let mut findings: Vec<Finding> = Vec::new();
-    for (layer, numbers) in stack.layers.iter().zip(&profile.layers) {
-        let worse =
-            |a: &Strained, b: &Strained| a.edges.strain_percent() >= b.edges.strain_percent();
-        let upper = layer.grade_to.as_ref().unwrap_or(&layer.material);
-        let (material, edges) = if worse(&numbers.lower, &numbers.upper) {
-            (&layer.material, &numbers.lower.edges)
-        } else {
-            (upper, &numbers.upper.edges)
-        };
-        if edges.strain_percent() < LEAST_PERCENT {
-            continue;
-        }
-        let finding = Finding::Strain {
-            role: layer.role,
-            formula: material.formula(),
-            percent: edges.strain_percent(),
-            sense: edges.sense(),
-            thickness_nm: layer.thickness_nm,
-            count: 1,
-        };
-        if !findings.iter_mut().any(|known| known.counts(&finding)) {
-            findings.push(finding);
-        }
-    }
-    findings
-}
-
-impl Finding {
-    /// Counts another strained layer in, if it is equal to this one.
-    fn counts(&mut self, other: &Finding) -> bool {
-        let mut counted = other.clone();
-        if let (Self::Strain { count, .. }, Self::Strain { count: seen, .. }) =
-            (&mut *self, &mut counted)
-        {
-            *seen = *count;
-        }
-        let equal = *self == counted;
-        if let (true, Self::Strain { count, .. }) = (equal, self) {
-            *count += 1;
-        }
-        equal
-    }
+/// The promise of the file under its own conditions; silent where nothing emits, which is a finding
+/// of its own.
+fn target(stack: &Stack, parameters: &Parameters) -> Option<Finding> {
+    let target = stack.target?;
+    let posed = posed(stack, &target);
+    let evaluation = Evaluation::new(&posed, parameters).ok()?;
+    Some(Finding::Target {
+        kind: target.kind,
+        temperature_k: posed.operation.temperature_k,
+        promised_nm: vacuum_nm(&target),
+        computed_nm: evaluation.wavelength_nm(target.kind),
+        tolerance_nm: target.tolerance_nm,
+    })
 }
 
 /// Heights from the lowest level to the lowest edge outside the wells. In a field they hang on where
 /// one looks, and are left out.
-fn barriers(evaluation: &Evaluation<'_>, limits: &Limits) -> Vec<Finding> {
+fn barriers(evaluation: &Evaluation<'_>, limits: &Bounds) -> Vec<Finding> {
     if evaluation.profile.slope_ev_nm != 0.0 {
         return Vec::new();
     }
@@ -479,7 +495,7 @@ fn ground_hole(evaluation: &Evaluation<'_>) -> Option<Finding> {
     })
 }
 
-fn coupling(evaluation: &Evaluation<'_>, limits: &Limits) -> Vec<Finding> {
+fn coupling(evaluation: &Evaluation<'_>, limits: &Bounds) -> Vec<Finding> {
     let holes = [Band::Heavy, Band::Light]
         .into_iter()
         .filter_map(|band| {
@@ -496,12 +512,13 @@ fn coupling(evaluation: &Evaluation<'_>, limits: &Limits) -> Vec<Finding> {
                 carrier,
                 spread_ev: evaluation.coupling_ev(band)?,
                 most_ev: limits.coupling_ev_max,
+                is_house: limits.coupling_is_house,
             })
         })
         .collect()
 }
 
-fn doping(evaluation: &Evaluation<'_>) -> Finding {
+fn doping(evaluation: &Evaluation<'_>, limits: &Bounds) -> Finding {
     let stack = evaluation.stack;
     let is_well = |index: &usize| stack.layers[*index].role == Role::Well;
     let first = (0..stack.layers.len()).find(is_well).unwrap_or(0);
@@ -531,5 +548,6 @@ fn doping(evaluation: &Evaluation<'_>) -> Finding {
         net_cm3: evaluation.doping.net_cm3,
         acceptors_setback_nm: setback(|doping| doping.acceptors_cm3),
         donors_setback_nm: setback(|doping| doping.donors_cm3),
+        least_nm: limits.acceptor_setback_nm_min,
     }
 }

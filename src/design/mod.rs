@@ -10,8 +10,9 @@ mod reconcile;
 mod spread;
 mod surrogate;
 mod unknown;
+mod wafer;
 
-pub use check::{Carrier, Finding, Limits, Measure, Standing, check};
+pub use check::{Carrier, Finding, Measure, Standing, check};
 pub use house_offset::{HouseOffset, family};
 pub use movement::{Immovable, Impossible, Move, Quantity, Variation};
 pub use reactor::{Cause, Reactor, Variable};
@@ -24,3 +25,4 @@ pub use spread::{
     SpreadError, Wanted, Yield, in_vacuum_nm, posed, spread, vacuum_nm, wavelength_nm,
 };
 pub use unknown::{Moved, Unknown, unknowns};
+pub use wafer::{StrainLimits, WaferFinding};

@@ -9,7 +9,7 @@ use crate::units::{HBAR2_OVER_2M0_EV_NM2, thermal_ev, wavelength_nm};
 
 /// How far the highest valence state must fall along the wave number, eV: past every hole that
 /// the densities asked for put there.
-pub(super) fn depth_ev(stack: &Stack, parabolas: &[Subband], doping: &NetDoping) -> f64 {
+pub(super) fn depth_ev(stack: &Stack, parabolas: &[Subband], doping: NetDoping) -> f64 {
     let kt = thermal_ev(stack.operation.temperature_k);
     let operation = &stack.operation;
     let highest = operation

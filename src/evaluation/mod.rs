@@ -17,6 +17,7 @@ pub use spectrum::{
 };
 
 use crate::carriers::{NetDoping, Reservoir, Subband};
+use crate::coherence::StrainBudget;
 use crate::materials::Parameters;
 use crate::numerics::roots::bracketed_root;
 use crate::profile::{Profile, Unsolvable};
@@ -173,7 +174,7 @@ impl<'a> Evaluation<'a> {
         let mixed = match stack.model.bands {
             Bands::Single => None,
             Bands::Mixed => {
-                let depth_ev = mixed::depth_ev(stack, &parabolas, &doping);
+                let depth_ev = mixed::depth_ev(stack, &parabolas, doping);
                 Some(match mixed::one_of_equal_wells(stack, &bands) {
                     Some((wells, one)) => {
                         let profile = Profile::new(&one, parameters)?;
@@ -224,6 +225,12 @@ impl<'a> Evaluation<'a> {
         };
         evaluation.remarks = remark::of_levels(&evaluation);
         Ok(evaluation)
+    }
+
+    /// What the layers use up of what coherent growth allows.
+    #[must_use]
+    pub fn strain_budget(&self) -> StrainBudget {
+        StrainBudget::new(self.stack, self.parameters)
     }
 
     /// kT, eV.

@@ -11,7 +11,9 @@ mod formula;
 mod index_data;
 mod interpolation;
 mod mismatch;
+mod mixing;
 mod offsets;
+mod other_sources;
 mod parameters;
 mod prescription;
 mod quantity;
@@ -25,6 +27,7 @@ pub use description::{Description, Directness, Family, Figure, IndexFigure, Sect
 pub use index_data::IndexStatement;
 pub use mismatch::Mismatch;
 pub use offsets::{OffsetRule, Offsets};
+pub use other_sources::OtherEnergy;
 pub use parameters::{MissingTernary, Parameters};
 pub use prescription::{SolveError, solve_composition};
 pub use quantity::{BINARY_KEYS, Key, TERNARY_KEYS};

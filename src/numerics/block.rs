@@ -43,7 +43,7 @@ pub type Three = [[f64; 3]; 3];
 /// Levels closer than this are spanned together.
 const CLUSTER: f64 = 1e-7;
 /// Levels closer than this are separated inside their span at every step.
-const GROUP: f64 = 2e-4;
+const GROUP: f64 = 5e-5;
 /// Largest residual of an accepted state: the energy is good to its square over the distance of the
 /// next level.
 const LARGEST_RESIDUAL: f64 = 3e-6;
@@ -829,7 +829,7 @@ fn groups(energies: &[f64]) -> Vec<Range<usize>> {
     let mut groups = Vec::new();
     let mut start = 0;
     for level in 1..=energies.len() {
-        let apart = level == energies.len() || !(energies[level] - energies[level - 1] < GROUP);
+        let apart = level == energies.len() || energies[level] - energies[level - 1] >= GROUP;
         if apart {
             groups.push(start..level);
             start = level;

@@ -64,6 +64,7 @@ mod reconcile;
 mod spread;
 
 mod restatement;
+mod strain;
 mod xray;
 
 pub use reconcile::reconcile;
@@ -121,6 +122,7 @@ pub fn levels(evaluation: &Evaluation<'_>) -> Vec<CsvTable> {
         edges(evaluation),
         envelopes(evaluation),
         dispersion(evaluation),
+        strain::strain(&evaluation.strain_budget()),
     ]
 }
 

@@ -1,6 +1,8 @@
 //! What a check found, in words.
 
-use super::number::{fixed, length_nm, plain, power, significant};
+mod wafer;
+
+use super::number::{fixed, length_nm, plain, power, signed, significant, temperature};
 use super::page::{Page, bold, padded, wrapped};
 use super::stamp::Stamp;
 use crate::design::{Carrier, Finding, Standing};
@@ -111,40 +113,43 @@ pub(super) fn message(finding: &Finding) -> String {
                 plain(*least_kt)
             )
         }
-        Finding::Strain {
-            role,
-            formula,
-            percent,
-            sense,
-            thickness_nm,
-            count,
+        Finding::Wafer(finding) => wafer::message(finding),
+        Finding::Target {
+            kind,
+            temperature_k,
+            promised_nm,
+            computed_nm,
+            tolerance_nm,
         } => {
-            let times = if *count > 1 {
-                format!("{count} × ")
-            } else {
-                String::new()
-            };
+            let tolerance = tolerance_nm.map_or(String::new(), |nm| format!(" ± {}", plain(nm)));
+            let computed = computed_nm.map_or("have none".to_owned(), |nm| {
+                format!(
+                    "have {} nm, {} nm off",
+                    fixed(nm, 2),
+                    signed(nm - promised_nm, 2)
+                )
+            });
             format!(
-                "{times}{} {formula}: {} % {} over {} nm, {} % nm each",
-                role.word(),
-                fixed(*percent, 2),
-                sense.word(),
-                length_nm(*thickness_nm),
-                significant(percent * thickness_nm, 3)
+                "the file promises a {} of {}{tolerance} nm in vacuum at {}; its layers {computed}",
+                kind.meaning(),
+                fixed(*promised_nm, 2),
+                temperature(*temperature_k)
             )
         }
         Finding::Coupling {
             carrier,
             spread_ev,
             most_ev,
+            is_house,
         } => format!(
-            "the first level of the {} spreads by {} meV over the wells (a look above {} meV)",
+            "the first level of the {} spreads by {} meV over the wells ({} {} meV)",
             carrier.word(),
             if *spread_ev < LEAST_SPREAD_EV {
                 format!("less than {}", plain(1e3 * LEAST_SPREAD_EV))
             } else {
                 significant(1e3 * spread_ev, 2)
             },
+            if *is_house { "at most" } else { "a look above" },
             plain(1e3 * most_ev)
         ),
         Finding::GroundHole { light, split_ev } => {
@@ -167,7 +172,14 @@ pub(super) fn message(finding: &Finding) -> String {
             net_cm3,
             acceptors_setback_nm,
             donors_setback_nm,
-        } => doping(*net_cm3, *acceptors_setback_nm, *donors_setback_nm),
+            least_nm,
+        } => {
+            let mut words = doping(*net_cm3, *acceptors_setback_nm, *donors_setback_nm);
+            if let Some(nm) = least_nm {
+                let _ = write!(words, " (acceptors at least {} nm)", length_nm(*nm));
+            }
+            words
+        }
     }
 }
 
@@ -206,7 +218,23 @@ pub(super) fn advice(finding: &Finding) -> Option<String> {
         Finding::File(Remark::DefaultTemperature { .. }) => Some("give `temperature_c`".to_owned()),
         Finding::File(remark) => Some(remark.advice()),
         Finding::Levels(remark) => remark.advice(),
-        Finding::Unsolved(_) | Finding::Strain { .. } | Finding::Doping { .. } => None,
+        Finding::Wafer(finding) => wafer::advice(finding),
+        Finding::Target { tolerance_nm: None, .. } => {
+            Some("give `tolerance_nm` in [target]: without it nothing can be accepted".to_owned())
+        }
+        Finding::Target { .. } if finding.standing() == Standing::Noted => Some(
+            "a wafer map tells 1 nm at best: a tolerance below that cannot be shown to be kept"
+                .to_owned(),
+        ),
+        Finding::Target { .. } => Some(
+            "table and promise must agree before the order goes out: move the layers (`stepwell aim`), or the promise"
+                .to_owned(),
+        ),
+        Finding::Doping { .. } if finding.standing() == Standing::Outside => Some(
+            "acceptors move while the rest grows: a spacer, a sharper dopant, or a colder growth"
+                .to_owned(),
+        ),
+        Finding::Unsolved(_) | Finding::Doping { .. } => None,
         Finding::DirectWell { .. } => Some(
             "electrons spill into the valley and do not emit: less of the wide-gap element in the well"
                 .to_owned(),

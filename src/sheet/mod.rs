@@ -20,6 +20,7 @@ mod spectrum;
 mod spread;
 mod stamp;
 mod starting;
+mod strain;
 mod table;
 mod xray;
 

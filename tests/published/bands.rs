@@ -6,7 +6,7 @@ use serde::Deserialize;
 use std::f64::consts::PI;
 use stepwell::carriers::bulk::{BulkBands, transparency_cm3};
 use stepwell::carriers::{Reservoir, Subband};
-use stepwell::numerics::chain::{Chain, Run, Workspace};
+use stepwell::numerics::chain::{Chain, Run};
 use stepwell::numerics::fermi::{half_integral, log_one_plus_exp};
 use stepwell::units::{
     BOLTZMANN_J_K, ELECTRON_MASS_KG, ELEMENTARY_CHARGE_C, FINE_STRUCTURE, HBAR_J_S,
@@ -99,7 +99,7 @@ impl Walls {
     fn level_ev(&self, number: usize, field_v_m: f64) -> Answer {
         let states = self
             .chain(field_v_m)
-            .lowest(&mut Workspace::default(), number, None)
+            .lowest(number, None)
             .map_err(|error| error.to_string())?;
         Ok(states[number - 1].energy)
     }

@@ -87,13 +87,22 @@ impl Check {
     }
 }
 
-/// A number with six digits, as the table shows it.
-pub(crate) fn digits(value: f64) -> String {
+/// A published number, with six digits.
+fn digits(value: f64) -> String {
+    with_digits(value, 6)
+}
+
+/// A computed number, with five: what a grid leaves open is not shown.
+fn computed_digits(value: f64) -> String {
+    with_digits(value, 5)
+}
+
+fn with_digits(value: f64, count: usize) -> String {
     let size = value.abs();
     if value == 0.0 {
         "0".to_owned()
     } else if (1e-3..1e6).contains(&size) {
-        let mut decimals = 5;
+        let mut decimals = count - 1;
         let mut ten = 10.0;
         while ten <= size && decimals > 0 {
             decimals -= 1;
@@ -112,7 +121,7 @@ pub(crate) fn digits(value: f64) -> String {
             text
         }
     } else {
-        let text = format!("{value:.5e}");
+        let text = format!("{value:.*e}", count - 1);
         let (mantissa, exponent) = text.split_once('e').expect("scientific notation");
         let mantissa = mantissa.trim_end_matches('0').trim_end_matches('.');
         format!("{mantissa}e{exponent}")
@@ -136,7 +145,7 @@ impl Verdict {
         let (low, high, published) = check.accepted();
         let (met, computed) = match answer {
             // Written so that NaN is a miss.
-            Ok(got) => (low <= got && got <= high, digits(got)),
+            Ok(got) => (low <= got && got <= high, computed_digits(got)),
             Err(reason) => (false, reason),
         };
         Self {
@@ -153,7 +162,7 @@ impl Verdict {
                 values.len() > 1 && values.windows(2).all(|pair| pair[0] < pair[1]),
                 values
                     .iter()
-                    .map(|&value| digits(value))
+                    .map(|&value| computed_digits(value))
                     .collect::<Vec<_>>()
                     .join(", "),
             ),

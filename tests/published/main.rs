@@ -12,6 +12,7 @@ mod optics;
 mod stacks;
 mod strain;
 mod table;
+mod wafer;
 
 use judgement::{Check, Verdict};
 use libtest_mimic::{Arguments, Trial};
@@ -46,6 +47,10 @@ struct Reference {
     film: Vec<strain::FilmProblem>,
     #[serde(default)]
     balance: Vec<strain::BalanceProblem>,
+    #[serde(default)]
+    bragg: Vec<wafer::BraggProblem>,
+    #[serde(default)]
+    diffraction: Vec<wafer::DiffractionProblem>,
     /// Problems of this file named in the order in which a quantity must rise.
     #[serde(default)]
     order: Vec<Order>,
@@ -146,6 +151,8 @@ fn compare(file: &str, reference: &Reference) -> Vec<Compared> {
         .chain(each(&reference.bulk))
         .chain(each(&reference.film))
         .chain(each(&reference.balance))
+        .chain(each(&reference.bragg))
+        .chain(each(&reference.diffraction))
         .collect();
     let mut compared = Vec::new();
     for problem in &problems {

@@ -11,6 +11,7 @@ mod reconcile;
 mod restatement;
 mod spectrum;
 mod spread;
+mod strain;
 mod xray;
 
 pub use findings::findings;

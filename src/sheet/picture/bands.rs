@@ -1,7 +1,7 @@
 //! Band edges with levels and envelopes, the first transition, and the dispersion of mixed bands.
 
 use super::arrow::{Arrow, first_transition};
-use super::bundle::{Bundle, bundles};
+use super::bundle::{Bundle, Member, bundles};
 use super::dispersion::dispersion_panel;
 use super::{Kind, line_key, short_stamp};
 use crate::evaluation::Evaluation;
@@ -74,35 +74,35 @@ pub fn levels_figure(evaluation: &Evaluation<'_>, stamp: &Stamp) -> Figure {
 }
 
 fn caption(evaluation: &Evaluation<'_>) -> String {
-    let count = evaluation.stack.well_count();
-    let mut caption = String::from(
+    let mut sentences = vec![
         "|φ|² stands on its level, that of holes hangs from it; its scale is arbitrary, one for each \
-         panel.",
-    );
+         panel."
+            .to_owned(),
+    ];
+    let count = evaluation.stack.well_count();
     if count > 1 {
-        caption.push_str(&format!(
-            " A level that equal wells share is drawn once, summed over the wells, and marked × the \
+        sentences.push(format!(
+            "A level that equal wells share is drawn once, summed over the wells, and marked × the \
              number of levels (here up to {count})."
         ));
     }
     if evaluation.mixed.is_some() {
-        caption.push_str(
-            " Mixed valence states are numbered v1, v2 … from the top; those with light-hole parts are \
-             drawn as lines without |φ|².",
+        sentences.push(
+            "Mixed valence states are numbered v1, v2 … from the top; those with light-hole parts are \
+             drawn as lines without |φ|²."
+                .to_owned(),
         );
     }
     let field_kv_cm = evaluation.stack.model.field_kv_cm;
     if field_kv_cm != 0.0 {
-        caption.push_str(&format!(
-            " Field {} kV/cm along growth.",
-            plain(field_kv_cm)
-        ));
+        sentences.push(format!("Field {} kV/cm along growth.", plain(field_kv_cm)));
     }
-    caption.push_str(
-        " The vertical axis is broken in the gap, both parts have one scale; energies are those of \
-         electrons, without gap shrinkage.",
+    sentences.push(
+        "The vertical axis is broken in the gap, both parts have one scale; energies are those of \
+         electrons, without gap shrinkage."
+            .to_owned(),
     );
-    caption
+    sentences.join(" ")
 }
 
 fn description(evaluation: &Evaluation<'_>, arrow: Option<&Arrow>) -> String {
@@ -298,9 +298,9 @@ impl<'a> Diagram<'a> {
         for bundle in bundles {
             let end_nm = self.draw_bundle(panel, bundle, ev_nm);
             panel.notes.push(Note {
-                at: (end_nm, bundle.levels_ev[0]),
+                at: (end_nm, bundle.first().energy_ev),
                 text: bundle.name.clone(),
-                ink: bundle.kind.ink(),
+                ink: bundle.first().kind.ink(),
                 mark: None,
                 standing: Standing::Beside,
             });
@@ -309,7 +309,10 @@ impl<'a> Diagram<'a> {
 
     /// Height of the highest crest: most of the usual distance of neighbouring levels.
     fn crest_px(&self, bundles: &[Bundle]) -> f64 {
-        let mut levels_ev: Vec<f64> = bundles.iter().map(|bundle| bundle.levels_ev[0]).collect();
+        let mut levels_ev: Vec<f64> = bundles
+            .iter()
+            .map(|bundle| bundle.first().energy_ev)
+            .collect();
         levels_ev.sort_by(f64::total_cmp);
         let mut gaps_px: Vec<f64> = levels_ev
             .windows(2)
@@ -325,8 +328,8 @@ impl<'a> Diagram<'a> {
 
     /// Draws levels as lines, the one nearest the gap with its envelope; returns where they end, nm.
     fn draw_bundle(&self, panel: &mut Panel, bundle: &Bundle, ev_nm: f64) -> f64 {
-        let level_ev = bundle.levels_ev[0];
-        let (ink, dash) = (bundle.kind.ink(), bundle.kind.dash());
+        let first = bundle.first();
+        let (level_ev, kind) = (first.energy_ev, first.kind);
         let crest = self.crest(bundle, level_ev, ev_nm);
         let (from_nm, to_nm) = crest.first().zip(crest.last()).map_or(
             (
@@ -335,37 +338,37 @@ impl<'a> Diagram<'a> {
             ),
             |(first, last)| (first.0, last.0),
         );
-        let line = |energy_ev: f64, width_px: f64, dash: Dash| Curve {
-            ink,
+        let line = |member: Member, width_px: f64, dash: Dash| Curve {
+            ink: member.kind.ink(),
             dash,
             width_px,
             naming: Naming::Nowhere,
-            ..Curve::through("", [(from_nm, energy_ev), (to_nm, energy_ev)])
+            ..Curve::through("", [(from_nm, member.energy_ev), (to_nm, member.energy_ev)])
         };
         let mut last_ev = level_ev;
-        for &energy_ev in &bundle.levels_ev[1..] {
+        for member in &bundle.members[1..] {
             // Lines that would fall on each other are drawn once.
-            if (energy_ev - last_ev).abs() > self.ev_per_px {
-                panel.curves.push(line(energy_ev, 0.7, dash));
-                last_ev = energy_ev;
+            if (member.energy_ev - last_ev).abs() > self.ev_per_px {
+                panel.curves.push(line(*member, 0.7, member.kind.dash()));
+                last_ev = member.energy_ev;
             }
         }
         if crest.is_empty() {
-            panel.curves.push(line(level_ev, 1.4, dash));
+            panel.curves.push(line(first, 1.4, kind.dash()));
             return to_nm;
         }
-        panel.curves.push(line(level_ev, 0.9, Dash::Solid));
+        panel.curves.push(line(first, 0.9, Dash::Solid));
         panel.areas.push(Area {
             spans: crest
                 .iter()
                 .map(|&(z, energy)| (z, Some((level_ev.min(energy), level_ev.max(energy)))))
                 .collect(),
-            ink,
+            ink: kind.ink(),
             opacity: 0.2,
         });
         panel.curves.push(Curve {
-            ink,
-            dash,
+            ink: kind.ink(),
+            dash: kind.dash(),
             width_px: 1.2,
             naming: Naming::Nowhere,
             ..Curve::through("", crest)

@@ -44,9 +44,9 @@ pub(super) fn dispersion_panel(
     };
     let mut state = 0;
     for bundle in bundles {
-        for member in 0..bundle.levels_ev.len() {
+        for (place, member) in bundle.members.iter().enumerate() {
             for (block, slices) in mixed.blocks.iter().enumerate() {
-                let is_named = member == 0 && block == 0;
+                let is_named = place == 0 && block == 0;
                 let energies = slices[..=last]
                     .iter()
                     .map(|slice| slice.energy_ev.get(state));
@@ -63,8 +63,8 @@ pub(super) fn dispersion_panel(
                         .zip(energies)
                         .map(|(&k, energy_ev)| (k, energy_ev.map(|it| 1e3 * (it - top_ev))))
                         .collect(),
-                    ink: bundle.kind.ink(),
-                    dash: bundle.kind.dash(),
+                    ink: member.kind.ink(),
+                    dash: member.kind.dash(),
                     width_px: if is_named { 1.8 } else { 1.0 },
                     mark: None,
                 });

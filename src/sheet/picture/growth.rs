@@ -1,38 +1,27 @@
 //! The two panels over the carrier density.
 
 use super::{line_key, word_key};
-use crate::evaluation::{GainPeak, Run, Spectrum};
+use crate::evaluation::{GainPeak, Spectrum};
 use crate::sheet::figure::{Axis, Curve, Dash, Ink, Key, Mark, Naming, Panel, Place, Rule};
 use crate::sheet::number::{significant, typeset};
 
 const HEIGHT_PX: f64 = 220.0;
+const TE_INK: Ink = Ink::Colour(0);
+const TM_INK: Ink = Ink::Colour(1);
 /// Points of the logarithmic law.
 const LAW_POINTS: usize = 60;
 
 /// Peak gain against density with the logarithmic law.
 pub(super) fn peak_panel(spectrum: &Spectrum) -> Panel {
-    let marks: [(&str, fn(&Run) -> Option<GainPeak>, Ink, Mark); 2] = [
-        ("TE", |run| run.te, Ink::Colour(0), Mark::Disc),
-        ("TM", |run| run.tm, Ink::Colour(1), Mark::Diamond),
-    ];
-    let curves = marks.iter().map(|(_, of, ink, mark)| Curve {
-        ink: *ink,
-        width_px: 0.0,
-        mark: Some(*mark),
-        naming: Naming::Nowhere,
-        points: spectrum
-            .runs
-            .iter()
-            .map(|run| (run.density_cm3, of(run).map(|peak| peak.gain_cm)))
-            .collect(),
-        ..Curve::default()
-    });
-    let keys = marks.iter().map(|(name, _, ink, mark)| Key {
-        name: (*name).to_owned(),
-        ink: *ink,
-        mark: Some(*mark),
+    let te = spectrum.runs.iter().map(|run| run.te);
+    let tm = spectrum.runs.iter().map(|run| run.tm);
+    let (te_mark, tm_mark) = (Mark::Disc, Mark::Diamond);
+    let mark_key = |name: &str, ink: Ink, mark: Mark| Key {
+        name: name.to_owned(),
+        ink,
+        mark: Some(mark),
         ..Key::default()
-    });
+    };
     let mut panel = Panel {
         title: "Peak gain".to_owned(),
         plot_height_px: HEIGHT_PX,
@@ -42,8 +31,14 @@ pub(super) fn peak_panel(spectrum: &Spectrum) -> Panel {
             includes: Some(0.0),
             ..Axis::new("peak gain", "cm⁻¹")
         },
-        curves: curves.collect(),
-        keys: keys.collect(),
+        curves: vec![
+            peaks(spectrum, te, TE_INK, te_mark),
+            peaks(spectrum, tm, TM_INK, tm_mark),
+        ],
+        keys: vec![
+            mark_key("TE", TE_INK, te_mark),
+            mark_key("TM", TM_INK, tm_mark),
+        ],
         ..Panel::default()
     };
     if let Some((polarisation, fit)) = spectrum.fit {
@@ -85,6 +80,26 @@ pub(super) fn peak_panel(spectrum: &Spectrum) -> Panel {
     panel
 }
 
+/// Marks at the peaks of one polarisation.
+fn peaks(
+    spectrum: &Spectrum,
+    peaks: impl Iterator<Item = Option<GainPeak>>,
+    ink: Ink,
+    mark: Mark,
+) -> Curve {
+    let densities = spectrum.runs.iter().map(|run| run.density_cm3);
+    Curve {
+        ink,
+        width_px: 0.0,
+        mark: Some(mark),
+        naming: Naming::Nowhere,
+        points: densities
+            .zip(peaks.map(|peak| peak.map(|it| it.gain_cm)))
+            .collect(),
+        ..Curve::default()
+    }
+}
+
 /// Radiative current of all wells against density.
 pub(super) fn current_panel(spectrum: &Spectrum) -> Panel {
     let currents = spectrum.runs.iter().map(|run| {
@@ -100,7 +115,6 @@ pub(super) fn current_panel(spectrum: &Spectrum) -> Panel {
             ..Axis::new("radiative current", "A cm⁻²")
         },
         curves: vec![Curve {
-            ink: Ink::Colour(0),
             mark: Some(Mark::Disc),
             width_px: 1.2,
             naming: Naming::Nowhere,
