@@ -1,7 +1,7 @@
 //! The command `spread`: how wafers will scatter.
 
 use super::Ending;
-use super::case::Case;
+use super::case::{Case, remark_on_results};
 use super::complaint::Complaint;
 use super::flags;
 use super::gauge::Gauge;
@@ -10,7 +10,7 @@ use super::wishes::{Destinations, one, overrides};
 use crate::design::{
     MODEL_NM, Reactor, Request, Solving, Spread, SpreadError, posed, spread as spread_of, vacuum_nm,
 };
-use crate::profile::Profile;
+use crate::evaluation::Evaluation;
 use crate::sheet::{self, Stamp, csv, json};
 use crate::structure::{Stack, Wavelength};
 
@@ -78,16 +78,19 @@ pub(super) fn spread(flags: &flags::Spread, outlet: &Outlet) -> Result<Ending, C
         model_nm: growth.model_nm.unwrap_or(MODEL_NM),
     };
     let stack = &case.reading.stack;
+    let evaluation = Evaluation::new(stack, &case.parameters)?;
+    if !destinations.quiet {
+        remark_on_results(&evaluation.remarks, outlet);
+    }
     let result = {
         let gauge = Gauge::new(draws, "drawing wafers", destinations.quiet);
         let reactor = Reactor::new(stack, &growth);
         let progress = |done| gauge.reached(done);
         spread_of(&reactor, stack, &case.parameters, &request, &progress)?
     };
-    let profile = Profile::new(stack, &case.parameters).ok();
     let stamp = Stamp {
         seed: Some(flags.seed),
-        ..case.stamp(profile.map(|profile| profile.offsets))
+        ..case.stamp(Some(evaluation.profile.offsets))
     };
     write(stack, &result, &stamp, &destinations, outlet)
 }

@@ -39,7 +39,7 @@
 //! follow the common rate only.
 
 use crate::materials::{Composition, Element};
-use crate::structure::{Bands, GROUP_III, Growth, Material, Role, Stack, Substance};
+use crate::structure::{GROUP_III, Growth, Material, Role, Stack, Substance};
 
 /// Group-V elements in the order of formulas, by rising mass.
 const GROUP_V: [Element; 3] = [Element::P, Element::As, Element::Sb];
@@ -149,12 +149,6 @@ impl<'a> Reactor<'a> {
             variables,
             evenness,
         }
-    }
-
-    /// How the valence bands of the stack are treated.
-    #[must_use]
-    pub fn bands(&self) -> Bands {
-        self.stack.model.bands
     }
 
     /// The stack that grows where each variable misses by so many of its sigmas.

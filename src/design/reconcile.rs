@@ -37,13 +37,12 @@ pub use readings::Readings;
 use super::house_offset::HouseOffset;
 use super::unknown::Unknown;
 use crate::diffraction::NoReflection;
-use crate::evaluation::Failure;
+use crate::evaluation::{Evaluation, Failure};
 use crate::materials::Parameters;
-use crate::structure::{MismatchKind, Stack};
-use crate::units::wavelength_nm;
+use crate::structure::{MismatchKind, Stack, Wavelength};
 use causes::causes;
 use nalgebra::{DMatrix, SymmetricEigen};
-use problem::{Posterior, Problem, grown, photoluminescence_ev, posterior, problem};
+use problem::{Posterior, Problem, grown, posterior, problem};
 
 /// Sums of squares of none to three normal deviates that are exceeded once in a thousand times
 /// (M. Abramowitz, I. A. Stegun, Handbook of Mathematical Functions (1964), table 26.8).
@@ -234,8 +233,8 @@ pub fn reconcile(
     if unknowns.is_empty() {
         return Err(ReconcileError::NoUnknown);
     }
-    let problem = problem(stack, parameters, readings, offset)?;
-    let ordered = &problem.ordered;
+    let problem = problem(stack, parameters, readings, offset);
+    let ordered = problem.predicted(&problem.stack, 0.0)?;
     let found = posterior(&problem, unknowns)?;
     let deviations: Vec<Deviation> = problem
         .data
@@ -266,7 +265,7 @@ pub fn reconcile(
         .collect();
     let undetermined = undetermined(unknowns, &found.jacobian);
     let mut result = Reconciliation {
-        ordered_chi_square: problem.misses(ordered).norm_squared(),
+        ordered_chi_square: problem.misses(&ordered).norm_squared(),
         estimated_chi_square: problem.misses(&found.predicted).norm_squared(),
         deviations,
         correlation: correlation(&found.covariance),
@@ -307,13 +306,15 @@ pub fn modelled_pl_nm(
         pl_nm: None,
         ..*readings
     };
-    let problem = problem(stack, parameters, &without_pl, &none)?;
+    let problem = problem(stack, parameters, &without_pl, &none);
     let grown = if problem.data.is_empty() {
         problem.stack.clone()
     } else {
         grown(&problem.stack, unknowns, &posterior(&problem, unknowns)?.v)
     };
-    Ok(wavelength_nm(photoluminescence_ev(&grown, parameters)?))
+    Evaluation::new(&grown, parameters)?
+        .wavelength_nm(Wavelength::Photoluminescence)
+        .ok_or(ReconcileError::NoEmission)
 }
 
 fn correlation(covariance: &DMatrix<f64>) -> Vec<Vec<f64>> {

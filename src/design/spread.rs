@@ -26,7 +26,7 @@ use super::reactor::{Reactor, Variable};
 use super::surrogate::{Quadratic, points};
 use crate::evaluation::{Evaluation, Failure};
 use crate::materials::Parameters;
-use crate::structure::{Bands, Medium, Stack, Target, Wavelength};
+use crate::structure::{Medium, Stack, Target, Wavelength};
 use crate::units::air;
 use layers::layers;
 use rayon::prelude::*;
@@ -40,8 +40,6 @@ pub const MODEL_NM: f64 = 10.0;
 /// Wafers whose full solution is compared with the quadratic.
 const CHECKED: usize = 32;
 
-/// The same where the valence bands are mixed, and each takes long.
-const CHECKED_MIXED: usize = 12;
 /// The block of draws that the check takes, far from those of the wafers.
 const CHECK_BLOCK: u64 = u64::MAX;
 
@@ -228,8 +226,13 @@ pub fn spread(
     }
     let kind = request.kind;
     let solved = |point: &[f64]| wavelength_nm(&reactor.grown(point), parameters, kind);
-    let (values, full) = solved_at(&points(variables, STEP), variables, reactor, parameters, kind)?;
-    let nominal_nm = values[0];
+    let nominal_nm =
+        wavelength_nm(stack, parameters, kind)?.ok_or(SpreadError::NoEmission(kind.word()))?;
+    let places = points(variables, STEP);
+    let values = places
+        .par_iter()
+        .map(|point| solved(point)?.ok_or(SpreadError::Lost(kind.word())))
+        .collect::<Result<Vec<f64>, SpreadError>>()?;
     let quadratic = Quadratic::through(&values, variables, STEP);
     let sensitivities = sensitivities(&reactor.variables, &quadratic.slopes);
     let linear = Moments {
@@ -243,11 +246,7 @@ pub fn spread(
     };
     let (drawn, miss) = match request.solving {
         Solving::Quadratic => {
-            let wafers = match reactor.bands() {
-                Bands::Single => CHECKED,
-                Bands::Mixed => CHECKED_MIXED,
-            };
-            let miss = miss(&quadratic, request.seed, variables, (full, wafers), &solved)?;
+            let miss = miss(&quadratic, request.seed, variables, places.len(), &solved)?;
             (
                 wafers.drawn(request.draws, |x| Some(quadratic.at(x))),
                 Some(miss),
@@ -291,54 +290,6 @@ pub fn spread(
     })
 }
 
-/// Wavelengths at the points of the quadratic, and how many of them the full model gave.
-///
-/// Where the valence bands are mixed, which takes a hundred times as long, the points off the axes
-/// are those of single bands with the difference of the two models added up from the axes: mixing
-/// changes how strongly variables act, and hardly how they act on each other.
-fn solved_at(
-    places: &[Vec<f64>],
-    variables: usize,
-    reactor: &Reactor<'_>,
-    parameters: &Parameters,
-    kind: Wavelength,
-) -> Result<(Vec<f64>, usize), SpreadError> {
-    let solved = |point: &[f64], bands: Bands| {
-        let mut stack = reactor.grown(point);
-        stack.model.bands = bands;
-        wavelength_nm(&stack, parameters, kind)?.ok_or_else(|| {
-            if point.iter().all(|step| *step == 0.0) {
-                SpreadError::NoEmission(kind.word())
-            } else {
-                SpreadError::Lost(kind.word())
-            }
-        })
-    };
-    let all = |places: &[Vec<f64>], bands: Bands| {
-        let each = places.par_iter().map(|point| solved(point, bands));
-        each.collect::<Result<Vec<f64>, SpreadError>>()
-    };
-    let bands = reactor.bands();
-    if bands == Bands::Single {
-        return Ok((all(places, bands)?, places.len()));
-    }
-    let axes = 1 + 2 * variables;
-    let mut values = all(&places[..axes], bands)?;
-    let single = all(places, Bands::Single)?;
-    let beyond: Vec<f64> = values.iter().zip(&single).map(|(a, b)| a - b).collect();
-    for (place, single) in places.iter().zip(single).skip(axes) {
-        let along = place.iter().enumerate().filter(|(_, step)| **step != 0.0);
-        let added: f64 = along
-            .map(|(variable, step)| {
-                let side = usize::from(*step < 0.0);
-                beyond[1 + 2 * variable + side] - beyond[0]
-            })
-            .sum();
-        values.push(single + beyond[0] + added);
-    }
-    Ok((values, axes))
-}
-
 fn length(vector: &[f64]) -> f64 {
     vector.iter().map(|x| x * x).sum::<f64>().sqrt()
 }
@@ -367,11 +318,11 @@ fn miss(
     quadratic: &Quadratic,
     seed: u64,
     variables: usize,
-    (solved_before, wafers): (usize, usize),
+    solved_before: usize,
     solved: &(impl Fn(&[f64]) -> Result<Option<f64>, Failure> + Sync),
 ) -> Result<Miss, SpreadError> {
     let mut normals = Normals::of_block(seed, CHECK_BLOCK);
-    let wafers: Vec<Vec<f64>> = (0..wafers)
+    let wafers: Vec<Vec<f64>> = (0..CHECKED)
         .map(|_| (0..variables).map(|_| normals.draw()).collect())
         .collect();
     let misses = wafers

@@ -1,5 +1,4 @@
-//! What may have gone wrong by itself. Each is followed with single bands, put on the full model
-//! where the order stands.
+//! What may have gone wrong by itself.
 
 use super::problem::{Problem, STEP};
 use super::{Datum, ReconcileError};
@@ -51,21 +50,13 @@ impl Suspect {
                 for (unknown, per_amount) in unknowns {
                     unknown.shift(&mut stack, amount * per_amount);
                 }
-                problem.by_single_bands(stack)
+                problem.predicted(&stack, 0.0)
             }
             Act::BenchTemperature => {
                 stack.operation.temperature_k = (stack.operation.temperature_k + amount).max(1.0);
-                problem.by_single_bands(stack)
+                problem.predicted(&stack, 0.0)
             }
-            Act::BenchWavelength => {
-                let shifted = problem.data.iter().zip(&problem.ordered);
-                Ok(shifted
-                    .map(|((datum, _), ordered)| match datum {
-                        Datum::Pl => ordered + amount,
-                        Datum::Period | Datum::Mismatch(_) => *ordered,
-                    })
-                    .collect())
-            }
+            Act::BenchWavelength => problem.predicted(&stack, amount),
         }
     }
 }

@@ -1,9 +1,4 @@
 //! Unknowns and data, and the most likely unknowns.
-//!
-//! Where the model mixes the valence bands, derivatives are taken with single bands, whose peak
-//! moves with thickness and composition as the mixed one does to within some per cent and is found a
-//! hundred times as fast. Predictions that decide where the estimate comes to rest are of the full
-//! model.
 
 use super::{Datum, Readings, ReconcileError};
 use crate::design::house_offset::HouseOffset;
@@ -11,7 +6,7 @@ use crate::design::unknown::Unknown;
 use crate::diffraction::{Diffraction, Reflection};
 use crate::evaluation::Evaluation;
 use crate::materials::Parameters;
-use crate::structure::{Bands, Measured, MismatchKind, Stack, Wavelength};
+use crate::structure::{Measured, MismatchKind, Stack, Wavelength};
 use crate::units::{photon_ev, wavelength_nm};
 use nalgebra::{DMatrix, DVector};
 
@@ -37,28 +32,15 @@ pub(super) struct Problem<'a> {
     pub(super) sigmas: Vec<f64>,
     pub(super) offset_mev: f64,
     pub(super) reflection: Reflection,
-    /// What the full model gives for the order, in the order of the data.
-    pub(super) ordered: Vec<f64>,
-    /// How far the peak of the full model lies above that of single bands for the order, eV.
-    beyond_single_ev: f64,
 }
 
 impl Problem<'_> {
-    /// What the full model gives for a stack, in the order of the data.
-    fn predicted(&self, stack: &Stack) -> Result<Vec<f64>, ReconcileError> {
-        self.with_offset(stack, 1e-3 * self.offset_mev)
-    }
-
-    /// What single bands give, put on the full model where the order stands.
-    pub(super) fn by_single_bands(
+    /// What the model gives for a stack, in the order of the data.
+    pub(super) fn predicted(
         &self,
-        mut stack: Stack,
+        stack: &Stack,
+        pl_shift_nm: f64,
     ) -> Result<Vec<f64>, ReconcileError> {
-        stack.model.bands = Bands::Single;
-        self.with_offset(&stack, 1e-3 * self.offset_mev + self.beyond_single_ev)
-    }
-
-    fn with_offset(&self, stack: &Stack, offset_ev: f64) -> Result<Vec<f64>, ReconcileError> {
         let wants_xray = self.data.iter().any(|(datum, _)| *datum != Datum::Pl);
         let multi_well = if wants_xray {
             let seen = Diffraction::new(stack, self.parameters, self.reflection, DIFFRACTOMETER_K)?;
@@ -75,8 +57,11 @@ impl Problem<'_> {
                 }
                 (Datum::Mismatch(MismatchKind::Relaxed), Some(seen)) => Ok(seen.mean.relaxed_ppm()),
                 (Datum::Pl, _) | (_, None) => {
-                    let peak_ev = photoluminescence_ev(stack, self.parameters)?;
-                    Ok(wavelength_nm(peak_ev + offset_ev))
+                    let peak_nm = Evaluation::new(stack, self.parameters)?
+                        .wavelength_nm(Wavelength::Photoluminescence)
+                        .ok_or(ReconcileError::NoEmission)?;
+                    let photon = photon_ev(peak_nm) + 1e-3 * self.offset_mev;
+                    Ok(wavelength_nm(photon) + pl_shift_nm)
                 }
             })
             .collect()
@@ -88,7 +73,7 @@ impl Problem<'_> {
         unknowns: &[Unknown],
         v: &DVector<f64>,
     ) -> Result<Vec<f64>, ReconcileError> {
-        self.predicted(&grown(&self.stack, unknowns, v))
+        self.predicted(&grown(&self.stack, unknowns, v), 0.0)
     }
 
     /// Derivatives of the predictions, in sigmas of the data for a prior sigma of each unknown.
@@ -102,7 +87,7 @@ impl Problem<'_> {
             let side = |step: f64| {
                 let mut moved = v.clone();
                 moved[unknown] += step;
-                self.by_single_bands(grown(&self.stack, unknowns, &moved))
+                self.moved(unknowns, &moved)
             };
             let (above, below) = (side(STEP)?, side(-STEP)?);
             for datum in 0..self.data.len() {
@@ -135,17 +120,6 @@ pub(super) fn grown(stack: &Stack, unknowns: &[Unknown], v: &DVector<f64>) -> St
     grown
 }
 
-/// Photon energy at the peak of photoluminescence, eV, without any offset.
-pub(super) fn photoluminescence_ev(
-    stack: &Stack,
-    parameters: &Parameters,
-) -> Result<f64, ReconcileError> {
-    let peak_nm = Evaluation::new(stack, parameters)?
-        .wavelength_nm(Wavelength::Photoluminescence)
-        .ok_or(ReconcileError::NoEmission)?;
-    Ok(photon_ev(peak_nm))
-}
-
 /// The most likely unknowns.
 pub(super) struct Posterior {
     /// In prior sigmas.
@@ -169,9 +143,9 @@ pub(super) fn posterior(
             .inverse()
     };
     let mut v = DVector::zeros(count);
-    let mut predicted = problem.ordered.clone();
-    // The derivatives change little along the way: they are taken anew after long steps, and once
-    // more at the end, where they make the covariance.
+    let mut predicted = problem.moved(unknowns, &v)?;
+    // The derivatives change little along the way: they are taken at the start and once more at the
+    // end, where they make the covariance.
     let mut jacobian = problem.jacobian(unknowns, &v)?;
     let mut covariance = inverse(&jacobian);
     for _ in 0..MOST_ITERATIONS {
@@ -185,10 +159,10 @@ pub(super) fn posterior(
         };
         v += factor * step;
         predicted = problem.moved(unknowns, &v)?;
-        if length < 2e-3 {
+        if length < 1e-3 {
             break;
         }
-        if length > 0.3 {
+        if length > 0.5 {
             jacobian = problem.jacobian(unknowns, &v)?;
             covariance = inverse(&jacobian);
         }
@@ -208,7 +182,7 @@ pub(super) fn problem<'a>(
     parameters: &'a Parameters,
     readings: &Readings,
     offset: &HouseOffset,
-) -> Result<Problem<'a>, ReconcileError> {
+) -> Problem<'a> {
     let mut stack = stack.clone();
     if let Some(temperature_k) = readings.temperature_k {
         stack.operation.temperature_k = temperature_k;
@@ -228,25 +202,12 @@ pub(super) fn problem<'a>(
         data.push((Datum::Mismatch(mismatch.kind), mismatch.ppm));
         sigmas.push(mismatch.ppm.sigma);
     }
-    let mut problem = Problem {
+    Problem {
         stack,
         parameters,
         data,
         sigmas,
         offset_mev: offset.offset_mev,
         reflection: readings.reflection,
-        ordered: Vec::new(),
-        beyond_single_ev: 0.0,
-    };
-    problem.ordered = problem.predicted(&problem.stack)?;
-    let pl = problem.data.iter().position(|(it, _)| *it == Datum::Pl);
-    if let Some(index) = pl
-        && problem.stack.model.bands == Bands::Mixed
-    {
-        let mut single = problem.stack.clone();
-        single.model.bands = Bands::Single;
-        let full_ev = photon_ev(problem.ordered[index]) - 1e-3 * problem.offset_mev;
-        problem.beyond_single_ev = full_ev - photoluminescence_ev(&single, parameters)?;
     }
-    Ok(problem)
 }
