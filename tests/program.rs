@@ -309,11 +309,11 @@ fn remarks_go_to_standard_error_and_quiet_leaves_them_out() {
 fn a_default_temperature_is_said_in_page_document_and_remark() {
     let folder = folder();
     let content = fs::read_to_string(TENSILE).expect("the file");
-    let bare: String = content
+    let bare = content
         .lines()
         .filter(|line| !line.starts_with("temperature"))
-        .map(|line| format!("{line}\n"))
-        .collect();
+        .collect::<Vec<_>>()
+        .join("\n");
     let path = put(&folder, "bare.toml", &bare);
     let output = run(&["levels", &path]);
     assert!(text(&output.stderr).contains("no temperature is given"));

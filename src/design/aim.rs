@@ -170,7 +170,7 @@ pub fn aim(
         3 => hunt.over_three(search)?,
         other => return Err(AimError::Moves(other)),
     };
-    hunt.outcome(found)
+    hunt.outcome(&found)
 }
 
 /// What a look over the moves found, in shares of their ranges from 0 to 1.
@@ -308,7 +308,7 @@ impl Hunt<'_> {
     }
 
     /// Solutions as files read back, or the nearest structure.
-    fn outcome(&self, found: Found) -> Result<Outcome, AimError> {
+    fn outcome(&self, found: &Found) -> Result<Outcome, AimError> {
         let solutions: Vec<Solution> = found
             .solutions
             .par_iter()
@@ -331,7 +331,7 @@ impl Hunt<'_> {
             solutions,
             nearest,
             range_nm: (least <= most).then(|| (self.shown_nm(least), self.shown_nm(most))),
-            jumps: found.jumps,
+            jumps: found.jumps.clone(),
         })
     }
 

@@ -914,7 +914,7 @@ fn nearest(original: &Composition, found: Vec<Composition>) -> Result<Compositio
 }
 
 /// The elements of a sublattice that are present, beside one.
-fn beside(elements: &Elements, element: Element) -> Vec<Element> {
+fn beside(elements: Elements, element: Element) -> Vec<Element> {
     elements
         .iter()
         .filter(|other| other.is_group_iii() == element.is_group_iii() && *other != element)
@@ -967,7 +967,7 @@ fn line_of_share(
     share: f64,
 ) -> Result<[Composition; 2], Impossible> {
     let elements = original.elements();
-    let others = beside(&elements, element);
+    let others = beside(elements, element);
     let fixed = original.with_fraction(element, share);
     let give = |composition: Composition, pair: [Element; 2], sum: f64| {
         [(sum, 0.0), (0.0, sum)].map(|(first, second)| {
@@ -1027,7 +1027,7 @@ fn rounded_formula(composition: &Composition) -> String {
         for (element, parts) in &shown {
             formula.push_str(element.symbol());
             if shown.len() > 1 {
-                formula.push_str(&format!("{}", parts / PARTS));
+                formula.push_str(&(parts / PARTS).to_string());
             }
         }
     }

@@ -84,9 +84,8 @@ pub(super) fn value_words(moved: &Move, value: f64) -> String {
 /// A value of a move in a table.
 fn cell(moved: &Move, value: f64) -> String {
     let decimals = match moved.quantity {
-        Quantity::Thickness => 3,
+        Quantity::Thickness | Quantity::Strain => 3,
         Quantity::Share(_) => 4,
-        Quantity::Strain => 3,
         Quantity::Gap => 1,
     };
     fixed(moved.said(value), decimals)

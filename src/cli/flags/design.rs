@@ -115,7 +115,8 @@ is thickness (nm), the share of an element on its sublattice (0 to 1), strain
 (1%tensile..1.5%compressive) or gap (1200..1600nm, of the strained bulk layer).
 What gives way when a composition moves is said with the result.
 Without --wavelength the file's [target] is aimed at. One move gives every
-solution; two give the line of solutions; three give lines at values of the third.
+solution; two give the line of solutions; three give
+lines at values of the third.
 Files that are written differ from yours in nothing but what moved.
 Exit code 4 if there is no solution; the nearest structure is then shown.";
 
