@@ -331,7 +331,7 @@ impl Hunt<'_> {
             solutions,
             nearest,
             range_nm: (least <= most).then(|| (self.shown_nm(least), self.shown_nm(most))),
-            jumps: found.jumps.clone(),
+            jumps: found.jumps,
         })
     }
 

@@ -270,21 +270,18 @@ fn strain_of(stack: &Stack, variation: &Variation<'_>) -> ChartPoint {
 /// First heavy-hole level less first light-hole level, meV: of mixed bands the first states of
 /// mostly one kind.
 fn heavy_less_light_mev(evaluation: &Evaluation<'_>) -> Option<f64> {
-    let [heavy, light] = match &evaluation.mixed {
-        Some(mixed) => {
-            let first = |heavy: bool| {
-                mixed
-                    .zone_centre
-                    .iter()
-                    .find(|state| (state.heavy > 0.5) == heavy)
-                    .map(|state| state.energy_ev)
-            };
-            [first(true), first(false)]
-        }
-        None => {
-            let bands = &evaluation.bands;
-            [&bands.heavy, &bands.light].map(|levels| levels.first().map(|it| it.energy_ev))
-        }
+    let [heavy, light] = if let Some(mixed) = &evaluation.mixed {
+        let first = |heavy: bool| {
+            mixed
+                .zone_centre
+                .iter()
+                .find(|state| (state.heavy > 0.5) == heavy)
+                .map(|state| state.energy_ev)
+        };
+        [first(true), first(false)]
+    } else {
+        let bands = &evaluation.bands;
+        [&bands.heavy, &bands.light].map(|levels| levels.first().map(|it| it.energy_ev))
     };
     Some(1e3 * (heavy? - light?))
 }

@@ -133,7 +133,7 @@ fn solutions(variation: &Variation<'_>, outcome: &Outcome, page: &mut Page) {
         })
         .collect();
     let mut columns: Vec<Column> = vec![numbers("no")];
-    columns.extend(heads.into_iter().map(|head| numbers(head)));
+    columns.extend(heads.into_iter().map(numbers));
     columns.extend([
         numbers("peak gain\ncm⁻¹"),
         words(""),
