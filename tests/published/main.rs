@@ -12,6 +12,7 @@ mod optics;
 mod stacks;
 mod strain;
 mod table;
+mod valence;
 mod wafer;
 
 use judgement::{Check, Verdict};
@@ -43,6 +44,10 @@ struct Reference {
     pair: Vec<optics::PairProblem>,
     #[serde(default)]
     bulk: Vec<optics::BulkProblem>,
+    #[serde(default)]
+    valence_walls: Vec<valence::ValenceWalls>,
+    #[serde(default)]
+    dipole: Vec<valence::DipoleProblem>,
     #[serde(default)]
     film: Vec<strain::FilmProblem>,
     #[serde(default)]
@@ -149,6 +154,8 @@ fn compare(file: &str, reference: &Reference) -> Vec<Compared> {
         .chain(each(&reference.stack))
         .chain(each(&reference.pair))
         .chain(each(&reference.bulk))
+        .chain(each(&reference.valence_walls))
+        .chain(each(&reference.dipole))
         .chain(each(&reference.film))
         .chain(each(&reference.balance))
         .chain(each(&reference.bragg))
