@@ -107,8 +107,11 @@ proptest! {
         let period = StrainBudget::new(&stack(&wells(4, indium, well_nm, barrier_nm, 0.0)), &parameters);
         let active = budget.active.expect("wells");
         let factor = budget.balance.expect("barriers").thickness_factor.expect("tensile barriers");
-        prop_assert_eq!(factor > 1.0, active.mean.sense() == Sense::Compressive);
-        prop_assert_eq!(active.force_n_m > 0.0, active.mean.sense() == Sense::Compressive);
+        // The force weighs layers by their stiffness, the mean does not: near balance they may differ.
+        if active.mean.relaxed.abs() > 2e-3 {
+            prop_assert_eq!(factor > 1.0, active.mean.sense() == Sense::Compressive);
+            prop_assert_eq!(active.force_n_m > 0.0, active.mean.sense() == Sense::Compressive);
+        }
         let unbalanced = period.active.expect("wells");
         prop_assert!(unbalanced.mean.relaxed > active.mean.relaxed);
     }

@@ -126,16 +126,16 @@ Examples:
       --up well.strain=1%tensile..1.5%compressive --of pl --figure plane.svg
   stepwell chart my.toml --across well.thickness=4..12nm --up well.In=0.1..0.3 \\
       --of peak-gain --points 100x100 --csv plane.csv --figure plane.svg
-  ... --csv plane.csv --resume                 after Ctrl-C: go on where it ended
-  ... --part 3/16 --csv part-3.csv             one of sixteen parts, on a cluster
-  ... --join part-*.csv --csv plane.csv        all parts, the same bytes as one run
+  ... --csv plane.csv --resume              after Ctrl-C: go on where it ended
+  ... --part 3/16 --csv part-3.csv          one of sixteen parts, on a cluster
+  ... --join part-*.csv --csv plane.csv     all parts, the same bytes as one run
 
 Figures: transition, pl and gain are wavelengths (nm in vacuum); peak-gain and
 te-tm (cm^-1) are at the working density; transparency is a density (cm^-3);
 strain is of the well (%, negative where compressive); critical is its thickness
 over the critical thickness of a layer that is grown over.
-Drawn beside it: the target bold, zero strain, where heavy and light holes cross,
-the critical thickness as a hatched band, and the file's own point.";
+Drawn beside it: the target bold, zero strain, where heavy and light holes
+cross, the critical thickness as a hatched band, and the file's own point.";
 
 pub(super) const WEIGH_EXAMPLES: &str = "\
 Examples:
