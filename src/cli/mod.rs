@@ -1,6 +1,6 @@
 //! Words in, files and exit code out; the only place that prints.
 //!
-//! Flags come first and mean nothing yet ([`flags`]); [`wishes`] says what they mean, or which flag
+//! Flags come first and mean nothing yet (`flags`); [`wishes`] says what they mean, or which flag
 //! is wrong and how to mend it. A command reads a [`case`], computes, and hands texts to the
 //! [`outlet`]: results on standard output, remarks on standard error, files whole or not at all.
 
