@@ -116,7 +116,7 @@ impl FromStr for Reflection {
             _ => return Err(unknown()),
         };
         let reflection = Self { order };
-        if order % 2 == 0 {
+        if order.is_multiple_of(2) {
             Ok(reflection)
         } else {
             Err(NoReflection::Extinct(reflection))

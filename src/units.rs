@@ -52,13 +52,3 @@ pub fn wavelength_nm(photon_ev: f64) -> f64 {
 pub fn photon_ev(wavelength_nm: f64) -> f64 {
     HC_EV_NM / wavelength_nm
 }
-
-/// Refractive index of standard air (15 °C, 101 325 Pa, dry, 450 ppm CO₂) at a vacuum wavelength in
-/// nm, for 230 to 1690 nm, and within 1e-7 beyond.
-///
-/// Source: P. E. Ciddor, Appl. Opt. 35, 1566 (1996), equation 1.
-#[must_use]
-pub fn air_index(vacuum_nm: f64) -> f64 {
-    let square = (1e3 / vacuum_nm).powi(2);
-    1.0 + 1e-8 * (5_792_105.0 / (238.0185 - square) + 167_917.0 / (57.362 - square))
-}

@@ -309,11 +309,11 @@ fn remarks_go_to_standard_error_and_quiet_leaves_them_out() {
 fn a_default_temperature_is_said_in_page_document_and_remark() {
     let folder = folder();
     let content = fs::read_to_string(TENSILE).expect("the file");
-    let bare: String = content
+    let bare = content
         .lines()
         .filter(|line| !line.starts_with("temperature"))
-        .map(|line| format!("{line}\n"))
-        .collect();
+        .collect::<Vec<_>>()
+        .join("\n");
     let path = put(&folder, "bare.toml", &bare);
     let output = run(&["levels", &path]);
     assert!(text(&output.stderr).contains("no temperature is given"));
@@ -465,10 +465,10 @@ const STAMP: &str = "program input_sha256 parameters_sha256 parameter_files temp
 #[test]
 fn the_document_of_levels_has_its_keys() {
     for path in structures() {
-        let document = document(&["levels", &path, "--json", "--quiet"]);
+        let document = document(&["levels", &path, "--json", "--quiet", "--bands", "single"]);
         has_keys(
             &document,
-            "format stamp title temperature_k shrinkage_mev wells layers electron heavy_hole light_hole \
+            "format stamp title temperature_k shrinkage_mev wells layers strain_budget electron heavy_hole light_hole \
              valence dispersion transitions emission",
         );
         assert_eq!(document["format"], 1);
@@ -697,6 +697,12 @@ fn a_folder_takes_every_table_with_units_in_the_heads() {
             "electron hole energy_ev wavelength_nm overlap",
         ),
         ("budget", "term adds_mev sum_ev sum_nm"),
+        (
+            "strain",
+            "layer formula count thickness_nm strain_percent strain relaxed_mismatch_ppm \
+             perpendicular_mismatch_ppm critical_single_nm critical_buried_nm critical_energy_nm \
+             critical_share",
+        ),
         ("emission", "of_what shrinkage_mev wavelength_nm"),
         (
             "edges",

@@ -39,6 +39,8 @@ material = "InP"
 thickness_nm = 40
 [operation]
 temperature_c = 23
+[model]
+bands = "single"
 "#;
 
 /// The same with wells of a quaternary: one unknown too many.

@@ -22,26 +22,48 @@ pub fn effective_density_cm3(mass: f64, thermal_ev: f64) -> f64 {
     0.25e21 * reciprocal_area.powf(1.5)
 }
 
-/// Parabolic bands with a common edge, one per mass (free-electron masses): one of electrons, or
-/// heavy and light holes.
+/// One parabolic band.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct BulkBand {
+    /// Free-electron masses.
+    pub mass: f64,
+    /// How far its edge lies from the one nearest the gap, eV, at least zero.
+    pub edge_ev: f64,
+}
+
+/// Parabolic bands of one kind of carrier: one of electrons, or heavy and light holes, their edges
+/// common or, under strain, apart.
 #[derive(Clone, Debug, PartialEq)]
-pub struct BulkBands(pub Vec<f64>);
+pub struct BulkBands(pub Vec<BulkBand>);
 
 impl BulkBands {
-    /// Effective density of states of all bands together, cm⁻³.
+    /// Bands with a common edge, one per mass (free-electron masses).
+    #[must_use]
+    pub fn of_one_edge(masses: &[f64]) -> Self {
+        let band = |&mass: &f64| BulkBand { mass, edge_ev: 0.0 };
+        Self(masses.iter().map(band).collect())
+    }
+
+    /// Effective density of states of all bands together, cm⁻³, as if they had one edge.
     #[must_use]
     pub fn effective_density_cm3(&self, thermal_ev: f64) -> f64 {
         self.0
             .iter()
-            .map(|&mass| effective_density_cm3(mass, thermal_ev))
+            .map(|band| effective_density_cm3(band.mass, thermal_ev))
             .sum()
     }
 
     /// Carriers per volume, cm⁻³, with the quasi-Fermi level `fermi_ev` inside the band, counted
-    /// from the edge away from the gap: n = N F_½(F/kT).
+    /// from the edge nearest the gap away from it: n = Σ N F_½((F − E)/kT).
     #[must_use]
     pub fn density_cm3(&self, fermi_ev: f64, thermal_ev: f64) -> f64 {
-        self.effective_density_cm3(thermal_ev) * half_integral(1, fermi_ev / thermal_ev)
+        self.0
+            .iter()
+            .map(|band| {
+                effective_density_cm3(band.mass, thermal_ev)
+                    * half_integral(1, (fermi_ev - band.edge_ev) / thermal_ev)
+            })
+            .sum()
     }
 
     /// The quasi-Fermi level, eV, at which the bands hold `density_cm3`, counted as in
@@ -49,8 +71,8 @@ impl BulkBands {
     #[must_use]
     pub fn fermi_ev(&self, density_cm3: f64, thermal_ev: f64) -> f64 {
         let filling = density_cm3 / self.effective_density_cm3(thermal_ev);
-        let excess = |eta: f64| half_integral(1, eta).ln() - filling.ln();
-        // F_½(η) < exp η, so that the level of a thin gas is a lower bound.
+        let excess = |eta: f64| (self.density_cm3(eta * thermal_ev, thermal_ev) / density_cm3).ln();
+        // F_½(η) < exp η, so that the level of a thin gas of one edge is a lower bound.
         let low = filling.ln() - 1e-6;
         let mut reach = 1.0;
         while excess(low + reach) < 0.0 {
@@ -79,7 +101,7 @@ mod tests {
 
     #[test]
     fn fermi_level_inverts_density_from_empty_to_overfull() {
-        let bands = BulkBands(vec![0.47, 0.08]);
+        let bands = BulkBands::of_one_edge(&[0.47, 0.08]);
         for temperature in [20.0, 300.0] {
             let kt = thermal_ev(temperature);
             for density in [1e12, 1e17, 1e19, 1e21] {
@@ -96,16 +118,38 @@ mod tests {
         let sphere = (mass * fermi / HBAR2_OVER_2M0_EV_NM2).powf(1.5)
             / (3.0 * std::f64::consts::PI.powi(2))
             * 1e21;
-        let got = BulkBands(vec![mass]).density_cm3(fermi, thermal_ev(10.0));
+        let got = BulkBands::of_one_edge(&[mass]).density_cm3(fermi, thermal_ev(10.0));
         assert!((got / sphere - 1.0).abs() < 1e-4, "{got} {sphere}");
     }
 
     #[test]
     fn bands_of_one_edge_add() {
         let kt = thermal_ev(300.0);
-        let both = BulkBands(vec![0.4, 0.08]).density_cm3(0.03, kt);
-        let sum = BulkBands(vec![0.4]).density_cm3(0.03, kt)
-            + BulkBands(vec![0.08]).density_cm3(0.03, kt);
+        let both = BulkBands::of_one_edge(&[0.4, 0.08]).density_cm3(0.03, kt);
+        let sum = BulkBands::of_one_edge(&[0.4]).density_cm3(0.03, kt)
+            + BulkBands::of_one_edge(&[0.08]).density_cm3(0.03, kt);
         assert!((both / sum - 1.0).abs() < 1e-14);
+    }
+
+    /// A band far beyond the level holds next to nothing; one at half the level less than one at
+    /// the edge.
+    #[test]
+    fn bands_apart_fill_one_after_the_other() {
+        let kt = thermal_ev(300.0);
+        let apart = |edge_ev: f64| {
+            BulkBands(vec![
+                BulkBand {
+                    mass: 0.4,
+                    edge_ev: 0.0,
+                },
+                BulkBand { mass: 0.1, edge_ev },
+            ])
+        };
+        let alone = BulkBands::of_one_edge(&[0.4]).density_cm3(0.0, kt);
+        let far = apart(1.0).density_cm3(0.0, kt);
+        assert!((far / alone - 1.0).abs() < 1e-12);
+        assert!(apart(0.02).density_cm3(0.0, kt) > far);
+        let fermi = apart(0.06).fermi_ev(3e18, kt);
+        assert!((apart(0.06).density_cm3(fermi, kt) / 3e18 - 1.0).abs() < 1e-9);
     }
 }

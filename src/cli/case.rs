@@ -125,6 +125,26 @@ impl Case {
         })
     }
 
+    /// The text of the file.
+    pub(super) fn text(&self) -> &str {
+        &self.source.content
+    }
+
+    /// The same file under other conditions.
+    pub(super) fn under(self, overrides: &Overrides, outlet: &Outlet) -> Result<Self, Complaint> {
+        let reading = structure::read(&self.source.content, &self.parameters, overrides).map_err(
+            |faults| {
+                Complaint::faults(
+                    &faults,
+                    &self.source.name,
+                    &self.source.content,
+                    outlet.error_colour(),
+                )
+            },
+        )?;
+        Ok(Self { reading, ..self })
+    }
+
     /// What results hang on.
     pub(super) fn stamp(&self, offsets: Option<Offsets>) -> Stamp {
         Stamp::new(

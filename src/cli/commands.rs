@@ -34,6 +34,7 @@ pub(super) fn levels(flags: &flags::Levels, outlet: &Outlet) -> Result<Ending, C
         "edges",
         "envelopes",
         "dispersion",
+        "strain",
     ];
     let destinations = Destinations::new(
         &flags.output,

@@ -1,6 +1,11 @@
 //! The command line as it is written. Nothing is judged here beyond what is a flag and what is not.
 
+mod design;
+
+pub(super) use design::{Aim, Chart, Target, Weigh};
+
 use clap::{Args, Parser, Subcommand};
+use design::{AIM_EXAMPLES, CHART_EXAMPLES, WEIGH_EXAMPLES};
 use std::path::PathBuf;
 
 /// Width of help texts, columns: the same everywhere.
@@ -36,6 +41,15 @@ pub(super) enum Command {
     /// Measured photoluminescence and X-ray against the design: what was grown
     #[command(after_help = RECONCILE_EXAMPLES, term_width = COLUMNS)]
     Reconcile(Reconcile),
+    /// Every structure that has the wavelength asked for, each with its limits
+    #[command(after_help = AIM_EXAMPLES, term_width = COLUMNS)]
+    Aim(Aim),
+    /// A wavelength, gain or strain over two numbers of a structure, as contour lines
+    #[command(after_help = CHART_EXAMPLES, term_width = COLUMNS)]
+    Chart(Chart),
+    /// Structures side by side, or a well beside its bulk, at equal density, current or gain
+    #[command(after_help = WEIGH_EXAMPLES, term_width = COLUMNS)]
+    Weigh(Weigh),
     /// What X-rays see of the wafer: peaks, zero order, satellites, rocking curve
     #[command(after_help = XRAY_EXAMPLES, term_width = COLUMNS)]
     Xray(Xray),
@@ -179,9 +193,12 @@ pub(super) struct Xray {
 
 #[derive(Debug, Args)]
 pub(super) struct Restate {
-    /// A number with its unit, and the sense of a mismatch or a strain: 850ppm tensile
-    #[arg(value_name = "QUANTITY", required = true, allow_hyphen_values = true)]
-    pub(super) quantity: Vec<String>,
+    /// A number with its unit: 1310nm, 0.946eV, 850ppm
+    #[arg(value_name = "QUANTITY", allow_hyphen_values = true)]
+    pub(super) quantity: String,
+    /// Of a mismatch or a strain its sense: compressive or tensile
+    #[arg(value_name = "SENSE")]
+    pub(super) sense: Option<String>,
     /// The wavelength was read in air, not in vacuum
     #[arg(long)]
     pub(super) air: bool,
@@ -464,6 +481,9 @@ mod tests {
             CHECK_EXAMPLES,
             SPREAD_EXAMPLES,
             RECONCILE_EXAMPLES,
+            AIM_EXAMPLES,
+            CHART_EXAMPLES,
+            WEIGH_EXAMPLES,
             XRAY_EXAMPLES,
             RESTATE_EXAMPLES,
             MATERIALS_EXAMPLES,

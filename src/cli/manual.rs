@@ -10,16 +10,17 @@ use clap_mangen::Man;
 use clap_mangen::roff::{Roff, bold, roman};
 use std::io;
 
-const ENDINGS: [(&str, &str); 6] = [
+const ENDINGS: [(&str, &str); 7] = [
     ("0", "done"),
     ("1", "the computation failed"),
     ("2", "the command line is wrong"),
     ("3", "the input is wrong"),
     ("4", "no answer inside the limits"),
     ("5", "checked and found outside"),
+    ("130", "interrupted"),
 ];
 
-const EXAMPLES: [(&str, &str); 5] = [
+const EXAMPLES: [(&str, &str); 7] = [
     (
         "stepwell new estuary-1310 > my.toml",
         "a structure to start from, with comments",
@@ -32,6 +33,14 @@ const EXAMPLES: [(&str, &str); 5] = [
     (
         "stepwell check my.toml",
         "what may be wrong with it; exit code 5 if something is outside",
+    ),
+    (
+        "stepwell xray my.toml --figure rocking.svg",
+        "what a diffractometer will see of the wafer",
+    ),
+    (
+        "stepwell restate 850ppm --mismatch relaxed --on InP",
+        "one quantity said another way",
     ),
     (
         "stepwell materials In0.2Ga0.8As --on GaAs --at 25C",

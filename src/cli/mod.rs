@@ -7,14 +7,17 @@
 mod case;
 mod commands;
 mod complaint;
+mod design;
 mod flags;
 mod gauge;
 mod manual;
+mod moves;
 mod outlet;
 mod reconcile;
 mod shipped;
 mod spread;
 mod wafer;
+mod watch;
 mod welcome;
 mod wishes;
 
@@ -40,6 +43,8 @@ enum Ending {
     Unanswered = 4,
     /// Checked and found outside.
     Outside = 5,
+    /// Interrupted by the user, as shells count it (128 and the number of the signal).
+    Interrupted = 130,
 }
 
 /// Runs the program on its words, the first of which is its own name.
@@ -87,6 +92,9 @@ fn obey(flags: Flags, outlet: &Outlet) -> Result<Ending, Complaint> {
         Some(Command::Spread(flags)) => spread::spread(&flags, outlet),
         Some(Command::Reconcile(flags)) => reconcile::reconcile(&flags, outlet),
         Some(Command::Check(flags)) => commands::check(&flags, outlet),
+        Some(Command::Aim(flags)) => design::aim(&flags, outlet),
+        Some(Command::Chart(flags)) => design::chart(&flags, outlet),
+        Some(Command::Weigh(flags)) => design::weigh(&flags, outlet),
         Some(Command::Xray(flags)) => wafer::xray(&flags, outlet),
         Some(Command::Restate(flags)) => wafer::restate(&flags, outlet),
         Some(Command::Materials(flags)) => commands::materials(&flags, outlet),

@@ -61,7 +61,8 @@ pub(super) fn xray(flags: &flags::Xray, outlet: &Outlet) -> Result<Ending, Compl
 /// `stepwell restate QUANTITY`.
 pub(super) fn restate(flags: &flags::Restate, outlet: &Outlet) -> Result<Ending, Complaint> {
     let destinations = Destinations::new(&flags.output, None, None, &["restatement"])?;
-    let asked = flags.quantity.join(" ");
+    let words = std::iter::once(flags.quantity.as_str()).chain(flags.sense.as_deref());
+    let asked = words.collect::<Vec<_>>().join(" ");
     let quantity: Quantity = asked.parse().map_err(|error| unclear("", &error))?;
     let parameters = parameters(flags.overlay.as_deref(), outlet)?;
     let formula = |given: &Option<String>, flag: &str| {

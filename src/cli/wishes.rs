@@ -45,6 +45,27 @@ pub(super) fn temperature_k(word: &str) -> Result<f64, Complaint> {
     Ok(kelvin)
 }
 
+/// A wavelength with its unit: `1310nm`, `1.31um`.
+pub(super) fn length_nm(flag: &str, word: &str) -> Result<f64, Complaint> {
+    let unclear = |remedy: &str| {
+        Complaint::usage(format!("{flag}: `{word}` is no wavelength")).with_remedy(remedy)
+    };
+    let plain = word.trim();
+    let digits = plain.trim_end_matches(char::is_alphabetic);
+    let number: f64 = digits
+        .trim()
+        .parse()
+        .map_err(|_| unclear("a number with its unit: 1310nm"))?;
+    let nm = match &plain[digits.len()..] {
+        "nm" => number,
+        "um" | "µm" | "μm" => 1e3 * number,
+        "" => return Err(unclear(&format!("say which unit: {plain}nm"))),
+        _ => return Err(unclear("the unit is nm or um: 1310nm")),
+    };
+    check_magnitude("wavelength_nm", nm).map_err(|refusal| refused(flag, word, &refusal))?;
+    Ok(nm)
+}
+
 /// Densities, flags and lists together.
 fn densities_cm3(words: &[String]) -> Result<Vec<f64>, Complaint> {
     words
@@ -86,6 +107,7 @@ pub(super) fn band(word: &str) -> Result<Band, Complaint> {
     )
 }
 
+/// One of some words.
 pub(super) fn one<T: Copy>(
     flag: &str,
     word: &str,
@@ -198,18 +220,48 @@ impl Destinations {
                 .first()
                 .map_or(Ok(()), |table| self.files.write(path, &table.text(stamp))),
             Some(Csv::Folder(folder)) => {
-                std::fs::create_dir_all(folder).map_err(|error| {
-                    Complaint::new(
-                        super::Ending::Failed,
-                        format!("the folder `{}` can't be made: {error}", folder.display()),
-                    )
-                })?;
+                make_folder(folder)?;
                 tables().iter().try_for_each(|table| {
                     let path = folder.join(format!("{}.csv", table.name));
                     self.files.write(&path, &table.text(stamp))
                 })
             }
         }
+    }
+
+    /// The file that a table goes to, its folder made.
+    pub(super) fn csv_path(&self, table: &str) -> Result<Option<PathBuf>, Complaint> {
+        Ok(match &self.csv {
+            None => None,
+            Some(Csv::File(path)) => Some(path.clone()),
+            Some(Csv::Folder(folder)) => {
+                make_folder(folder)?;
+                Some(folder.join(format!("{table}.csv")))
+            }
+        })
+    }
+
+    /// Writes one file.
+    pub(super) fn write(&self, path: &Path, text: &str) -> Result<(), Complaint> {
+        self.files.write(path, text)
+    }
+
+    /// Writes files into a folder, which is made where it is not there; all of them, or none if one
+    /// is in the way.
+    pub(super) fn write_folder(
+        &mut self,
+        folder: &Path,
+        flag: &str,
+        files: &[(String, &str)],
+    ) -> Result<(), Complaint> {
+        for (name, _) in files {
+            self.files
+                .announce_in_any_folder(&folder.join(name), flag)?;
+        }
+        make_folder(folder)?;
+        files
+            .iter()
+            .try_for_each(|(name, text)| self.files.write(&folder.join(name), text))
     }
 
     /// Writes the matrix, if it is wanted.
@@ -232,6 +284,15 @@ impl Destinations {
     ) -> Result<(), Complaint> {
         print(&if self.json { json() } else { page() })
     }
+}
+
+fn make_folder(folder: &Path) -> Result<(), Complaint> {
+    std::fs::create_dir_all(folder).map_err(|error| {
+        Complaint::new(
+            super::Ending::Failed,
+            format!("the folder `{}` can't be made: {error}", folder.display()),
+        )
+    })
 }
 
 #[cfg(test)]

@@ -161,7 +161,7 @@ impl StrainBudget {
                 known.is_buried == is_buried
                     && first.role == layer.role
                     && first.thickness_nm == layer.thickness_nm
-                    && first.ends().map(|it| &it.substance) == layer.ends().map(|it| &it.substance)
+                    && are_alike(first, layer)
             };
             if let Some(known) = layers.iter_mut().find(|known| equal(known)) {
                 known.count += 1;
@@ -202,6 +202,13 @@ impl StrainBudget {
             balance,
         }
     }
+}
+
+/// Whether two layers are made of the same, a grade up counting as one down.
+fn are_alike(one: &Layer, other: &Layer) -> bool {
+    let substances = |layer: &Layer| layer.ends().map(|material| material.substance);
+    let [lower, upper] = substances(other);
+    substances(one) == [lower, upper] || substances(one) == [upper, lower]
 }
 
 fn share(thickness_nm: f64, limit: CriticalThickness) -> f64 {

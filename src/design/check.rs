@@ -1,11 +1,13 @@
 //! A structure against physics and the limits of the house: does it confine, can it be grown, what
 //! is unusual about it.
 
+use super::figures_of_merit::barriers_ev;
+use super::spread::{posed, vacuum_nm};
 use super::wafer::{WaferFinding, wafer};
 use crate::evaluation::{self, Evaluation, Failure};
 use crate::materials::Parameters;
 use crate::profile::Profile;
-use crate::structure::{Limits, Remark, Role, Stack};
+use crate::structure::{Limits, Remark, Role, Stack, Wavelength};
 use crate::subbands::Band;
 use crate::units::thermal_ev;
 
@@ -41,6 +43,9 @@ impl Bounds {
         }
     }
 }
+
+/// A tolerance below this is finer than a wafer map tells, nm (common practice: ±1 nm).
+const LEAST_TOLERANCE_NM: f64 = 1.0;
 
 /// How a finding stands.
 #[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord)]
@@ -133,6 +138,19 @@ pub enum Finding {
     },
     /// Something about the wafer.
     Wafer(WaferFinding),
+    /// The wavelength that the file promises against the one that its layers have.
+    Target {
+        /// Which wavelength.
+        kind: Wavelength,
+        /// Temperature at which it is meant, K.
+        temperature_k: f64,
+        /// The promise, nm in vacuum.
+        promised_nm: f64,
+        /// What the layers have, nm in vacuum; `None` where they have no such peak.
+        computed_nm: Option<f64>,
+        /// How far off is still accepted, nm.
+        tolerance_nm: Option<f64>,
+    },
     /// Spread of the lowest level over equal wells.
     Coupling {
         /// Whose level.
@@ -180,6 +198,7 @@ pub fn check(stack: &Stack, parameters: &Parameters, remarks: &[Remark]) -> Vec<
         findings.extend(direct_wells(stack, &profile, limits));
     }
     findings.extend(wafer(stack, parameters).into_iter().map(Finding::Wafer));
+    findings.extend(target(stack, parameters));
     match Evaluation::new(stack, parameters) {
         Err(failure) => findings.push(Finding::Unsolved(failure)),
         Ok(evaluation) => {
@@ -221,6 +240,7 @@ impl Finding {
             } => "electron-barrier",
             Self::Barrier { .. } => "hole-barrier",
             Self::Wafer(finding) => finding.code(),
+            Self::Target { .. } => "target",
             Self::Coupling { .. } => "coupling",
             Self::GroundHole { .. } => "ground-hole",
             Self::Levels(remark) => match remark {
@@ -251,15 +271,26 @@ impl Finding {
             }
         };
         match self {
-            Self::File(Remark::DefaultTemperature { .. })
-            | Self::Levels(evaluation::Remark::MassBounded) => Standing::Stated,
             Self::Wafer(finding) => finding.standing(),
+            Self::Target {
+                promised_nm,
+                computed_nm,
+                tolerance_nm,
+                ..
+            } => match (computed_nm, tolerance_nm) {
+                (None, _) => Standing::Outside,
+                (Some(nm), Some(most)) if (nm - promised_nm).abs() > *most => Standing::Outside,
+                (Some(_), Some(most)) => look(*most < LEAST_TOLERANCE_NM),
+                (Some(_), None) => Standing::Noted,
+            },
             Self::Doping {
                 acceptors_setback_nm,
                 least_nm: Some(least_nm),
                 ..
             } => outside(acceptors_setback_nm.is_some_and(|nm| nm < *least_nm)),
-            Self::Doping { .. } => Standing::Stated,
+            Self::File(Remark::DefaultTemperature { .. })
+            | Self::Levels(evaluation::Remark::MassBounded)
+            | Self::Doping { .. } => Standing::Stated,
             Self::File(_) | Self::Levels(_) => Standing::Noted,
             Self::Unsolved(_) => Standing::Outside,
             Self::DirectWell {
@@ -317,6 +348,20 @@ impl Finding {
                 measure("height_mev", 1e3 * height_ev, None),
             ],
             Self::Wafer(finding) => finding.measures(),
+            Self::Target {
+                promised_nm,
+                computed_nm,
+                tolerance_nm,
+                ..
+            } => computed_nm
+                .iter()
+                .flat_map(|nm| {
+                    [
+                        measure("computed_nm", *nm, None),
+                        measure("miss_nm", (nm - promised_nm).abs(), *tolerance_nm),
+                    ]
+                })
+                .collect(),
             Self::Coupling {
                 spread_ev, most_ev, ..
             } => vec![measure("spread_mev", 1e3 * spread_ev, Some(1e3 * most_ev))],
@@ -371,30 +416,27 @@ fn direct_wells(stack: &Stack, profile: &Profile<'_>, limits: &Bounds) -> Option
     })
 }
 
+/// The promise of the file under its own conditions; silent where nothing emits, which is a finding
+/// of its own.
+fn target(stack: &Stack, parameters: &Parameters) -> Option<Finding> {
+    let target = stack.target?;
+    let posed = posed(stack, &target);
+    let evaluation = Evaluation::new(&posed, parameters).ok()?;
+    Some(Finding::Target {
+        kind: target.kind,
+        temperature_k: posed.operation.temperature_k,
+        promised_nm: vacuum_nm(&target),
+        computed_nm: evaluation.wavelength_nm(target.kind),
+        tolerance_nm: target.tolerance_nm,
+    })
+}
+
 /// Heights from the lowest level to the lowest edge outside the wells. In a field they hang on where
 /// one looks, and are left out.
 fn barriers(evaluation: &Evaluation<'_>, limits: &Bounds) -> Vec<Finding> {
-    if evaluation.profile.slope_ev_nm != 0.0 {
-        return Vec::new();
-    }
-    let outside = || evaluation.profile.outside().map(|numbers| &numbers.edges);
-    let conduction = outside()
-        .map(|edges| edges.conduction_ev)
-        .fold(f64::INFINITY, f64::min);
-    let valence = outside()
-        .map(|edges| edges.heavy_ev.max(edges.light_ev))
-        .fold(f64::NEG_INFINITY, f64::max);
-    let ladders = evaluation.ladders();
-    let first = |ladder: &crate::evaluation::Ladder| Some(ladder.rungs.first()?.energy_ev);
-    let Some((electrons, holes)) = ladders.split_first() else {
-        return Vec::new();
-    };
-    let electron = first(electrons).map(|level| (Carrier::Electrons, conduction - level));
-    let hole = holes
-        .iter()
-        .filter_map(first)
-        .reduce(f64::max)
-        .map(|level| (Carrier::Holes, level - valence));
+    let [electrons, holes] = barriers_ev(evaluation);
+    let electron = electrons.map(|height_ev| (Carrier::Electrons, height_ev));
+    let hole = holes.map(|height_ev| (Carrier::Holes, height_ev));
     electron
         .into_iter()
         .chain(hole)

@@ -1,20 +1,29 @@
 //! Judgement of a design: what an evaluation means for the wafer, which structures meet a target,
 //! and how they compare.
 
+mod aim;
+mod chart;
 mod check;
 mod draws;
+mod figures_of_merit;
 mod house_offset;
 mod movement;
+mod progress;
 mod reactor;
 mod reconcile;
 mod spread;
 mod surrogate;
 mod unknown;
 mod wafer;
+mod weigh;
 
+pub use aim::{Aim, AimError, Binding, MET_NM, Nearest, Outcome, Search, Solution, aim};
+pub use chart::{Chart, ChartFigure, ChartPoint};
 pub use check::{Carrier, Finding, Measure, Standing, check};
+pub use figures_of_merit::{FiguresOfMerit, ShareDrift};
 pub use house_offset::{HouseOffset, family};
 pub use movement::{Immovable, Impossible, Move, Quantity, Variation};
+pub use progress::{Interrupted, Progress};
 pub use reactor::{Cause, Reactor, Variable};
 pub use reconcile::{
     Correction, Datum, Deviation, Direction, Estimate, Readings, ReconcileError, Reconciliation,
@@ -26,3 +35,4 @@ pub use spread::{
 };
 pub use unknown::{Moved, Unknown, unknowns};
 pub use wafer::{StrainLimits, WaferFinding};
+pub use weigh::{Contender, Equal, Matter, Weighed, weigh};

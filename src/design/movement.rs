@@ -641,6 +641,13 @@ impl<'a> Variation<'a> {
         nearest(original, found)
     }
 
+    /// Values with the digits that go into a file.
+    #[must_use]
+    pub fn rounded(&self, values: &[f64]) -> Vec<f64> {
+        let moves = self.moves.iter().zip(values);
+        moves.map(|(moved, &value)| moved.rounded(value)).collect()
+    }
+
     /// The text of the file with the values in it, rounded to what a file needs.
     ///
     /// # Errors
@@ -649,12 +656,7 @@ impl<'a> Variation<'a> {
     pub fn text(&self, manuscript: &str, values: &[f64]) -> Result<String, Impossible> {
         let mut manuscript = Manuscript::new(manuscript)
             .map_err(|_| Impossible::Composition("the file is no TOML".to_owned()))?;
-        let values: Vec<f64> = self
-            .moves
-            .iter()
-            .zip(values)
-            .map(|(moved, &value)| moved.rounded(value))
-            .collect();
+        let values = self.rounded(values);
         for (index, selection) in &self.thicknesses {
             manuscript.set_thickness_nm(selection, values[*index]);
         }
@@ -912,7 +914,7 @@ fn nearest(original: &Composition, found: Vec<Composition>) -> Result<Compositio
 }
 
 /// The elements of a sublattice that are present, beside one.
-fn beside(elements: &Elements, element: Element) -> Vec<Element> {
+fn beside(elements: Elements, element: Element) -> Vec<Element> {
     elements
         .iter()
         .filter(|other| other.is_group_iii() == element.is_group_iii() && *other != element)
@@ -965,7 +967,7 @@ fn line_of_share(
     share: f64,
 ) -> Result<[Composition; 2], Impossible> {
     let elements = original.elements();
-    let others = beside(&elements, element);
+    let others = beside(elements, element);
     let fixed = original.with_fraction(element, share);
     let give = |composition: Composition, pair: [Element; 2], sum: f64| {
         [(sum, 0.0), (0.0, sum)].map(|(first, second)| {
@@ -1025,7 +1027,7 @@ fn rounded_formula(composition: &Composition) -> String {
         for (element, parts) in &shown {
             formula.push_str(element.symbol());
             if shown.len() > 1 {
-                formula.push_str(&format!("{}", parts / PARTS));
+                formula.push_str(&(parts / PARTS).to_string());
             }
         }
     }

@@ -27,7 +27,7 @@ use super::surrogate::{Quadratic, points};
 use crate::evaluation::{Evaluation, Failure};
 use crate::materials::Parameters;
 use crate::structure::{Medium, Stack, Target, Wavelength};
-use crate::units::air_index;
+use crate::units::air;
 use layers::layers;
 use rayon::prelude::*;
 use statistics::{histogram, moments, quantile, shares};
@@ -187,8 +187,7 @@ pub fn vacuum_nm(target: &Target) -> f64 {
 pub fn in_vacuum_nm(wavelength_nm: f64, medium: Medium) -> f64 {
     match medium {
         Medium::Vacuum => wavelength_nm,
-        // Over the shift itself the index varies by less than 1e-9.
-        Medium::Air => wavelength_nm * air_index(wavelength_nm),
+        Medium::Air => air::vacuum_nm(wavelength_nm),
     }
 }
 

@@ -141,11 +141,12 @@ pub(super) fn of(
     let low = (low_arcsec - MARGIN_ARCSEC).max(-FURTHEST_ARCSEC);
     let high = (high_arcsec + MARGIN_ARCSEC).min(FURTHEST_ARCSEC);
     let reach = (2.0 * RESOLUTION_ARCSEC / STEP_ARCSEC) as usize;
-    let first = (low / STEP_ARCSEC).floor() as i64 - reach as i64;
+    // Whole steps from the substrate's peak, which so is one of the angles.
+    let first = (low / STEP_ARCSEC).floor() - reach as f64;
     let count = ((high - low) / STEP_ARCSEC) as usize + 2 * reach + 1;
     let computed: Vec<CurvePoint> = (0..count)
         .map(|index| {
-            let offset_arcsec = (first + index as i64) as f64 * STEP_ARCSEC;
+            let offset_arcsec = (first + index as f64) * STEP_ARCSEC;
             let angle = substrate_angle + offset_arcsec / ARCSEC;
             point(substrate, slices, reflection, offset_arcsec, angle.sin())
         })

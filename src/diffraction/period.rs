@@ -62,8 +62,7 @@ mod tests {
     use crate::structure::{Overrides, read};
 
     fn period(layers: &str) -> Option<Period> {
-        let text = format!("format = 1\n[substrate]\nmaterial = \"GaAs\"\nlayers_here");
-        let text = text.replace("layers_here", layers);
+        let text = format!("format = 1\n[substrate]\nmaterial = \"GaAs\"\n{layers}");
         let parameters = Parameters::shipped();
         let reading = read(&text, &parameters, &Overrides::default()).expect("a sound file");
         of(&reading.stack)

@@ -117,7 +117,7 @@ pub(super) fn structure_factor(
             .sum()
     };
     let (group_iii, group_v) = (sublattice(true), sublattice(false));
-    let in_step = reflection.order() % 4 == 0;
+    let in_step = reflection.order().is_multiple_of(4);
     StructureFactor {
         reflected: (if in_step {
             group_iii + group_v

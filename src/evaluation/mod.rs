@@ -17,6 +17,7 @@ pub use spectrum::{
 };
 
 use crate::carriers::{NetDoping, Reservoir, Subband};
+use crate::coherence::StrainBudget;
 use crate::materials::Parameters;
 use crate::numerics::roots::bracketed_root;
 use crate::profile::{Profile, Unsolvable};
@@ -224,6 +225,12 @@ impl<'a> Evaluation<'a> {
         };
         evaluation.remarks = remark::of_levels(&evaluation);
         Ok(evaluation)
+    }
+
+    /// What the layers use up of what coherent growth allows.
+    #[must_use]
+    pub fn strain_budget(&self) -> StrainBudget {
+        StrainBudget::new(self.stack, self.parameters)
     }
 
     /// kT, eV.

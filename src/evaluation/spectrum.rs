@@ -195,7 +195,7 @@ impl Evaluation<'_> {
         let low = (self.first_ev - 8.0 * width).max(0.02);
         let high = (highest + 0.05).clamp(self.first_ev + 0.1, self.first_ev + 0.6);
         let photon_ev = spread(low, high);
-        let step = photon_ev[1] - photon_ev[0];
+        let step = even_step(&photon_ev);
         let (te_cm, tm_cm) = self
             .emitter
             .absorption(low, step, photon_ev.len())
@@ -231,8 +231,7 @@ impl Evaluation<'_> {
             points: emitter.sample(
                 occupation,
                 photon_ev[0],
-                // Not the first difference, whose rounding would grow with the index.
-                (photon_ev[photon_ev.len() - 1] - photon_ev[0]) / (photon_ev.len() - 1) as f64,
+                even_step(photon_ev),
                 photon_ev.len(),
             ),
         }
@@ -257,6 +256,12 @@ impl Evaluation<'_> {
         let ratio = rate / emitter.sharp_rate_per_cm3_s(occupation);
         (ratio > TOO_STRONG).then_some(Remark::ColdEmission { density_cm3, ratio })
     }
+}
+
+/// The step of [`spread`], from its ends: the difference of two neighbours has lost so many digits
+/// that the last energies of a spectrum would not be those it is listed under.
+fn even_step(photon_ev: &[f64]) -> f64 {
+    (photon_ev[SAMPLES - 1] - photon_ev[0]) / (SAMPLES - 1) as f64
 }
 
 fn spread(low: f64, high: f64) -> Vec<f64> {

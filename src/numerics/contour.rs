@@ -163,9 +163,9 @@ impl Grid<'_> {
             .into_iter()
             .filter_map(|(from, to, crossing)| at(from, to, crossing))
             .collect();
-        match crossings.as_slice() {
-            &[from, to] => vec![[from, to]],
-            &[bottom, right, top, left] => {
+        match *crossings.as_slice() {
+            [from, to] => vec![[from, to]],
+            [bottom, right, top, left] => {
                 let mean = values.iter().flatten().sum::<f64>() / 4.0;
                 let low_left = values[0].is_some_and(|value| value >= level);
                 if (mean >= level) == low_left {
@@ -199,10 +199,10 @@ fn chained(
             if points.is_empty() {
                 points.push(places[&here]);
             }
-            if let Some(back) = left.get_mut(&next) {
-                if let Some(at) = back.iter().position(|it| *it == here) {
-                    back.remove(at);
-                }
+            if let Some(back) = left.get_mut(&next)
+                && let Some(at) = back.iter().position(|it| *it == here)
+            {
+                back.remove(at);
             }
             points.push(places[&next]);
             here = next;

@@ -138,14 +138,15 @@ fn turning_points(function: impl Fn(f64) -> Option<f64> + Sync, points: &Points)
             let sign = if here > 0.0 { 1.0 } else { -1.0 };
             let beside = |index: Option<usize>| {
                 let (at, value) = *points.get(index?)?;
-                Some((at, sign * value?))
+                // A root towards a neighbour of the other sign is bracketed already.
+                Some((at, sign * value?)).filter(|(_, value)| *value >= 0.0)
             };
             let neighbours = [beside(index.checked_sub(1)), beside(Some(index + 1))];
             let nearest = neighbours
                 .iter()
                 .flatten()
                 .all(|(_, value)| *value >= sign * here);
-            if here == 0.0 || !nearest {
+            if here == 0.0 || !nearest || neighbours.iter().all(Option::is_none) {
                 return None;
             }
             let [low, high] = neighbours.map(|it| it.map_or(points[index].0, |(at, _)| at));
@@ -273,7 +274,7 @@ mod tests {
 
     #[test]
     fn a_root_next_to_where_the_function_ends_is_found() {
-        let f = |x: f64| (x < 0.7123).then(|| x - 0.7122);
+        let f = |x: f64| (x < 0.7123).then_some(x - 0.7122);
         let survey = survey(f, (0.0, 1.0), &LOOK);
         assert!(close(&survey.roots, &[0.7122]), "{:?}", survey.roots);
     }

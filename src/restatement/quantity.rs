@@ -135,7 +135,7 @@ impl Quantity {
             Self::Energy(ev) if !(ev > 0.0 && ev <= 100.0) => {
                 refuse("energies are positive, and at most 100 eV")
             }
-            Self::Temperature(kelvin) if !(kelvin >= 0.0 && kelvin <= 5000.0) => {
+            Self::Temperature(kelvin) if !(0.0..=5000.0).contains(&kelvin) => {
                 refuse("temperatures are from -273.15C to 5000K")
             }
             Self::Mismatch(size, _) | Self::Strain(size, _) if size < 0.0 => refuse(

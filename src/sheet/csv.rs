@@ -60,12 +60,16 @@ macro_rules! row {
     ($($cell:expr),* $(,)?) => { vec![$(Cell::from($cell)),*] };
 }
 
+mod chart;
+mod design;
 mod reconcile;
-mod spread;
-
 mod restatement;
+mod spread;
+mod strain;
 mod xray;
 
+pub use chart::ChartTable;
+pub use design::{aim, weigh};
 pub use reconcile::reconcile;
 pub use restatement::restatement;
 pub use spread::spread;
@@ -121,6 +125,7 @@ pub fn levels(evaluation: &Evaluation<'_>) -> Vec<CsvTable> {
         edges(evaluation),
         envelopes(evaluation),
         dispersion(evaluation),
+        strain::strain(&evaluation.strain_budget()),
     ]
 }
 

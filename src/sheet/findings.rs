@@ -2,7 +2,7 @@
 
 mod wafer;
 
-use super::number::{fixed, length_nm, plain, power, significant};
+use super::number::{fixed, length_nm, plain, power, signed, significant, temperature};
 use super::page::{Page, bold, padded, wrapped};
 use super::stamp::Stamp;
 use crate::design::{Carrier, Finding, Standing};
@@ -114,6 +114,28 @@ pub(super) fn message(finding: &Finding) -> String {
             )
         }
         Finding::Wafer(finding) => wafer::message(finding),
+        Finding::Target {
+            kind,
+            temperature_k,
+            promised_nm,
+            computed_nm,
+            tolerance_nm,
+        } => {
+            let tolerance = tolerance_nm.map_or(String::new(), |nm| format!(" ± {}", plain(nm)));
+            let computed = computed_nm.map_or("have none".to_owned(), |nm| {
+                format!(
+                    "have {} nm, {} nm off",
+                    fixed(nm, 2),
+                    signed(nm - promised_nm, 2)
+                )
+            });
+            format!(
+                "the file promises a {} of {}{tolerance} nm in vacuum at {}; its layers {computed}",
+                kind.meaning(),
+                fixed(*promised_nm, 2),
+                temperature(*temperature_k)
+            )
+        }
         Finding::Coupling {
             carrier,
             spread_ev,
@@ -197,6 +219,17 @@ pub(super) fn advice(finding: &Finding) -> Option<String> {
         Finding::File(remark) => Some(remark.advice()),
         Finding::Levels(remark) => remark.advice(),
         Finding::Wafer(finding) => wafer::advice(finding),
+        Finding::Target { tolerance_nm: None, .. } => {
+            Some("give `tolerance_nm` in [target]: without it nothing can be accepted".to_owned())
+        }
+        Finding::Target { .. } if finding.standing() == Standing::Noted => Some(
+            "a wafer map tells 1 nm at best: a tolerance below that cannot be shown to be kept"
+                .to_owned(),
+        ),
+        Finding::Target { .. } => Some(
+            "table and promise must agree before the order goes out: move the layers (`stepwell aim`), or the promise"
+                .to_owned(),
+        ),
         Finding::Doping { .. } if finding.standing() == Standing::Outside => Some(
             "acceptors move while the rest grows: a spacer, a sharper dopant, or a colder growth"
                 .to_owned(),

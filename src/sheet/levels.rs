@@ -29,6 +29,7 @@ pub fn levels(evaluation: &Evaluation<'_>, stamp: &Stamp, colour: Colour) -> Str
     let mut page = Page::new(colour);
     head(evaluation.stack, &mut page);
     layers(evaluation, &mut page);
+    super::strain::budget(&evaluation.strain_budget(), &mut page);
     ladders(evaluation, &mut page);
     transitions(evaluation, &mut page);
     if let Some(budget) = budget(evaluation) {

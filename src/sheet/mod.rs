@@ -3,6 +3,8 @@
 //!
 //! Writers read the records of `evaluation` and `design` and compute no physics.
 
+mod aim;
+mod chart;
 pub mod csv;
 pub mod figure;
 mod findings;
@@ -20,14 +22,18 @@ mod spectrum;
 mod spread;
 mod stamp;
 mod starting;
+mod strain;
 mod table;
+mod weigh;
 mod xray;
 
+pub use aim::aim;
+pub use chart::{chart, chart_part};
 pub use findings::findings;
 pub use levels::levels;
 pub use materials::{descriptions, families};
 pub use matrix::matrix_market;
-pub use picture::{levels_figure, rocking_figure, spectrum_figure};
+pub use picture::{chart_figure, levels_figure, rocking_figure, spectrum_figure, weigh_figure};
 pub use reconcile::{Wafer, reconcile};
 pub use remark::{complaint, remark};
 pub use restatement::restatement;
@@ -35,4 +41,5 @@ pub use spectrum::spectrum;
 pub use spread::{spread, spread_figure};
 pub use stamp::{Stamp, Switches, sha256};
 pub use starting::starting_structures;
+pub use weigh::weigh;
 pub use xray::xray;

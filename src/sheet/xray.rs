@@ -37,15 +37,14 @@ pub fn xray(stack: &Stack, seen: &Diffraction, stamp: &Stamp, colour: Colour) ->
         ),
     );
     layers(seen, &mut page);
-    match &seen.multi_well {
-        Some(multi_well) => satellites(multi_well, &mut page),
-        None => {
-            page.heading("Satellites");
-            page.paragraph(
-                2,
-                "The wells do not repeat: there is no period, and no satellite.",
-            );
-        }
+    if let Some(multi_well) = &seen.multi_well {
+        satellites(multi_well, &mut page);
+    } else {
+        page.heading("Satellites");
+        page.paragraph(
+            2,
+            "The wells do not repeat: there is no period, and no satellite.",
+        );
     }
     page.heading("Fringes of the whole epitaxy");
     page.paragraph(

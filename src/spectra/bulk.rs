@@ -2,8 +2,8 @@
 //! three-dimensional density of states, rounded by the line.
 
 use super::{Emitter, Line, Occupation, Point, modes_per_ev_cm2_s};
-use crate::carriers::bulk::{BulkBands, transparency_cm3};
-use crate::materials::Crystal;
+use crate::carriers::bulk::{BulkBand, BulkBands, transparency_cm3};
+use crate::materials::{Crystal, Edges};
 use crate::numerics::fermi::occupation;
 use crate::numerics::quadrature::panels;
 use crate::structure::Lineshape;
@@ -13,7 +13,7 @@ use crate::units::{FINE_STRUCTURE, HBAR2_OVER_2M0_EV_NM2};
 ///
 /// # Equation
 ///
-/// With heavy and light holes on one edge, x = E − E_g, c = ħ²/2m₀, α the fine-structure constant:
+/// With x = E − E_g of a hole band, c = ħ²/2m₀, α the fine-structure constant:
 ///
 /// ```text
 ///  a(E)    = Σ_h (2/3) α (E_p/(n E)) m_r √(m_r/c) s(x) ,   s(x) = ∫₀^∞ √x′ L(x − x′) dx′
@@ -29,16 +29,21 @@ use crate::units::{FINE_STRUCTURE, HBAR2_OVER_2M0_EV_NM2};
 ///  m_h = 1/(γ1 ∓ 2 γ_s) ,   γ_s = (2 γ2 + 3 γ3)/5
 /// ```
 ///
+/// Without strain heavy and light holes share one edge. Under strain each has its own; masses and
+/// polarisation factors stay those of the average over all directions.
+///
 /// # References
 ///
 /// A. Baldereschi, N. O. Lipari, Phys. Rev. B 8, 2697 (1973) (spherical masses); G. Lasher,
 /// F. Stern, Phys. Rev. 133, A553 (1964).
 #[derive(Clone, Debug)]
 pub struct Bulk {
-    edge_ev: [f64; 1],
+    /// Gaps to the two hole bands, the narrower first, eV.
+    edges_ev: [f64; 2],
     conduction_ev: f64,
     electron_mass: f64,
-    hole_masses: [f64; 2],
+    /// Mass and edge (eV) of the heavy and the light hole.
+    holes: [(f64, f64); 2],
     line: Line,
     refractive_index: f64,
     /// (2/3) α E_p / (n √c), in √eV/cm per mass to the power 3/2.
@@ -56,11 +61,32 @@ impl Bulk {
     /// The unstrained crystal with its line.
     #[must_use]
     pub fn new(crystal: &Crystal, refractive_index: f64, line: Line) -> Self {
+        let valence_ev = crystal.valence_edge_ev;
+        let edges_ev = [valence_ev + crystal.gap_ev, valence_ev, valence_ev];
+        Self::with_edges(crystal, edges_ev, refractive_index, line)
+    }
+
+    /// The crystal strained on a substrate: heavy and light holes each on its edge.
+    #[must_use]
+    pub fn strained(crystal: &Crystal, edges: &Edges, refractive_index: f64, line: Line) -> Self {
+        let edges_ev = [edges.conduction_ev, edges.heavy_ev, edges.light_ev];
+        Self::with_edges(crystal, edges_ev, refractive_index, line)
+    }
+
+    fn with_edges(
+        crystal: &Crystal,
+        [conduction_ev, heavy_ev, light_ev]: [f64; 3],
+        refractive_index: f64,
+        line: Line,
+    ) -> Self {
+        let [heavy, light] = spherical_masses(crystal.luttinger);
+        let mut edges_ev = [heavy_ev, light_ev].map(|edge| conduction_ev - edge);
+        edges_ev.sort_by(f64::total_cmp);
         Self {
-            edge_ev: [crystal.gap_ev],
-            conduction_ev: crystal.valence_edge_ev + crystal.gap_ev,
+            edges_ev,
+            conduction_ev,
             electron_mass: crystal.electron_mass,
-            hole_masses: spherical_masses(crystal.luttinger),
+            holes: [(heavy, heavy_ev), (light, light_ev)],
             line,
             refractive_index,
             strength: 2.0 / 3.0 * FINE_STRUCTURE * crystal.kane_energy_ev
@@ -72,7 +98,7 @@ impl Bulk {
     /// The gap, eV.
     #[must_use]
     pub fn gap_ev(&self) -> f64 {
-        self.edge_ev[0]
+        self.edges_ev[0]
     }
 
     /// The same crystal with the line of infinite lifetime, or another.
@@ -87,13 +113,18 @@ impl Bulk {
     /// The conduction band.
     #[must_use]
     pub fn electrons(&self) -> BulkBands {
-        BulkBands(vec![self.electron_mass])
+        BulkBands::of_one_edge(&[self.electron_mass])
     }
 
     /// Heavy and light holes.
     #[must_use]
     pub fn holes(&self) -> BulkBands {
-        BulkBands(self.hole_masses.to_vec())
+        let top_ev = self.conduction_ev - self.gap_ev();
+        let band = |(mass, edge_ev): (f64, f64)| BulkBand {
+            mass,
+            edge_ev: top_ev - edge_ev,
+        };
+        BulkBands(self.holes.map(band).to_vec())
     }
 
     /// The carriers at a density of pairs, with the gap lowered by `lowering_ev`.
@@ -115,19 +146,20 @@ impl Bulk {
         transparency_cm3(&self.electrons(), &self.holes(), thermal_ev)
     }
 
-    /// Reduced mass with each hole.
-    fn reduced_masses(&self) -> [f64; 2] {
-        self.hole_masses
-            .map(|hole| self.electron_mass * hole / (self.electron_mass + hole))
+    /// Reduced mass and gap (eV) with each hole.
+    fn pairs(&self) -> [(f64, f64); 2] {
+        self.holes.map(|(hole, edge_ev)| {
+            let reduced = self.electron_mass * hole / (self.electron_mass + hole);
+            (reduced, self.conduction_ev - edge_ev)
+        })
     }
 
     /// Σ_h over f_c (1 − f_v), or over f_v (1 − f_c), of the strength at a photon energy, cm⁻¹.
     fn strength_cm(&self, o: &Occupation, photon_ev: f64, line: &Line, absorbs: bool) -> f64 {
-        let x = photon_ev - (self.gap_ev() - o.lowering_ev);
-        let rounded = rounded_root(line, x);
-        self.reduced_masses()
+        self.pairs()
             .iter()
-            .map(|&reduced| {
+            .map(|&(reduced, gap_ev)| {
+                let x = photon_ev - (gap_ev - o.lowering_ev);
                 let electron =
                     self.conduction_ev - o.lowering_ev + reduced / self.electron_mass * x;
                 let above_electron = (electron - o.fermi_electron_ev) / o.thermal_ev;
@@ -137,10 +169,9 @@ impl Bulk {
                 } else {
                     occupation(above_electron) * occupation(-above_hole)
                 };
-                reduced.powf(1.5) * filled
+                reduced.powf(1.5) * filled * rounded_root(line, x)
             })
             .sum::<f64>()
-            * rounded
             * self.strength
             / photon_ev
     }
@@ -166,23 +197,22 @@ impl Emitter for Bulk {
     }
 
     fn absorption(&self, low_ev: f64, step_ev: f64, count: usize) -> Vec<(f64, f64)> {
-        let masses: f64 = self
-            .reduced_masses()
-            .iter()
-            .map(|mass| mass.powf(1.5))
-            .sum();
         (0..count)
             .map(|at| {
                 let photon_ev = low_ev + at as f64 * step_ev;
-                let rounded = rounded_root(&self.line, photon_ev - self.gap_ev());
-                let absorbed_cm = self.strength / photon_ev * masses * rounded;
+                let states: f64 = self
+                    .pairs()
+                    .iter()
+                    .map(|(mass, gap)| mass.powf(1.5) * rounded_root(&self.line, photon_ev - gap))
+                    .sum();
+                let absorbed_cm = self.strength / photon_ev * states;
                 (absorbed_cm, absorbed_cm)
             })
             .collect()
     }
 
     fn edges_ev(&self) -> &[f64] {
-        &self.edge_ev
+        &self.edges_ev
     }
 
     fn line(&self) -> Line {
@@ -196,9 +226,14 @@ impl Emitter for Bulk {
             half_width_ev: 0.0,
             ..self.line
         };
-        // In u = √x the square root is smooth.
+        // In u = √x the square root is smooth; where a second band begins it has a corner.
         let widest = o.thermal_ev.sqrt();
-        panels(&[0.0, top.sqrt()], widest)
+        let second = (self.edges_ev[1] - self.edges_ev[0]).sqrt();
+        let mut ends = vec![0.0, top.sqrt()];
+        if second > 0.0 && second < ends[1] {
+            ends.insert(1, second);
+        }
+        panels(&ends, widest)
             .iter()
             .map(|&(u, weight)| {
                 let photon = edge + u * u;

@@ -156,10 +156,12 @@ fn with_broken_syntax(
         .iter()
         .map(|fault| syntax::spoilt(text, fault.span.start))
         .collect();
+    // A value without a place stands for one that the syntax lost.
     let is_whole = |fault: &Diagnostic| {
-        spoilt
-            .iter()
-            .all(|lines| !lines.contains(&fault.span.start))
+        !fault.span.is_empty()
+            && spoilt
+                .iter()
+                .all(|lines| !lines.contains(&fault.span.start))
     };
     faults.extend(values.into_iter().filter(is_whole));
     in_order(faults)

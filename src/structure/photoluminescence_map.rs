@@ -95,7 +95,7 @@ impl PhotoluminescenceMap {
             assumptions: Vec::new(),
         };
         let mut decimal_comma = false;
-        let mut written: Vec<(Range<usize>, Option<(f64, f64)>, f64)> = Vec::new();
+        let mut written: Vec<Row> = Vec::new();
         for (at, line) in lines.take(MOST_POINTS) {
             let span = at..at + line.len();
             let cells = split(line, separator);
@@ -278,10 +278,13 @@ fn number(
     }
 }
 
+/// One row as written: where it stands, the place on the wafer, the peak.
+type Row = (Range<usize>, Option<(f64, f64)>, f64);
+
 /// From the unit of the peaks to nm: as the head says, else by what the numbers can be.
 fn nm_per_unit(
     head: &str,
-    written: &[(Range<usize>, Option<(f64, f64)>, f64)],
+    written: &[Row],
     span: &Range<usize>,
     assumptions: &mut Vec<String>,
 ) -> Result<f64, Diagnostic> {

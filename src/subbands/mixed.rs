@@ -53,6 +53,27 @@ pub struct Dipole {
     pub tm: f64,
 }
 
+impl Dipole {
+    /// From the overlaps I of an electron envelope with the heavy, light and split-off envelope of a
+    /// valence state of either block:
+    ///
+    /// ```text
+    ///  |M_TE|² = (3/2) I_h² + (1/2) (I_l − √2 I_s)²      |M_TM|² = 2 (I_l + I_s/√2)²
+    /// ```
+    ///
+    /// The sum rule (2 TE + TM)/3 = I_h² + I_l² + I_s² holds identically.
+    #[must_use]
+    pub fn of_overlaps(heavy: f64, light: f64, split_off: f64) -> Self {
+        use std::f64::consts::SQRT_2;
+        let plane = light - SQRT_2 * split_off;
+        let growth = light + split_off / SQRT_2;
+        Self {
+            te: 1.5 * heavy * heavy + 0.5 * plane * plane,
+            tm: 2.0 * growth * growth,
+        }
+    }
+}
+
 /// Envelope overlaps of one electron level and one valence state.
 #[derive(Clone, Copy, Debug, Default, PartialEq)]
 struct Projection {
@@ -62,15 +83,8 @@ struct Projection {
 }
 
 impl Projection {
-    /// |M|² of the state: the sum rule (2 TE + TM)/3 = I_h² + I_l² + I_s² holds identically.
     fn dipole(self) -> Dipole {
-        use std::f64::consts::SQRT_2;
-        let plane = self.light - SQRT_2 * self.split_off;
-        let growth = self.light + self.split_off / SQRT_2;
-        Dipole {
-            te: 1.5 * self.heavy * self.heavy + 0.5 * plane * plane,
-            tm: 2.0 * growth * growth,
-        }
+        Dipole::of_overlaps(self.heavy, self.light, self.split_off)
     }
 
     fn overlap(self) -> f64 {
@@ -260,32 +274,69 @@ pub fn mixed(
 /// Slices along k on one grid.
 type Track = Vec<Slice>;
 
-/// The same slice on two grids of steps h and h/2, extrapolated.
+/// The same slice on two grids of steps h and h/2, extrapolated, in order of energy.
 fn extrapolated(coarse: &Slice, fine: &Slice) -> Slice {
     let two = |coarse: f64, fine: f64| fine + (fine - coarse) / 3.0;
+    let partners = partners(coarse, fine);
+    let energy_ev: Vec<f64> = partners
+        .iter()
+        .zip(&fine.energy_ev)
+        .map(|(&partner, &energy)| two(coarse.energy_ev[partner], energy))
+        .collect();
+    let mut order: Vec<usize> = (0..energy_ev.len()).collect();
+    order.sort_by(|&a, &b| energy_ev[b].total_cmp(&energy_ev[a]));
     Slice {
-        energy_ev: coarse
-            .energy_ev
-            .iter()
-            .zip(&fine.energy_ev)
-            .map(|(&c, &f)| two(c, f))
-            .collect(),
+        energy_ev: order.iter().map(|&state| energy_ev[state]).collect(),
         dipoles: coarse
             .dipoles
             .iter()
             .zip(&fine.dipoles)
             .map(|(coarse, fine)| {
-                coarse
+                order
                     .iter()
-                    .zip(fine)
-                    .map(|(c, f)| Dipole {
-                        te: two(c.te, f.te),
-                        tm: two(c.tm, f.tm),
+                    .map(|&state| {
+                        let (coarse, fine) = (coarse[partners[state]], fine[state]);
+                        // Squares both: what is forbidden must not turn negative.
+                        Dipole {
+                            te: two(coarse.te, fine.te).max(0.0),
+                            tm: two(coarse.tm, fine.tm).max(0.0),
+                        }
                     })
                     .collect()
             })
             .collect(),
     }
+}
+
+/// Which state of a coarser grid each state of the finer one was: as a rule that of its number, but
+/// two that lie nearer to each other than the grids do may have crossed between them. Matrix elements
+/// tell: those of a pair that crossed are alike crosswise.
+fn partners(coarse: &Slice, fine: &Slice) -> Vec<usize> {
+    let count = fine.energy_ev.len();
+    let mut partners: Vec<usize> = (0..count).collect();
+    let unlike = |of_coarse: usize, of_fine: usize| -> f64 {
+        let rows = coarse.dipoles.iter().zip(&fine.dipoles);
+        rows.map(|(coarse, fine)| {
+            let (a, b) = (coarse[of_coarse], fine[of_fine]);
+            (a.te - b.te).abs() + (a.tm - b.tm).abs()
+        })
+        .sum()
+    };
+    let moved = |state: usize| (fine.energy_ev[state] - coarse.energy_ev[state]).abs();
+    let mut state = 0;
+    while state + 1 < count {
+        let next = state + 1;
+        let gap = |slice: &Slice| (slice.energy_ev[state] - slice.energy_ev[next]).abs();
+        let near = gap(coarse).max(gap(fine)) < 4.0 * moved(state).max(moved(next));
+        let straight = unlike(state, state) + unlike(next, next);
+        let crossed = unlike(state, next) + unlike(next, state);
+        if near && crossed < 0.5 * straight {
+            partners.swap(state, next);
+            state += 1;
+        }
+        state += 1;
+    }
+    partners
 }
 
 /// One grid with what a block needs of it.
@@ -826,4 +877,129 @@ fn ahead(chain: &BlockChain, before: &Ladder, last: &Ladder, ratio: f64) -> Ladd
     let mut next = before.clone();
     chain.advance(&mut next, last, ratio);
     next
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn wave_numbers_rise_in_the_steps_that_states_can_be_followed_over() {
+        let k_per_nm = wave_numbers();
+        let (first, last) = (k_per_nm[0], k_per_nm[k_per_nm.len() - 1]);
+        assert!(first == 0.0 && (last - 2.0).abs() < 1e-12);
+        for pair in k_per_nm.windows(2) {
+            let (step, _) = WAVE_NUMBER_STEPS_PER_NM
+                .into_iter()
+                .find(|&(_, end)| pair[1] <= end + 1e-9)
+                .expect("a step for every wave number");
+            assert!((pair[1] - pair[0] - step).abs() < 1e-12, "{pair:?}");
+        }
+    }
+
+    /// (2 TE + TM)/3 is the sum of the squared overlaps, and heavy, light and split-off holes of unit
+    /// overlap share it as symmetry has it.
+    #[test]
+    fn matrix_elements_keep_their_sum_rule() {
+        for (overlaps, te, tm) in [
+            ([1.0, 0.0, 0.0], 1.5, 0.0),
+            ([0.0, 1.0, 0.0], 0.5, 2.0),
+            ([0.0, 0.0, 1.0], 1.0, 1.0),
+        ] {
+            let [heavy, light, split_off] = overlaps;
+            let dipole = Dipole::of_overlaps(heavy, light, split_off);
+            assert!((dipole.te - te).abs() < 1e-15 && (dipole.tm - tm).abs() < 1e-15);
+        }
+        for (heavy, light, split_off) in [(0.3, -0.7, 0.2), (-0.9, 0.1, -0.4), (0.0, 0.6, 0.6)] {
+            let own = Projection {
+                heavy,
+                light,
+                split_off,
+            };
+            let dipole = own.dipole();
+            assert!(((2.0 * dipole.te + dipole.tm) / 3.0 - own.overlap()).abs() < 1e-15);
+        }
+    }
+
+    /// Several equal wells hold every state as often as there are wells, and their overlaps sum to
+    /// what those of one well sum to, once for each of them.
+    #[test]
+    fn equal_wells_hold_the_states_of_one_so_many_times() {
+        let state = |energy_ev| ZoneCentre {
+            energy_ev,
+            heavy: 1.0,
+            light: 0.0,
+            split_off: 0.0,
+            error_ev: 0.0,
+            in_wells: 0.9,
+            near_edge: false,
+        };
+        let one = MixedBands {
+            zone_centre: vec![state(0.1), state(0.05)],
+            overlaps: vec![vec![0.9, 0.01], vec![0.02, 0.8]],
+            degeneracy: 2.0,
+            equal_wells: 1,
+            ..MixedBands::default()
+        };
+        let three = one.clone().of_equal_wells(3);
+        assert_eq!((three.degeneracy, three.equal_wells), (6.0, 3));
+        assert_eq!((three.zone_centre.len(), three.overlaps.len()), (6, 6));
+        assert!(three.zone_centre[2].energy_ev > three.zone_centre[3].energy_ev);
+        let sum = |bands: &MixedBands| bands.overlaps.iter().flatten().sum::<f64>();
+        assert!((sum(&three) - 3.0 * sum(&one)).abs() < 1e-12);
+    }
+
+    /// Two states that cross from one grid to the next are not extrapolated into each other.
+    #[test]
+    fn states_that_cross_between_grids_keep_their_partners() {
+        let heavy = Dipole { te: 1.5, tm: 0.0 };
+        let light = Dipole { te: 0.5, tm: 2.0 };
+        let slice = |states: &[(f64, Dipole)]| Slice {
+            energy_ev: states.iter().map(|state| state.0).collect(),
+            dipoles: vec![states.iter().map(|state| state.1).collect()],
+        };
+        let far = (-0.3, heavy);
+        let coarse = slice(&[(-0.1, heavy), (-0.1001, light), far]);
+        let fine = slice(&[(-0.1004, light), (-0.1006, heavy), far]);
+        let exact = slice(&[(-0.1005, light), (-0.1008, heavy), far]);
+        let got = extrapolated(&coarse, &fine);
+        for (got, exact) in got.energy_ev.iter().zip(&exact.energy_ev) {
+            assert!((got - exact).abs() < 1e-12, "{got} {exact}");
+        }
+        assert_eq!(got.dipoles, exact.dipoles);
+        // Far apart, a change of character is a change of character.
+        let apart = slice(&[(-0.05, light), (-0.1004, heavy), far]);
+        assert_eq!(
+            partners(&apart, &slice(&[(-0.05, heavy), (-0.1004, light), far])),
+            [0, 1, 2]
+        );
+    }
+
+    /// Errors that go as h² leave nothing behind.
+    #[test]
+    fn two_grids_remove_an_error_of_second_order() {
+        let slice = |step: f64| {
+            let square = step * step;
+            Slice {
+                energy_ev: vec![-0.2 + 0.7 * square, -0.4 - 0.1 * square],
+                dipoles: vec![vec![
+                    Dipole {
+                        te: 1.4 + square,
+                        tm: 0.0,
+                    },
+                    Dipole {
+                        te: 0.5,
+                        tm: 2.0 - 3.0 * square,
+                    },
+                ]],
+            }
+        };
+        let (got, exact) = (extrapolated(&slice(0.2), &slice(0.1)), slice(0.0));
+        for (got, exact) in got.energy_ev.iter().zip(&exact.energy_ev) {
+            assert!((got - exact).abs() < 1e-15);
+        }
+        for (got, exact) in got.dipoles[0].iter().zip(&exact.dipoles[0]) {
+            assert!((got.te - exact.te).abs() < 1e-14 && (got.tm - exact.tm).abs() < 1e-14);
+        }
+    }
 }

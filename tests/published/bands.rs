@@ -177,7 +177,7 @@ impl Problem for FermiIntegral {
             "F(1/2) unnormalised" => 0.5 * PI.sqrt() * half_integral(1, eta),
             // The inverse through the bulk band: kT = 1, filling `at` of the effective density.
             "inverse F(1/2)" => {
-                let band = BulkBands(vec![1.0]);
+                let band = BulkBands::of_one_edge(&[1.0]);
                 band.fermi_ev(eta * band.effective_density_cm3(1.0), 1.0)
             }
             other => return Err(format!("unknown integral {other}")),
@@ -250,8 +250,8 @@ impl Problem for BulkBandsProblem {
     }
 
     fn answer(&self, check: &Check) -> Answer {
-        let electrons = BulkBands(vec![self.electron_mass]);
-        let holes = BulkBands(vec![self.hole_mass]);
+        let electrons = BulkBands::of_one_edge(&[self.electron_mass]);
+        let holes = BulkBands::of_one_edge(&[self.hole_mass]);
         let kt = thermal_ev(self.temperature_k);
         let transparency = || transparency_cm3(&electrons, &holes, kt);
         Ok(match check.quantity.as_str() {

@@ -12,6 +12,8 @@ mod optics;
 mod stacks;
 mod strain;
 mod table;
+mod valence;
+mod wafer;
 
 use judgement::{Check, Verdict};
 use libtest_mimic::{Arguments, Trial};
@@ -43,9 +45,17 @@ struct Reference {
     #[serde(default)]
     bulk: Vec<optics::BulkProblem>,
     #[serde(default)]
+    valence_walls: Vec<valence::ValenceWalls>,
+    #[serde(default)]
+    dipole: Vec<valence::DipoleProblem>,
+    #[serde(default)]
     film: Vec<strain::FilmProblem>,
     #[serde(default)]
     balance: Vec<strain::BalanceProblem>,
+    #[serde(default)]
+    bragg: Vec<wafer::BraggProblem>,
+    #[serde(default)]
+    diffraction: Vec<wafer::DiffractionProblem>,
     /// Problems of this file named in the order in which a quantity must rise.
     #[serde(default)]
     order: Vec<Order>,
@@ -144,8 +154,12 @@ fn compare(file: &str, reference: &Reference) -> Vec<Compared> {
         .chain(each(&reference.stack))
         .chain(each(&reference.pair))
         .chain(each(&reference.bulk))
+        .chain(each(&reference.valence_walls))
+        .chain(each(&reference.dipole))
         .chain(each(&reference.film))
         .chain(each(&reference.balance))
+        .chain(each(&reference.bragg))
+        .chain(each(&reference.diffraction))
         .collect();
     let mut compared = Vec::new();
     for problem in &problems {

@@ -5,11 +5,13 @@ use crate::{Answer, Problem};
 use serde::Deserialize;
 use std::cell::OnceCell;
 use std::collections::BTreeMap;
+use std::f64::consts::PI;
 use std::fmt::Write as _;
 use stepwell::evaluation::Evaluation;
 use stepwell::materials::Parameters;
 use stepwell::structure::{self, Overrides};
 use stepwell::subbands::Level;
+use stepwell::units::HBAR2_OVER_2M0_EV_NM2;
 
 /// A structure: its layers from the substrate up, materials by formula or by own numbers.
 #[derive(Deserialize)]
@@ -59,6 +61,8 @@ struct Own {
     luttinger: Option<[f64; 3]>,
     #[serde(default = "lattice_nm")]
     lattice_nm: f64,
+    #[serde(default = "split_off_ev")]
+    split_off_ev: f64,
 }
 
 fn heavy_mass() -> f64 {
@@ -71,6 +75,10 @@ fn light_mass() -> f64 {
 
 fn lattice_nm() -> f64 {
     0.565
+}
+
+fn split_off_ev() -> f64 {
+    0.34
 }
 
 impl Own {
@@ -86,12 +94,13 @@ impl Own {
             "[materials.{name}.numbers]\n\
              lattice_nm = {:?}\ngap_ev = {:?}\nvalence_edge_ev = {:?}\nelectron_mass = {:?}\n\
              luttinger = [{first:?}, {second:?}, {third:?}]\n\
-             split_off_ev = 0.34\nkane_energy_ev = 25.0\nac_ev = 0.0\nav_ev = 0.0\nb_ev = -2.0\n\
+             split_off_ev = {:?}\nkane_energy_ev = 25.0\nac_ev = 0.0\nav_ev = 0.0\nb_ev = -2.0\n\
              c11_gpa = 120.0\nc12_gpa = 55.0\nindex = 3.5\n",
             self.lattice_nm,
             self.conduction_ev - self.valence_ev,
             self.valence_ev,
             self.electron_mass,
+            self.split_off_ev,
         )
     }
 }
@@ -223,6 +232,53 @@ fn decay_nm(evaluation: &Evaluation<'_>, level: &Level) -> Answer {
     Ok(12.0 / (near / far).ln())
 }
 
+/// Distance of a zone-centre state of mixed bands from the edge of the wells that it lies in, eV:
+/// the `number`-th (from 1) of the mainly heavy, or of the other states.
+fn mixed_confinement_ev(evaluation: &Evaluation<'_>, heavy: bool, number: usize) -> Answer {
+    let mixed = evaluation.mixed.as_ref().ok_or("bands are single")?;
+    let state = mixed
+        .zone_centre
+        .iter()
+        .filter(|state| (state.heavy > 0.5) == heavy)
+        .nth(number.checked_sub(1).ok_or("states count from 1")?)
+        .ok_or("it is not bound")?;
+    let edge = evaluation
+        .profile
+        .wells(evaluation.stack)
+        .map(|(numbers, _)| {
+            if heavy {
+                numbers.edges.heavy_ev
+            } else {
+                numbers.edges.light_ev
+            }
+        })
+        .fold(f64::NEG_INFINITY, f64::max);
+    Ok(edge - state.energy_ev)
+}
+
+/// Cyclotron mass ħ² k/(dE/dk) of the highest valence state at the Fermi wave number of cold holes
+/// that fill nothing else, free-electron masses.
+fn cyclotron_mass(evaluation: &Evaluation<'_>, sheet_density_cm2: f64) -> Answer {
+    let mixed = evaluation.mixed.as_ref().ok_or("bands are single")?;
+    let [block] = &mixed.blocks[..] else {
+        return Err("the two blocks differ".to_owned());
+    };
+    // Both spins fill a circle of k²/2π states per area.
+    let fermi_per_nm = (2.0 * PI * 1e-14 * sheet_density_cm2).sqrt();
+    let k = &mixed.k_per_nm;
+    let middle = k.partition_point(|&it| it < fermi_per_nm);
+    if middle == 0 || middle + 1 >= k.len() {
+        return Err("its Fermi wave number is out of reach".to_owned());
+    }
+    let energy = |at: usize| block[at].energy_ev[0];
+    // The slope of the parabola through three neighbours.
+    let secant = |at: usize| (energy(at + 1) - energy(at)) / (k[at + 1] - k[at]);
+    let (below, above) = (secant(middle - 1), secant(middle));
+    let bend = (above - below) / (k[middle + 1] - k[middle - 1]);
+    let slope = below + bend * (2.0 * fermi_per_nm - k[middle - 1] - k[middle]);
+    Ok(-2.0 * HBAR2_OVER_2M0_EV_NM2 * fermi_per_nm / slope)
+}
+
 fn from_ladder(evaluation: &Evaluation<'_>, quantity: &str) -> Answer {
     let bands = &evaluation.bands;
     if let Some((name, what)) = quantity.split_once(' ') {
@@ -340,7 +396,24 @@ impl Problem for StackProblem {
                     .fold(f64::INFINITY, f64::min);
                 Ok(outside - well)
             }
-            other => from_ladder(evaluation, other),
+            "cyclotron_mass" => cyclotron_mass(evaluation, check.at.ok_or("at which density?")?),
+            other => {
+                let words: Vec<&str> = other.split(' ').collect();
+                match words[..] {
+                    [
+                        "mixed",
+                        kind @ ("heavy" | "light"),
+                        number,
+                        "confinement_ev",
+                    ] => {
+                        let number = number
+                            .parse()
+                            .map_err(|_| format!("which state is {number}?"))?;
+                        mixed_confinement_ev(evaluation, kind == "heavy", number)
+                    }
+                    _ => from_ladder(evaluation, other),
+                }
+            }
         }
     }
 }

@@ -8,7 +8,37 @@ use std::{env, fs};
 const START: &str = "<!-- computed: start -->";
 const END: &str = "<!-- computed: end -->";
 
-/// The tables of rows and of misses.
+/// What a problem solved with mixed bands adds to the name of the same one with single bands.
+const MIXED: &str = ", mixed bands";
+
+/// Rows asked of both kinds of bands, side by side.
+fn of_both_bands(rows: &[Compared]) -> String {
+    let mut text =
+        "| file | row | published | single | mixed |\n|---|---|---|---|---|\n".to_owned();
+    for mixed in rows.iter().filter(|row| row.title.contains(MIXED)) {
+        let title = mixed.title.replacen(MIXED, "", 1);
+        let single = rows
+            .iter()
+            .find(|row| row.file == mixed.file && row.title == title);
+        if let Some(single) = single {
+            let shown = |row: &Compared| {
+                let mark = if row.verdict.met { "" } else { " (missed)" };
+                format!("{}{mark}", row.verdict.computed)
+            };
+            let _ = writeln!(
+                text,
+                "| {} | {title} | {} | {} | {} |",
+                mixed.file,
+                mixed.verdict.published,
+                shown(single),
+                shown(mixed)
+            );
+        }
+    }
+    text
+}
+
+/// The tables of rows, of misses, and of single against mixed bands.
 pub(crate) fn of(rows: &[Compared]) -> String {
     let mut text = String::new();
     let misses: Vec<&Compared> = rows.iter().filter(|row| !row.verdict.met).collect();
@@ -33,6 +63,11 @@ pub(crate) fn of(rows: &[Compared]) -> String {
             verdict.expected_miss.as_deref().unwrap_or("not known yet")
         );
     }
+    let _ = writeln!(
+        text,
+        "\n### Single bands against mixed ones\n\n{}",
+        of_both_bands(rows).trim_end()
+    );
     let _ = writeln!(text, "\n### Every row\n");
     let _ = writeln!(text, "| file | row | published | computed | |");
     let _ = writeln!(text, "|---|---|---|---|---|");

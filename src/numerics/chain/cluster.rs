@@ -38,12 +38,12 @@ impl Chain {
                 self.orthonormalise(vector, done);
             }
         }
-        self.separate(shift, basis)
+        self.separate(shift, &basis)
     }
 
     /// Rayleigh-Ritz: the states inside the span of an orthonormal basis, with T linearised at
     /// `energy`.
-    fn separate(&self, energy: f64, basis: Vec<Vec<f64>>) -> Vec<State> {
+    fn separate(&self, energy: f64, basis: &[Vec<f64>]) -> Vec<State> {
         let size = basis.len();
         let small = DMatrix::from_fn(size, size, |a, b| self.form(energy, &basis[a], &basis[b]));
         let small = 0.5 * (&small + small.transpose());
@@ -72,7 +72,7 @@ impl Chain {
 
     /// Makes the vectors of levels closer than [`ORTHOGONAL_BELOW`] orthogonal; where they are too
     /// close to be told apart, by separating their span.
-    pub(super) fn orthogonal_clusters(&self, states: &mut Vec<State>) {
+    pub(super) fn orthogonal_clusters(&self, states: &mut [State]) {
         states.sort_by(|a, b| a.energy.total_cmp(&b.energy));
         let mut first = 0;
         while first < states.len() {
@@ -99,7 +99,7 @@ impl Chain {
                 let centre = 0.5 * (states[first].energy + states[near - 1].energy);
                 for (place, state) in states[first..near]
                     .iter_mut()
-                    .zip(self.separate(centre, basis))
+                    .zip(self.separate(centre, &basis))
                 {
                     *place = state;
                 }

@@ -255,6 +255,10 @@ impl Chain {
     }
 
     /// Numbers of eigenvalues below [`LANES`] energies, one sweep.
+    ///
+    /// # Panics
+    ///
+    /// Never: a count of nodes fits.
     #[must_use]
     pub fn counts_below(&self, energies: &Lanes) -> [usize; LANES] {
         const LARGE: f64 = 1e140;

@@ -158,9 +158,10 @@ fn strain(layer: &LayerStrain, limits: &StrainLimits) -> String {
 fn band(critical: &CriticalBand, is_buried: bool, share: f64, most: Option<f64>) -> String {
     let thickness = |at: CriticalThickness| match at {
         CriticalThickness::Unlimited => "any thickness".to_owned(),
-        CriticalThickness::UpTo { thickness_nm } => {
+        CriticalThickness::UpTo { thickness_nm } if thickness_nm < 1e4 => {
             format!("{} nm", significant(thickness_nm, 3))
         }
+        CriticalThickness::UpTo { thickness_nm } => format!("{} µm", fixed(1e-3 * thickness_nm, 0)),
         CriticalThickness::NoneCoherent => "none".to_owned(),
     };
     let used = if share.is_finite() {

@@ -1,6 +1,7 @@
 //! The document of `levels`.
 
 use super::FORMAT;
+use super::strain::StrainEntry;
 use crate::evaluation::{Emission, Evaluation, Ladder, Transition};
 use crate::profile::Strained;
 use crate::sheet::Stamp;
@@ -17,6 +18,7 @@ struct Document<'a> {
     shrinkage_mev: u32,
     wells: Wells,
     layers: Vec<LayerEntry>,
+    strain_budget: StrainEntry,
     electron: Vec<LevelEntry>,
     heavy_hole: Vec<LevelEntry>,
     light_hole: Vec<LevelEntry>,
@@ -134,6 +136,7 @@ pub fn levels(evaluation: &Evaluation<'_>, stamp: &Stamp) -> String {
             .zip(&evaluation.profile.layers)
             .map(|(layer, numbers)| LayerEntry::new(layer, &numbers.lower, &numbers.upper))
             .collect(),
+        strain_budget: StrainEntry::from(&evaluation.strain_budget()),
         electron: ladder("e"),
         heavy_hole: ladder("hh"),
         light_hole: ladder("lh"),

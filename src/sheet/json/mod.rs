@@ -3,6 +3,7 @@
 //! Keys and their meaning are fixed under `"format": 1`: new keys may come, old ones stay. Energies
 //! are on one scale, holes as electron energies; what does not exist is `null`.
 
+mod design;
 mod findings;
 mod layout;
 mod levels;
@@ -11,8 +12,10 @@ mod reconcile;
 mod restatement;
 mod spectrum;
 mod spread;
+mod strain;
 mod xray;
 
+pub use design::{aim, chart, weigh};
 pub use findings::findings;
 pub use levels::levels;
 pub use materials::{descriptions, families};

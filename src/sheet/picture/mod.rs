@@ -6,6 +6,7 @@
 mod arrow;
 mod bands;
 mod bundle;
+mod chart;
 mod dispersion;
 mod gain;
 mod growth;
@@ -13,10 +14,13 @@ mod rocking;
 mod spectra;
 #[cfg(test)]
 mod tests;
+mod weigh;
 
 pub use bands::levels_figure;
+pub use chart::chart_figure;
 pub use rocking::rocking_figure;
 pub use spectra::spectrum_figure;
+pub use weigh::weigh_figure;
 
 use super::figure::{Dash, Ink, Key};
 use super::stamp::Stamp;

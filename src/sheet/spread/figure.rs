@@ -140,7 +140,7 @@ fn bars(spread: &Spread) -> Panel {
     };
     for (place, sensitivity) in spread.sensitivities.iter().enumerate() {
         let middle = place as f64 + 1.0;
-        let ink = Ink::Colour(if sensitivity.nm < 0.0 { 1 } else { 0 });
+        let ink = Ink::Colour(usize::from(sensitivity.nm < 0.0));
         panel.areas.push(Area {
             spans: [middle - HALF_BAR, middle + HALF_BAR]
                 .map(|x| {
