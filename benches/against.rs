@@ -64,12 +64,12 @@ impl Bench {
                     .map(|it| [it.electron_ev, it.hole_ev, it.te, it.tm])
                     .collect();
                 let o = spectrum::OCCUPATION;
+                let scales = [Lineshape::Sech, Lineshape::Lorentzian]
+                    .map(|shape| stepwell::spectra::Line::new(shape, 100.0).scale_ev());
                 json!({ "samples": samples, "photons": spectrum::PHOTONS,
                     "fermi_electron": o.fermi_electron_ev, "fermi_hole": o.fermi_hole_ev,
                     "lowering": o.lowering_ev, "thermal": o.thermal_ev,
-                    "scale": [Lineshape::Sech, Lineshape::Lorentzian].map(|shape| {
-                        stepwell::spectra::Line::new(shape, 100.0).scale_ev()
-                    }) })
+                    "scale": scales })
             }
             ["solve", "single", nodes, masses, repeats] => {
                 let problem = self.single(nodes, *masses == "softened");
