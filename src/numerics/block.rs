@@ -325,6 +325,42 @@ impl BlockChain {
         (steps, residuals)
     }
 
+    /// Continues two ladders in a straight line, energies and vectors: `behind`, one step behind
+    /// `last`, becomes the ladder one step ahead of it. [`BlockChain::follow`] begins there.
+    ///
+    /// # Arguments
+    ///
+    /// * `ratio` – the step to come over the step behind
+    pub fn advance(&self, behind: &mut Ladder, last: &Ladder, ratio: f64) {
+        behind.energies.resize(last.energies.len(), f64::NAN);
+        behind.vectors.resize(last.vectors.len(), Vec::new());
+        let ladder = behind.energies.iter_mut().zip(&mut behind.vectors);
+        for ((energy, vector), (&energy_last, vector_last)) in
+            ladder.zip(last.energies.iter().zip(&last.vectors))
+        {
+            let alike = if vector.is_empty() {
+                0.0
+            } else {
+                self.product(vector, vector_last)
+            };
+            // Where a state has changed its character there is no straight line to follow.
+            if alike.abs() < 0.7 {
+                *energy = energy_last;
+                vector.clone_from(vector_last);
+                continue;
+            }
+            *energy = energy_last + ratio * (energy_last - *energy);
+            let sense = ratio * alike.signum();
+            for (value, last) in vector.iter_mut().zip(vector_last) {
+                *value = (1.0 + ratio) * last - sense * *value;
+            }
+            let scale = self.product(vector, vector).sqrt().recip();
+            for value in vector.iter_mut() {
+                *value *= scale;
+            }
+        }
+    }
+
     /// Follows the `ladder` of a neighbouring problem to the lowest eigenvalues of this one: one
     /// lane a state, from its energy and vector. Returns whether every state asked for is
     /// certified; if not, the ladder is of no use.

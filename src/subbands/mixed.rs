@@ -874,26 +874,8 @@ fn follow(
 /// Energies and vectors continued in a straight line through two slices, `ratio` being the step to
 /// come over the step behind.
 fn ahead(chain: &BlockChain, before: &Ladder, last: &Ladder, ratio: f64) -> Ladder {
-    let mut next = last.clone();
-    for (index, vector) in next.vectors.iter_mut().enumerate() {
-        let Some(old) = before.vectors.get(index) else {
-            continue;
-        };
-        let alike = chain.product(old, vector);
-        // Where a state has changed its character there is no straight line to follow.
-        if alike.abs() < 0.7 {
-            continue;
-        }
-        next.energies[index] += ratio * (last.energies[index] - before.energies[index]);
-        let sense = ratio * alike.signum();
-        for (value, old) in vector.iter_mut().zip(old) {
-            *value = (1.0 + ratio) * *value - sense * old;
-        }
-        let scale = chain.product(vector, vector).sqrt().recip();
-        for value in vector.iter_mut() {
-            *value *= scale;
-        }
-    }
+    let mut next = before.clone();
+    chain.advance(&mut next, last, ratio);
     next
 }
 
