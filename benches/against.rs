@@ -6,7 +6,6 @@
 //!  solve KIND [NODES|SHAPE] REPEATS                             seconds of one solution, the result
 //! ```
 
-#[expect(dead_code, reason = "each bench uses a part of the problems")]
 mod problems;
 
 use problems::single_band::{DEPTH_EV, SingleBand};

@@ -50,7 +50,10 @@ fn valence_block(bench: &mut Criterion) {
 /// 400 photon energies, 3200 samples.
 fn spectrum_sum(bench: &mut Criterion) {
     let mut group = bench.benchmark_group("spectrum_sum");
-    for (name, shape) in [("sech", Lineshape::Sech), ("lorentzian", Lineshape::Lorentzian)] {
+    for (name, shape) in [
+        ("sech", Lineshape::Sech),
+        ("lorentzian", Lineshape::Lorentzian),
+    ] {
         let emitter = spectrum::emitter(shape);
         group.bench_function(name, |b| b.iter(|| black_box(spectrum::solve(&emitter))));
     }
@@ -80,5 +83,11 @@ fn whole_chain(bench: &mut Criterion) {
     group.finish();
 }
 
-criterion_group!(kernels, single_band, valence_block, spectrum_sum, whole_chain);
+criterion_group!(
+    kernels,
+    single_band,
+    valence_block,
+    spectrum_sum,
+    whole_chain
+);
 criterion_main!(kernels);

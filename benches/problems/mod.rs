@@ -1,5 +1,5 @@
 //! The problems that speed is measured on, each the same for every method.
 
-pub mod single_band;
-pub mod spectrum;
-pub mod valence;
+pub(crate) mod single_band;
+pub(crate) mod spectrum;
+pub(crate) mod valence;

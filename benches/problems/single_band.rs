@@ -7,17 +7,17 @@ const HBAR2_OVER_2M0_EV_NM2: f64 = 0.038_099_821;
 /// Layers from the substrate up, nm, barriers and wells by turns: whole multiples of 0.8 nm.
 const THICKNESSES_NM: [f64; 7] = [13.6, 8.0, 4.0, 8.0, 4.8, 8.0, 13.6];
 /// Edge of the barriers above that of the wells, eV.
-pub const DEPTH_EV: f64 = 0.365;
+pub(crate) const DEPTH_EV: f64 = 0.365;
 /// Masses of wells and barriers at their edges (GaAs and AlGaAs, in round numbers).
 const MASSES: [f64; 2] = [0.067, 0.09];
 /// Gaps of wells and barriers, eV: what softens the masses.
 const GAPS_EV: [f64; 2] = [1.42, 1.8];
 
 /// The problem on a grid to be solved, and on two coarse ones to start from.
-pub struct SingleBand {
+pub(crate) struct SingleBand {
     coarse: [Chain; 2],
     /// The matrix to be solved.
-    pub fine: Chain,
+    pub(crate) fine: Chain,
     /// h² of the coarse grids and of the fine one, nm².
     squares: [f64; 3],
     work: Workspace,
@@ -25,7 +25,7 @@ pub struct SingleBand {
 
 impl SingleBand {
     /// The problem with `nodes` inner nodes: 599 or 2399.
-    pub fn new(nodes: usize, softened: bool) -> Self {
+    pub(crate) fn new(nodes: usize, softened: bool) -> Self {
         let fine_nm = 60.0 / (nodes + 1) as f64;
         let coarse_nm = if nodes > 1000 { [0.4, 0.2] } else { [0.8, 0.4] };
         let fine = chain(fine_nm, softened);
@@ -40,7 +40,7 @@ impl SingleBand {
 
     /// Every level below the barriers with its vector, certified. The coarsest grid is solved from
     /// nothing; what it says of its own error starts the next, and both start the last.
-    pub fn solve(&mut self) -> Vec<State> {
+    pub(crate) fn solve(&mut self) -> Vec<State> {
         let work = &mut self.work;
         let [x0, x1, x] = self.squares;
         let [first, second] = &self.coarse;
@@ -52,7 +52,9 @@ impl SingleBand {
             .zip(&slopes)
             .map(|(state, slope)| state.energy + slope * (x1 - x0))
             .collect();
-        let upper = second.lowest_with(work, count, Some(&guesses)).expect("certified");
+        let upper = second
+            .lowest_with(work, count, Some(&guesses))
+            .expect("certified");
         let guesses: Vec<f64> = lower
             .iter()
             .zip(&slopes)
@@ -84,7 +86,11 @@ fn chain(step_nm: f64, softened: bool) -> Chain {
                 length: thickness_nm / intervals,
                 stiffness: HBAR2_OVER_2M0_EV_NM2 / MASSES[barrier],
                 potential: barrier as f64 * DEPTH_EV,
-                softening: if softened { GAPS_EV[barrier].recip() } else { 0.0 },
+                softening: if softened {
+                    GAPS_EV[barrier].recip()
+                } else {
+                    0.0
+                },
             }
         })
         .collect();

@@ -5,13 +5,13 @@ use stepwell::structure::Lineshape;
 use stepwell::units::HBAR2_OVER_2M0_EV_NM2;
 
 /// Photon energies: the first, their distance, eV, and how many.
-pub const PHOTONS: (f64, f64, usize) = (0.75, 1e-3, 400);
+pub(crate) const PHOTONS: (f64, f64, usize) = (0.75, 1e-3, 400);
 const PAIRS: u32 = 40;
 const WAVE_NUMBERS: u32 = 80;
 const STEP_PER_NM: f64 = 0.0125;
 
 /// Carriers of a strongly inverted well at room temperature.
-pub const OCCUPATION: Occupation = Occupation {
+pub(crate) const OCCUPATION: Occupation = Occupation {
     fermi_electron_ev: 0.93,
     fermi_hole_ev: -0.02,
     lowering_ev: 0.03,
@@ -19,7 +19,7 @@ pub const OCCUPATION: Occupation = Occupation {
 };
 
 /// Pairs whose edges stand 6 meV apart, with parabolas of their own.
-pub fn samples() -> Vec<Sample> {
+pub(crate) fn samples() -> Vec<Sample> {
     (0..PAIRS)
         .flat_map(|pair| {
             let pair = f64::from(pair);
@@ -39,12 +39,20 @@ pub fn samples() -> Vec<Sample> {
 }
 
 /// The emitter of the samples: its constants scale all methods alike.
-pub fn emitter(shape: Lineshape) -> Dispersive {
-    Dispersive::new(samples(), vec![0.84], 1.5, 25.0, 8.0, 3.4, Line::new(shape, 100.0))
+pub(crate) fn emitter(shape: Lineshape) -> Dispersive {
+    Dispersive::new(
+        samples(),
+        vec![0.84],
+        1.5,
+        25.0,
+        8.0,
+        3.4,
+        Line::new(shape, 100.0),
+    )
 }
 
 /// Gain and emission at all photon energies.
-pub fn solve(emitter: &Dispersive) -> Vec<Point> {
+pub(crate) fn solve(emitter: &Dispersive) -> Vec<Point> {
     let (low_ev, step_ev, count) = PHOTONS;
     emitter.sample(&OCCUPATION, low_ev, step_ev, count)
 }

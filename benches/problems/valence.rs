@@ -29,14 +29,14 @@ thickness_nm = 10
 const INTERVALS: [usize; 3] = [100, 80, 100];
 const STEP_NM: f64 = 0.1;
 /// Wave numbers up to 1/nm.
-pub const WAVE_NUMBERS: usize = 80;
+pub(crate) const WAVE_NUMBERS: usize = 80;
 /// States wanted at each.
-pub const STATES: usize = 8;
+pub(crate) const STATES: usize = 8;
 /// States carried: two more, to take over where characters are exchanged.
 const CARRIED: usize = 10;
 
 /// The block at every wave number.
-pub struct Valence {
+pub(crate) struct Valence {
     /// Runs of the chain at every wave number, from 1/80 per nm on.
     runs: Vec<Vec<BlockRun>>,
     chain: BlockChain,
@@ -48,7 +48,7 @@ pub struct Valence {
 
 impl Valence {
     /// The problem with its states at zone centre.
-    pub fn new() -> Self {
+    pub(crate) fn new() -> Self {
         let parameters = Parameters::shipped();
         let reading = structure::read(STRUCTURE, &parameters, &Overrides::default())
             .expect("the structure above is sound");
@@ -82,7 +82,7 @@ impl Valence {
     }
 
     /// Energies of the states at every wave number, hole energies in eV, rising; certified.
-    pub fn solve(&mut self) -> Vec<Vec<f64>> {
+    pub(crate) fn solve(&mut self) -> Vec<Vec<f64>> {
         let [behind, last] = &mut self.ladders;
         behind.clone_from(&self.start);
         last.clone_from(&self.start);
@@ -103,17 +103,17 @@ impl Valence {
     }
 
     /// Number of unknowns.
-    pub fn size(&self) -> usize {
+    pub(crate) fn size(&self) -> usize {
         3 * self.chain.nodes()
     }
 
     /// Hole energy below which no state lies, eV.
-    pub fn floor_ev(&self) -> f64 {
+    pub(crate) fn floor_ev(&self) -> f64 {
         self.floor_ev
     }
 
     /// The matrix at one of the wave numbers: (row, column, value), upper triangle.
-    pub fn entries(&mut self, step: usize) -> Vec<(usize, usize, f64)> {
+    pub(crate) fn entries(&mut self, step: usize) -> Vec<(usize, usize, f64)> {
         self.chain.runs_mut().copy_from_slice(&self.runs[step]);
         self.chain.entries()
     }
