@@ -247,6 +247,7 @@ mod tests {
     }
 
     proptest! {
+        #![proptest_config(ProptestConfig { rng_seed: proptest::test_runner::RngSeed::Fixed(1), failure_persistence: None, ..ProptestConfig::default() })]
         /// Polynomials with roots planted at random, some pairs close together.
         #[test]
         fn every_planted_root_is_found(
