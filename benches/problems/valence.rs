@@ -2,7 +2,7 @@
 //! in-plane wave number.
 
 use stepwell::materials::Parameters;
-use stepwell::numerics::block::{BlockChain, BlockRun, Ladder};
+use stepwell::numerics::block::{BlockChain, BlockRun, Hold, Ladder, Trail};
 use stepwell::profile::Profile;
 use stepwell::structure::{self, Overrides};
 use stepwell::subbands::interval;
@@ -32,8 +32,6 @@ const STEP_NM: f64 = 0.1;
 pub(crate) const WAVE_NUMBERS: usize = 80;
 /// States wanted at each.
 pub(crate) const STATES: usize = 8;
-/// States carried: two more, to take over where characters are exchanged.
-const CARRIED: usize = 10;
 
 /// The block at every wave number.
 pub(crate) struct Valence {
@@ -43,7 +41,6 @@ pub(crate) struct Valence {
     /// Hole energy below which no state may lie, eV.
     floor_ev: f64,
     start: Ladder,
-    ladders: [Ladder; 2],
 }
 
 impl Valence {
@@ -68,7 +65,7 @@ impl Valence {
             .map(|layer| -layer.lower.edges.heavy_ev.max(layer.lower.edges.light_ev))
             .fold(f64::INFINITY, f64::min);
         let mut chain = BlockChain::new(at(0.0));
-        let start = chain.lowest(CARRIED, floor_ev).expect("certified");
+        let start = chain.lowest(STATES, floor_ev).expect("certified");
         let runs = (1..=WAVE_NUMBERS)
             .map(|step| at(step as f64 / WAVE_NUMBERS as f64))
             .collect();
@@ -76,28 +73,22 @@ impl Valence {
             runs,
             chain,
             floor_ev,
-            ladders: [start.clone(), start.clone()],
             start,
         }
     }
 
     /// Energies of the states at every wave number, hole energies in eV, rising; certified.
     pub(crate) fn solve(&mut self) -> Vec<Vec<f64>> {
-        let [behind, last] = &mut self.ladders;
-        behind.clone_from(&self.start);
-        last.clone_from(&self.start);
+        let mut trail = Trail::new(&self.chain, &self.start, 0.0);
         let mut energies_ev = Vec::with_capacity(self.runs.len());
-        for runs in &self.runs {
+        for (step, runs) in self.runs.iter().enumerate() {
             self.chain.runs_mut().copy_from_slice(runs);
-            self.chain.advance(behind, last, 1.0);
-            if !self.chain.follow(behind, STATES, self.floor_ev) {
-                *behind = self
-                    .chain
-                    .lowest(CARRIED, self.floor_ev)
-                    .expect("certified");
+            let at = (step + 1) as f64;
+            if !trail.step(&mut self.chain, at, Hold::Lowest(STATES), self.floor_ev) {
+                let found = self.chain.lowest(STATES, self.floor_ev);
+                trail = Trail::new(&self.chain, &found.expect("certified"), at);
             }
-            std::mem::swap(behind, last);
-            energies_ev.push(last.energies[..STATES].to_vec());
+            energies_ev.push(trail.energies().collect());
         }
         energies_ev
     }

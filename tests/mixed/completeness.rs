@@ -3,7 +3,7 @@
 use crate::hamiltonian::dense;
 use crate::recipe::{BARRIER, STEP, WELL, barrier, read, shipped, text, well};
 use stepwell::materials::Parameters;
-use stepwell::numerics::block::{BlockChain, Ladder};
+use stepwell::numerics::block::{BlockChain, Hold, Trail};
 use stepwell::profile::{Cells, Profile};
 use stepwell::subbands::interval;
 
@@ -50,23 +50,24 @@ fn states_of_every_wave_number_are_those_of_a_dense_solver() {
     let cells = profile.grid(2.0, 0);
     let floor = highest_edge(&cells) - 1e-9;
     for sign in [1.0, -1.0] {
-        let mut followed: Option<Ladder> = None;
+        let mut followed: Option<Trail> = None;
         for step in 0..=24 {
             let k_per_nm = 0.0125 * f64::from(step);
             let mut chain = chain(&cells, k_per_nm, sign);
-            let mut ladder = match followed.take() {
-                None => chain.lowest(STATES + 2, floor).expect("certified"),
-                Some(ladder) => ladder,
-            };
+            let mut trail = followed.take().unwrap_or_else(|| {
+                let ladder = chain.lowest(STATES + 2, floor).expect("certified");
+                Trail::new(&chain, &ladder, -1.0)
+            });
             assert!(
-                chain.follow(&mut ladder, STATES, floor),
+                trail.step(&mut chain, k_per_nm, Hold::Lowest(STATES), floor),
                 "lost at {k_per_nm}/nm"
             );
+            let energies: Vec<f64> = trail.energies().collect();
             if step % 6 == 0 {
                 let exact = dense(&chain);
                 let found = chain.lowest(STATES, floor).expect("certified");
                 for (index, want) in exact[..STATES].iter().enumerate() {
-                    let (got, tracked) = (found.energies[index], ladder.energies[index]);
+                    let (got, tracked) = (found.energies[index], energies[index]);
                     assert!((got - want).abs() < 1e-9, "{got} {want} at {k_per_nm}/nm");
                     assert!(
                         (tracked - want).abs() < 1e-8,
@@ -79,7 +80,7 @@ fn states_of_every_wave_number_are_those_of_a_dense_solver() {
                     assert_eq!(chain.count_below(between), below);
                 }
             }
-            followed = Some(ladder);
+            followed = Some(trail);
         }
     }
 }

@@ -1,0 +1,84 @@
+//! Near neighbours, separated inside their span.
+
+use std::ops::Range;
+
+use nalgebra::{DMatrix, SymmetricEigen};
+
+use super::{BlockChain, Ladder};
+
+/// Levels closer than this are separated inside their span.
+const GROUP: f64 = 5e-5;
+
+impl BlockChain {
+    /// Gram-Schmidt, twice for rounding.
+    pub(super) fn orthonormalise(&self, vectors: &mut [Vec<f64>]) {
+        for index in 0..vectors.len() {
+            let (done, rest) = vectors.split_at_mut(index);
+            let own = &mut rest[0];
+            for _ in 0..2 {
+                for other in done.iter() {
+                    let share = self.product(other, own);
+                    for (value, part) in own.iter_mut().zip(other) {
+                        *value -= share * part;
+                    }
+                }
+                let scale = self.product(own, own).sqrt().recip();
+                for value in own.iter_mut() {
+                    *value *= scale;
+                }
+            }
+        }
+    }
+
+    /// The states inside the span of some vectors, lowest first, with their residuals.
+    pub(super) fn separate(&self, mut basis: Vec<Vec<f64>>) -> (Ladder, Vec<f64>) {
+        self.orthonormalise(&mut basis);
+        let images: Vec<Vec<f64>> = basis.iter().map(|vector| self.image(vector)).collect();
+        let dot = |a: &[f64], b: &[f64]| a.iter().zip(b).map(|(a, b)| a * b).sum::<f64>();
+        let size = basis.len();
+        let form = DMatrix::from_fn(size, size, |a, b| dot(&basis[a], &images[b]));
+        let eigen = SymmetricEigen::new(0.5 * (&form + form.transpose()));
+        let mut order: Vec<usize> = (0..size).collect();
+        order.sort_by(|&a, &b| eigen.eigenvalues[a].total_cmp(&eigen.eigenvalues[b]));
+        let mix = |vectors: &[Vec<f64>], column: usize| {
+            let mut mixed = vec![0.0; vectors[0].len()];
+            for (row, vector) in vectors.iter().enumerate() {
+                let share = eigen.eigenvectors[(row, column)];
+                for (value, part) in mixed.iter_mut().zip(vector) {
+                    *value += share * part;
+                }
+            }
+            mixed
+        };
+        let mut ladder = Ladder::default();
+        let mut residuals = Vec::with_capacity(size);
+        for column in order {
+            let (energy, vector) = (eigen.eigenvalues[column], mix(&basis, column));
+            residuals.push(self.residual(energy, &vector, &mix(&images, column)));
+            ladder.energies.push(energy);
+            ladder.vectors.push(vector);
+        }
+        (ladder, residuals)
+    }
+}
+
+/// Ranges of two and more rising levels whose neighbours are closer than [`GROUP`].
+pub(super) fn groups(energies: impl Iterator<Item = f64>) -> Vec<Range<usize>> {
+    let mut groups = Vec::new();
+    let (mut start, mut count, mut last) = (0, 0, f64::NEG_INFINITY);
+    let mut close = |range: Range<usize>| {
+        if range.len() > 1 {
+            groups.push(range);
+        }
+    };
+    for (level, energy) in energies.enumerate() {
+        if energy - last >= GROUP {
+            close(start..level);
+            start = level;
+        }
+        last = energy;
+        count = level + 1;
+    }
+    close(start..count);
+    groups
+}

@@ -1,0 +1,273 @@
+//! States along the in-plane wave number.
+
+use super::centre::Centre;
+use super::form::Grid;
+use super::{Dipole, Projection, Slice, uncertified};
+use crate::numerics::block::{Hold, LANES, Ladder, Trail};
+use crate::subbands::Uncertified;
+
+/// Steps of the in-plane wave number, 1/nm, and up to where each is taken: small enough to follow
+/// states from one to the next, and to interpolate between.
+const WAVE_NUMBER_STEPS_PER_NM: [(f64, f64); 3] = [(0.0125, 0.5), (0.025, 1.2), (0.05, 2.0)];
+
+/// The in-plane wave numbers that may be visited, 1/nm, from zero.
+pub(super) fn wave_numbers() -> Vec<f64> {
+    let mut k_per_nm = vec![0.0];
+    let mut start = 0.0;
+    for (step, end) in WAVE_NUMBER_STEPS_PER_NM {
+        let count = ((end - start) / step).round() as usize;
+        k_per_nm.extend((1..=count).map(|index| start + index as f64 * step));
+        start = end;
+    }
+    k_per_nm
+}
+
+/// Slices along k on one grid.
+pub(super) type Track = Vec<Slice>;
+
+/// The same slice on two grids of steps h and h/2, extrapolated, in order of energy.
+pub(super) fn extrapolated(coarse: &Slice, fine: &Slice) -> Slice {
+    let two = |coarse: f64, fine: f64| fine + (fine - coarse) / 3.0;
+    let partners = partners(coarse, fine);
+    let energy_ev: Vec<f64> = partners
+        .iter()
+        .zip(&fine.energy_ev)
+        .map(|(&partner, &energy)| two(coarse.energy_ev[partner], energy))
+        .collect();
+    let mut order: Vec<usize> = (0..energy_ev.len()).collect();
+    order.sort_by(|&a, &b| energy_ev[b].total_cmp(&energy_ev[a]));
+    Slice {
+        energy_ev: order.iter().map(|&state| energy_ev[state]).collect(),
+        dipoles: coarse
+            .dipoles
+            .iter()
+            .zip(&fine.dipoles)
+            .map(|(coarse, fine)| {
+                order
+                    .iter()
+                    .map(|&state| {
+                        let (coarse, fine) = (coarse[partners[state]], fine[state]);
+                        // Squares both: what is forbidden must not turn negative.
+                        Dipole {
+                            te: two(coarse.te, fine.te).max(0.0),
+                            tm: two(coarse.tm, fine.tm).max(0.0),
+                        }
+                    })
+                    .collect()
+            })
+            .collect(),
+    }
+}
+
+/// Which state of a coarser grid each state of the finer one was: as a rule that of its number, but
+/// two that lie nearer to each other than the grids do may have crossed between them. Matrix elements
+/// tell: those of a pair that crossed are alike crosswise.
+fn partners(coarse: &Slice, fine: &Slice) -> Vec<usize> {
+    let count = fine.energy_ev.len();
+    let mut partners: Vec<usize> = (0..count).collect();
+    let unlike = |of_coarse: usize, of_fine: usize| -> f64 {
+        let rows = coarse.dipoles.iter().zip(&fine.dipoles);
+        rows.map(|(coarse, fine)| {
+            let (a, b) = (coarse[of_coarse], fine[of_fine]);
+            (a.te - b.te).abs() + (a.tm - b.tm).abs()
+        })
+        .sum()
+    };
+    let moved = |state: usize| (fine.energy_ev[state] - coarse.energy_ev[state]).abs();
+    let mut state = 0;
+    while state + 1 < count {
+        let next = state + 1;
+        let gap = |slice: &Slice| (slice.energy_ev[state] - slice.energy_ev[next]).abs();
+        let near = gap(coarse).max(gap(fine)) < 4.0 * moved(state).max(moved(next));
+        let straight = unlike(state, state) + unlike(next, next);
+        let crossed = unlike(state, next) + unlike(next, state);
+        if near && crossed < 0.5 * straight {
+            partners.swap(state, next);
+            state += 1;
+        }
+        state += 1;
+    }
+    partners
+}
+
+/// The slices of one block on one grid, from k = 0 until the highest state has fallen to `depth`.
+///
+/// # Arguments
+///
+/// * `which` – index of the grid among the three of `centre`
+/// * `electrons` – envelopes of the electron levels on this grid
+///
+/// # Errors
+///
+/// [`Uncertified`] where neither following nor a search from nothing can be certified.
+pub(super) fn follow(
+    grid: &Grid,
+    sign: f64,
+    centre: &Centre,
+    which: usize,
+    electrons: &[&[f64]],
+    depth: f64,
+) -> Result<Track, Uncertified> {
+    let count = centre.states.len();
+    let start = &centre.ladders[which];
+    // Lanes that states leave free carry those next to them, to take over where characters are
+    // exchanged.
+    let carried = count.next_multiple_of(LANES).min(start.energies.len());
+    let picked: Vec<usize> = if centre.by_character {
+        centre.places.iter().map(|place| place[which]).collect()
+    } else {
+        (0..carried).collect()
+    };
+    let hold = if centre.by_character {
+        Hold::Character
+    } else {
+        Hold::Lowest(count)
+    };
+    let weighted: Vec<Vec<f64>> = electrons
+        .iter()
+        .map(|electron| {
+            let nodes = electron.iter().zip(&grid.nodes.weights_nm);
+            nodes.map(|(value, weight)| value * weight).collect()
+        })
+        .collect();
+    let slice = |trail: &Trail| Slice {
+        energy_ev: trail.energies().take(count).map(|energy| -energy).collect(),
+        dipoles: weighted
+            .iter()
+            .map(|electron| {
+                let sums = trail.projections(electron);
+                let states = sums[..count].iter();
+                states
+                    .map(|&sums| Projection::from(sums).dipole())
+                    .collect()
+            })
+            .collect(),
+    };
+    let mut chain = grid.chain();
+    let ladder = Ladder {
+        energies: picked.iter().map(|&index| start.energies[index]).collect(),
+        vectors: picked
+            .iter()
+            .map(|&index| start.vectors[index].clone())
+            .collect(),
+    };
+    let mut trail = Trail::new(&chain, &ladder, 0.0);
+    let mut track = vec![slice(&trail)];
+    for pair in wave_numbers().windows(2) {
+        let (from, to) = (pair[0], pair[1]);
+        grid.set(&mut chain, to, sign);
+        if !trail.step(&mut chain, to, hold, grid.floor) {
+            // Smaller and smaller steps, then from nothing where even these lose the states.
+            let crept = [2u32, 4, 8].into_iter().find_map(|parts| {
+                let mut crept = trail.clone();
+                (1..=parts)
+                    .all(|part| {
+                        let k = from + (to - from) * f64::from(part) / f64::from(parts);
+                        grid.set(&mut chain, k, sign);
+                        crept.step(&mut chain, k, hold, grid.floor)
+                    })
+                    .then_some(crept)
+            });
+            grid.set(&mut chain, to, sign);
+            trail = match crept {
+                Some(crept) => crept,
+                None if centre.by_character => {
+                    return Err(Uncertified {
+                        band: "valence in-plane",
+                        level: 1,
+                        energy_ev: -trail.energies().next().unwrap_or(f64::NAN),
+                    });
+                }
+                None => {
+                    let ladder = chain
+                        .lowest(trail.states(), grid.floor)
+                        .or_else(|_| chain.lowest(count, grid.floor))
+                        .map_err(|error| uncertified(error, to))?;
+                    Trail::new(&chain, &ladder, to)
+                }
+            };
+        }
+        track.push(slice(&trail));
+        if trail
+            .energies()
+            .next()
+            .is_none_or(|highest| -highest < depth)
+        {
+            break;
+        }
+    }
+    Ok(track)
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn wave_numbers_rise_in_the_steps_that_states_can_be_followed_over() {
+        let k_per_nm = wave_numbers();
+        let (first, last) = (k_per_nm[0], k_per_nm[k_per_nm.len() - 1]);
+        assert!(first == 0.0 && (last - 2.0).abs() < 1e-12);
+        for pair in k_per_nm.windows(2) {
+            let (step, _) = WAVE_NUMBER_STEPS_PER_NM
+                .into_iter()
+                .find(|&(_, end)| pair[1] <= end + 1e-9)
+                .expect("a step for every wave number");
+            assert!((pair[1] - pair[0] - step).abs() < 1e-12, "{pair:?}");
+        }
+    }
+
+    /// Two states that cross from one grid to the next are not extrapolated into each other.
+    #[test]
+    fn states_that_cross_between_grids_keep_their_partners() {
+        let heavy = Dipole { te: 1.5, tm: 0.0 };
+        let light = Dipole { te: 0.5, tm: 2.0 };
+        let slice = |states: &[(f64, Dipole)]| Slice {
+            energy_ev: states.iter().map(|state| state.0).collect(),
+            dipoles: vec![states.iter().map(|state| state.1).collect()],
+        };
+        let far = (-0.3, heavy);
+        let coarse = slice(&[(-0.1, heavy), (-0.1001, light), far]);
+        let fine = slice(&[(-0.1004, light), (-0.1006, heavy), far]);
+        let exact = slice(&[(-0.1005, light), (-0.1008, heavy), far]);
+        let got = extrapolated(&coarse, &fine);
+        for (got, exact) in got.energy_ev.iter().zip(&exact.energy_ev) {
+            assert!((got - exact).abs() < 1e-12, "{got} {exact}");
+        }
+        assert_eq!(got.dipoles, exact.dipoles);
+        // Far apart, a change of character is a change of character.
+        let apart = slice(&[(-0.05, light), (-0.1004, heavy), far]);
+        assert_eq!(
+            partners(&apart, &slice(&[(-0.05, heavy), (-0.1004, light), far])),
+            [0, 1, 2]
+        );
+    }
+
+    /// Errors that go as h² leave nothing behind.
+    #[test]
+    fn two_grids_remove_an_error_of_second_order() {
+        let slice = |step: f64| {
+            let square = step * step;
+            Slice {
+                energy_ev: vec![-0.2 + 0.7 * square, -0.4 - 0.1 * square],
+                dipoles: vec![vec![
+                    Dipole {
+                        te: 1.4 + square,
+                        tm: 0.0,
+                    },
+                    Dipole {
+                        te: 0.5,
+                        tm: 2.0 - 3.0 * square,
+                    },
+                ]],
+            }
+        };
+        let (got, exact) = (extrapolated(&slice(0.2), &slice(0.1)), slice(0.0));
+        for (got, exact) in got.energy_ev.iter().zip(&exact.energy_ev) {
+            assert!((got - exact).abs() < 1e-15);
+        }
+        for (got, exact) in got.dipoles[0].iter().zip(&exact.dipoles[0]) {
+            assert!((got.te - exact.te).abs() < 1e-14 && (got.tm - exact.tm).abs() < 1e-14);
+        }
+    }
+}
