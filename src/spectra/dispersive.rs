@@ -1,6 +1,10 @@
 //! Gain and emission between electron parabolas and mixed valence bands: a sum over the in-plane
 //! wave number.
 
+use std::f64::consts::PI;
+
+use pulp::{Arch, NullaryFnOnce};
+
 use super::{Emitter, Line, Occupation, Point, modes_per_ev_cm2_s};
 use crate::numerics::fermi::occupation;
 use crate::structure::Lineshape;
@@ -71,7 +75,7 @@ impl Dispersive {
         line: Line,
     ) -> Self {
         edges_ev.sort_by(f64::total_cmp);
-        let strength_ev_cm = 2.0 / 3.0 * std::f64::consts::PI * FINE_STRUCTURE * kane_energy_ev
+        let strength_ev_cm = 2.0 / 3.0 * PI * FINE_STRUCTURE * kane_energy_ev
             / (refractive_index * well_thickness_nm * 1e-7);
         Self {
             samples,
@@ -92,123 +96,191 @@ impl Dispersive {
     /// Σ w Line(x) f_c (1 − f_v) and Σ w Line(x) f_v (1 − f_c), each for TE and TM, on even photon
     /// energies.
     fn sums(&self, line: Line, o: &Occupation, low: f64, step: f64, count: usize) -> Vec<[f64; 4]> {
-        let blocks = count.div_ceil(LANES);
-        let mut sums = vec![[[0.0; LANES]; 4]; blocks];
-        let scale = line.scale_ev();
+        let blocks = Arch::new().dispatch(Sums {
+            samples: &self.samples,
+            line,
+            occupation: o,
+            low,
+            step,
+            blocks: count.div_ceil(LANES),
+        });
+        (0..count)
+            .map(|at| std::array::from_fn(|kind| blocks[at / LANES][kind][at % LANES]))
+            .collect()
+    }
+}
+
+/// The sums over the samples at [`LANES`] photon energies at a time, run with the widest vectors of
+/// the machine: the operations, and so the results, are the same with any.
+struct Sums<'a> {
+    samples: &'a [Sample],
+    line: Line,
+    occupation: &'a Occupation,
+    low: f64,
+    step: f64,
+    blocks: usize,
+}
+
+impl NullaryFnOnce for Sums<'_> {
+    type Output = Vec<[Lanes; 4]>;
+
+    #[inline(always)]
+    fn call(self) -> Self::Output {
+        match self.line.shape {
+            Lineshape::Sech => self.over_samples(Sech::new),
+            Lineshape::Gaussian => self.over_samples(Gaussian::new),
+            Lineshape::Lorentzian => self.over_samples(Lorentzian::new),
+        }
+    }
+}
+
+impl Sums<'_> {
+    /// # Arguments
+    ///
+    /// * `series` – the line from its scale, the place of the first energy and the step, eV
+    #[inline(always)]
+    fn over_samples<S: Series>(&self, series: impl Fn(f64, f64, f64) -> S) -> Vec<[Lanes; 4]> {
+        let (o, low, step) = (self.occupation, self.low, self.step);
+        let mut sums = vec![[[0.0; LANES]; 4]; self.blocks];
+        let scale = self.line.scale_ev();
         // Beyond this the line is below 1e-15 of its peak; a Lorentzian never is.
-        let reach = match line.shape {
+        let reach = match self.line.shape {
             Lineshape::Sech => 36.0 * scale,
             Lineshape::Gaussian => 8.5 * scale,
             Lineshape::Lorentzian => f64::INFINITY,
         };
         let block_step = step * LANES as f64;
-        let grow_fermi = (0.5 * block_step / o.thermal_ev).exp();
-        for sample in &self.samples {
+        let grow: Lanes =
+            std::array::from_fn(|lane| (0.5 * lane as f64 * step / o.thermal_ev).exp());
+        let grow_block = (0.5 * block_step / o.thermal_ev).exp();
+        for sample in self.samples {
             let electron = sample.electron_ev - o.lowering_ev;
             let centre = electron - sample.hole_ev;
-            let first = ((centre - reach - low) / block_step).floor().max(0.0);
-            let end = ((centre + reach - low) / block_step)
-                .ceil()
-                .min(blocks as f64);
+            let first = ((centre - reach - low) / block_step).max(0.0);
+            let end = ((centre + reach - low) / block_step + 1.0).min(self.blocks as f64);
             if first >= end {
                 continue;
             }
             let (first, end) = (first as usize, end as usize);
-            let x: Lanes =
-                std::array::from_fn(|lane| low + (first * LANES + lane) as f64 * step - centre);
-            let mut u: Lanes = std::array::from_fn(|lane| {
-                ((electron + 0.5 * x[lane] - o.fermi_electron_ev) / o.thermal_ev).exp()
-            });
-            let mut v: Lanes = std::array::from_fn(|lane| {
-                ((o.fermi_hole_ev - sample.hole_ev + 0.5 * x[lane]) / o.thermal_ev).exp()
-            });
-            let mut series = Series::new(line.shape, scale, &x, block_step);
+            let x = low + (first * LANES) as f64 * step - centre;
+            let u = ((electron + 0.5 * x - o.fermi_electron_ev) / o.thermal_ev).exp();
+            let v = ((o.fermi_hole_ev - sample.hole_ev + 0.5 * x) / o.thermal_ev).exp();
+            let mut u = grow.map(|grow| u * grow);
+            let mut v = grow.map(|grow| v * grow);
+            let mut line = series(scale, x, step);
             let (te, tm) = (sample.te, sample.tm);
             for block in &mut sums[first..end] {
-                let shape = series.next();
+                let (above, below) = line.next();
                 for lane in 0..LANES {
                     let (a, b) = (u[lane].min(LARGE), v[lane].min(LARGE));
-                    let emits = shape.0[lane] / (shape.1[lane] * (1.0 + a) * (1.0 + b));
+                    let emits = above[lane] / (below[lane] * (1.0 + a) * (1.0 + b));
                     let takes = emits * (a * b);
                     block[0][lane] += te * emits;
                     block[1][lane] += tm * emits;
                     block[2][lane] += te * takes;
                     block[3][lane] += tm * takes;
-                    u[lane] *= grow_fermi;
-                    v[lane] *= grow_fermi;
+                    u[lane] *= grow_block;
+                    v[lane] *= grow_block;
                 }
             }
         }
-        (0..count)
-            .map(|at| std::array::from_fn(|kind| sums[at / LANES][kind][at % LANES]))
-            .collect()
+        sums
     }
 }
 
 /// The line on even energies, [`LANES`] at a time, as a numerator and a denominator.
-struct Series {
-    shape: Lineshape,
-    /// sech: exp(x/g). Gaussian: the line. Lorentzian: x/Γ.
+trait Series {
+    fn next(&mut self) -> (Lanes, Lanes);
+}
+
+/// exp(x/g) and its factor to the next block.
+struct Sech {
     value: Lanes,
-    /// Gaussian: the factor to the next block.
-    ratio: Lanes,
     grow: f64,
     unit: f64,
 }
 
-impl Series {
-    fn new(shape: Lineshape, scale: f64, x: &Lanes, block_step: f64) -> Self {
-        use std::f64::consts::PI;
-        let t: Lanes = x.map(|x| x / scale);
-        let step = block_step / scale;
-        match shape {
-            Lineshape::Sech => Self {
-                shape,
-                value: t.map(f64::exp),
-                ratio: [1.0; LANES],
-                grow: step.exp(),
-                unit: 2.0 / (PI * scale),
-            },
-            Lineshape::Gaussian => Self {
-                shape,
-                value: t.map(|t| (-0.5 * t * t).exp() / (scale * (2.0 * PI).sqrt())),
-                ratio: t.map(|t| (-step * (t + 0.5 * step)).exp()),
-                grow: (-step * step).exp(),
-                unit: 1.0,
-            },
-            Lineshape::Lorentzian => Self {
-                shape,
-                value: t,
-                ratio: [1.0; LANES],
-                grow: step,
-                unit: 1.0 / (PI * scale),
-            },
+impl Sech {
+    #[inline(always)]
+    fn new(scale: f64, x: f64, step: f64) -> Self {
+        let (first, step) = ((x / scale).exp(), (step / scale).exp());
+        let mut value = [first; LANES];
+        for lane in 1..LANES {
+            value[lane] = value[lane - 1] * step;
+        }
+        Self {
+            value,
+            grow: (step * step * step * step) * (step * step * step * step),
+            unit: 2.0 / (PI * scale),
         }
     }
+}
 
+impl Series for Sech {
+    #[inline(always)]
     fn next(&mut self) -> (Lanes, Lanes) {
         let value = self.value;
-        match self.shape {
-            Lineshape::Sech => {
-                for lane in 0..LANES {
-                    self.value[lane] *= self.grow;
-                }
-                (value.map(|y| self.unit * y), value.map(|y| 1.0 + y * y))
-            }
-            Lineshape::Gaussian => {
-                for lane in 0..LANES {
-                    self.value[lane] *= self.ratio[lane];
-                    self.ratio[lane] *= self.grow;
-                }
-                (value, [1.0; LANES])
-            }
-            Lineshape::Lorentzian => {
-                for lane in 0..LANES {
-                    self.value[lane] += self.grow;
-                }
-                ([self.unit; LANES], value.map(|t| 1.0 + t * t))
-            }
+        self.value = value.map(|y| y * self.grow);
+        (value.map(|y| self.unit * y), value.map(|y| 1.0 + y * y))
+    }
+}
+
+/// The line, its factor to the next block, and the factor of that.
+struct Gaussian {
+    value: Lanes,
+    ratio: Lanes,
+    grow: f64,
+}
+
+impl Gaussian {
+    #[inline(always)]
+    fn new(scale: f64, x: f64, step: f64) -> Self {
+        let t: Lanes = std::array::from_fn(|lane| (x + lane as f64 * step) / scale);
+        let step = LANES as f64 * step / scale;
+        Self {
+            value: t.map(|t| (-0.5 * t * t).exp() / (scale * (2.0 * PI).sqrt())),
+            ratio: t.map(|t| (-step * (t + 0.5 * step)).exp()),
+            grow: (-step * step).exp(),
         }
+    }
+}
+
+impl Series for Gaussian {
+    #[inline(always)]
+    fn next(&mut self) -> (Lanes, Lanes) {
+        let value = self.value;
+        for lane in 0..LANES {
+            self.value[lane] *= self.ratio[lane];
+            self.ratio[lane] *= self.grow;
+        }
+        (value, [1.0; LANES])
+    }
+}
+
+/// x/Γ and its step to the next block.
+struct Lorentzian {
+    value: Lanes,
+    grow: f64,
+    unit: f64,
+}
+
+impl Lorentzian {
+    #[inline(always)]
+    fn new(scale: f64, x: f64, step: f64) -> Self {
+        Self {
+            value: std::array::from_fn(|lane| (x + lane as f64 * step) / scale),
+            grow: LANES as f64 * step / scale,
+            unit: 1.0 / (PI * scale),
+        }
+    }
+}
+
+impl Series for Lorentzian {
+    #[inline(always)]
+    fn next(&mut self) -> (Lanes, Lanes) {
+        let value = self.value;
+        self.value = value.map(|t| t + self.grow);
+        ([self.unit; LANES], value.map(|t| 1.0 + t * t))
     }
 }
 

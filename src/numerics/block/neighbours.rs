@@ -6,8 +6,11 @@ use nalgebra::{DMatrix, SymmetricEigen};
 
 use super::{BlockChain, Ladder};
 
-/// Levels closer than this are separated inside their span.
-const GROUP: f64 = 5e-5;
+/// Levels closer than this may have to be separated inside their span.
+const NEAR: f64 = 5e-5;
+/// Neighbours are separated unless both residuals are this much smaller than their distance: the
+/// vectors are then as pure as the inverse of it.
+const PURE: f64 = 1e3;
 
 impl BlockChain {
     /// Gram-Schmidt, twice for rounding.
@@ -62,21 +65,23 @@ impl BlockChain {
     }
 }
 
-/// Ranges of two and more rising levels whose neighbours are closer than [`GROUP`].
-pub(super) fn groups(energies: impl Iterator<Item = f64>) -> Vec<Range<usize>> {
+/// Ranges of two and more rising levels, each given with its residual, that are too near to their
+/// neighbours to be pure.
+pub(super) fn groups(levels: impl Iterator<Item = (f64, f64)>) -> Vec<Range<usize>> {
     let mut groups = Vec::new();
-    let (mut start, mut count, mut last) = (0, 0, f64::NEG_INFINITY);
+    let (mut start, mut count, mut last) = (0, 0, (f64::NEG_INFINITY, 0.0));
     let mut close = |range: Range<usize>| {
         if range.len() > 1 {
             groups.push(range);
         }
     };
-    for (level, energy) in energies.enumerate() {
-        if energy - last >= GROUP {
+    for (level, (energy, residual)) in levels.enumerate() {
+        let distance = energy - last.0;
+        if distance >= NEAR || distance > PURE * f64::max(residual, last.1) {
             close(start..level);
             start = level;
         }
-        last = energy;
+        last = (energy, residual);
         count = level + 1;
     }
     close(start..count);

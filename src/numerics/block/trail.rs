@@ -267,8 +267,8 @@ impl Trail {
         energies: &mut [f64],
         residuals: &mut [f64],
     ) {
-        let rising = order.iter().map(|&lane| energies[lane]);
-        for group in groups(rising.take_while(|energy| energy.is_finite())) {
+        let rising = order.iter().map(|&lane| (energies[lane], residuals[lane]));
+        for group in groups(rising.take_while(|level| level.0.is_finite())) {
             let lanes = &order[group];
             let vector = |&lane: &usize| unload(&self.chunks[lane / LANES].next[0], lane % LANES);
             let (ladder, rest) = chain.separate(lanes.iter().map(vector).collect());
