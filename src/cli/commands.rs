@@ -5,14 +5,14 @@ use super::case::{Case, parameters, remark_on_results};
 use super::complaint::Complaint;
 use super::flags::{self, Flags};
 use super::outlet::{Outlet, print};
-use super::wishes::{Destinations, band, overrides, temperature_k};
+use super::wishes::{Destinations, Matrix, overrides, temperature_k};
 use crate::design::{Standing, check as findings_of};
 use crate::evaluation::Evaluation;
 use crate::materials::{Composition, Description, Parameters};
 use crate::profile::Profile;
 use crate::sheet::{self, Stamp, csv, json};
 use crate::structure::{Overrides, Substance, schema as file_schema};
-use crate::subbands::{Band, hamiltonian};
+use crate::subbands::{hamiltonian, valence_hamiltonian};
 use clap::CommandFactory as _;
 
 /// Room temperature, at which materials are described unless asked otherwise, K.
@@ -21,10 +21,7 @@ pub(super) const ROOM_K: f64 = 300.0;
 /// `stepwell levels FILE`.
 pub(super) fn levels(flags: &flags::Levels, outlet: &Outlet) -> Result<Ending, Complaint> {
     let overrides = overrides(&flags.conditions)?;
-    let band = flags
-        .matrix_of
-        .as_deref()
-        .map_or(Ok(Band::Electron), band)?;
+    let matrix = Matrix::from_words(flags.matrix_of.as_deref(), flags.at_k)?;
     let tables = [
         "levels",
         "transitions",
@@ -59,9 +56,18 @@ pub(super) fn levels(flags: &flags::Levels, outlet: &Outlet) -> Result<Ending, C
     destinations.write_tables(|| csv::levels(&evaluation), &stamp)?;
     destinations.write_figure(|| sheet::levels_figure(&evaluation, &stamp).svg())?;
     destinations.write_matrix(|| {
-        let nonparabolic = case.reading.stack.model.nonparabolic;
-        let matrix = hamiltonian(&evaluation.profile, &evaluation.bands, band, nonparabolic);
-        sheet::matrix_market(&matrix, band, &stamp)
+        let (profile, bands) = (&evaluation.profile, &evaluation.bands);
+        match matrix {
+            Matrix::Single(band) => {
+                let nonparabolic = case.reading.stack.model.nonparabolic;
+                let matrix = hamiltonian(profile, bands, band, nonparabolic);
+                sheet::matrix_market(&matrix, band, &stamp)
+            }
+            Matrix::Valence { sign, k_per_nm } => {
+                let block = valence_hamiltonian(profile, bands, k_per_nm, sign);
+                sheet::valence_matrix_market(&block, k_per_nm, matrix.word(), &stamp)
+            }
+        }
     })?;
     destinations.print(
         || json::levels(&evaluation, &stamp),

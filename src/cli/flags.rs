@@ -92,9 +92,15 @@ pub(super) struct Levels {
     /// Also write the matrix whose eigenvalues are the levels, as a Matrix Market file
     #[arg(long, value_name = "FILE.mtx")]
     pub(super) matrix: Option<PathBuf>,
-    /// The band of the matrix: electron, heavy or light
+    /// The band of the matrix: electron, heavy, light, valence or valence-mirror
+    ///
+    /// valence and valence-mirror are the two blocks of heavy, light and split-off holes mixed; in a
+    /// stack that is its own mirror image both have the same energies.
     #[arg(long, value_name = "BAND", requires = "matrix")]
     pub(super) matrix_of: Option<String>,
+    /// In-plane wave number of a valence matrix, 1/nm [default: 0]
+    #[arg(long, value_name = "K", requires = "matrix_of")]
+    pub(super) at_k: Option<f64>,
     /// Draw band edges and envelopes
     #[arg(long, value_name = "PATH.svg")]
     pub(super) figure: Option<PathBuf>,
@@ -351,6 +357,7 @@ Examples:
   stepwell levels my.toml --at 85C --json > hot.json
   stepwell levels my.toml --csv tables/
   stepwell levels my.toml --matrix electron.mtx
+  stepwell levels my.toml --matrix v.mtx --matrix-of valence --at-k 0.3
 
 Energies are in eV on one scale, holes as electron energies; wavelengths in nm
 in vacuum. Levels and transitions are without gap shrinkage; the gain peak is

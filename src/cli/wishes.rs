@@ -7,7 +7,7 @@ use crate::sheet::Stamp;
 use crate::sheet::csv::CsvTable;
 use crate::source::{nearest, one_of};
 use crate::structure::{Bands, Overrides, Refusal, check_magnitude};
-use crate::subbands::Band;
+use crate::subbands::{Band, LARGEST_WAVE_NUMBER_PER_NM};
 use crate::units::CELSIUS_ZERO_K;
 use std::path::{Path, PathBuf};
 
@@ -93,18 +93,62 @@ pub(super) fn bands(word: &str) -> Result<Bands, Complaint> {
     })
 }
 
-/// The band of `--matrix-of`.
-pub(super) fn band(word: &str) -> Result<Band, Complaint> {
-    one(
-        "--matrix-of",
-        word,
-        &[Band::Electron, Band::Heavy, Band::Light],
-        |band| match band {
-            Band::Electron => "electron",
-            Band::Heavy => "heavy",
-            Band::Light => "light",
-        },
-    )
+/// A matrix that `levels` can write.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub(super) enum Matrix {
+    /// Of one band.
+    Single(Band),
+    /// Of one of the two blocks of mixed valence bands, +1 or −1, at an in-plane wave number, 1/nm.
+    Valence { sign: f64, k_per_nm: f64 },
+}
+
+impl Matrix {
+    /// Its word for `--matrix-of`.
+    pub(super) fn word(self) -> &'static str {
+        match self {
+            Self::Single(Band::Electron) => "electron",
+            Self::Single(Band::Heavy) => "heavy",
+            Self::Single(Band::Light) => "light",
+            Self::Valence { sign, .. } if sign > 0.0 => "valence",
+            Self::Valence { .. } => "valence-mirror",
+        }
+    }
+
+    /// What `--matrix-of` and `--at-k` ask for.
+    pub(super) fn from_words(word: Option<&str>, at_k: Option<f64>) -> Result<Self, Complaint> {
+        let k_per_nm = at_k.unwrap_or(0.0);
+        if !(0.0..=LARGEST_WAVE_NUMBER_PER_NM).contains(&k_per_nm) {
+            return Err(
+                Complaint::usage(format!("--at-k {k_per_nm}: out of range")).with_remedy(format!(
+                    "a wave number in the plane from 0 to {LARGEST_WAVE_NUMBER_PER_NM} per nm"
+                )),
+            );
+        }
+        let known = [
+            Self::Single(Band::Electron),
+            Self::Single(Band::Heavy),
+            Self::Single(Band::Light),
+            Self::Valence {
+                sign: 1.0,
+                k_per_nm,
+            },
+            Self::Valence {
+                sign: -1.0,
+                k_per_nm,
+            },
+        ];
+        let matrix = word.map_or(Ok(known[0]), |word| {
+            one("--matrix-of", word, &known, Self::word)
+        })?;
+        if let (Self::Single(_), Some(_)) = (matrix, at_k) {
+            return Err(Complaint::usage(format!(
+                "--at-k: the matrix of `{}` has no wave number in the plane",
+                matrix.word()
+            ))
+            .with_remedy("leave it out, or take `--matrix-of valence`"));
+        }
+        Ok(matrix)
+    }
 }
 
 /// One of some words.

@@ -32,7 +32,7 @@ pub use chart::{chart, chart_part};
 pub use findings::findings;
 pub use levels::levels;
 pub use materials::{descriptions, families};
-pub use matrix::matrix_market;
+pub use matrix::{matrix_market, valence_matrix_market};
 pub use picture::{chart_figure, levels_figure, rocking_figure, spectrum_figure, weigh_figure};
 pub use reconcile::{Wafer, reconcile};
 pub use remark::{complaint, remark};

@@ -3,7 +3,10 @@
 mod mixed;
 mod single;
 
-pub use mixed::{Dipole, MixedBands, Slice, ZoneCentre, interval, mixed};
+pub use mixed::{
+    Dipole, LARGEST_WAVE_NUMBER_PER_NM, MixedBands, Slice, ZoneCentre, interval, mixed,
+    valence_hamiltonian,
+};
 pub use single::{Band, Hamiltonian, Level, Overlaps, SingleBands, hamiltonian, single};
 
 use crate::profile::{Cells, Profile};

@@ -12,7 +12,7 @@ const COARSEST_NM: f64 = 0.5;
 
 /// The chain of a block on a grid, hole energies upwards.
 fn chain(cells: &[Cells], k_per_nm: f64, sign: f64) -> BlockChain {
-    let mut chain = BlockChain::new(
+    let chain = BlockChain::new(
         cells
             .iter()
             .map(|cell| {
@@ -144,7 +144,7 @@ fn no_state_lies_above_the_highest_edge() {
             for (k_per_nm, sign) in
                 (0..=8).flat_map(|step| [1.0, -1.0].map(|sign| (0.25 * f64::from(step), sign)))
             {
-                let mut chain = chain(&cells, k_per_nm, sign);
+                let chain = chain(&cells, k_per_nm, sign);
                 assert_eq!(
                     chain.count_below(edge - 1e-9),
                     0,

@@ -7,7 +7,7 @@ use nalgebra::{DMatrix, SymmetricEigen};
 use super::{BlockChain, Ladder};
 
 /// Levels closer than this may have to be separated inside their span.
-const NEAR: f64 = 5e-5;
+pub(super) const NEAR: f64 = 5e-5;
 /// Neighbours are separated unless both residuals are this much smaller than their distance: the
 /// vectors are then as pure as the inverse of it.
 const PURE: f64 = 1e3;

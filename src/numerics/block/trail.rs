@@ -1,16 +1,21 @@
 //! States followed from problem to neighbouring problem.
 
-use super::kernel::{Columns, combine, products, projections};
-use super::neighbours::groups;
+use std::ops::Range;
+
+use super::kernel::{Columns, Step, combine, products, projections};
+use super::neighbours::{NEAR, groups};
 use super::{BlockChain, LANES, Ladder, Lanes, load, unload};
 
 /// Largest residual of an accepted state: the energy is good to its square over the distance of the
 /// next level.
 const LARGEST_RESIDUAL: f64 = 3e-6;
+/// Largest share of any other state in the vector of an accepted one: its residual over the distance
+/// of that state.
+const LARGEST_SHARE: f64 = 1e-4;
 /// How far above the highest state asked for its shift stands at least.
 const LEAST_MARGIN: f64 = 4.0 * LARGEST_RESIDUAL;
 /// Steps of inverse iteration that a slice may take.
-const ROUNDS: usize = 6;
+const ROUNDS: usize = 4;
 /// Problems that the next one is extrapolated from.
 const MEMORY: usize = 3;
 
@@ -149,55 +154,59 @@ impl Trail {
             Hold::Character => self.states,
         };
         let mut order = self.order.clone();
-        for round in 0..ROUNDS {
-            sort(&mut order, &energies);
-            let surprise = if round == 0 { self.surprise } else { 0.0 };
+        let mut residuals = vec![f64::INFINITY; self.states];
+        let mut pending: Vec<usize> = (0..self.states).collect();
+        sort(&mut order, &energies);
+        let watched = match hold {
+            Hold::Lowest(_) => watch(&order, &energies, required, self.surprise),
+            Hold::Character => None,
+        };
+        let mut counted = None;
+        for _ in 0..ROUNDS {
             let mut shifts = energies.clone();
-            let watch = match hold {
-                Hold::Lowest(_) => watch(&order, &energies, required, surprise),
-                Hold::Character => None,
-            };
-            if let Some((lane, shift)) = watch {
+            if let (Some((lane, shift)), None) = (watched, counted) {
                 shifts[lane] = shift;
             }
-            let (mut residuals, below) = self.sweep(chain, &shifts, &mut energies);
-            let counted = watch.map(|(lane, shift)| (shift, below[lane]));
+            let below = self.sweep(chain, &pending, &shifts, &mut energies, &mut residuals);
+            counted = counted.or(watched.map(|(lane, shift)| (shift, below[lane])));
             sort(&mut order, &energies);
-            let found = &order[..required];
-            if !found.iter().all(|&lane| energies[lane].is_finite()) {
-                return false;
-            }
-            if found
-                .iter()
-                .any(|&lane| residuals[lane] >= LARGEST_RESIDUAL)
-            {
-                continue;
-            }
             self.separate(chain, &order, &mut energies, &mut residuals);
             sort(&mut order, &energies);
-            let found = &order[..required];
-            if found
-                .iter()
-                .any(|&lane| residuals[lane] >= LARGEST_RESIDUAL)
-            {
-                continue;
-            }
-            let rising = |pair: &[usize]| energies[pair[1]] > energies[pair[0]];
-            let distinct = found.windows(2).all(rising) && energies[found[0]] > floor;
-            let complete = match hold {
-                Hold::Lowest(_) => complete(chain, &order, &energies, required, counted),
-                Hold::Character => chain.count_below(floor) == 0,
+            let held = apart(&order, &energies, required);
+            let settled = |rank: usize| {
+                residuals[order[rank]] < allowed(rank, |rank| energies[order[rank]], self.states)
             };
-            if !(distinct && complete) {
-                return false;
+            let unsettled = (0..held).filter(|&rank| !settled(rank));
+            pending = unsettled.map(|rank| order[rank]).collect();
+            if pending.is_empty() || !energies[order[0]].is_finite() {
+                break;
             }
-            let highest = found[required - 1];
-            self.surprise = (energies[highest] - forecast[highest]).abs();
-            self.order = order;
-            self.accept(chain, at, energies);
-            return true;
         }
-        false
+        let held = apart(&order, &energies, required);
+        let rising = |pair: &[usize]| energies[pair[1]] > energies[pair[0]];
+        let found = pending.is_empty() && order[..held].windows(2).all(rising);
+        let certified = match hold {
+            Hold::Character => found && chain.count_below(floor) == 0,
+            Hold::Lowest(_) => {
+                (found && complete(chain, &order, &energies, held, counted))
+                    || self.mend(
+                        chain,
+                        &mut order,
+                        &mut energies,
+                        &residuals,
+                        required,
+                        floor,
+                    )
+            }
+        };
+        if !(certified && energies[order[0]] > floor) {
+            return false;
+        }
+        let highest = order[required - 1];
+        self.surprise = (energies[highest] - forecast[highest]).abs();
+        self.order = order;
+        self.accept(chain, at, energies);
+        true
     }
 
     /// Continues the slices to a parameter: the vectors into the workspace, the energies by lane.
@@ -234,29 +243,55 @@ impl Trail {
             .collect()
     }
 
-    /// One step of inverse iteration for every state: the energies move on; returns the residuals and
-    /// the numbers of levels below the shifts.
+    /// One step of inverse iteration for the states of some lanes: energies and residuals move on;
+    /// returns the numbers of levels below the shifts.
     fn sweep(
         &mut self,
         chain: &mut BlockChain,
+        pending: &[usize],
         shifts: &[f64],
         energies: &mut [f64],
-    ) -> (Vec<f64>, Vec<usize>) {
-        let mut residuals = Vec::with_capacity(self.states);
-        let mut below = Vec::with_capacity(self.states);
-        let chunks = self.chunks.iter_mut().zip(shifts.chunks(LANES));
-        for ((chunk, shifts), energies) in chunks.zip(energies.chunks_mut(LANES)) {
-            let lanes = std::array::from_fn(|lane| shifts[lane.min(shifts.len() - 1)]);
-            let [from, to] = &mut chunk.next;
-            let step = chain.step(&lanes, from, to);
-            std::mem::swap(from, to);
-            for (lane, energy) in energies.iter_mut().enumerate() {
-                *energy = lanes[lane] + step.step[lane];
-                residuals.push(step.residual[lane]);
-                below.push(step.below[lane]);
+        residuals: &mut [f64],
+    ) -> Vec<usize> {
+        let mut below = vec![0; self.states];
+        let mut take = |lanes: &[usize], step: &Step| {
+            for (place, &lane) in lanes.iter().enumerate() {
+                energies[lane] = shifts[lane] + step.step[place];
+                residuals[lane] = step.residual[place];
+                below[lane] = step.below[place];
+            }
+        };
+        if pending.len() == self.states {
+            for (chunk, lanes) in self.chunks.iter_mut().zip(pending.chunks(LANES)) {
+                let [from, to] = &mut chunk.next;
+                take(lanes, &chain.step(&spread(lanes, shifts), from, to));
+                std::mem::swap(from, to);
+            }
+            return below;
+        }
+        // Few are left: they are packed together.
+        let (mut from, mut to) = (chain.columns(), chain.columns());
+        for lanes in pending.chunks(LANES) {
+            for place in 0..LANES {
+                let lane = lanes[place.min(lanes.len() - 1)];
+                let own = &self.chunks[lane / LANES].next[0];
+                for (to, from) in from.iter_mut().zip(own) {
+                    for row in 0..3 {
+                        to[row][place] = from[row][lane % LANES];
+                    }
+                }
+            }
+            take(lanes, &chain.step(&spread(lanes, shifts), &from, &mut to));
+            for (place, &lane) in lanes.iter().enumerate() {
+                let own = &mut self.chunks[lane / LANES].next[0];
+                for (to, from) in own.iter_mut().zip(&to) {
+                    for row in 0..3 {
+                        to[row][lane % LANES] = from[row][place];
+                    }
+                }
             }
         }
-        (residuals, below)
+        below
     }
 
     /// Separates near neighbours among the vectors in the workspace.
@@ -279,6 +314,117 @@ impl Trail {
                 load(&mut self.chunks[lane / LANES].next[0], lane % LANES, vector);
             }
         }
+    }
+
+    /// Finds by counts where levels were missed between the settled ones, searches them from nothing,
+    /// and gives them the lanes of states that met others. Returns whether the lowest levels, at least
+    /// those required, are then complete.
+    fn mend(
+        &mut self,
+        chain: &mut BlockChain,
+        order: &mut [usize],
+        energies: &mut [f64],
+        residuals: &[f64],
+        required: usize,
+        floor: f64,
+    ) -> bool {
+        let kept = self.different(chain, order, energies, residuals);
+        let segments = segments(kept.iter().map(|&lane| energies[lane]), floor);
+        let mut counts = Vec::with_capacity(segments.len());
+        for part in segments.chunks(LANES) {
+            let points = std::array::from_fn(|place| part[place.min(part.len() - 1)].point);
+            counts.extend_from_slice(&chain.counts_below(&points)[..part.len()]);
+        }
+        let (mut lanes, mut fresh) = (Vec::new(), Ladder::default());
+        let (mut low, mut below) = (floor, chain.count_below(floor));
+        if below != 0 {
+            return false;
+        }
+        for (segment, count) in segments.iter().zip(counts) {
+            let own = &kept[segment.levels.clone()];
+            if count < below + own.len() {
+                return false;
+            }
+            if count == below + own.len() {
+                lanes.extend_from_slice(own);
+            } else {
+                let Ok(found) = chain.levels(below..count, low) else {
+                    return false;
+                };
+                fresh.energies.extend(found.energies);
+                fresh.vectors.extend(found.vectors);
+            }
+            (low, below) = (segment.point, count);
+            if below >= required {
+                break;
+            }
+        }
+        if below < required {
+            let Ok(found) = chain.levels(below..required, low) else {
+                return false;
+            };
+            fresh.energies.extend(found.energies);
+            fresh.vectors.extend(found.vectors);
+            below = required;
+        }
+        if below > self.states {
+            return false;
+        }
+        let free: Vec<usize> = (0..self.states)
+            .filter(|lane| !lanes.contains(lane))
+            .collect();
+        for (&lane, (energy, vector)) in free.iter().zip(fresh.energies.iter().zip(&fresh.vectors))
+        {
+            load(&mut self.chunks[lane / LANES].next[0], lane % LANES, vector);
+            energies[lane] = *energy;
+        }
+        // What is left only stands by, above all that is known, as it was before.
+        let known = fresh.energies.iter().copied();
+        let highest = known
+            .chain(lanes.iter().map(|&lane| energies[lane]))
+            .fold(floor, f64::max);
+        let mut next = highest;
+        for &lane in &free[fresh.energies.len()..] {
+            let beyond = is_settled(residuals[lane]) && energies[lane] > highest;
+            if !beyond {
+                next += 8.0 * LEAST_MARGIN;
+                energies[lane] = next;
+                self.unbroken[lane] = 0;
+                let chunk = &mut self.chunks[lane / LANES];
+                let lane = lane % LANES;
+                for (to, from) in chunk.next[0].iter_mut().zip(&chunk.slices[MEMORY - 1]) {
+                    for row in 0..3 {
+                        to[row][lane] = from[row][lane];
+                    }
+                }
+            }
+        }
+        sort(order, energies);
+        let distinct = |pair: &[usize]| energies[pair[1]] > energies[pair[0]];
+        order[..below].windows(2).all(distinct)
+    }
+
+    /// Lanes by rising energy that have settled, each on a state of its own.
+    fn different(
+        &self,
+        chain: &BlockChain,
+        order: &[usize],
+        energies: &[f64],
+        residuals: &[f64],
+    ) -> Vec<usize> {
+        let vector = |lane: usize| unload(&self.chunks[lane / LANES].next[0], lane % LANES);
+        let mut kept: Vec<usize> = Vec::with_capacity(self.states);
+        for &lane in order {
+            if !(energies[lane].is_finite() && is_settled(residuals[lane])) {
+                continue;
+            }
+            let near = |&&other: &&usize| energies[lane] - energies[other] < 2.0 * LARGEST_RESIDUAL;
+            let same = |&other: &usize| chain.product(&vector(lane), &vector(other)).abs() > 0.5;
+            if !kept.iter().rev().take_while(near).any(same) {
+                kept.push(lane);
+            }
+        }
+        kept
     }
 
     /// Takes the workspace as the latest slice, in the sense of the one before it.
@@ -312,6 +458,11 @@ impl Trail {
     }
 }
 
+/// The shifts of some lanes, free places filled with the last of them.
+fn spread(lanes: &[usize], shifts: &[f64]) -> Lanes {
+    std::array::from_fn(|place| shifts[lanes[place.min(lanes.len() - 1)]])
+}
+
 /// Sorts lanes by energy; what is not a number stands last.
 fn sort(order: &mut [usize], energies: &[f64]) {
     let key = |lane: usize| {
@@ -324,19 +475,75 @@ fn sort(order: &mut [usize], energies: &[f64]) {
     order.sort_by(|&a, &b| key(a).total_cmp(&key(b)));
 }
 
-/// The lane of the highest state asked for with a shift above its forecast, but nearer to it than to
-/// the next state; `None` where there is no room.
+/// The residual that a state may have: small beside its distance from others. Those too near for that
+/// have been separated in their span.
+fn allowed(rank: usize, energy: impl Fn(usize) -> f64, states: usize) -> f64 {
+    let own = energy(rank);
+    let far = |other: &f64| *other >= NEAR;
+    let above = (rank + 1..states)
+        .map(|other| energy(other) - own)
+        .find(far);
+    let below = (0..rank).rev().map(|other| own - energy(other)).find(far);
+    let distance = above
+        .unwrap_or(f64::INFINITY)
+        .min(below.unwrap_or(f64::INFINITY));
+    LARGEST_RESIDUAL.min(LARGEST_SHARE * distance)
+}
+
+fn is_settled(residual: f64) -> bool {
+    residual < LARGEST_RESIDUAL
+}
+
+/// Levels that a count can't tell apart, and a point above them.
+struct Segment {
+    levels: Range<usize>,
+    point: f64,
+}
+
+/// Cuts rising levels wherever there is room for a count between them.
+fn segments(energies: impl Iterator<Item = f64>, floor: f64) -> Vec<Segment> {
+    let energies: Vec<f64> = energies.collect();
+    let mut segments = Vec::new();
+    let (mut start, mut low) = (0, floor);
+    for end in 1..=energies.len() {
+        let last = energies[end - 1];
+        let room = energies.get(end).map_or(f64::INFINITY, |next| next - last);
+        if room > 4.0 * LARGEST_RESIDUAL {
+            let point = last + (0.5 * room).min(LEAST_MARGIN);
+            if last > low {
+                segments.push(Segment {
+                    levels: start..end,
+                    point,
+                });
+                (start, low) = (end, point);
+            }
+        }
+    }
+    segments
+}
+
+/// How many of the lowest states, at least those required, stand apart from the next one: where
+/// states required and not required meet, both are held.
+fn apart(order: &[usize], energies: &[f64], required: usize) -> usize {
+    (required..order.len())
+        .find(|&next| energies[order[next]] - energies[order[next - 1]] > 4.0 * LEAST_MARGIN)
+        .unwrap_or(order.len())
+}
+
+/// The lane of the highest state to be held with a shift above its forecast, but nearer to it than
+/// to its neighbours; `None` where there is no room.
 fn watch(
     order: &[usize],
     energies: &[f64],
     required: usize,
     surprise: f64,
 ) -> Option<(usize, f64)> {
-    let lane = order[required - 1];
+    let held = apart(order, energies, required);
+    let lane = order[held - 1];
     let room = order
-        .get(required)
+        .get(held)
         .map_or(f64::INFINITY, |&next| energies[next] - energies[lane]);
-    let below = required
+    let below = held
         .checked_sub(2)
         .map_or(f64::INFINITY, |at| energies[lane] - energies[order[at]]);
     let margin = (2.0 * surprise)
@@ -345,23 +552,23 @@ fn watch(
     (margin >= LEAST_MARGIN).then(|| (lane, energies[lane] + margin))
 }
 
-/// Whether exactly the states asked for lie below a point just above them.
+/// Whether exactly so many states lie below a point just above them.
 fn complete(
     chain: &BlockChain,
     order: &[usize],
     energies: &[f64],
-    required: usize,
+    held: usize,
     counted: Option<Count>,
 ) -> bool {
-    let last = energies[order[required - 1]];
-    let (point, count) = counted
-        .filter(|&(point, _)| point > last + LARGEST_RESIDUAL)
-        .unwrap_or_else(|| {
-            let point = match order.get(required).map(|&next| energies[next]) {
-                Some(next) if next - last > LEAST_MARGIN => 0.5 * (last + next),
-                _ => last + LEAST_MARGIN,
-            };
-            (point, chain.count_below(point))
-        });
-    point > last + LARGEST_RESIDUAL && count == required
+    let last = energies[order[held - 1]];
+    let next = order
+        .get(held)
+        .map_or(f64::INFINITY, |&lane| energies[lane]);
+    let count = counted
+        .filter(|&(point, _)| point > last + LARGEST_RESIDUAL && point < next)
+        .map_or_else(
+            || chain.count_below(last + LEAST_MARGIN),
+            |(_, count)| count,
+        );
+    count == held
 }

@@ -3,12 +3,18 @@
 use super::centre::Centre;
 use super::form::Grid;
 use super::{Dipole, Projection, Slice, uncertified};
-use crate::numerics::block::{Hold, LANES, Ladder, Trail};
+use crate::numerics::block::{BlockChain, Hold, Ladder, Trail};
 use crate::subbands::Uncertified;
 
 /// Steps of the in-plane wave number, 1/nm, and up to where each is taken: small enough to follow
 /// states from one to the next, and to interpolate between.
-const WAVE_NUMBER_STEPS_PER_NM: [(f64, f64); 3] = [(0.0125, 0.5), (0.025, 1.2), (0.05, 2.0)];
+const WAVE_NUMBER_STEPS_PER_NM: [(f64, f64); 3] = [
+    (0.0125, 0.5),
+    (0.025, 1.2),
+    (0.05, LARGEST_WAVE_NUMBER_PER_NM),
+];
+/// Where the in-plane wave numbers end, 1/nm.
+pub const LARGEST_WAVE_NUMBER_PER_NM: f64 = 2.0;
 
 /// The in-plane wave numbers that may be visited, 1/nm, from zero.
 pub(super) fn wave_numbers() -> Vec<f64> {
@@ -110,13 +116,10 @@ pub(super) fn follow(
 ) -> Result<Track, Uncertified> {
     let count = centre.states.len();
     let start = &centre.ladders[which];
-    // Lanes that states leave free carry those next to them, to take over where characters are
-    // exchanged.
-    let carried = count.next_multiple_of(LANES).min(start.energies.len());
     let picked: Vec<usize> = if centre.by_character {
         centre.places.iter().map(|place| place[which]).collect()
     } else {
-        (0..carried).collect()
+        (0..start.energies.len()).collect()
     };
     let hold = if centre.by_character {
         Hold::Character
@@ -157,34 +160,18 @@ pub(super) fn follow(
         let (from, to) = (pair[0], pair[1]);
         grid.set(&mut chain, to, sign);
         if !trail.step(&mut chain, to, hold, grid.floor) {
-            // Smaller and smaller steps, then from nothing where even these lose the states.
-            let crept = [2u32, 4, 8].into_iter().find_map(|parts| {
-                let mut crept = trail.clone();
-                (1..=parts)
-                    .all(|part| {
-                        let k = from + (to - from) * f64::from(part) / f64::from(parts);
-                        grid.set(&mut chain, k, sign);
-                        crept.step(&mut chain, k, hold, grid.floor)
-                    })
-                    .then_some(crept)
-            });
-            grid.set(&mut chain, to, sign);
-            trail = match crept {
-                Some(crept) => crept,
-                None if centre.by_character => {
-                    return Err(Uncertified {
-                        band: "valence in-plane",
-                        level: 1,
-                        energy_ev: -trail.energies().next().unwrap_or(f64::NAN),
-                    });
-                }
-                None => {
-                    let ladder = chain
-                        .lowest(trail.states(), grid.floor)
-                        .or_else(|_| chain.lowest(count, grid.floor))
-                        .map_err(|error| uncertified(error, to))?;
-                    Trail::new(&chain, &ladder, to)
-                }
+            trail = if centre.by_character {
+                creep(grid, sign, &trail, &mut chain, (from, to)).ok_or_else(|| Uncertified {
+                    band: "valence in-plane",
+                    level: 1,
+                    energy_ev: -trail.energies().next().unwrap_or(f64::NAN),
+                })?
+            } else {
+                let ladder = chain
+                    .lowest(trail.states(), grid.floor)
+                    .or_else(|_| chain.lowest(count, grid.floor))
+                    .map_err(|error| uncertified(error, to))?;
+                Trail::new(&chain, &ladder, to)
             };
         }
         track.push(slice(&trail));
@@ -197,6 +184,28 @@ pub(super) fn follow(
         }
     }
     Ok(track)
+}
+
+/// Follows states by their character in smaller and smaller steps; `None` if even these lose them.
+fn creep(
+    grid: &Grid,
+    sign: f64,
+    trail: &Trail,
+    chain: &mut BlockChain,
+    (from, to): (f64, f64),
+) -> Option<Trail> {
+    let crept = [2u32, 4, 8].into_iter().find_map(|parts| {
+        let mut crept = trail.clone();
+        (1..=parts)
+            .all(|part| {
+                let k_per_nm = from + (to - from) * f64::from(part) / f64::from(parts);
+                grid.set(chain, k_per_nm, sign);
+                crept.step(chain, k_per_nm, Hold::Character, grid.floor)
+            })
+            .then_some(crept)
+    });
+    grid.set(chain, to, sign);
+    crept
 }
 
 #[cfg(test)]

@@ -2,10 +2,13 @@
 
 use super::form::Grid;
 use super::{ZoneCentre, uncertified};
-use crate::numerics::block::{BlockChain, Ladder};
+use crate::numerics::block::{BlockChain, LANES, Ladder};
 use crate::profile::Profile;
 use crate::subbands::single::limit;
 use crate::subbands::{Band, CLUSTER_EV, NEAR_EDGE_EV, SingleBands, Uncertified};
+
+/// States carried beyond those that may belong to the wells, at least.
+const LEAST_GUARDS: usize = 2;
 
 /// Zone-centre states that belong to the wells, and the ladders to follow from.
 pub(super) struct Centre {
@@ -54,6 +57,9 @@ impl Centre {
             (grids[2].floor, -heavy_edge.min(light_edge) + 1e-3)
         };
         let wanted = chains[2].count_below(low)..chains[2].count_below(high);
+        // States beyond them fill the lanes of the last sweep, to take over where characters are
+        // exchanged.
+        let carried = (wanted.end + LEAST_GUARDS).next_multiple_of(LANES);
         let ladders: Vec<Ladder> = chains
             .iter_mut()
             .zip(grids)
@@ -62,7 +68,7 @@ impl Centre {
                     // A coarser grid may put the first of them a little lower.
                     chain.levels(wanted.clone(), low - 0.05)
                 } else {
-                    chain.lowest(wanted.end, grid.floor)
+                    chain.lowest(carried, grid.floor)
                 }
                 .map_err(|error| uncertified(error, 0.0))
             })

@@ -3,8 +3,11 @@
 mod along;
 mod centre;
 mod form;
+mod matrix;
 
+pub use along::LARGEST_WAVE_NUMBER_PER_NM;
 pub use form::interval;
+pub use matrix::valence_hamiltonian;
 
 use rayon::prelude::*;
 
