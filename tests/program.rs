@@ -814,6 +814,87 @@ fn the_matrix_has_the_levels_as_eigenvalues() {
     }
 }
 
+/// Eigenvalues below an energy of a symmetric matrix given by its lower band, `band[row][distance]`:
+/// negative pivots of its factorisation.
+fn count_below_band(mut band: Vec<Vec<f64>>, energy: f64) -> usize {
+    let width = band[0].len();
+    let mut count = 0;
+    for at in 0..band.len() {
+        let pivot = band[at][0] - energy;
+        count += usize::from(pivot < 0.0);
+        for row in at + 1..(at + width).min(band.len()) {
+            let factor = band[row][row - at] / pivot;
+            for column in at + 1..=row {
+                let upper = band[column][column - at];
+                band[row][row - column] -= factor * upper;
+            }
+        }
+    }
+    count
+}
+
+#[test]
+fn the_valence_matrix_has_the_dispersion_as_eigenvalues() {
+    let folder = folder();
+    let document = document(&["levels", TENSILE, "--json", "--quiet"]);
+    let dispersion = document["dispersion"].as_array().expect("mixed bands");
+    for (block, k_per_nm) in [("valence", 0.0), ("valence", 0.3), ("valence-mirror", 0.3)] {
+        let path = shown(&folder.path().join(format!("{block}-{k_per_nm}.mtx")));
+        let at_k = k_per_nm.to_string();
+        let words = ["levels", TENSILE, "--quiet", "--matrix", &path];
+        result(&[&words[..], &["--matrix-of", block, "--at-k", &at_k]].concat());
+        let content = fs::read_to_string(&path).expect("written");
+        let mut lines = content.lines().filter(|line| !line.starts_with('%'));
+        let size: usize = lines
+            .next()
+            .and_then(|line| line.split(' ').next())
+            .and_then(|number| number.parse().ok())
+            .expect("the size");
+        let mut band = vec![vec![0.0; 6]; size];
+        for line in lines {
+            let parts: Vec<f64> = line
+                .split(' ')
+                .map(|it| it.parse().expect("a number"))
+                .collect();
+            let (row, column) = (parts[0] as usize - 1, parts[1] as usize - 1);
+            band[row][row - column] = parts[2];
+        }
+        let slice = dispersion
+            .iter()
+            .find(|slice| (slice["k_per_nm"].as_f64().expect("k") - k_per_nm).abs() < 1e-9)
+            .expect("a slice");
+        let level = |state: usize| slice["energy_ev"][state].as_f64().expect("a number");
+        assert!(level(0) - level(1) > 1e-3, "the two highest stand apart");
+        // The finest grid alone, before extrapolation, is good to 2e-4 eV here.
+        for state in 0..2 {
+            for (energy, above) in [
+                (level(state) + 2e-4, state),
+                (level(state) - 2e-4, state + 1),
+            ] {
+                let count = count_below_band(band.clone(), energy);
+                assert_eq!(
+                    size - count,
+                    above,
+                    "{block} at {k_per_nm}/nm, state {state}"
+                );
+            }
+        }
+    }
+    let bad = [
+        (["valence", "--at-k", "2.5"], "0 to 2"),
+        (["valence", "--at-k", "-0.1"], "0 to 2"),
+        (["valence", "--at-k", "nan"], "0 to 2"),
+        (["heavy", "--at-k", "0.1"], "--matrix-of valence"),
+    ];
+    let path = shown(&folder.path().join("never.mtx"));
+    for (words, wanted) in bad {
+        let start = ["levels", TENSILE, "--matrix", &path, "--matrix-of"];
+        let (code, errors) = refusal(&[&start[..], &words[..]].concat());
+        assert!(code == 2 && errors.contains(wanted), "{code} {errors}");
+        assert!(!folder.path().join("never.mtx").exists());
+    }
+}
+
 #[test]
 fn figures_are_documents_of_their_own() {
     let folder = folder();

@@ -171,3 +171,49 @@ pub(super) fn one_of_equal_wells(stack: &Stack, bands: &SingleBands) -> Option<(
     one.layers.drain(first + 1..=last);
     Some((wells, one))
 }
+
+#[cfg(test)]
+mod tests {
+    use crate::evaluation::Evaluation;
+    use crate::materials::Parameters;
+    use crate::structure::{Lineshape, Overrides, read};
+
+    /// Gain is zero exactly at the quasi-Fermi splitting, with shrinkage and without, whatever the
+    /// line, and changes its sign there.
+    #[test]
+    fn gain_of_mixed_bands_is_zero_at_the_splitting() {
+        const TEXT: &str = "
+            format = 1
+            layers = [
+              { role = 'barrier', material = 'GaAs', thickness_nm = 60 },
+              { role = 'well', material = 'In0.2Ga0.8As', thickness_nm = 8 },
+              { role = 'barrier', material = 'GaAs', thickness_nm = 60 },
+            ]
+            [substrate]
+            material = 'GaAs'
+            [model]
+            bands = 'mixed'
+        ";
+        let parameters = Parameters::shipped();
+        let mut stack = read(TEXT, &parameters, &Overrides::default())
+            .expect("a structure")
+            .stack;
+        for lineshape in Lineshape::ALL {
+            stack.model.lineshape = lineshape;
+            let evaluation = Evaluation::new(&stack, &parameters).expect("levels");
+            for (density_cm3, lowering_ev) in [(1.6e18, 0.0), (3e18, 0.046)] {
+                let occupation =
+                    evaluation.occupation(&evaluation.filling(density_cm3), lowering_ev);
+                let splitting = occupation.splitting_ev();
+                let gains = |photon_ev| {
+                    let point = evaluation.emitter.point(&occupation, photon_ev);
+                    (point.te_gain_cm, point.tm_gain_cm)
+                };
+                assert_eq!(gains(splitting), (0.0, 0.0), "{lineshape:?} {density_cm3}");
+                let (below, above) = (gains(splitting - 1e-6), gains(splitting + 1e-6));
+                assert!(below.0 > 0.0 && above.0 < 0.0, "{below:?} {above:?}");
+                assert!(below.1 > 0.0 && above.1 < 0.0, "{below:?} {above:?}");
+            }
+        }
+    }
+}

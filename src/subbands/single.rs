@@ -417,7 +417,7 @@ fn levels(
             }
         });
     let in_field = profile.slope_ev_nm != 0.0;
-    Ok(found
+    let mut levels: Vec<Level> = found
         .filter(|level| {
             if in_field {
                 level.in_wells > 0.5
@@ -429,7 +429,10 @@ fn levels(
             near_edge: !in_field && (limit - band.sign() * level.energy_ev) < NEAR_EDGE_EV,
             ..level
         })
-        .collect())
+        .collect();
+    // Levels of far wells nearer to each other than the grids are may cross in the extrapolation.
+    levels.sort_by(|a, b| (band.sign() * a.energy_ev).total_cmp(&(band.sign() * b.energy_ev)));
+    Ok(levels)
 }
 
 /// What follows from an envelope.

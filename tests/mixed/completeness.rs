@@ -1,7 +1,8 @@
 //! No state is missed, none is found twice, none is spurious, and errors fall as they should.
 
 use crate::hamiltonian::dense;
-use crate::recipe::{BARRIER, STEP, WELL, barrier, read, shipped, text, well};
+use crate::recipe::{BARRIER, Random, STEP, WELL, barrier, read, shipped, solved, text, well};
+use rayon::prelude::*;
 use stepwell::materials::Parameters;
 use stepwell::numerics::block::{BlockChain, Hold, Trail};
 use stepwell::profile::{Cells, Profile};
@@ -85,6 +86,65 @@ fn states_of_every_wave_number_are_those_of_a_dense_solver() {
     }
 }
 
+/// The dispersion that the program follows from wave number to wave number is what a search from
+/// nothing finds at each of them.
+#[test]
+fn the_dispersion_is_what_a_search_from_nothing_finds() {
+    const NEAR_EV: f64 = 1e-3;
+    let layers = [
+        barrier(60.0, BARRIER),
+        well(9.0, WELL),
+        barrier(2.5, BARRIER),
+        well(5.0, STEP),
+        barrier(60.0, BARRIER),
+    ];
+    let stack = read(&text(&layers, ""));
+    solved(&stack, 0.12, |profile, bands, states| {
+        let grids: Vec<Vec<Cells>> = (0..8)
+            .map(|halvings| profile.grid(COARSEST_NM, halvings))
+            .collect();
+        let nodes = bands.nodes.positions_nm.len();
+        let finest = grids
+            .iter()
+            .position(|cells| cells.iter().map(|cell| cell.intervals).sum::<usize>() == nodes + 1)
+            .expect("the grid of the envelopes");
+        let count = states.zone_centre.len();
+        assert!(count > 4 && states.blocks.len() == 2 && states.k_per_nm.len() > 40);
+        let (mut compared, mut crowded) = (0, 0);
+        for at in (1..states.k_per_nm.len()).step_by(9) {
+            let k_per_nm = states.k_per_nm[at];
+            for (block, sign) in states.blocks.iter().zip([1.0, -1.0]) {
+                let [coarse, fine] = [finest - 1, finest].map(|grid| {
+                    chain(&grids[grid], k_per_nm, sign)
+                        .lowest(count + 1, highest_edge(&grids[grid]) - 1e-9)
+                        .expect("certified")
+                        .energies
+                });
+                for (state, got) in block[at].energy_ev.iter().enumerate() {
+                    // Neighbours nearer than the grids are to each other may cross between these:
+                    // their order then says little.
+                    let alone = |other: usize| {
+                        let distance = (fine[other] - fine[state]).abs();
+                        let moved = |state: usize| (fine[state] - coarse[state]).abs();
+                        distance > NEAR_EV + 4.0 * moved(state).max(moved(other))
+                    };
+                    if !(alone(state + 1) && (state == 0 || alone(state - 1))) {
+                        crowded += 1;
+                        continue;
+                    }
+                    compared += 1;
+                    let want = -(fine[state] + (fine[state] - coarse[state]) / 3.0);
+                    assert!(
+                        (got - want).abs() < 1e-7,
+                        "state {state} of block {sign} at {k_per_nm}/nm: {got} {want}"
+                    );
+                }
+            }
+        }
+        assert!(compared > 2 * crowded, "{compared} compared, {crowded} not");
+    });
+}
+
 /// Raw energies converge with the square of the step, extrapolated ones with its fourth power, at
 /// zero wave number and far from it.
 #[test]
@@ -154,4 +214,90 @@ fn no_state_lies_above_the_highest_edge() {
             }
         }
     }
+}
+
+/// Five hundred random stacks, strained, of up to three wells: everything is certified, heavy holes
+/// at zero wave number are those of the single band, and states keep their order.
+#[test]
+fn five_hundred_random_stacks_are_certified() {
+    let parameters = Parameters::shipped();
+    let mut random = Random(7);
+    let stacks: Vec<_> = (0..500).map(|_| random.layers()).collect();
+    let certify = |(number, layers): (usize, &Vec<_>)| {
+        let mut slices_seen = 0;
+        let file = text(layers, "");
+        let stack = read(&file);
+        let profile = Profile::new(&stack, &parameters).expect("wells between barriers");
+        let bands = stepwell::subbands::single(&profile, true).expect("certified levels");
+        let states = stepwell::subbands::mixed(&profile, &bands, 0.01)
+            .unwrap_or_else(|error| panic!("stack {number}: {error}\n{file}"));
+        let heavy: Vec<f64> = states
+            .zone_centre
+            .iter()
+            .filter(|state| state.heavy > 0.5)
+            .map(|state| state.energy_ev)
+            .collect();
+        // Heavy and light holes that cross hand each other nothing at zero wave number.
+        assert_eq!(heavy.len(), bands.heavy.len(), "stack {number}\n{file}");
+        for (mixed, single) in heavy.iter().zip(&bands.heavy) {
+            let miss = (mixed - single.energy_ev).abs();
+            assert!(miss < 1e-6, "stack {number}: off by {miss} eV\n{file}");
+        }
+        for slice in states.blocks.iter().flatten() {
+            assert!(
+                slice.energy_ev.windows(2).all(|pair| pair[0] >= pair[1]),
+                "stack {number}: {:?}\n{file}",
+                slice.energy_ev
+            );
+            slices_seen += 1;
+        }
+        // States are picked by character at zero wave number and counted from the top along it: a
+        // zone-centre state is among these unless states of no well stand above it.
+        if let Some(lowest) = states
+            .blocks
+            .first()
+            .and_then(|block| block[0].energy_ev.last())
+        {
+            for state in states
+                .zone_centre
+                .iter()
+                .filter(|it| it.energy_ev > lowest + 1e-5)
+            {
+                let nearest = states.blocks[0][0]
+                    .energy_ev
+                    .iter()
+                    .map(|energy| (energy - state.energy_ev).abs())
+                    .fold(f64::INFINITY, f64::min);
+                // The split-off band lies deep, where grids err most, and states that cross between
+                // grids are told apart by less along the wave number: three grids and two then part.
+                let crowded = states.blocks[0][0]
+                    .energy_ev
+                    .iter()
+                    .filter(|&energy| (energy - state.energy_ev).abs() < 5e-4)
+                    .count()
+                    > 1;
+                let apart = match (crowded, state.split_off > 0.5) {
+                    (true, _) => 5e-4,
+                    (false, true) => 2e-4,
+                    (false, false) => 5e-5,
+                };
+                assert!(
+                    nearest < apart,
+                    "stack {number}: {nearest} eV from {state:?} {:?} {:?}\n{file}",
+                    states.blocks[0][0],
+                    states.zone_centre
+                );
+            }
+        }
+        (states.zone_centre.len(), slices_seen)
+    };
+    let (states_seen, slices_seen) = stacks
+        .par_iter()
+        .enumerate()
+        .map(certify)
+        .reduce(|| (0, 0), |a, b| (a.0 + b.0, a.1 + b.1));
+    assert!(
+        states_seen > 2000 && slices_seen > 5000,
+        "only {states_seen} states, {slices_seen} slices"
+    );
 }

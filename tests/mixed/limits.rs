@@ -156,6 +156,57 @@ fn reversing_a_stack_exchanges_its_blocks() {
     }
 }
 
+/// At zero wave number (2 TE + TM)/3 is the overlap of all components, a heavy hole has TE = 3/2 of
+/// its overlap and no TM, and a light hole with next to no split-off share 1/2 and 2.
+#[test]
+fn matrix_elements_at_zero_wave_number_keep_their_sum_rules() {
+    let layers = [
+        barrier(60.0, BARRIER),
+        well(8.0, WELL),
+        barrier(60.0, BARRIER),
+    ];
+    let plain = |numbers: Numbers| Numbers {
+        split_off_ev: 20.0,
+        ..numbers
+    };
+    let alone = layers.map(|layer| Layer {
+        numbers: plain(layer.numbers),
+        ..layer
+    });
+    let mut seen = [0, 0, 0];
+    for (layers, mixes) in [(layers, true), (alone, false)] {
+        let states = mixed_bands(&layers, 0.0);
+        let slice = &states.blocks[0][0];
+        for (number, state) in states.zone_centre.iter().enumerate() {
+            let miss = (slice.energy_ev[number] - state.energy_ev).abs();
+            assert!(miss < 1e-6, "state {number} is {miss} eV off");
+            for (row, overlaps) in slice.dipoles.iter().zip(&states.overlaps) {
+                let (dipole, overlap) = (row[number], overlaps[number]);
+                let mean = (2.0 * dipole.te + dipole.tm) / 3.0;
+                assert!((mean - overlap).abs() < 1e-6, "{mean} {overlap} {state:?}");
+                let wanted = if state.heavy > 0.5 {
+                    seen[0] += 1;
+                    (1.5 * overlap, 0.0)
+                } else if mixes {
+                    // The share of the split-off band breaks the ratio, or would not be seen.
+                    let broken = (dipole.tm - 4.0 * dipole.te).abs() > 0.1 * overlap;
+                    seen[1] += usize::from(broken && overlap > 0.1);
+                    continue;
+                } else {
+                    seen[2] += 1;
+                    (0.5 * overlap, 2.0 * overlap)
+                };
+                // An admixture of amplitude s changes TE by some √2 s of the overlap.
+                let slack = 1e-6 + 3.0 * state.split_off.sqrt() * overlap;
+                assert!(slack < 0.02, "{state:?}");
+                assert!((dipole.te - wanted.0).abs() < slack, "{dipole:?} {overlap}");
+                assert!((dipole.tm - wanted.1).abs() < slack, "{dipole:?} {overlap}");
+            }
+        }
+    }
+    assert!(seen.iter().all(|&seen| seen > 0), "{seen:?}");
+}
+
 /// With γ2 = γ3 = 0 and one γ1 nothing mixes: every state is a parabola of mass 1/γ1, and carriers
 /// fill the mixed bands as they fill the single ones.
 #[test]

@@ -168,3 +168,51 @@ pub(crate) fn shipped() -> Vec<(String, String)> {
     assert!(files.len() > 5, "the structures are missing");
     files
 }
+
+/// Numbers from a fixed sequence (splitmix64): the same structures in every run.
+pub(crate) struct Random(pub(crate) u64);
+
+impl Random {
+    pub(crate) fn between(&mut self, low: f64, high: f64) -> f64 {
+        self.0 = self.0.wrapping_add(0x9e37_79b9_7f4a_7c15);
+        let mut word = self.0;
+        word = (word ^ (word >> 30)).wrapping_mul(0xbf58_476d_1ce4_e5b9);
+        word = (word ^ (word >> 27)).wrapping_mul(0x94d0_49bb_1331_11eb);
+        word ^= word >> 31;
+        low + (high - low) * (word >> 11) as f64 / (1u64 << 53) as f64
+    }
+
+    pub(crate) fn below(&mut self, count: usize) -> usize {
+        (self.between(0.0, count as f64) as usize).min(count - 1)
+    }
+
+    /// Numbers as the zincblende crystals have them: γ3 above γ2, both heavy masses positive.
+    fn numbers(&mut self, edge_ev: (f64, f64)) -> Numbers {
+        let third = self.between(1.2, 6.0);
+        Numbers {
+            valence_edge_ev: self.between(edge_ev.0, edge_ev.1),
+            split_off_ev: self.between(0.08, 0.8),
+            luttinger: [
+                2.0 * third + self.between(0.9, 1.8),
+                third * self.between(0.65, 0.92),
+                third,
+            ],
+            strain: self.between(-0.012, 0.012),
+        }
+    }
+
+    /// One to three strained wells, as a rule without any symmetry.
+    pub(crate) fn layers(&mut self) -> Vec<Layer> {
+        const OUTSIDE_EV: (f64, f64) = (-0.45, -0.16);
+        let mut layers = vec![barrier(self.between(20.0, 80.0), self.numbers(OUTSIDE_EV))];
+        for index in 0..=self.below(3) {
+            if index > 0 {
+                layers.push(barrier(self.between(1.0, 12.0), self.numbers(OUTSIDE_EV)));
+            }
+            let inside = self.numbers((-0.06, 0.0));
+            layers.push(well(self.between(2.0, 11.0), inside));
+        }
+        layers.push(barrier(self.between(20.0, 80.0), self.numbers(OUTSIDE_EV)));
+        layers
+    }
+}

@@ -1,7 +1,7 @@
 //! What mixed bands emit and amplify.
 
 use crate::recipe::{BARRIER, STEP, WELL, barrier, read, shipped, text, well};
-use stepwell::evaluation::{Evaluation, Spectrum};
+use stepwell::evaluation::{Evaluation, Remark, Spectrum};
 use stepwell::materials::Parameters;
 use stepwell::spectra::{Point, modes_per_ev_cm2_s};
 use stepwell::structure::{Lineshape, Stack};
@@ -94,6 +94,53 @@ fn one_block_counted_twice_amplifies_as_both() {
             assert_eq!(blocks, [1, 2]);
             let miss = apart(spectrum_of_one, spectrum_of_two);
             assert!(miss < 1e-5, "{miss} of the peak");
+        });
+    });
+}
+
+fn wells(thickness_nm: &[f64]) -> Stack {
+    let mut layers = vec![barrier(60.0, BARRIER)];
+    for (index, &nm) in thickness_nm.iter().enumerate() {
+        let last = index + 1 == thickness_nm.len();
+        layers.push(well(nm, WELL));
+        layers.push(barrier(if last { 60.0 } else { 45.0 }, BARRIER));
+    }
+    read(&text(&layers, ""))
+}
+
+/// Five equal wells that do not feel each other are recognised, said to be so, and amplify as one of
+/// them; and as the five solved whole, which a millionth of a nanometre forces.
+#[test]
+fn five_far_wells_amplify_as_one_and_as_the_whole() {
+    let equal_wells = |evaluation: &Evaluation<'_>| {
+        let remarked = evaluation
+            .remarks
+            .iter()
+            .any(|remark| matches!(remark, Remark::EqualWells { count: 5 }));
+        let count = evaluation.mixed.as_ref().expect("mixed bands").equal_wells;
+        assert_eq!(remarked, count == 5);
+        count
+    };
+    evaluated(&wells(&[5.0; 5]), |five, spectrum_of_five| {
+        assert_eq!(equal_wells(five), 5);
+        let states = |evaluation: &Evaluation<'_>| {
+            evaluation
+                .mixed
+                .as_ref()
+                .map_or(0, |mixed| mixed.zone_centre.len())
+        };
+        let count = states(five);
+        assert!(count >= 10);
+        evaluated(&wells(&[5.0]), |one, spectrum_of_one| {
+            assert_eq!((equal_wells(one), 5 * states(one)), (1, count));
+            let miss = apart(spectrum_of_one, spectrum_of_five);
+            assert!(miss < 1e-5, "{miss} of the peak apart from one well");
+        });
+        let nearly = [5.0, 5.0, 5.000_001, 5.0, 5.0];
+        evaluated(&wells(&nearly), |whole, spectrum_of_whole| {
+            assert_eq!((equal_wells(whole), states(whole)), (1, count));
+            let miss = apart(spectrum_of_whole, spectrum_of_five);
+            assert!(miss < 2e-4, "{miss} of the peak apart from the whole");
         });
     });
 }

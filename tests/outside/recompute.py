@@ -10,7 +10,8 @@ quantity; ends with 1 if one is missed.
 Four comparisons, from the inside out:
   matrix    eigenvalues of the Hamiltonian that the program dumps, by LAPACK, against its levels. The
             matrix is that of the finest grid, the levels are extrapolated: they part by the error of
-            the grid, up to 1e-4 eV.
+            the grid, up to 1e-4 eV. The mixed valence block at four wave numbers in the plane
+            likewise, by shift and invert, against the dispersion.
   levels    the same wells discretised here, on grids of 0.05 and 0.025 nm, extrapolated.
   overlaps  from the vectors of these.
   carriers, spectrum   quasi-Fermi levels, TE and TM gain and spontaneous emission from the levels and
@@ -27,8 +28,10 @@ from pathlib import Path
 
 import numpy as np
 from scipy.constants import c, elementary_charge, fine_structure, hbar, k, m_e
+from scipy.io import mmread
 from scipy.linalg import eigh_tridiagonal
 from scipy.optimize import brentq
+from scipy.sparse.linalg import eigsh
 
 HERE = Path(__file__).resolve().parent
 FILE = HERE / "wells.toml"
@@ -112,6 +115,24 @@ def levels_and_matrices(report):
         fine, vectors[band] = discretised(band, 0.025, len(reported))
         compare(f"levels, {key}, eV", reported, sign * (fine + (fine - coarse) / 3), 2e-6)
     return vectors
+
+
+def valence_matrices():
+    """Both blocks that the program dumps, by ARPACK, against the dispersion it reports."""
+    report = json.loads(program("levels", FILE, "--json", "--quiet", "--bands", "mixed"))
+    top = max(layer["heavy_hole_edge_ev"] for layer in report["layers"])
+    for wave_number in (0.0, 0.1, 0.3, 0.5):
+        rows = [row for row in report["dispersion"] if abs(row["k_per_nm"] - wave_number) < 1e-9]
+        reported = np.sort(rows[0]["energy_ev"])[::-1]
+        for block in ("valence", "valence-mirror"):
+            with tempfile.TemporaryDirectory() as folder:
+                path = Path(folder) / "dump.mtx"
+                program("levels", FILE, "--quiet", "--bands", "mixed", "--matrix", path,
+                        "--matrix-of", block, "--at-k", wave_number)
+                dump = mmread(path).tocsc()
+            # A shift above every state: the nearest to it are the highest.
+            values = eigsh(dump, k=len(reported), sigma=top + 0.01, return_eigenvectors=False)
+            compare(f"matrix, {block} at {wave_number} per nm, eV", reported, np.sort(values)[::-1], 3e-4)
 
 
 def overlaps(report, vectors):
@@ -216,6 +237,7 @@ def main():
     print("| quantity | numbers | largest difference | allowed | |")
     print("|---|---|---|---|---|")
     vectors = levels_and_matrices(report)
+    valence_matrices()
     overlaps(report, vectors)
     run = document["runs"][0]
     carriers(report, run, document["temperature_k"])

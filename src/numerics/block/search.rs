@@ -60,19 +60,26 @@ impl BlockChain {
                 found[index] = Some(state);
             }
         }
+        let near: Vec<f64> = brackets
+            .iter()
+            .zip(&found)
+            .map(|(bracket, state)| {
+                let middle = 0.5 * (bracket.0 + bracket.1);
+                state.as_ref().map_or(middle, |&(energy, _)| energy)
+            })
+            .collect();
         let mut ladder = Ladder::default();
-        for (index, state) in found.into_iter().enumerate() {
-            if let Some((energy, vector)) = state {
-                ladder.energies.push(energy);
-                ladder.vectors.push(vector);
-            } else if ladder.energies.len() <= index {
-                let count = brackets
-                    .iter()
-                    .filter(|&&other| other == brackets[index])
-                    .count();
-                let span = self.span(brackets[index], count);
-                ladder.energies.extend(span.energies);
-                ladder.vectors.extend(span.vectors);
+        for cluster in clusters(&near) {
+            match found[cluster.start].take() {
+                Some((energy, vector)) if cluster.len() == 1 => {
+                    ladder.energies.push(energy);
+                    ladder.vectors.push(vector);
+                }
+                _ => {
+                    let span = self.span(&near[cluster]);
+                    ladder.energies.extend(span.energies);
+                    ladder.vectors.extend(span.vectors);
+                }
             }
         }
         self.certify(&ladder, range.start)?;
@@ -221,14 +228,21 @@ impl BlockChain {
         vectors
     }
 
-    /// The `count` states that share a narrow bracket: inverse iteration on a block of vectors, then
-    /// separation inside their span.
-    fn span(&mut self, bracket: (f64, f64), count: usize) -> Ladder {
-        let mut basis = self.start_vectors(count);
+    /// The states near some energies too close for counting: inverse iteration on a span a little
+    /// larger, and separation inside it, until they have settled. What has not is left to the
+    /// certificate.
+    fn span(&mut self, near: &[f64]) -> Ladder {
+        /// Vectors beyond those wanted: the states next to them must not mix in.
+        const GUARDS: usize = 4;
+        const LARGEST_RESIDUAL: f64 = 1e-9;
+        let (low, high) = (near[0], near[near.len() - 1]);
+        let count = near.len();
+        let mut basis = self.start_vectors((count + GUARDS).min(3 * self.nodes));
         // A shift a little off the cluster keeps pivots away from zero.
-        let shifts = [0.5 * (bracket.0 + bracket.1) - 3.0 * CLUSTER; LANES];
+        let shifts = [low - 3.0 * CLUSTER; LANES];
         let (mut from, mut to) = (self.columns(), self.columns());
-        for _ in 0..6 {
+        let mut nearest = Ladder::default();
+        for _ in 0..12 {
             for chunk in basis.chunks_mut(LANES) {
                 for (lane, vector) in chunk.iter().enumerate() {
                     load(&mut from, lane, vector);
@@ -238,8 +252,37 @@ impl BlockChain {
                     *vector = unload(&to, lane);
                 }
             }
-            self.orthonormalise(&mut basis);
+            let (ladder, residuals) = self.separate(basis);
+            let distance = |energy: f64| (low - energy).max(energy - high);
+            let mut order: Vec<usize> = (0..ladder.energies.len()).collect();
+            order.sort_by(|&a, &b| {
+                distance(ladder.energies[a]).total_cmp(&distance(ladder.energies[b]))
+            });
+            order.truncate(count);
+            order.sort_unstable();
+            nearest = Ladder {
+                energies: order.iter().map(|&at| ladder.energies[at]).collect(),
+                vectors: order.iter().map(|&at| ladder.vectors[at].clone()).collect(),
+            };
+            if order.iter().all(|&at| residuals[at] < LARGEST_RESIDUAL) {
+                break;
+            }
+            basis = ladder.vectors;
         }
-        self.separate(basis).0
+        nearest
     }
+}
+
+/// Ranges of rising levels whose neighbours are too close for vectors of their own.
+fn clusters(energies: &[f64]) -> Vec<Range<usize>> {
+    let mut clusters = Vec::new();
+    let mut start = 0;
+    for end in 1..=energies.len() {
+        let apart = |next: &f64| next - energies[end - 1] > 20.0 * CLUSTER;
+        if energies.get(end).is_none_or(apart) {
+            clusters.push(start..end);
+            start = end;
+        }
+    }
+    clusters
 }

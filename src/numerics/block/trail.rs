@@ -345,6 +345,8 @@ impl Trail {
             if count < below + own.len() {
                 return false;
             }
+            // No more than there are lanes for.
+            let count = count.min(self.states);
             if count == below + own.len() {
                 lanes.extend_from_slice(own);
             } else {

@@ -1,10 +1,12 @@
 //! States along the in-plane wave number.
 
+use std::ops::Range;
+
 use super::centre::Centre;
 use super::form::Grid;
 use super::{Dipole, Projection, Slice, uncertified};
 use crate::numerics::block::{BlockChain, Hold, Ladder, Trail};
-use crate::subbands::Uncertified;
+use crate::subbands::{CLUSTER_EV, Uncertified};
 
 /// Steps of the in-plane wave number, 1/nm, and up to where each is taken: small enough to follow
 /// states from one to the next, and to interpolate between.
@@ -15,6 +17,9 @@ const WAVE_NUMBER_STEPS_PER_NM: [(f64, f64); 3] = [
 ];
 /// Where the in-plane wave numbers end, 1/nm.
 pub const LARGEST_WAVE_NUMBER_PER_NM: f64 = 2.0;
+
+/// Valence states closer than this are all but equal, eV: far below any line width.
+const EQUAL_EV: f64 = 2e-5;
 
 /// The in-plane wave numbers that may be visited, 1/nm, from zero.
 pub(super) fn wave_numbers() -> Vec<f64> {
@@ -32,37 +37,94 @@ pub(super) fn wave_numbers() -> Vec<f64> {
 pub(super) type Track = Vec<Slice>;
 
 /// The same slice on two grids of steps h and h/2, extrapolated, in order of energy.
-pub(super) fn extrapolated(coarse: &Slice, fine: &Slice) -> Slice {
+///
+/// Matrix elements of states closer than [`CLUSTER_EV`] mean something only in sums, and their members
+/// may be mixed differently on the two grids: those of the finer one are scaled so that the sum over a
+/// cluster of electron levels and one of valence states is extrapolated. Squares all of them, they stay
+/// positive. States that are all but equal share theirs evenly: they are mixed anew at every wave
+/// number, and what is interpolated between wave numbers must be smooth.
+///
+/// # Arguments
+///
+/// * `electrons` – clusters of electron levels, rows of the matrix elements
+pub(super) fn extrapolated(coarse: &Slice, fine: &Slice, electrons: &[Range<usize>]) -> Slice {
     let two = |coarse: f64, fine: f64| fine + (fine - coarse) / 3.0;
     let partners = partners(coarse, fine);
-    let energy_ev: Vec<f64> = partners
+    let energies: Vec<f64> = partners
         .iter()
         .zip(&fine.energy_ev)
         .map(|(&partner, &energy)| two(coarse.energy_ev[partner], energy))
         .collect();
-    let mut order: Vec<usize> = (0..energy_ev.len()).collect();
-    order.sort_by(|&a, &b| energy_ev[b].total_cmp(&energy_ev[a]));
-    Slice {
-        energy_ev: order.iter().map(|&state| energy_ev[state]).collect(),
-        dipoles: coarse
-            .dipoles
-            .iter()
-            .zip(&fine.dipoles)
-            .map(|(coarse, fine)| {
-                order
-                    .iter()
-                    .map(|&state| {
-                        let (coarse, fine) = (coarse[partners[state]], fine[state]);
-                        // Squares both: what is forbidden must not turn negative.
-                        Dipole {
-                            te: two(coarse.te, fine.te).max(0.0),
-                            tm: two(coarse.tm, fine.tm).max(0.0),
-                        }
-                    })
-                    .collect()
-            })
-            .collect(),
+    let mut order: Vec<usize> = (0..energies.len()).collect();
+    order.sort_by(|&a, &b| energies[b].total_cmp(&energies[a]));
+    let energy_ev: Vec<f64> = order.iter().map(|&state| energies[state]).collect();
+    let mut dipoles: Vec<Vec<Dipole>> = fine
+        .dipoles
+        .iter()
+        .map(|row| order.iter().map(|&state| row[state]).collect())
+        .collect();
+    let factor = |coarse: f64, fine: f64| {
+        if fine > 0.0 {
+            (two(coarse, fine) / fine).max(0.0)
+        } else {
+            1.0
+        }
+    };
+    for holes in clusters(&energy_ev, CLUSTER_EV) {
+        for electrons in electrons {
+            let mut sums = [Dipole::default(); 2];
+            for electron in electrons.clone() {
+                for &state in &order[holes.clone()] {
+                    let pair = [
+                        coarse.dipoles[electron][partners[state]],
+                        fine.dipoles[electron][state],
+                    ];
+                    for (sum, dipole) in sums.iter_mut().zip(pair) {
+                        sum.te += dipole.te;
+                        sum.tm += dipole.tm;
+                    }
+                }
+            }
+            let (te, tm) = (
+                factor(sums[0].te, sums[1].te),
+                factor(sums[0].tm, sums[1].tm),
+            );
+            for row in &mut dipoles[electrons.clone()] {
+                for dipole in &mut row[holes.clone()] {
+                    dipole.te *= te;
+                    dipole.tm *= tm;
+                }
+            }
+        }
     }
+    for equals in clusters(&energy_ev, EQUAL_EV) {
+        for row in &mut dipoles {
+            let members = &mut row[equals.clone()];
+            let share = |value: fn(&Dipole) -> f64| {
+                members.iter().map(value).sum::<f64>() / members.len() as f64
+            };
+            let even = Dipole {
+                te: share(|dipole| dipole.te),
+                tm: share(|dipole| dipole.tm),
+            };
+            members.fill(even);
+        }
+    }
+    Slice { energy_ev, dipoles }
+}
+
+/// Ranges of energies in order whose neighbours are closer than `within_ev`.
+pub(super) fn clusters(energies_ev: &[f64], within_ev: f64) -> Vec<Range<usize>> {
+    let mut clusters = Vec::new();
+    let mut start = 0;
+    for end in 1..=energies_ev.len() {
+        let apart = |next: &f64| (next - energies_ev[end - 1]).abs() >= within_ev;
+        if energies_ev.get(end).is_none_or(apart) {
+            clusters.push(start..end);
+            start = end;
+        }
+    }
+    clusters
 }
 
 /// Which state of a coarser grid each state of the finer one was: as a rule that of its number, but
@@ -239,7 +301,7 @@ mod tests {
         let coarse = slice(&[(-0.1, heavy), (-0.1001, light), far]);
         let fine = slice(&[(-0.1004, light), (-0.1006, heavy), far]);
         let exact = slice(&[(-0.1005, light), (-0.1008, heavy), far]);
-        let got = extrapolated(&coarse, &fine);
+        let got = extrapolated(&coarse, &fine, &[0..1]);
         for (got, exact) in got.energy_ev.iter().zip(&exact.energy_ev) {
             assert!((got - exact).abs() < 1e-12, "{got} {exact}");
         }
@@ -250,6 +312,27 @@ mod tests {
             partners(&apart, &slice(&[(-0.05, heavy), (-0.1004, light), far])),
             [0, 1, 2]
         );
+    }
+
+    /// Two wells that do not feel each other may be told apart on one grid and mixed on the other: the
+    /// sum over all four pairs is what it is.
+    #[test]
+    fn sums_over_clusters_do_not_hang_on_how_their_members_are_mixed() {
+        let slice = |dipoles: [[f64; 2]; 2]| Slice {
+            energy_ev: vec![-0.1, -0.1 - 1e-9],
+            dipoles: dipoles
+                .map(|row| row.map(|te| Dipole { te, tm: 0.0 }).to_vec())
+                .to_vec(),
+        };
+        let (apart, mixed) = (
+            slice([[1.5, 0.0], [0.0, 1.5]]),
+            slice([[0.75, 0.75], [0.75, 0.75]]),
+        );
+        for (coarse, fine) in [(&apart, &mixed), (&mixed, &apart)] {
+            let got = extrapolated(coarse, fine, &[0..2]);
+            let sum: f64 = got.dipoles.iter().flatten().map(|dipole| dipole.te).sum();
+            assert!((sum - 3.0).abs() < 1e-12, "{sum}");
+        }
     }
 
     /// Errors that go as h² leave nothing behind.
@@ -271,7 +354,7 @@ mod tests {
                 ]],
             }
         };
-        let (got, exact) = (extrapolated(&slice(0.2), &slice(0.1)), slice(0.0));
+        let (got, exact) = (extrapolated(&slice(0.2), &slice(0.1), &[0..1]), slice(0.0));
         for (got, exact) in got.energy_ev.iter().zip(&exact.energy_ev) {
             assert!((got - exact).abs() < 1e-15);
         }

@@ -11,9 +11,9 @@ pub use matrix::valence_hamiltonian;
 
 use rayon::prelude::*;
 
-use super::{COARSEST_STEP_NM, Level, SingleBands, Uncertified};
+use super::{CLUSTER_EV, COARSEST_STEP_NM, Level, SingleBands, Uncertified};
 use crate::profile::Profile;
-use along::{Track, extrapolated, follow, wave_numbers};
+use along::{Track, clusters, extrapolated, follow, wave_numbers};
 use centre::Centre;
 use form::Grid;
 
@@ -253,12 +253,18 @@ pub fn mixed(
             [coarse, fine]
         })
         .collect::<Result<Vec<Track>, Uncertified>>()?;
+    let electron_ev: Vec<f64> = single
+        .electron
+        .iter()
+        .map(|level| level.energy_ev)
+        .collect();
+    let electron_clusters = clusters(&electron_ev, CLUSTER_EV);
     let steps = tracks.iter().map(Vec::len).min().unwrap_or(0);
     let blocks: Vec<Vec<Slice>> = tracks
         .chunks(2)
         .map(|pair| {
             (0..steps)
-                .map(|at| extrapolated(&pair[0][at], &pair[1][at]))
+                .map(|at| extrapolated(&pair[0][at], &pair[1][at], &electron_clusters))
                 .collect()
         })
         .collect();
