@@ -161,7 +161,7 @@ pub fn weigh(weighed: &[Weighed], equal: Equal, stamps: &[Stamp], colour: Colour
     page.gap();
     let shown = &weighed[..weighed.len().min(HEADS.len())];
     let mut columns = vec![words("figure"), words("unit")];
-    columns.extend(HEADS.iter().take(shown.len()).map(|head| numbers(head)));
+    columns.extend(HEADS.into_iter().take(shown.len()).map(numbers));
     let mut table = Table::new(columns);
     for row in rows(shown) {
         let mut cells = vec![row.figure.to_owned(), row.unit.to_owned()];
