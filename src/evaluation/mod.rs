@@ -339,7 +339,7 @@ impl<'a> Evaluation<'a> {
         let peak_nm = |lowering_ev: f64| {
             let view = self.view(&self.occupation(&filling, lowering_ev));
             let [te, tm] = self.gain_peaks(&filling, &view);
-            larger(te, tm).map(|(_, peak)| peak.peak_nm)
+            GainPeak::larger(te, tm).map(|(_, peak)| peak.peak_nm)
         };
         Emission {
             first_transition_nm: wavelength_nm(self.first_ev),
@@ -382,7 +382,7 @@ impl<'a> Evaluation<'a> {
     #[must_use]
     pub fn highest_gain(&self, density_cm3: f64) -> Option<(&'static str, GainPeak)> {
         let [te, tm] = self.gain_peaks_at(density_cm3);
-        larger(te, tm)
+        GainPeak::larger(te, tm)
     }
 
     /// The carriers at a density of pairs, with gap shrinkage.
@@ -449,16 +449,6 @@ impl<'a> Evaluation<'a> {
             peak(|point| point.te_gain_cm),
             peak(|point| point.tm_gain_cm),
         ]
-    }
-}
-
-/// The larger of two peaks, with the name of its polarisation.
-fn larger(te: Option<GainPeak>, tm: Option<GainPeak>) -> Option<(&'static str, GainPeak)> {
-    match (te, tm) {
-        (Some(te), Some(tm)) if tm.gain_cm > te.gain_cm => Some(("TM", tm)),
-        (Some(te), _) => Some(("TE", te)),
-        (None, Some(tm)) => Some(("TM", tm)),
-        (None, None) => None,
     }
 }
 
