@@ -15,7 +15,7 @@ use crate::sheet::{self, Stamp, csv, json};
 pub(in crate::cli) fn weigh(flags: &flags::Weigh, outlet: &Outlet) -> Result<Ending, Complaint> {
     let overrides = overrides(&flags.conditions)?;
     let equal = one("--at-equal", &flags.at_equal, &Equal::ALL, Equal::word)?;
-    let tables = ["weigh", "spectra"];
+    let tables = ["weigh", "spectra", "states"];
     let destinations = Destinations::new(&flags.output, flags.figure.as_deref(), None, &tables)?;
     if flags.paths.len() < 2 && !flags.bulk {
         return Err(

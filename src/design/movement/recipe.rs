@@ -7,7 +7,7 @@ use super::ground::Ground;
 use super::shares::{line_of_share, rounded_formula, with_shares};
 use super::{Immovable, Impossible, Quantity};
 use crate::materials::{Composition, Element};
-use crate::structure::{Condition, Form, Selection};
+use crate::structure::{Condition, Form, Manuscript, Selection};
 
 /// What stays while a composition moves.
 #[derive(Clone, Copy, Debug, PartialEq)]
@@ -33,6 +33,8 @@ pub(super) struct Recipe {
     /// Indices of the moves and what they move.
     pub(super) moved: Vec<(usize, Quantity)>,
     form: Form,
+    /// The formula that the file gives it by, if it does.
+    written: String,
     held: Held,
     /// Compositions found already: solving for one takes as long as a structure's levels.
     known: Mutex<HashMap<Vec<u64>, Result<Composition, Impossible>>>,
@@ -43,7 +45,7 @@ impl Recipe {
     pub(super) fn new(
         selection: Selection,
         material: &str,
-        form: Form,
+        manuscript: &Manuscript<'_>,
         original: Composition,
     ) -> Self {
         Self {
@@ -51,7 +53,8 @@ impl Recipe {
             material: material.to_owned(),
             original,
             moved: Vec::new(),
-            form,
+            form: manuscript.form(material),
+            written: manuscript.formula(material).unwrap_or_default().to_owned(),
             held: Held::Nothing,
             known: Mutex::default(),
         }
@@ -177,7 +180,7 @@ impl Recipe {
 
     /// A composition in the terms of the file, with the digits that a file needs.
     pub(super) fn condition(&self, ground: &Ground<'_>, composition: &Composition) -> Condition {
-        let formula = || Condition::Formula(rounded_formula(composition));
+        let formula = || Condition::Formula(rounded_formula(composition, &self.written));
         let Form::Prescribed { gap, strain } = self.form else {
             return formula();
         };

@@ -109,16 +109,18 @@ fn no_line(original: &Composition) -> Impossible {
     ))
 }
 
-/// The formula with six decimals, each sublattice adding up to 1 exactly.
-pub(super) fn rounded_formula(composition: &Composition) -> String {
+/// The formula with six decimals, each sublattice adding up to 1 exactly, its elements in the order
+/// of a formula `like` it.
+pub(super) fn rounded_formula(composition: &Composition, like: &str) -> String {
     const PARTS: f64 = 1e6;
     let mut formula = String::new();
     for group_iii in [true, false] {
-        let present: Vec<Element> = composition
+        let mut present: Vec<Element> = composition
             .elements()
             .iter()
             .filter(|it| it.is_group_iii() == group_iii)
             .collect();
+        present.sort_by_key(|it| like.find(it.symbol()).unwrap_or(like.len()));
         let mut parts: Vec<f64> = present
             .iter()
             .map(|&it| (PARTS * composition.fraction(it)).round())

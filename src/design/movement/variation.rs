@@ -176,9 +176,8 @@ impl<'a> Variation<'a> {
                 });
             }
         }
-        let form = manuscript.form(&material.name);
         // What has a name of its own moves wherever the name stands.
-        let selection = if form == Form::Inline {
+        let selection = if manuscript.form(&material.name) == Form::Inline {
             selection
         } else {
             Selection::Material(material.name.clone())
@@ -188,7 +187,7 @@ impl<'a> Variation<'a> {
             .iter()
             .position(|recipe| recipe.selection == selection && recipe.material == material.name);
         let place = known.unwrap_or_else(|| {
-            let recipe = Recipe::new(selection, &material.name, form, original);
+            let recipe = Recipe::new(selection, &material.name, manuscript, original);
             self.recipes.push(recipe);
             self.recipes.len() - 1
         });

@@ -82,7 +82,7 @@ pub fn aim(variation: &Variation<'_>, outcome: &Outcome) -> Vec<CsvTable> {
     vec![table]
 }
 
-/// The comparison, and the spectra of all columns.
+/// The comparison, and the spectra and densities of states of all columns.
 #[must_use]
 pub fn weigh(weighed: &[Weighed]) -> Vec<CsvTable> {
     let mut heads = vec!["figure", "unit"];
@@ -114,5 +114,16 @@ pub fn weigh(weighed: &[Weighed]) -> Vec<CsvTable> {
             ]);
         }
     }
-    vec![comparison, spectra]
+    let mut states = CsvTable::new(
+        "states",
+        &["column", "above_first_edge_ev", "states_per_ev_cm3"],
+    );
+    for column in weighed {
+        for &(above_ev, per_ev_cm3) in &column.states_per_ev_cm3 {
+            states
+                .rows
+                .push(row![column.name.as_str(), above_ev, per_ev_cm3]);
+        }
+    }
+    vec![comparison, spectra, states]
 }
