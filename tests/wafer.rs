@@ -225,7 +225,7 @@ fn restate_goes_there_and_back() {
     );
     let peak = said(
         &["1100nm", "--at", "25C"],
-        "as a gap: photoluminescence of the bulk layer at 298.15 K, vacuum",
+        "as a gap: bulk photoluminescence at 298.15 K, vacuum",
         "nm",
     );
     let words = format!("{peak}nm");
@@ -243,7 +243,7 @@ fn restate_goes_there_and_back() {
         1100.0
             - said(
                 &["1100nm"],
-                "as a gap: photoluminescence of the bulk layer at 300 K, vacuum",
+                "as a gap: bulk photoluminescence at 300 K, vacuum",
                 "nm",
             ),
         12.5,
@@ -326,6 +326,17 @@ fn restate_asks_for_what_is_not_said() {
         (
             &["850ppm", "--mismatch", "relaxd", "--on", "InP"],
             "relaxed",
+        ),
+        (&["1,31um"], "1.31um"),
+        (&["0.9eV", "--air"], "the same in air"),
+        (&["35nm", "--around", "1310nm", "--air"], "in vacuum"),
+        (&["1310nm", "--mismatch", "relaxed"], "says nothing"),
+        (&["1310nm", "--over", "5nm"], "says nothing"),
+        (&["1310nm", "--on", "InP"], "--alloy"),
+        (&["85C", "--at", "25C"], "a temperature"),
+        (
+            &["1%compressive", "--mismatch", "relaxed", "--on", "InP"],
+            "a strain",
         ),
     ] {
         let mut all = vec!["restate"];

@@ -28,7 +28,14 @@ pub(super) fn reconcile(flags: &flags::Reconcile, outlet: &Outlet) -> Result<End
         bands: flags.bands.as_deref().map(bands).transpose()?,
         ..Overrides::default()
     };
-    let tables = ["estimate", "data", "correlation", "causes", "correction"];
+    let tables = [
+        "estimate",
+        "data",
+        "correlation",
+        "causes",
+        "correction",
+        "limits",
+    ];
     let destinations = Destinations::new(&flags.output, None, None, &tables)?;
     let mut case = Case::read(
         &flags.file.path,
@@ -99,10 +106,12 @@ pub(super) fn reconcile(flags: &flags::Reconcile, outlet: &Outlet) -> Result<End
         || json::reconcile(&wafer, &stamp),
         || sheet::reconcile(&wafer, &stamp, outlet.colour()),
     )?;
-    Ok(if result.undetermined.is_empty() {
-        Ending::Done
-    } else {
+    Ok(if !result.undetermined.is_empty() {
         Ending::Unanswered
+    } else if result.next_is_outside() {
+        Ending::Outside
+    } else {
+        Ending::Done
     })
 }
 
