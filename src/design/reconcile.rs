@@ -264,7 +264,7 @@ pub fn reconcile(
     let problem = problem(stack, parameters, readings, offset);
     let at_order = problem.anchored(&problem.stack)?;
     let at_order = at_order.as_ref();
-    let ordered = problem.predicted(problem.stack.clone(), at_order, 0.0)?;
+    let ordered = problem.predicted(problem.stack.clone(), at_order)?;
     let found = posterior(&problem, unknowns, at_order)?;
     let deviations: Vec<Deviation> = problem
         .data
@@ -299,7 +299,7 @@ pub fn reconcile(
         estimated_chi_square: problem.misses(&found.predicted).norm_squared(),
         deviations,
         correlation: correlation(&found.covariance),
-        causes: causes(&problem, unknowns, at_order)?,
+        causes: causes(&problem, unknowns, at_order, &ordered)?,
         damping,
         corrections: Vec::new(),
         silent: Vec::new(),
@@ -419,7 +419,7 @@ fn followed_miss_nm(
         return Ok(None);
     };
     let stack = grown(&problem.stack, unknowns, &found.v);
-    let followed = problem.predicted(stack, Some(at_order), 0.0)?;
+    let followed = problem.predicted(stack, Some(at_order))?;
     Ok(Some((followed[index] - found.predicted[index]).abs()))
 }
 

@@ -48,10 +48,10 @@ impl Suspect {
         &self,
         problem: &Problem<'_>,
         at_order: Option<&Anchored<'_>>,
+        ordered: &[f64],
         amount: f64,
     ) -> Result<Vec<f64>, ReconcileError> {
         let mut stack = problem.stack.clone();
-        let mut pl_shift_nm = 0.0;
         match &self.acts {
             Act::Unknowns(unknowns) => {
                 for (unknown, per_amount) in unknowns {
@@ -61,9 +61,18 @@ impl Suspect {
             Act::BenchTemperature => {
                 stack.operation.temperature_k = (stack.operation.temperature_k + amount).max(1.0);
             }
-            Act::BenchWavelength => pl_shift_nm = amount,
+            Act::BenchWavelength => {
+                let mut predicted = ordered.to_vec();
+                if let Some(peak_nm) = problem
+                    .place(Datum::Pl)
+                    .and_then(|index| predicted.get_mut(index))
+                {
+                    *peak_nm += amount;
+                }
+                return Ok(predicted);
+            }
         }
-        problem.predicted(stack, at_order, pl_shift_nm)
+        problem.predicted(stack, at_order)
     }
 }
 
@@ -72,15 +81,18 @@ impl Suspect {
 /// # Arguments
 ///
 /// * `at_order` – the model about the order
+/// * `ordered` – what it gives for the order
 pub(super) fn causes(
     problem: &Problem<'_>,
     unknowns: &[Unknown],
     at_order: Option<&Anchored<'_>>,
+    ordered: &[f64],
 ) -> Result<Vec<SingleCause>, ReconcileError> {
     let mut found = Vec::new();
     for suspect in suspects(problem, unknowns) {
         let misses = |amount: f64| -> Result<DVector<f64>, ReconcileError> {
-            Ok(problem.misses(&suspect.predicted(problem, at_order, amount)?))
+            let predicted = suspect.predicted(problem, at_order, ordered, amount)?;
+            Ok(problem.misses(&predicted))
         };
         let step = STEP * suspect.usual;
         let slope = (misses(-step)? - misses(step)?) / (2.0 * step);
@@ -90,7 +102,7 @@ pub(super) fn causes(
             continue;
         }
         let mut amount = 0.0;
-        let mut left = misses(amount)?;
+        let mut left = problem.misses(ordered);
         for _ in 0..6 {
             let step = slope.dot(&left) / weight;
             amount += step.clamp(-10.0 * suspect.usual, 10.0 * suspect.usual);

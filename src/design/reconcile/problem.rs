@@ -57,15 +57,10 @@ impl<'a> Problem<'a> {
     }
 
     /// What the model gives for a stack, in the order of the data.
-    ///
-    /// # Arguments
-    ///
-    /// * `pl_shift_nm` – added to the peak of photoluminescence
     pub(super) fn predicted(
         &self,
         stack: Stack,
         anchored: Option<&Anchored<'_>>,
-        pl_shift_nm: f64,
     ) -> Result<Vec<f64>, ReconcileError> {
         let wants_xray = self.data.iter().any(|(datum, _)| *datum != Datum::Pl);
         let multi_well = if wants_xray {
@@ -89,7 +84,7 @@ impl<'a> Problem<'a> {
                 (Datum::Mismatch(MismatchKind::Relaxed), Some(seen)) => Ok(seen.mean.relaxed_ppm()),
                 (Datum::Pl, _) | (_, None) => {
                     let peak_nm = peak_nm.ok_or(ReconcileError::NoEmission)?;
-                    Ok(self.with_offset_nm(peak_nm) + pl_shift_nm)
+                    Ok(self.with_offset_nm(peak_nm))
                 }
             })
             .collect()
@@ -107,7 +102,7 @@ impl<'a> Problem<'a> {
         v: &DVector<f64>,
         anchored: Option<&Anchored<'_>>,
     ) -> Result<Vec<f64>, ReconcileError> {
-        self.predicted(grown(&self.stack, unknowns, v), anchored, 0.0)
+        self.predicted(grown(&self.stack, unknowns, v), anchored)
     }
 
     /// Derivatives of the predictions, in sigmas of the data for a prior sigma of each unknown.
