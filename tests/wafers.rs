@@ -4,7 +4,7 @@
 use rayon::prelude::*;
 use stepwell::design::{
     HouseOffset, MODEL_NM, Reactor, Readings, Reconciliation, Request, Solving, Spread, Unknown,
-    reconcile, spread, unknowns,
+    estimate, reconcile, spread, unknowns,
 };
 use stepwell::diffraction::{Diffraction, MultiWell, Reflection};
 use stepwell::evaluation::Evaluation;
@@ -307,8 +307,9 @@ fn known_structures_are_found_again_within_their_stated_sigma() {
                 .collect();
             let noise = [deviates.draw(), deviates.draw(), deviates.draw()];
             let readings = seen(&grown, &parameters, noise);
-            found(&ordered, &readings, &unknowns)
-                .estimates
+            let offset = no_offset(&ordered);
+            estimate(&ordered, &parameters, &readings, &unknowns, &offset)
+                .expect("an estimate")
                 .iter()
                 .zip(truth)
                 .map(|(estimate, truth)| (estimate.value - truth) / estimate.sigma)

@@ -28,7 +28,7 @@ pub use progress::{Interrupted, Progress};
 pub use reactor::{Cause, Reactor, Variable};
 pub use reconcile::{
     Correction, Datum, Deviation, Direction, Estimate, LimitedFigure, Readings, ReconcileError,
-    Reconciliation, SingleCause, modelled_pl_nm, reconcile,
+    Reconciliation, SingleCause, estimate, modelled_pl_nm, reconcile,
 };
 pub use spread::{
     Histogram, LayerSpread, MODEL_NM, Miss, Moments, Request, Sensitivity, Solving, Spread,

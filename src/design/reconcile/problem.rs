@@ -20,6 +20,9 @@ pub(super) const STEP: f64 = 0.2;
 /// Most steps of the iteration.
 const MOST_ITERATIONS: usize = 12;
 
+/// A step longer than this asks for new derivatives, in prior sigmas.
+const LONG_STEP: f64 = 0.1;
+
 /// Most structures that are solved in full on the way to the most likely one.
 const MOST_ANCHORS: usize = 4;
 
@@ -174,16 +177,16 @@ pub(super) fn posterior(
 ) -> Result<Posterior, ReconcileError> {
     let mut anchored = at_order.copied();
     let mut v = DVector::zeros(unknowns.len());
+    let mut jacobian = DMatrix::zeros(0, 0);
     for _ in 0..MOST_ANCHORS {
         let next = most_likely(problem, unknowns, anchored.as_ref(), &v)?;
-        let moved = (&next - &v).norm();
-        v = next;
+        let moved = (&next.0 - &v).norm();
+        (v, jacobian) = next;
         anchored = problem.anchored(&grown(&problem.stack, unknowns, &v))?;
         if moved < SAME_PLACE || problem.stack.model.bands == Bands::Single {
             break;
         }
     }
-    let jacobian = problem.jacobian(unknowns, &v, anchored.as_ref())?;
     Ok(Posterior {
         predicted: problem.moved(unknowns, &v, anchored.as_ref())?,
         covariance: covariance(&jacobian),
@@ -200,14 +203,14 @@ fn covariance(jacobian: &DMatrix<f64>) -> DMatrix<f64> {
         .inverse()
 }
 
-/// The most likely unknowns by a model of photoluminescence near one stack: steps of Gauss and
-/// Newton from `start`.
+/// The most likely unknowns by a model of photoluminescence near one stack, by steps of Gauss and
+/// Newton from `start`, and the derivatives within a tenth of a prior sigma of them.
 fn most_likely(
     problem: &Problem<'_>,
     unknowns: &[Unknown],
     anchored: Option<&Anchored<'_>>,
     start: &DVector<f64>,
-) -> Result<DVector<f64>, ReconcileError> {
+) -> Result<(DVector<f64>, DMatrix<f64>), ReconcileError> {
     let mut v = start.clone();
     // The derivatives change little along the way: they are taken again after a long step only.
     let mut jacobian = problem.jacobian(unknowns, &v, anchored)?;
@@ -225,11 +228,11 @@ fn most_likely(
         if length < 1e-3 {
             break;
         }
-        if length > 0.5 {
+        if length > LONG_STEP {
             jacobian = problem.jacobian(unknowns, &v, anchored)?;
         }
     }
-    Ok(v)
+    Ok((v, jacobian))
 }
 
 pub(super) fn problem<'a>(

@@ -21,7 +21,7 @@ struct Document<'a> {
     causes: Vec<Cause<'a>>,
     damping: f64,
     correction: Vec<Correction<'a>>,
-    limits: Vec<Limit<'a>>,
+    limits: Vec<LimitEntry<'a>>,
     next_is_outside: bool,
     expected_pl_nm: Option<f64>,
     expected_pl_sigma_nm: Option<f64>,
@@ -95,7 +95,7 @@ struct Correction<'a> {
 
 /// A figure of strain or thickness as ordered, as grown, and as expected after the correction.
 #[derive(Serialize)]
-struct Limit<'a> {
+struct LimitEntry<'a> {
     layers: &'a str,
     code: &'static str,
     name: &'static str,
@@ -203,7 +203,7 @@ pub fn reconcile(wafer: &Wafer<'_>, stamp: &Stamp) -> String {
         limits: result
             .limits
             .iter()
-            .map(|it| Limit {
+            .map(|it| LimitEntry {
                 layers: &it.of,
                 code: it.code,
                 name: it.name,
