@@ -324,6 +324,20 @@ fn what_is_open_is_named_and_ends_with_its_own_code() {
 }
 
 #[test]
+fn data_that_no_structure_explains_end_without_a_correction() {
+    let desk = Desk::new();
+    let far = RETURNED.replace("peak_nm = 1305.0", "peak_nm = 1480.0");
+    desk.file("far.toml", &far);
+    let (code, page, _) = desk.run(&["reconcile", "my.toml", "far.toml"]);
+    assert_eq!(code, 4);
+    assert!(
+        page.contains("No structure within these unknowns"),
+        "{page}"
+    );
+    assert!(!page.contains("For the next order"), "{page}");
+}
+
+#[test]
 fn faults_of_returned_data_are_shown_at_their_places() {
     let desk = Desk::new();
     desk.file(
@@ -403,7 +417,17 @@ fn a_ledger_grows_and_is_rewritten_with_force_only() {
     let (code, _, err) = desk.run(&[&words[..], &["--force"]].concat());
     assert_eq!(code, 0, "{err}");
     assert_eq!(desk.text("house.toml").matches("[[offsets]]").count(), 2);
-    // And it counts for the next one.
+    // It is not its own witness, and counts for the next one.
+    let words = [
+        "reconcile",
+        "my.toml",
+        "returned.toml",
+        "--ledger",
+        "house.toml",
+        "--json",
+    ];
+    let document = desk.json(&words);
+    assert_eq!(number(&document, "/house_offset/runs") as i64, 1);
     desk.file("returned.toml", &RETURNED.replace("0417", "0419"));
     let words = [
         "reconcile",
