@@ -199,7 +199,8 @@ fn in_the_way(path: &Path) -> Complaint {
         .with_remedy("--force writes over it")
 }
 
-fn unwritable(path: &Path, error: &io::Error) -> Complaint {
+/// Why a file can't be written.
+pub(super) fn unwritable(path: &Path, error: &io::Error) -> Complaint {
     let complaint = |message: String| Complaint::new(Ending::Failed, message);
     let shown = path.display();
     match error.kind() {

@@ -1,7 +1,7 @@
 //! What tells two structures of one wavelength apart.
 
 use crate::coherence::{LayerStrain, StrainBudget};
-use crate::evaluation::{Evaluation, Failure, GainPeak};
+use crate::evaluation::{Evaluation, Failure, GainPeak, emission_nm};
 use crate::materials::{Composition, Element, Parameters};
 use crate::structure::{Limits, Role, Stack, Substance, Wavelength};
 
@@ -185,9 +185,7 @@ struct Drifts<'a> {
 
 impl Drifts<'_> {
     fn wavelength_nm(&self, stack: &Stack) -> Option<f64> {
-        Evaluation::new(stack, self.parameters)
-            .ok()?
-            .wavelength_nm(self.kind)
+        emission_nm(stack, self.parameters, self.kind).ok()?
     }
 
     /// Half the difference of a change and its opposite.

@@ -127,7 +127,7 @@ impl Weighed {
     /// The larger of the peaks of TE and TM gain, and its polarisation.
     #[must_use]
     pub fn gain(&self) -> Option<(&'static str, GainPeak)> {
-        larger(self.te, self.tm)
+        GainPeak::larger(self.te, self.tm)
     }
 
     /// Density per area, cm⁻².
@@ -299,7 +299,7 @@ impl Scale<'_> {
 
     fn gain_cm(&self, density_cm3: f64) -> f64 {
         let [te, tm] = self.gains(density_cm3);
-        larger(te, tm).map_or(0.0, |(_, peak)| peak.gain_cm)
+        GainPeak::larger(te, tm).map_or(0.0, |(_, peak)| peak.gain_cm)
     }
 
     fn current_a_cm2(&self, density_cm3: f64) -> f64 {
@@ -378,15 +378,6 @@ impl Scale<'_> {
     }
 }
 
-fn larger(te: Option<GainPeak>, tm: Option<GainPeak>) -> Option<(&'static str, GainPeak)> {
-    match (te, tm) {
-        (Some(te), Some(tm)) if tm.gain_cm > te.gain_cm => Some(("TM", tm)),
-        (Some(te), _) => Some(("TE", te)),
-        (None, Some(tm)) => Some(("TM", tm)),
-        (None, None) => None,
-    }
-}
-
 fn weighed(
     contender: &Contender,
     parameters: &Parameters,
@@ -458,7 +449,7 @@ fn nm_per_k(contender: &Contender, parameters: &Parameters, density_cm3: f64) ->
         warmed.stack.operation.temperature_k = kelvin;
         on_scale(&warmed, parameters, |scale| {
             let [te, tm] = scale.gains(density_cm3);
-            larger(te, tm).map(|(_, peak)| peak.peak_nm)
+            GainPeak::larger(te, tm).map(|(_, peak)| peak.peak_nm)
         })
         .ok()
         .flatten()
