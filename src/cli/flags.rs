@@ -440,7 +440,9 @@ The second file says what came back with the wafer:
   barrier_ratio_fixed = true
   moved = [\"well.thickness\", \"well.Ga\"]
 
-Exit code 4 where the data leave something open that no assumption settles.";
+Exit code 4 where the data leave something open that no assumption settles, or
+where no structure explains them; 5 where the wafer to be expected after the
+correction is outside a limit.";
 
 const SHEET_EXAMPLES: &str = "\
 Examples:

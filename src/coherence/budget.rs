@@ -126,6 +126,16 @@ pub struct Balance {
     pub thickness_factor: Option<f64>,
 }
 
+impl Balance {
+    /// The factor where anybody would grow it; barriers that had to be more than ten times as thick
+    /// have no strain to speak of.
+    #[must_use]
+    pub fn practicable_factor(&self) -> Option<f64> {
+        const MOST: f64 = 10.0;
+        self.thickness_factor.filter(|factor| *factor <= MOST)
+    }
+}
+
 /// The strain budget of a stack.
 #[derive(Clone, Debug, PartialEq)]
 pub struct StrainBudget {

@@ -86,6 +86,18 @@ impl CsvTable {
         }
     }
 
+    /// A table of rows that are known at once, each with the cells of the head.
+    fn of_rows(
+        name: &'static str,
+        heads: &[&str],
+        rows: impl IntoIterator<Item = Vec<Cell>>,
+    ) -> Self {
+        Self {
+            rows: rows.into_iter().collect(),
+            ..Self::new(name, heads)
+        }
+    }
+
     /// The table as a file.
     ///
     /// # Panics

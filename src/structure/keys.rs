@@ -586,7 +586,7 @@ pub(super) static LIMITS: Table = Table {
         Key {
             name: "barrier_kt_min",
             kind: number("kT", (0.0, 1_000.0), (1.0, 20.0)),
-            default: "4, common practice",
+            default: "none; below 4, common practice, a look",
             doc: "least height of the barriers above the first level, at the working temperature",
         },
         Key {

@@ -4,9 +4,15 @@
 use super::Desk;
 use super::page::bare;
 
-/// The page without figures, style, and the digits that it does not print.
+/// The page without figures, style, and the digits that it does not print; nor with the words of a
+/// check, which are looked at where `check` is.
 fn page(desk: &Desk) -> String {
-    let page = bare(&desk.read("out/sheet.html"));
+    let mut page = bare(&desk.read("out/sheet.html"));
+    if let Some(from) = page.find(">Remarks and findings</h2>") {
+        let rows = from + page[from..].find("<tbody").expect("a table");
+        let end = rows + page[rows..].find("</tbody>").expect("it ends");
+        page.replace_range(rows..end, "");
+    }
     let mut kept = String::new();
     let mut rest = page.as_str();
     while let Some(from) = rest.find("<data value=\"") {
