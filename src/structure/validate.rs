@@ -5,6 +5,7 @@ use super::growth::growth;
 use super::layers::Layers;
 use super::magnitude::check_magnitude;
 use super::number::shown;
+use super::order::order;
 use super::palette::Palette;
 use super::reader::{Field, Findings, Given};
 use super::{
@@ -47,6 +48,7 @@ pub(super) fn stack(
     let mut reading = Layers::new(palette, parameters, operation.temperature_k);
     let layers = reading.expanded(file.layers.as_ref(), findings);
     let growth = growth(&file.growth, findings);
+    let order = order(file.order.clone(), findings);
     let own_numbers = reading.palette().remarks(findings);
     if overrides.temperature_k.is_some() && !own_numbers.is_empty() {
         findings
@@ -70,6 +72,7 @@ pub(super) fn stack(
         target,
         growth,
         limits,
+        order,
     })
 }
 
