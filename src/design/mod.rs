@@ -9,6 +9,7 @@ mod draws;
 mod figures_of_merit;
 mod house_offset;
 mod movement;
+mod order;
 mod progress;
 mod reactor;
 mod reconcile;
@@ -24,6 +25,10 @@ pub use check::{Carrier, Finding, Measure, Scatter, Standing, check};
 pub use figures_of_merit::{FiguresOfMerit, ShareDrift};
 pub use house_offset::{HouseOffset, family};
 pub use movement::{Immovable, Impossible, Move, Quantity, Variation};
+pub use order::{
+    Audience, Conduction, Counts, Gap, House, Ordered, OrderedEnd, OrderedLayer, Period, PlTarget,
+    SPREAD_DRAWS, SPREAD_SEED, Targets, XrayTarget,
+};
 pub use progress::{Interrupted, Progress};
 pub use reactor::{Cause, Reactor, Variable};
 pub use reconcile::{
