@@ -111,6 +111,9 @@ pub fn restate(
     about: &About,
     parameters: &Parameters,
 ) -> Result<Restatement, Unclear> {
+    if let Some(unclear) = beside_the_point(quantity, about) {
+        return Err(unclear);
+    }
     match (quantity, about.around_nm) {
         (Quantity::Wavelength(_) | Quantity::Energy(_), Some(line_nm)) => {
             light::width(quantity, line_nm)
@@ -123,6 +126,71 @@ pub fn restate(
         (Quantity::Temperature(kelvin), _) => Ok(temperature(kelvin)),
         (Quantity::SheetDensity(_) | Quantity::VolumeDensity(_), _) => density(quantity, about),
     }
+}
+
+/// What is said about a quantity and does not bear on it: nothing is left out in silence, since who
+/// says it has something else in mind.
+fn beside_the_point(quantity: Quantity, about: &About) -> Option<Unclear> {
+    let is_light = matches!(quantity, Quantity::Wavelength(_) | Quantity::Energy(_));
+    let is_width = is_light && about.around_nm.is_some();
+    let is_photon = is_light && !is_width;
+    let is_strained = matches!(quantity, Quantity::Mismatch(..) | Quantity::Strain(..));
+    let what = match quantity {
+        _ if is_width => "a width",
+        Quantity::Wavelength(_) => "a wavelength",
+        Quantity::Energy(_) => "an energy",
+        Quantity::Temperature(_) => "a temperature",
+        Quantity::Mismatch(..) => "a mismatch",
+        Quantity::Strain(..) => "a strain",
+        Quantity::SheetDensity(_) | Quantity::VolumeDensity(_) => "a density",
+    };
+    let of_alloy = is_photon && about.alloy.is_some();
+    let said = [
+        (
+            "--air",
+            about.in_air,
+            is_photon && matches!(quantity, Quantity::Wavelength(_)),
+        ),
+        ("--pl", about.is_photoluminescence, is_photon),
+        (
+            "--at",
+            about.temperature_k.is_some(),
+            is_photon || is_strained,
+        ),
+        ("--around", about.around_nm.is_some(), is_light),
+        (
+            "--over",
+            about.over_nm.is_some(),
+            matches!(
+                quantity,
+                Quantity::SheetDensity(_) | Quantity::VolumeDensity(_)
+            ),
+        ),
+        (
+            "--mismatch",
+            about.kind.is_some(),
+            matches!(quantity, Quantity::Mismatch(..)),
+        ),
+        ("--on", about.substrate.is_some(), is_strained || of_alloy),
+        ("--layer", about.layer.is_some(), is_strained),
+        ("--alloy", about.alloy.is_some(), is_photon),
+        ("--strain", about.strain.is_some(), of_alloy),
+    ];
+    let (flag, ..) = said
+        .into_iter()
+        .find(|(_, is_said, bears)| *is_said && !bears)?;
+    let help = match flag {
+        "--air" if matches!(quantity, Quantity::Energy(_)) => {
+            "an energy is the same in air: leave it out"
+        }
+        "--air" if is_width => "a width belongs to a line in vacuum: leave it out",
+        "--on" if is_photon => "leave it out, or ask for the composition too: --alloy InGaAsP",
+        _ => "leave it out",
+    };
+    Some(Unclear::new(
+        format!("{flag} says nothing about {what}"),
+        help,
+    ))
 }
 
 fn temperature(kelvin: f64) -> Restatement {

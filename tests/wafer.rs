@@ -225,7 +225,7 @@ fn restate_goes_there_and_back() {
     );
     let peak = said(
         &["1100nm", "--at", "25C"],
-        "as a gap: photoluminescence of the bulk layer at 298.15 K, vacuum",
+        "as a gap: bulk photoluminescence at 298.15 K, vacuum",
         "nm",
     );
     let words = format!("{peak}nm");
@@ -243,7 +243,7 @@ fn restate_goes_there_and_back() {
         1100.0
             - said(
                 &["1100nm"],
-                "as a gap: photoluminescence of the bulk layer at 300 K, vacuum",
+                "as a gap: bulk photoluminescence at 300 K, vacuum",
                 "nm",
             ),
         12.5,
@@ -326,6 +326,17 @@ fn restate_asks_for_what_is_not_said() {
         (
             &["850ppm", "--mismatch", "relaxd", "--on", "InP"],
             "relaxed",
+        ),
+        (&["1,31um"], "1.31um"),
+        (&["0.9eV", "--air"], "the same in air"),
+        (&["35nm", "--around", "1310nm", "--air"], "in vacuum"),
+        (&["1310nm", "--mismatch", "relaxed"], "says nothing"),
+        (&["1310nm", "--over", "5nm"], "says nothing"),
+        (&["1310nm", "--on", "InP"], "--alloy"),
+        (&["85C", "--at", "25C"], "a temperature"),
+        (
+            &["1%compressive", "--mismatch", "relaxed", "--on", "InP"],
+            "a strain",
         ),
     ] {
         let mut all = vec!["restate"];
@@ -428,6 +439,60 @@ fn remarks_for_the_grower_come_where_they_belong() {
     let one_sided = wells(2, 0.2, 8.0, 10.0, 0.0).replacen("\"barrier\"", "\"confinement\"", 1);
     let (fence, _) = findings(&one_sided);
     assert_eq!(standing(&fence, "barrier-count"), ["look"]);
+}
+
+/// The tolerance of [target] against the scatter of [growth]: sigma is that of the linear law.
+#[test]
+fn a_tolerance_below_the_scatter_of_growth_is_said() {
+    let structure = format!(
+        "{}[model]\nbands = \"single\"\n",
+        wells(2, 0.2, 8.0, 20.0, 0.0)
+    );
+    let growth = "[growth]\nrate_percent = 1\nflux_percent = { In = 1, Ga = 1 }\n";
+    let with = |tolerance_nm: f64, growth: &str| {
+        format!(
+            "{structure}[target]\nkind = \"pl\"\nwavelength_nm = 990\nmedium = \"vacuum\"\n\
+             tolerance_nm = {tolerance_nm}\n{growth}"
+        )
+    };
+    let folder = tempfile::tempdir().expect("a folder");
+    let path = folder.path().join("case.toml");
+    std::fs::write(&path, with(5.0, growth)).expect("written");
+    let path = path.display().to_string();
+    let spread = document(&["spread", &path, "--draws", "1000", "--json", "--quiet"]);
+    let sigma_nm = spread["linear"]["sigma_nm"].as_f64().expect("a number");
+    assert!(sigma_nm > 0.5, "{sigma_nm}");
+    for (sigmas, expected) in [(2.1, "ok"), (1.5, "look"), (0.9, "outside")] {
+        let (found, ending) = findings(&with(sigmas * sigma_nm, growth));
+        assert_eq!(standing(&found, "growth-scatter"), [expected]);
+        assert_eq!(
+            ending == 5,
+            standing(&found, "target") == ["outside"] || expected == "outside"
+        );
+        let finding = found
+            .iter()
+            .find(|finding| finding["code"] == "growth-scatter")
+            .expect("there");
+        assert_eq!(finding["advice"].is_null(), expected == "ok");
+        let measure = |name: &str| {
+            let measures = finding["measures"].as_array().expect("a list");
+            let found = measures.iter().find(|it| it["name"] == name);
+            found.and_then(|it| it["value"].as_f64()).expect("a number")
+        };
+        assert_close(measure("sigma_nm"), sigma_nm, 1e-9);
+        // The share of a normal law within so many sigmas.
+        let share = 100.0 * libm::erf(sigmas / std::f64::consts::SQRT_2);
+        assert_close(measure("inside_if_centred_percent"), share, 1e-6);
+    }
+    let (unstated, _) = findings(
+        &with(5.0, "")
+            .replace("kind = \"pl\"\n", "")
+            .replace("medium = \"vacuum\"\n", ""),
+    );
+    assert_eq!(standing(&unstated, "target-assumed"), ["look"]);
+    let (silent, _) = findings(&with(5.0, ""));
+    assert!(standing(&silent, "target-assumed").is_empty());
+    assert!(standing(&silent, "growth-scatter").is_empty());
 }
 
 /// The promise of [target] against the layers: kept, broken, finer than a map can tell, and without

@@ -37,6 +37,13 @@ barrier_ratio_fixed = true
 moved = ["well.thickness", "well.Al"]
 "#;
 
+/// The shipped structure without its target, its growth and its limits.
+fn layers() -> String {
+    let shipped = fs::read_to_string("structures/estuary-1310.toml").expect("shipped");
+    let (layers, _) = shipped.split_once("\n[target]").expect("a target");
+    layers.to_owned()
+}
+
 struct Desk {
     folder: TempDir,
 }
@@ -46,8 +53,7 @@ impl Desk {
         let desk = Self {
             folder: TempDir::new().expect("a folder"),
         };
-        let shipped = fs::read_to_string("structures/estuary-1310.toml").expect("shipped");
-        desk.file("my.toml", &format!("{shipped}{ADDED}"));
+        desk.file("my.toml", &format!("{}{ADDED}", layers()));
         desk.file("returned.toml", RETURNED);
         desk
     }
@@ -171,9 +177,7 @@ fn a_spread_draws_its_figure_and_writes_its_tables_once() {
 #[test]
 fn a_spread_without_errors_or_window_says_what_to_write() {
     let desk = Desk::new();
-    let plain = "structures/estuary-1310.toml";
-    let shipped = fs::read_to_string(plain).expect("shipped");
-    desk.file("bare.toml", &shipped);
+    desk.file("bare.toml", &layers());
     let (code, _, err) = desk.run(&["spread", "bare.toml"]);
     assert_eq!(code, 3);
     assert!(err.contains("[growth]"), "{err}");
@@ -236,6 +240,77 @@ fn a_wafer_is_reconciled_and_its_document_has_its_keys() {
     }
 }
 
+/// The run that ships with its structure: as a peak, as the map beside it, and held against limits
+/// that the correction keeps or does not.
+#[test]
+fn the_shipped_run_is_explained_corrected_and_held_against_limits() {
+    let desk = Desk::new();
+    let shipped = fs::read_to_string("structures/estuary-1310.toml").expect("shipped");
+    let run = fs::read_to_string("structures/returned/e-0417.toml").expect("shipped");
+    desk.file("ordered.toml", &shipped);
+    desk.file("run.toml", &run);
+    let words = |file| ["reconcile", file, "run.toml", "--bands", "single", "--json"];
+    let document = desk.json(&words("ordered.toml"));
+    assert_eq!(document["next_is_outside"], false);
+    let figures = document["limits"].as_array().expect("a list");
+    let figure = |layers: &str, name: &str| {
+        let found = figures
+            .iter()
+            .find(|it| it["layers"] == layers && it["name"] == name);
+        found.unwrap_or_else(|| panic!("{layers} {name}: {figures:#?}"))
+    };
+    let strain = figure("6 × well", "strain_thickness_percent_nm");
+    let [ordered, grown, next] =
+        ["ordered", "grown", "next"].map(|key| strain[key].as_f64().expect("a number"));
+    // Most of the way back: 70 % of the estimate is corrected.
+    assert!((ordered - 5.5).abs() < 0.01 && grown > ordered, "{strain}");
+    assert!(
+        (next - ordered - 0.3 * (grown - ordered)).abs() < 0.01,
+        "{strain}"
+    );
+    assert_eq!(
+        (&strain["limit"], &strain["standing"]),
+        (&8.0.into(), &"ok".into())
+    );
+    let correction = &document["correction"][0];
+    let sum = number(correction, "/ordered") + number(correction, "/change");
+    assert!((number(correction, "/order_next") - sum).abs() < 1e-12);
+    // A limit between what was ordered and what will come: the correction does not reach it.
+    let between = format!("{:.4}", 0.5 * (ordered + next));
+    desk.file(
+        "limited.toml",
+        &shipped.replace(
+            "strain_thickness_percent_nm_max = 8",
+            &format!("strain_thickness_percent_nm_max = {between}"),
+        ),
+    );
+    let (code, out, err) = desk.run(&words("limited.toml"));
+    assert_eq!(code, 5, "{err}");
+    let limited: Value = serde_json::from_str(&out).expect("JSON");
+    assert_eq!(limited["next_is_outside"], true);
+    let (_, page, _) = desk.run(&words("limited.toml")[..5]);
+    assert!(page.contains("It is outside"), "{page}");
+    // The same run by its map.
+    let map = fs::read_to_string("structures/returned/e-0417.csv").expect("shipped");
+    desk.file("e-0417.csv", &map);
+    let by_map = run.replace("peak_nm = 1308.6 ", "map = \"e-0417.csv\" ");
+    assert_ne!(by_map, run);
+    desk.file("run.toml", &by_map);
+    let by_map = desk.json(&words("ordered.toml"));
+    let value = |document: &Value| number(&document["estimate"][0], "/value");
+    assert!((value(&by_map) - value(&document)).abs() < 1e-3);
+    assert!(by_map["assumed"].to_string().contains("decimal commas"));
+}
+
+#[test]
+fn a_reconciled_wafer_is_the_same_bytes_for_any_number_of_threads() {
+    let desk = Desk::new();
+    let words = ["reconcile", "my.toml", "returned.toml", "--json", "--quiet"];
+    let one = desk.run_with_threads(&words, "1");
+    assert_eq!(one.0, 0, "{}", one.2);
+    assert_eq!(one, desk.run_with_threads(&words, "2"));
+}
+
 #[test]
 fn what_is_open_is_named_and_ends_with_its_own_code() {
     let desk = Desk::new();
@@ -245,6 +320,20 @@ fn what_is_open_is_named_and_ends_with_its_own_code() {
     assert_eq!(code, 4, "{err}");
     assert!(page.contains("What the data do not tell"), "{page}");
     assert!(page.contains("barrier_ratio_fixed"), "{page}");
+    assert!(!page.contains("For the next order"), "{page}");
+}
+
+#[test]
+fn data_that_no_structure_explains_end_without_a_correction() {
+    let desk = Desk::new();
+    let far = RETURNED.replace("peak_nm = 1305.0", "peak_nm = 1480.0");
+    desk.file("far.toml", &far);
+    let (code, page, _) = desk.run(&["reconcile", "my.toml", "far.toml"]);
+    assert_eq!(code, 4);
+    assert!(
+        page.contains("No structure within these unknowns"),
+        "{page}"
+    );
     assert!(!page.contains("For the next order"), "{page}");
 }
 
@@ -328,7 +417,17 @@ fn a_ledger_grows_and_is_rewritten_with_force_only() {
     let (code, _, err) = desk.run(&[&words[..], &["--force"]].concat());
     assert_eq!(code, 0, "{err}");
     assert_eq!(desk.text("house.toml").matches("[[offsets]]").count(), 2);
-    // And it counts for the next one.
+    // It is not its own witness, and counts for the next one.
+    let words = [
+        "reconcile",
+        "my.toml",
+        "returned.toml",
+        "--ledger",
+        "house.toml",
+        "--json",
+    ];
+    let document = desk.json(&words);
+    assert_eq!(number(&document, "/house_offset/runs") as i64, 1);
     desk.file("returned.toml", &RETURNED.replace("0417", "0419"));
     let words = [
         "reconcile",

@@ -4,7 +4,7 @@
 use rayon::prelude::*;
 use stepwell::design::{
     HouseOffset, MODEL_NM, Reactor, Readings, Reconciliation, Request, Solving, Spread, Unknown,
-    reconcile, spread, unknowns,
+    estimate, reconcile, spread, unknowns,
 };
 use stepwell::diffraction::{Diffraction, MultiWell, Reflection};
 use stepwell::evaluation::Evaluation;
@@ -46,6 +46,11 @@ bands = "single"
 /// The same with wells of a quaternary: one unknown too many.
 fn quaternary() -> String {
     TERNARY.replace("In0.62Ga0.38As\"", "In0.72Ga0.28As0.8P0.2\"")
+}
+
+/// The first of them with mixed bands.
+fn mixed_bands() -> String {
+    TERNARY.replace("bands = \"single\"", "bands = \"mixed\"")
 }
 
 fn stack(text: &str) -> Stack {
@@ -140,6 +145,46 @@ fn wafers_solved_one_by_one_agree_with_the_quadratic() {
     for ((_, law), (_, solved)) in by_law.quantiles.iter().zip(&one_by_one.quantiles) {
         assert!((law - solved).abs() < 0.02, "{law} against {solved}");
     }
+}
+
+/// The design by mixed bands, the wafers about it by single ones: the middle is that of the full
+/// model, the slopes are nearly so, and what is said of the miss is what it is.
+#[test]
+fn with_mixed_bands_the_middle_is_full_and_the_miss_is_measured() {
+    let mixed = stack(&mixed_bands());
+    let parameters = Parameters::shipped();
+    let found = scattered(&mixed, &growth(), &request());
+    let evaluation = Evaluation::new(&mixed, &parameters).expect("levels");
+    let full = evaluation.wavelength_nm(Wavelength::Photoluminescence);
+    assert_eq!(Some(found.nominal_nm), full);
+    let by_single = scattered(&stack(TERNARY), &growth(), &request());
+    assert!((found.nominal_nm - by_single.nominal_nm).abs() > 1e-3);
+    let ratio = found.linear.sigma_nm / by_single.linear.sigma_nm;
+    assert!((ratio - 1.0).abs() < 0.02, "{ratio}");
+    let miss = found.miss.expect("checked");
+    assert_eq!(miss.checked + miss.unsolved, 8);
+    assert!(miss.worst_nm < 0.2 * found.linear.sigma_nm, "{miss:?}");
+    // One sigma more of the strongest variable, in full.
+    let reactor = Reactor::new(&mixed, &growth());
+    let strongest = &found.sensitivities[0];
+    let place = reactor
+        .variables
+        .iter()
+        .position(|variable| variable.cause == strongest.variable.cause)
+        .expect("a variable");
+    let mut point = vec![0.0; reactor.variables.len()];
+    point[place] = 1.0;
+    let moved = reactor.grown(&point);
+    let solved = Evaluation::new(&moved, &parameters).expect("levels");
+    let solved_nm = solved
+        .wavelength_nm(Wavelength::Photoluminescence)
+        .expect("a peak");
+    let miss_nm = solved_nm - found.nominal_nm - strongest.nm;
+    assert!(
+        miss_nm.abs() < 0.1 * strongest.nm.abs(),
+        "{miss_nm} of {}",
+        strongest.nm
+    );
 }
 
 #[test]
@@ -262,8 +307,9 @@ fn known_structures_are_found_again_within_their_stated_sigma() {
                 .collect();
             let noise = [deviates.draw(), deviates.draw(), deviates.draw()];
             let readings = seen(&grown, &parameters, noise);
-            found(&ordered, &readings, &unknowns)
-                .estimates
+            let offset = no_offset(&ordered);
+            estimate(&ordered, &parameters, &readings, &unknowns, &offset)
+                .expect("an estimate")
                 .iter()
                 .zip(truth)
                 .map(|(estimate, truth)| (estimate.value - truth) / estimate.sigma)
@@ -328,6 +374,38 @@ fn a_wide_well_is_found_named_and_corrected_in_part() {
         pl.ordered,
         pl.measured
     );
+}
+
+/// What came back of a wafer of mixed bands, explained by the full model: the same structure is found
+/// from its own data, and data of the estimate are what the full model gives for it.
+#[test]
+fn mixed_bands_find_their_own_structure_again() {
+    let ordered = stack(&mixed_bands());
+    let parameters = Parameters::shipped();
+    let unknowns = unknowns(&ordered, &Assumptions::default()).expect("named");
+    let mut grown = ordered.clone();
+    for (unknown, sigmas) in unknowns.iter().zip([0.6, -0.4, 0.5]) {
+        unknown.shift(&mut grown, sigmas * unknown.prior_sigma);
+    }
+    let readings = seen(&grown, &parameters, [0.0; 3]);
+    let result = found(&ordered, &readings, &unknowns);
+    for (estimate, sigmas) in result.estimates.iter().zip([0.6, -0.4, 0.5]) {
+        let truth = estimate.ordered + sigmas * estimate.prior_sigma;
+        // The prior pulls towards the order, by less than the data leave open.
+        assert!(
+            (estimate.value - truth).abs() < estimate.sigma,
+            "{estimate:?} of {truth}"
+        );
+    }
+    assert!(result.estimated_chi_square < 0.1, "{result:#?}");
+    let followed = result.followed_miss_nm.expect("mixed bands");
+    assert!(followed < 0.5, "{followed}");
+    let by_single = found(
+        &stack(TERNARY),
+        &seen(&stack(TERNARY), &parameters, [0.0; 3]),
+        &unknowns,
+    );
+    assert_eq!(by_single.followed_miss_nm, None);
 }
 
 #[test]

@@ -130,6 +130,11 @@ impl Case {
         &self.source.content
     }
 
+    /// SHA-256 of the bytes of the file.
+    pub(super) fn sha256(&self) -> &str {
+        &self.source.sha256
+    }
+
     /// The same file under other conditions.
     pub(super) fn under(self, overrides: &Overrides, outlet: &Outlet) -> Result<Self, Complaint> {
         let reading = structure::read(&self.source.content, &self.parameters, overrides).map_err(

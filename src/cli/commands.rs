@@ -108,6 +108,10 @@ pub(super) fn spectrum(flags: &flags::Spectrum, outlet: &Outlet) -> Result<Endin
 
 /// `stepwell check FILE`.
 pub(super) fn check(flags: &flags::Check, outlet: &Outlet) -> Result<Ending, Complaint> {
+    let is_json = |ending: &std::ffi::OsStr| ending.eq_ignore_ascii_case("json");
+    if flags.file.path.extension().is_some_and(is_json) {
+        return super::sheet::check(flags, outlet);
+    }
     let overrides = overrides(&flags.conditions)?;
     let destinations = Destinations::new(&flags.output, None, None, &["findings"])?;
     let case = Case::read(

@@ -50,6 +50,9 @@ pub(super) enum Command {
     /// Structures side by side, or a well beside its bulk, at equal density, current or gain
     #[command(after_help = WEIGH_EXAMPLES, term_width = COLUMNS)]
     Weigh(Weigh),
+    /// The design sheet of an epitaxy order, for the grower or for the house
+    #[command(after_help = SHEET_EXAMPLES, term_width = COLUMNS)]
+    Sheet(Sheet),
     /// What X-rays see of the wafer: peaks, zero order, satellites, rocking curve
     #[command(after_help = XRAY_EXAMPLES, term_width = COLUMNS)]
     Xray(Xray),
@@ -178,6 +181,30 @@ pub(super) struct Reconcile {
     pub(super) damping: String,
     #[command(flatten)]
     pub(super) output: Output,
+}
+
+#[derive(Debug, Args)]
+pub(super) struct Sheet {
+    #[command(flatten)]
+    pub(super) file: StructureFile,
+    /// Who reads it: grower (what to grow, not what for), or house (everything)
+    #[arg(long = "for", value_name = "READER")]
+    pub(super) audience: String,
+    /// Folder for sheet.html, layers.csv, sheet.json and the figures
+    #[arg(long, value_name = "FOLDER")]
+    pub(super) out: Option<PathBuf>,
+    /// Tell what has changed since an earlier sheet
+    #[arg(long, value_name = "SHEET.json")]
+    pub(super) since: Option<PathBuf>,
+    /// The record as one JSON document in place of the summary
+    #[arg(long)]
+    pub(super) json: bool,
+    /// Leave out the remarks on standard error
+    #[arg(long, short)]
+    pub(super) quiet: bool,
+    /// Write over files that exist
+    #[arg(long)]
+    pub(super) force: bool,
 }
 
 #[derive(Debug, Args)]
@@ -347,7 +374,7 @@ never written over without --force. NO_COLOR switches colours off.
 Exit code:
   0 done   1 the computation failed   2 the command line is wrong
   3 the input is wrong   4 no answer inside the limits
-  5 checked and found outside
+  5 checked and found outside   130 interrupted (Ctrl-C)
 
 `stepwell manual | man -l -` shows all this with every key of the file.";
 
@@ -379,10 +406,12 @@ const CHECK_EXAMPLES: &str = "\
 Examples:
   stepwell check my.toml
   stepwell check my.toml --at 85C || echo look at it
+  stepwell check order/sheet.json
 
 Each finding has a code and stands ok (inside its limit), stated (a figure
 without a limit), look (worth a look) or outside. Exit code 5 if anything is
-outside.";
+outside. A design sheet (sheet.json) is computed again from the structure that
+it holds: exit code 5 if anything on it was edited by hand.";
 
 const SPREAD_EXAMPLES: &str = "\
 Examples:
@@ -418,7 +447,23 @@ The second file says what came back with the wafer:
   barrier_ratio_fixed = true
   moved = [\"well.thickness\", \"well.Ga\"]
 
-Exit code 4 where the data leave something open that no assumption settles.";
+Exit code 4 where the data leave something open that no assumption settles, or
+where no structure explains them; 5 where the wafer to be expected after the
+correction is outside a limit.";
+
+const SHEET_EXAMPLES: &str = "\
+Examples:
+  stepwell sheet my.toml --for grower --out order-b/
+  stepwell sheet my.toml --for house --out house-b/
+  stepwell sheet my.toml --for grower --out order-c/ --since order-b/sheet.json
+  stepwell check order-c/sheet.json
+
+What the sheet says beside the layers stands in [order]: name, revision,
+quantity, substrates, tolerances, acceptance, handling. What is left out is
+printed as common practice and marked so, or asked for. The grower's copy holds
+no gain, no conditions of the device and no title of the structure.
+Any browser prints the page on A4 or Letter. `check` with a sheet.json computes
+it again from its own structure: a sheet edited by hand is found out.";
 
 const XRAY_EXAMPLES: &str = "\
 Examples:
@@ -491,6 +536,7 @@ mod tests {
             AIM_EXAMPLES,
             CHART_EXAMPLES,
             WEIGH_EXAMPLES,
+            SHEET_EXAMPLES,
             XRAY_EXAMPLES,
             RESTATE_EXAMPLES,
             MATERIALS_EXAMPLES,

@@ -14,6 +14,7 @@ mod manual;
 mod moves;
 mod outlet;
 mod reconcile;
+mod sheet;
 mod shipped;
 mod spread;
 mod wafer;
@@ -95,6 +96,7 @@ fn obey(flags: Flags, outlet: &Outlet) -> Result<Ending, Complaint> {
         Some(Command::Aim(flags)) => design::aim(&flags, outlet),
         Some(Command::Chart(flags)) => design::chart(&flags, outlet),
         Some(Command::Weigh(flags)) => design::weigh(&flags, outlet),
+        Some(Command::Sheet(flags)) => sheet::sheet(&flags, outlet),
         Some(Command::Xray(flags)) => wafer::xray(&flags, outlet),
         Some(Command::Restate(flags)) => wafer::restate(&flags, outlet),
         Some(Command::Materials(flags)) => commands::materials(&flags, outlet),

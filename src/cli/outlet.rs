@@ -172,18 +172,31 @@ impl Files {
     }
 }
 
-/// Writes behind what a file holds; a file that is not there is made, with `head` before.
+/// Writes behind what a file holds; a file that is not there is made, with `head` before. Where it
+/// can't be written whole the file is left as it was.
 pub(super) fn append(path: &Path, head: &str, text: &str) -> Result<(), Complaint> {
     let opened = fs::OpenOptions::new().append(true).open(path);
     match opened {
-        Ok(mut file) => file
-            .write_all(text.as_bytes())
+        Ok(mut file) => whole_or_nothing(&mut file, |file| file.write_all(text.as_bytes()))
             .map_err(|error| unwritable(path, &error)),
         Err(error) if error.kind() == ErrorKind::NotFound => {
             Files::new(false).write(path, &format!("{head}{text}"))
         }
         Err(error) => Err(unwritable(path, &error)),
     }
+}
+
+/// Writes behind what a file holds; what was written of it is cut off again where that fails.
+fn whole_or_nothing(
+    file: &mut fs::File,
+    write: impl FnOnce(&mut fs::File) -> io::Result<()>,
+) -> io::Result<()> {
+    let before = file.metadata()?.len();
+    let written = write(file).and_then(|()| file.sync_data());
+    if written.is_err() {
+        file.set_len(before)?;
+    }
+    written
 }
 
 fn is_in_the_way(path: &Path) -> bool {
@@ -199,7 +212,8 @@ fn in_the_way(path: &Path) -> Complaint {
         .with_remedy("--force writes over it")
 }
 
-fn unwritable(path: &Path, error: &io::Error) -> Complaint {
+/// Why a file can't be written.
+pub(super) fn unwritable(path: &Path, error: &io::Error) -> Complaint {
     let complaint = |message: String| Complaint::new(Ending::Failed, message);
     let shown = path.display();
     match error.kind() {
@@ -211,5 +225,29 @@ fn unwritable(path: &Path, error: &io::Error) -> Complaint {
             complaint(format!("`{shown}` can't be written: it is not allowed"))
         }
         _ => complaint(format!("`{shown}` can't be written: {error}")),
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn an_append_that_stops_halfway_leaves_the_old_file() {
+        let folder = tempfile::tempdir().expect("a folder");
+        let path = folder.path().join("ledger.toml");
+        fs::write(&path, "old\n").expect("written");
+        let mut file = fs::OpenOptions::new()
+            .append(true)
+            .open(&path)
+            .expect("there");
+        let stopped = whole_or_nothing(&mut file, |file| {
+            file.write_all(b"half an en")?;
+            Err(io::Error::other("the disk is full"))
+        });
+        assert!(stopped.is_err());
+        assert_eq!(fs::read_to_string(&path).expect("there"), "old\n");
+        append(&path, "head\n", "new\n").expect("written");
+        assert_eq!(fs::read_to_string(&path).expect("there"), "old\nnew\n");
     }
 }

@@ -28,7 +28,14 @@ pub(super) fn reconcile(flags: &flags::Reconcile, outlet: &Outlet) -> Result<End
         bands: flags.bands.as_deref().map(bands).transpose()?,
         ..Overrides::default()
     };
-    let tables = ["estimate", "data", "correlation", "causes", "correction"];
+    let tables = [
+        "estimate",
+        "data",
+        "correlation",
+        "causes",
+        "correction",
+        "limits",
+    ];
     let destinations = Destinations::new(&flags.output, None, None, &tables)?;
     let mut case = Case::read(
         &flags.file.path,
@@ -67,10 +74,13 @@ pub(super) fn reconcile(flags: &flags::Reconcile, outlet: &Outlet) -> Result<End
         }
         _ => None,
     };
+    // A wafer is not its own witness, whether it is recorded now or was before.
+    let mut others = ledger;
+    others.entries.retain(|(_, it)| it.run != returned.run);
     let model_nm = stack.growth.and_then(|growth| growth.model_nm);
     let offset = HouseOffset::of(
         stack,
-        recorder.as_ref().map_or(&ledger, |it| &it.earlier),
+        &others,
         model_nm.unwrap_or(MODEL_NM),
         readings.pl_nm.map_or(WITHOUT_PEAK_NM, |pl| pl.value),
     );
@@ -99,10 +109,13 @@ pub(super) fn reconcile(flags: &flags::Reconcile, outlet: &Outlet) -> Result<End
         || json::reconcile(&wafer, &stamp),
         || sheet::reconcile(&wafer, &stamp, outlet.colour()),
     )?;
-    Ok(if result.undetermined.is_empty() {
-        Ending::Done
-    } else {
+    let is_open = !result.undetermined.is_empty() || !result.explains_the_data();
+    Ok(if is_open {
         Ending::Unanswered
+    } else if result.next_is_outside() {
+        Ending::Outside
+    } else {
+        Ending::Done
     })
 }
 
@@ -166,8 +179,6 @@ fn entry(
 struct Recorder<'a> {
     path: &'a Path,
     entry: LedgerEntry,
-    /// The ledger without this run: a wafer is not its own witness.
-    earlier: Ledger,
     /// The whole text where an entry is replaced; else the entry goes behind what is there.
     replaced: Option<String>,
 }
@@ -180,9 +191,7 @@ impl<'a> Recorder<'a> {
         entry: LedgerEntry,
         force: bool,
     ) -> Result<Self, Complaint> {
-        let mut earlier = ledger.clone();
-        earlier.entries.retain(|(_, it)| !it.is_of_run(&entry));
-        let is_new = earlier.entries.len() == ledger.entries.len();
+        let is_new = !ledger.entries.iter().any(|(_, it)| it.is_of_run(&entry));
         let replaced = match text {
             Some(text) if !is_new => {
                 if !force {
@@ -201,7 +210,6 @@ impl<'a> Recorder<'a> {
         Ok(Self {
             path,
             entry,
-            earlier,
             replaced,
         })
     }

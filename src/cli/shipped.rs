@@ -28,20 +28,32 @@ const STRUCTURES: [(&str, &str); 9] = [
     structure!("every-key"),
 ];
 
-/// Names of the structures.
-pub(super) fn names() -> impl Iterator<Item = &'static str> {
-    STRUCTURES.iter().map(|(name, _)| *name)
+/// Name and text of what came back with a wafer of one of them.
+const RETURNED: (&str, &str) = (
+    "e-0417",
+    include_str!("../../structures/returned/e-0417.toml"),
+);
+
+fn shipped() -> impl Iterator<Item = (&'static str, &'static str)> {
+    STRUCTURES.into_iter().chain([RETURNED])
 }
 
-/// `stepwell new`: the list, or one structure as it is.
+/// Names of the structures, and of what came back.
+pub(super) fn names() -> impl Iterator<Item = &'static str> {
+    shipped().map(|(name, _)| name)
+}
+
+/// `stepwell new`: the list, or one file as it is.
 pub(super) fn write(name: Option<&str>, outlet: &Outlet) -> Result<Ending, Complaint> {
     let Some(name) = name else {
-        let entries = STRUCTURES.map(|(name, text)| (name, purpose(text)));
+        let entries: Vec<_> = shipped()
+            .map(|(name, text)| (name, purpose(text)))
+            .collect();
         print(&sheet::starting_structures(&entries, outlet.colour()))?;
         return Ok(Ending::Done);
     };
     let plain = name.strip_suffix(".toml").unwrap_or(name);
-    let Some((_, text)) = STRUCTURES.iter().find(|(known, _)| *known == plain) else {
+    let Some((_, text)) = shipped().find(|(known, _)| *known == plain) else {
         let complaint = Complaint::usage(format!("there is no structure `{name}`"));
         return Err(complaint.with_remedy(nearest(plain, names()).map_or_else(
             || format!("one of {}", one_of(names())),
@@ -77,7 +89,7 @@ mod tests {
             .filter(|path| path.extension().is_some_and(|it| it == "toml"))
             .filter_map(|path| Some(path.file_stem()?.to_str()?.to_owned()))
             .collect();
-        let mut shipped: Vec<&str> = names().collect();
+        let mut shipped: Vec<&str> = STRUCTURES.iter().map(|(name, _)| *name).collect();
         files.sort();
         shipped.sort_unstable();
         assert_eq!(files, shipped);
@@ -85,7 +97,7 @@ mod tests {
 
     #[test]
     fn every_structure_says_what_it_is_for() {
-        for (name, text) in STRUCTURES {
+        for (name, text) in shipped() {
             let purpose = purpose(text);
             assert!(
                 (20..160).contains(&purpose.chars().count()),

@@ -330,7 +330,7 @@ impl Destinations {
     }
 }
 
-fn make_folder(folder: &Path) -> Result<(), Complaint> {
+pub(super) fn make_folder(folder: &Path) -> Result<(), Complaint> {
     std::fs::create_dir_all(folder).map_err(|error| {
         Complaint::new(
             super::Ending::Failed,

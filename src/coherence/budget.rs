@@ -126,6 +126,16 @@ pub struct Balance {
     pub thickness_factor: Option<f64>,
 }
 
+impl Balance {
+    /// The factor where anybody would grow it; barriers that had to be more than ten times as thick
+    /// have no strain to speak of.
+    #[must_use]
+    pub fn practicable_factor(&self) -> Option<f64> {
+        const MOST: f64 = 10.0;
+        self.thickness_factor.filter(|factor| *factor <= MOST)
+    }
+}
+
 /// The strain budget of a stack.
 #[derive(Clone, Debug, PartialEq)]
 pub struct StrainBudget {
@@ -143,6 +153,13 @@ pub struct StrainBudget {
 type Share = (Crystal, f64);
 
 impl StrainBudget {
+    /// The well that uses most of its critical thickness.
+    #[must_use]
+    pub fn tightest_well(&self) -> Option<&LayerStrain> {
+        let wells = self.layers.iter().filter(|layer| layer.role == Role::Well);
+        wells.max_by(|a, b| a.critical_share().total_cmp(&b.critical_share()))
+    }
+
     /// The budget of a stack at its working temperature.
     #[must_use]
     pub fn new(stack: &Stack, parameters: &Parameters) -> Self {

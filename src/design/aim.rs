@@ -7,17 +7,21 @@
 //! Every solution goes through the text of its file: it is what the file says once it is read back,
 //! rounding and all.
 
+mod lines;
+mod nearest;
+
+pub use nearest::{Binding, Nearest};
+
 use rayon::prelude::*;
 
 use super::figures_of_merit::FiguresOfMerit;
 use super::movement::Variation;
 use super::progress::{Interrupted, Progress};
-use crate::evaluation::Evaluation;
-use crate::numerics::contour::{Grid, Line};
-use crate::numerics::roots::bracketed_root;
+use super::spread::in_vacuum_nm;
+use crate::evaluation::emission_nm;
 use crate::numerics::survey::{Look, survey};
 use crate::structure::{Bands, Medium, Overrides, Stack, Target, Wavelength, read};
-use crate::units::{air, wavelength_nm};
+use crate::units::air;
 
 /// A wavelength that misses by less is met, nm: what rounding in the file may leave.
 pub const MET_NM: f64 = 0.01;
@@ -49,10 +53,7 @@ impl Aim {
     /// The wavelength in vacuum, nm.
     #[must_use]
     pub fn vacuum_nm(&self) -> f64 {
-        match self.medium {
-            Medium::Vacuum => self.wavelength_nm,
-            Medium::Air => air::vacuum_nm(self.wavelength_nm),
-        }
+        in_vacuum_nm(self.wavelength_nm, self.medium)
     }
 }
 
@@ -89,32 +90,6 @@ pub struct Solution {
     pub figures: FiguresOfMerit,
 }
 
-/// The structure that comes nearest where none meets the aim.
-#[derive(Clone, Debug, PartialEq)]
-pub struct Nearest {
-    /// Values of the moves.
-    pub values: Vec<f64>,
-    /// Its wavelength, nm in the medium of the aim.
-    pub wavelength_nm: f64,
-    /// By how much it misses, nm: positive if it is too long.
-    pub miss_nm: f64,
-    /// What keeps it from coming nearer.
-    pub binds: Vec<Binding>,
-}
-
-/// What keeps a structure from coming nearer to the aim.
-#[derive(Clone, Debug, PartialEq)]
-pub enum Binding {
-    /// A move at its lowest value.
-    Lowest(usize),
-    /// A move at its highest value.
-    Highest(usize),
-    /// Beyond it there is no level, no such composition, or no peak.
-    Existence(usize),
-    /// The wavelength turns.
-    Turn,
-}
-
 /// What came of an aim.
 #[derive(Clone, Debug, PartialEq)]
 pub struct Outcome {
@@ -122,10 +97,13 @@ pub struct Outcome {
     pub solutions: Vec<Solution>,
     /// Where there is no solution, the nearest structure, if there is any structure at all.
     pub nearest: Option<Nearest>,
-    /// Lowest and highest wavelength seen, nm in the medium of the aim.
+    /// Where there is no solution, the lowest and highest wavelength seen, nm in the medium of the
+    /// aim.
     pub range_nm: Option<(f64, f64)>,
     /// Values at which the wavelength jumps over the aim: no solution, and worth knowing.
     pub jumps: usize,
+    /// Solutions that a file with its digits misses by more than [`MET_NM`]: left out.
+    pub unsaid: usize,
 }
 
 /// Why nothing came of an aim.
@@ -178,7 +156,7 @@ pub fn aim(
 struct Found {
     /// Shares and the number of the line.
     solutions: Vec<(Vec<f64>, usize)>,
-    /// Every structure looked at with its miss in nm.
+    /// Every structure looked at with its miss in nm, which may be a guess.
     seen: Vec<(Vec<f64>, f64)>,
     jumps: usize,
 }
@@ -203,13 +181,19 @@ impl Hunt<'_> {
 
     /// How much a structure is too long, nm in vacuum; `None` where there is none.
     fn miss_nm(&self, shares: &[f64]) -> Option<f64> {
+        self.miss_with(shares, self.variation.stack.model.bands)
+    }
+
+    /// The same with the valence bands treated in another way.
+    fn miss_with(&self, shares: &[f64], bands: Bands) -> Option<f64> {
         if self.progress.is_stopped() {
             return None;
         }
-        let stack = self.variation.stack(&self.values(shares)).ok()?;
-        let found = wavelength_of(&stack, self.variation, self.aim.kind);
+        let mut stack = self.variation.stack(&self.values(shares)).ok()?;
+        stack.model.bands = bands;
+        let found = emission_nm(&stack, self.variation.parameters, self.aim.kind);
         self.progress.step();
-        Some(found? - self.aim.vacuum_nm())
+        Some(found.ok()?? - self.aim.vacuum_nm())
     }
 
     fn check_stop(&self) -> Result<(), Interrupted> {
@@ -254,59 +238,6 @@ impl Hunt<'_> {
         Ok(found)
     }
 
-    /// The lines of solutions over the first two moves, the others at given shares.
-    fn over_two(&self, others: &[f64], samples: usize) -> Result<Found, Interrupted> {
-        let count = if self.is_mixed() { 13 } else { 33 };
-        let axis: Vec<f64> = (0..count)
-            .map(|at| at as f64 / (count - 1) as f64)
-            .collect();
-        let at = |x: f64, y: f64| -> Vec<f64> { [&[x, y], others].concat() };
-        let values: Vec<Option<f64>> = (0..count * count)
-            .into_par_iter()
-            .map(|place| self.miss_nm(&at(axis[place % count], axis[place / count])))
-            .collect();
-        self.check_stop()?;
-        let seen = values
-            .iter()
-            .enumerate()
-            .filter_map(|(place, miss)| {
-                Some((at(axis[place % count], axis[place / count]), (*miss)?))
-            })
-            .collect();
-        let grid = Grid {
-            x: &axis,
-            y: &axis,
-            values: &values,
-        };
-        let surface = Surface {
-            miss_nm: &|x, y| self.miss_nm(&at(x, y)),
-            reach: 1.0 / (count - 1) as f64,
-        };
-        let mut lines = grid.lines(0.0);
-        for line in &mut lines {
-            surface.lengthen(line);
-        }
-        let wanted = sampled(&lines, samples);
-        let refined: Vec<Option<(f64, f64, usize)>> = wanted
-            .par_iter()
-            .map(|sample| {
-                let (x, y) = surface.refined(sample.at, sample.along)?;
-                Some((x, y, sample.line))
-            })
-            .collect();
-        self.check_stop()?;
-        let jumps = refined.iter().filter(|it| it.is_none()).count();
-        Ok(Found {
-            solutions: refined
-                .into_iter()
-                .flatten()
-                .map(|(x, y, line)| (at(x, y), line))
-                .collect(),
-            seen,
-            jumps,
-        })
-    }
-
     /// Solutions as files read back, or the nearest structure.
     fn outcome(&self, found: &Found) -> Result<Outcome, AimError> {
         let solutions: Vec<Solution> = found
@@ -315,24 +246,29 @@ impl Hunt<'_> {
             .filter_map(|(shares, line)| self.solution(shares, *line))
             .collect();
         self.check_stop()?;
-        let misses = || found.seen.iter().map(|it| it.1);
-        let least = misses().fold(f64::INFINITY, f64::min);
-        let most = misses().fold(f64::NEG_INFINITY, f64::max);
-        let nearest = if solutions.is_empty() {
-            let best = found
-                .seen
-                .iter()
-                .min_by(|a, b| a.1.abs().total_cmp(&b.1.abs()));
-            best.map(|(shares, miss)| self.nearest(shares, *miss))
+        let unsaid = found.solutions.len() - solutions.len();
+        let (nearest, range_nm) = if solutions.is_empty() {
+            (self.nearest(&found.seen), self.range_nm(&found.seen))
         } else {
-            None
+            (None, None)
         };
+        self.check_stop()?;
         Ok(Outcome {
             solutions,
             nearest,
-            range_nm: (least <= most).then(|| (self.shown_nm(least), self.shown_nm(most))),
+            range_nm,
             jumps: found.jumps,
+            unsaid,
         })
+    }
+
+    /// Lowest and highest wavelength of what was seen, nm in the medium of the aim.
+    fn range_nm(&self, seen: &[(Vec<f64>, f64)]) -> Option<(f64, f64)> {
+        let least = seen.iter().min_by(|a, b| a.1.total_cmp(&b.1))?;
+        let most = seen.iter().max_by(|a, b| a.1.total_cmp(&b.1))?;
+        // What was seen may be a guess.
+        let exact = |it: &(Vec<f64>, f64)| self.miss_nm(&it.0).unwrap_or(it.1);
+        Some((self.shown_nm(exact(least)), self.shown_nm(exact(most))))
     }
 
     /// A wavelength in the medium of the aim, from how much it misses in vacuum.
@@ -361,68 +297,6 @@ impl Hunt<'_> {
             figures,
         })
     }
-
-    /// The nearest structure around the best one seen: a search along the moves with halved steps.
-    fn nearest(&self, shares: &[f64], miss_nm: f64) -> Nearest {
-        const FINEST: f64 = 1e-4;
-        let mut best = (shares.to_vec(), miss_nm);
-        let mut step = 0.05;
-        while step > FINEST {
-            let trials: Vec<(Vec<f64>, f64)> = (0..2 * shares.len())
-                .into_par_iter()
-                .filter_map(|trial| {
-                    let mut shares = best.0.clone();
-                    let sign = if trial % 2 == 0 { step } else { -step };
-                    shares[trial / 2] = (shares[trial / 2] + sign).clamp(0.0, 1.0);
-                    let miss_nm = self.miss_nm(&shares)?;
-                    Some((shares, miss_nm))
-                })
-                .collect();
-            let better = trials
-                .into_iter()
-                .min_by(|a, b| a.1.abs().total_cmp(&b.1.abs()))
-                .filter(|trial| trial.1.abs() < best.1.abs());
-            match better {
-                Some(trial) => best = trial,
-                None => step *= 0.5,
-            }
-        }
-        let mut binds = Vec::new();
-        for (index, &share) in best.0.iter().enumerate() {
-            if share <= FINEST {
-                binds.push(Binding::Lowest(index));
-            } else if share >= 1.0 - FINEST {
-                binds.push(Binding::Highest(index));
-            } else {
-                let beyond = [-4.0, 4.0].map(|steps| {
-                    let mut shares = best.0.clone();
-                    shares[index] = (share + steps * FINEST).clamp(0.0, 1.0);
-                    self.miss_nm(&shares)
-                });
-                if beyond.iter().any(Option::is_none) {
-                    binds.push(Binding::Existence(index));
-                }
-            }
-        }
-        if binds.is_empty() {
-            binds.push(Binding::Turn);
-        }
-        Nearest {
-            values: self.values(&best.0),
-            wavelength_nm: self.shown_nm(best.1),
-            miss_nm: best.1,
-            binds,
-        }
-    }
-}
-
-/// The wavelength of a structure of a variation, nm in vacuum.
-fn wavelength_of(stack: &Stack, variation: &Variation<'_>, kind: Wavelength) -> Option<f64> {
-    let evaluation = Evaluation::new(stack, variation.parameters).ok()?;
-    match kind {
-        Wavelength::Transition => Some(wavelength_nm(evaluation.first_transition_ev())),
-        other => evaluation.wavelength_nm(other),
-    }
 }
 
 /// A structure as read back, under the conditions of the one it came from.
@@ -432,131 +306,4 @@ fn conditions_of(stack: Stack, original: &Stack) -> Stack {
         model: original.model,
         ..stack
     }
-}
-
-/// A miss over two shares.
-struct Surface<'a> {
-    miss_nm: &'a (dyn Fn(f64, f64) -> Option<f64> + Sync),
-    /// One square of the grid.
-    reach: f64,
-}
-
-/// A point of a line of solutions before it is refined.
-struct Sample {
-    at: (f64, f64),
-    /// Direction of the line there.
-    along: (f64, f64),
-    /// Number of the line, from 1.
-    line: usize,
-}
-
-impl Surface<'_> {
-    /// The solution nearest to a point of a line, looked for across the line; at a bound of one
-    /// share, along that bound.
-    fn refined(&self, at: (f64, f64), along: (f64, f64)) -> Option<(f64, f64)> {
-        const EDGE: f64 = 1e-9;
-        let is_bound = |share: f64| !(EDGE..=1.0 - EDGE).contains(&share);
-        let across = match (is_bound(at.0), is_bound(at.1)) {
-            (true, false) => (0.0, 1.0),
-            (false, true) => (1.0, 0.0),
-            _ => (-along.1, along.0),
-        };
-        let place = |step: f64| {
-            let inside = |share: f64, direction: f64| (share + step * direction).clamp(0.0, 1.0);
-            (inside(at.0, across.0), inside(at.1, across.1))
-        };
-        let miss = |step: f64| {
-            let (x, y) = place(step);
-            (self.miss_nm)(x, y)
-        };
-        let here = miss(0.0)?;
-        if here.abs() <= 1e-6 {
-            return Some(at);
-        }
-        let mut bracket = None;
-        for size in [0.1, 0.3, 1.0, 2.0] {
-            let steps = [size * self.reach, -size * self.reach];
-            bracket = steps
-                .into_iter()
-                .find(|&step| miss(step).is_some_and(|there| (there > 0.0) != (here > 0.0)));
-            if bracket.is_some() {
-                break;
-            }
-        }
-        let end = bracket?;
-        let step = bracketed_root(|step| miss(step).unwrap_or(f64::NAN), 0.0, end, 1e-9);
-        (miss(step)?.abs() <= CERTIFIED_NM).then(|| place(step))
-    }
-
-    /// Continues the open ends of a line that stop short of the bounds, to where there is no
-    /// structure any more.
-    fn lengthen(&self, line: &mut Line) {
-        if line.closed {
-            return;
-        }
-        for _ in 0..2 {
-            line.points.reverse();
-            let mut step = 0.5 * self.reach;
-            while step > 0.05 * self.reach {
-                let [.., before, last] = line.points.as_slice() else {
-                    break;
-                };
-                let is_bound = |share: f64| share <= 0.0 || share >= 1.0;
-                if is_bound(last.0) || is_bound(last.1) {
-                    break;
-                }
-                let along = direction(*before, *last);
-                let ahead = (
-                    (last.0 + step * along.0).clamp(0.0, 1.0),
-                    (last.1 + step * along.1).clamp(0.0, 1.0),
-                );
-                match self.refined(ahead, along) {
-                    Some(next) if direction(*last, next) != (0.0, 0.0) => line.points.push(next),
-                    _ => step *= 0.5,
-                }
-                if line.points.len() > 10_000 {
-                    break;
-                }
-            }
-        }
-    }
-}
-
-fn direction(from: (f64, f64), to: (f64, f64)) -> (f64, f64) {
-    let (x, y) = (to.0 - from.0, to.1 - from.1);
-    let length = x.hypot(y);
-    if length > 0.0 {
-        (x / length, y / length)
-    } else {
-        (0.0, 0.0)
-    }
-}
-
-/// Points evenly along all lines, the ends of open ones among them, each line at least one.
-fn sampled(lines: &[Line], samples: usize) -> Vec<Sample> {
-    let measured: Vec<Vec<f64>> = lines.iter().map(|line| line.lengths((1.0, 1.0))).collect();
-    let length = |lengths: &Vec<f64>| lengths.last().copied().unwrap_or(0.0);
-    let total: f64 = measured.iter().map(length).sum();
-    let mut wanted = Vec::new();
-    for (index, (line, lengths)) in lines.iter().zip(&measured).enumerate() {
-        let whole = length(lengths);
-        let share = whole / total.max(f64::MIN_POSITIVE);
-        let count = ((samples as f64 * share).round() as usize).max(1);
-        for at in 0..count {
-            let along = if line.closed || count == 1 {
-                (at as f64 + 0.5) / count as f64
-            } else {
-                at as f64 / (count - 1) as f64
-            } * whole;
-            let near = 1e-3 * whole;
-            let before = line.at((along - near).max(0.0), lengths);
-            let after = line.at((along + near).min(whole), lengths);
-            wanted.push(Sample {
-                at: line.at(along, lengths),
-                along: direction(before, after),
-                line: index + 1,
-            });
-        }
-    }
-    wanted
 }

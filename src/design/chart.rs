@@ -11,8 +11,8 @@ use rayon::prelude::*;
 use super::movement::Variation;
 use super::progress::{Interrupted, Progress};
 use crate::coherence::{CriticalThickness, StrainBudget};
-use crate::evaluation::Evaluation;
-use crate::structure::{Role, Stack, Wavelength};
+use crate::evaluation::{Evaluation, Outline};
+use crate::structure::{Stack, Wavelength};
 
 /// Points of a block.
 const BLOCK: usize = 64;
@@ -198,23 +198,44 @@ impl Chart<'_> {
 
     fn of_stack(&self, stack: &Stack) -> ChartPoint {
         let mut point = strain_of(stack, self.variation);
-        let needs_levels = !matches!(
-            self.figure,
-            ChartFigure::Strain | ChartFigure::CriticalShare
-        );
-        if let Ok(evaluation) = Evaluation::new(stack, self.variation.parameters) {
-            point.wavelength_nm = self.target.and_then(|kind| evaluation.wavelength_nm(kind));
-            point.heavy_less_light_mev = heavy_less_light_mev(&evaluation);
-            if needs_levels {
-                point.value = self.of_evaluation(&evaluation);
-            }
-        }
+        self.fill(stack, &mut point);
         match self.figure {
             ChartFigure::Strain => point.value = point.tensile_percent,
             ChartFigure::CriticalShare => point.value = point.critical_share_buried,
             _ => {}
         }
         point
+    }
+
+    /// What the levels say of a point, with no more work than the figure and the target need.
+    fn fill(&self, stack: &Stack, point: &mut ChartPoint) {
+        let parameters = self.variation.parameters;
+        let figure = match self.figure {
+            ChartFigure::Wavelength(kind) => Some(kind),
+            ChartFigure::Strain | ChartFigure::CriticalShare => None,
+            ChartFigure::PeakGain
+            | ChartFigure::Transparency
+            | ChartFigure::PolarisationDifference => Some(Wavelength::Gain),
+        };
+        let needs = |kind: Wavelength| figure == Some(kind) || self.target == Some(kind);
+        if needs(Wavelength::Gain) {
+            if let Ok(evaluation) = Evaluation::new(stack, parameters) {
+                point.value = self.of_evaluation(&evaluation);
+                point.wavelength_nm = self.target.and_then(|kind| evaluation.wavelength_nm(kind));
+                point.heavy_less_light_mev = evaluation.outline().heavy_less_light_mev;
+            }
+            return;
+        }
+        let outline = if needs(Wavelength::Photoluminescence) {
+            Outline::of_emission(stack, parameters)
+        } else {
+            Outline::of_transition(stack, parameters)
+        };
+        if let Ok(outline) = outline {
+            point.value = figure.and_then(|kind| outline.wavelength_nm(kind));
+            point.wavelength_nm = self.target.and_then(|kind| outline.wavelength_nm(kind));
+            point.heavy_less_light_mev = outline.heavy_less_light_mev;
+        }
     }
 
     fn of_evaluation(&self, evaluation: &Evaluation<'_>) -> Option<f64> {
@@ -240,12 +261,7 @@ impl Chart<'_> {
 /// The strain of the well that uses most of its critical thickness.
 fn strain_of(stack: &Stack, variation: &Variation<'_>) -> ChartPoint {
     let budget = StrainBudget::new(stack, variation.parameters);
-    let well = budget
-        .layers
-        .iter()
-        .filter(|layer| layer.role == Role::Well)
-        .max_by(|a, b| a.critical_share().total_cmp(&b.critical_share()));
-    let Some(well) = well else {
+    let Some(well) = budget.tightest_well() else {
         return ChartPoint::default();
     };
     let share = |limit: CriticalThickness| match limit {
@@ -265,23 +281,4 @@ fn strain_of(stack: &Stack, variation: &Variation<'_>) -> ChartPoint {
         critical_share_buried: Some(share(well.critical.buried)),
         ..ChartPoint::default()
     }
-}
-
-/// First heavy-hole level less first light-hole level, meV: of mixed bands the first states of
-/// mostly one kind.
-fn heavy_less_light_mev(evaluation: &Evaluation<'_>) -> Option<f64> {
-    let [heavy, light] = if let Some(mixed) = &evaluation.mixed {
-        let first = |heavy: bool| {
-            mixed
-                .zone_centre
-                .iter()
-                .find(|state| (state.heavy > 0.5) == heavy)
-                .map(|state| state.energy_ev)
-        };
-        [first(true), first(false)]
-    } else {
-        let bands = &evaluation.bands;
-        [&bands.heavy, &bands.light].map(|levels| levels.first().map(|it| it.energy_ev))
-    };
-    Some(1e3 * (heavy? - light?))
 }

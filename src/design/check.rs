@@ -1,6 +1,10 @@
 //! A structure against physics and the limits of the house: does it confine, can it be grown, what
 //! is unusual about it.
 
+mod scatter;
+
+pub use scatter::Scatter;
+
 use super::figures_of_merit::barriers_ev;
 use super::spread::{posed, vacuum_nm};
 use super::wafer::{WaferFinding, wafer};
@@ -10,12 +14,15 @@ use crate::profile::Profile;
 use crate::structure::{Limits, Remark, Role, Stack, Wavelength};
 use crate::subbands::Band;
 use crate::units::thermal_ev;
+use scatter::scatter;
 
 /// What findings about levels are held against.
 #[derive(Clone, Copy, Debug, PartialEq)]
 struct Bounds {
     /// Least height of the barriers above the lowest level, in kT at the working temperature.
     barrier_kt_min: f64,
+    /// Whether that height is a limit of the house.
+    barrier_is_house: bool,
     /// Widest spread of the lowest level over equal wells, eV.
     coupling_ev_max: f64,
     /// Whether that spread is a limit of the house.
@@ -35,8 +42,10 @@ impl Bounds {
     fn of(limits: Option<&Limits>) -> Self {
         let limit = |of: fn(&Limits) -> Option<f64>| limits.and_then(of);
         let coupling_mev = limit(|limits| limits.coupling_mev_max);
+        let barrier_kt = limit(|limits| limits.barrier_kt_min);
         Self {
-            barrier_kt_min: limit(|limits| limits.barrier_kt_min).unwrap_or(Self::BARRIER_KT),
+            barrier_kt_min: barrier_kt.unwrap_or(Self::BARRIER_KT),
+            barrier_is_house: barrier_kt.is_some(),
             coupling_ev_max: coupling_mev.map_or(Self::COUPLING_EV, |mev| 1e-3 * mev),
             coupling_is_house: coupling_mev.is_some(),
             acceptor_setback_nm_min: limit(|limits| limits.acceptor_setback_nm_min),
@@ -104,6 +113,21 @@ pub struct Measure {
     pub limit: Option<f64>,
 }
 
+impl Measure {
+    /// Whether it keeps its limit; `None` without one. A thickness is limited from below, all else
+    /// from above.
+    #[must_use]
+    pub fn is_inside(&self) -> Option<bool> {
+        self.limit.map(|limit| {
+            if self.name == "thickness_nm" {
+                self.value >= limit
+            } else {
+                self.value <= limit
+            }
+        })
+    }
+}
+
 /// What a check found.
 #[derive(Clone, Debug, PartialEq)]
 #[non_exhaustive]
@@ -135,6 +159,8 @@ pub enum Finding {
         thermal_ev: f64,
         /// Height wanted, in kT.
         least_kt: f64,
+        /// Whether that is a limit of the house.
+        is_house: bool,
     },
     /// Something about the wafer.
     Wafer(WaferFinding),
@@ -151,6 +177,8 @@ pub enum Finding {
         /// How far off is still accepted, nm.
         tolerance_nm: Option<f64>,
     },
+    /// The tolerance of the target against the scatter of growth.
+    Scatter(Scatter),
     /// Spread of the lowest level over equal wells.
     Coupling {
         /// Whose level.
@@ -199,6 +227,7 @@ pub fn check(stack: &Stack, parameters: &Parameters, remarks: &[Remark]) -> Vec<
     }
     findings.extend(wafer(stack, parameters).into_iter().map(Finding::Wafer));
     findings.extend(target(stack, parameters));
+    findings.extend(scatter(stack, parameters).map(Finding::Scatter));
     match Evaluation::new(stack, parameters) {
         Err(failure) => findings.push(Finding::Unsolved(failure)),
         Ok(evaluation) => {
@@ -230,6 +259,7 @@ impl Finding {
                 Remark::UnusedMaterial { .. } => "unused-material",
                 Remark::IndirectBarrier { .. } => "indirect-barrier",
                 Remark::UnusualDopant { .. } => "unusual-dopant",
+                Remark::TargetAssumed { .. } => "target-assumed",
                 Remark::OwnNumbersKept { .. } => "own-numbers-kept",
             },
             Self::Unsolved(_) => "no-levels",
@@ -241,6 +271,7 @@ impl Finding {
             Self::Barrier { .. } => "hole-barrier",
             Self::Wafer(finding) => finding.code(),
             Self::Target { .. } => "target",
+            Self::Scatter(_) => "growth-scatter",
             Self::Coupling { .. } => "coupling",
             Self::GroundHole { .. } => "ground-hole",
             Self::Levels(remark) => match remark {
@@ -268,6 +299,14 @@ impl Finding {
                 Standing::Outside
             } else {
                 Standing::Within
+            }
+        };
+        // What is common practice and no limit of the house is worth a look where it is missed.
+        let of_house = |missed: bool, is_house: bool| {
+            if is_house {
+                outside(missed)
+            } else {
+                look(missed)
             }
         };
         match self {
@@ -303,17 +342,16 @@ impl Finding {
                 height_ev,
                 thermal_ev,
                 least_kt,
+                is_house,
                 ..
-            } => outside(*height_ev < least_kt * thermal_ev),
+            } => of_house(*height_ev < least_kt * thermal_ev, *is_house),
             Self::Coupling {
                 spread_ev,
                 most_ev,
-                is_house: true,
+                is_house,
                 ..
-            } => outside(spread_ev > most_ev),
-            Self::Coupling {
-                spread_ev, most_ev, ..
-            } => look(spread_ev > most_ev),
+            } => of_house(spread_ev > most_ev, *is_house),
+            Self::Scatter(scatter) => scatter.standing(),
             Self::GroundHole { light, .. } => look(*light),
         }
     }
@@ -348,6 +386,7 @@ impl Finding {
                 measure("height_mev", 1e3 * height_ev, None),
             ],
             Self::Wafer(finding) => finding.measures(),
+            Self::Scatter(scatter) => scatter.measures(),
             Self::Target {
                 promised_nm,
                 computed_nm,
@@ -445,6 +484,7 @@ fn barriers(evaluation: &Evaluation<'_>, limits: &Bounds) -> Vec<Finding> {
             height_ev,
             thermal_ev: evaluation.thermal_ev(),
             least_kt: limits.barrier_kt_min,
+            is_house: limits.barrier_is_house,
         })
         .collect()
 }

@@ -25,22 +25,34 @@
 //!
 //! The next order moves against the estimate by a share of it (exponential smoothing, the steady
 //! state of a Kalman filter; R. E. Kalman, J. Basic Eng. 82, 35 (1960)), so that noise is not
-//! chased. Where the estimate is smaller than its own sigma there is no correction.
+//! chased. Where the estimate is smaller than its own sigma there is no correction. The wafer to be
+//! expected then is held against the limits of strain and thickness once more.
+//!
+//! # Discretisation
+//!
+//! Derivatives are central differences over a fifth of a prior sigma. With mixed bands the most
+//! likely structure is solved in full, and photoluminescence about it followed by single bands
+//! ([`Anchored`](super::anchored)); single causes are followed from the order by single bands.
 
 mod causes;
+mod limits;
 mod problem;
 mod readings;
 
 pub use causes::SingleCause;
+pub use limits::LimitedFigure;
 pub use readings::Readings;
 
+use super::anchored::Anchored;
+use super::check::Standing;
 use super::house_offset::HouseOffset;
 use super::unknown::Unknown;
 use crate::diffraction::NoReflection;
 use crate::evaluation::{Evaluation, Failure};
 use crate::materials::Parameters;
-use crate::structure::{MismatchKind, Stack, Wavelength};
+use crate::structure::{Bands, MismatchKind, Stack, Wavelength};
 use causes::causes;
+use limits::limits;
 use nalgebra::{DMatrix, SymmetricEigen};
 use problem::{Posterior, Problem, grown, posterior, problem};
 
@@ -145,6 +157,8 @@ pub struct Correction {
     pub name: String,
     /// Its unit; empty for a fraction.
     pub unit: &'static str,
+    /// As ordered.
+    pub ordered: f64,
     /// By how much to move the order.
     pub change: f64,
     /// Error of that.
@@ -178,11 +192,25 @@ pub struct Reconciliation {
     /// The peak to be expected after the corrections, nm in vacuum, with its error from the
     /// estimate; `None` without photoluminescence or corrections.
     pub expected_pl_nm: Option<(f64, f64)>,
+    /// What limits make of the estimate, and of the wafer after the corrections.
+    pub limits: Vec<LimitedFigure>,
+    /// By how much single bands, followed from the order, miss the full model at the estimate, nm;
+    /// `None` without photoluminescence, or where the model has single bands.
+    pub followed_miss_nm: Option<f64>,
     /// The house offset that was counted in.
     pub offset: HouseOffset,
 }
 
 impl Reconciliation {
+    /// Whether the wafer to be expected after the corrections is outside a limit; `false` without
+    /// corrections.
+    #[must_use]
+    pub fn next_is_outside(&self) -> bool {
+        self.limits
+            .iter()
+            .any(|figure| figure.next.is_some() && figure.standing == Standing::Outside)
+    }
+
     /// Whether a structure within the unknowns explains the data: a sum of squares that so many
     /// normal deviates exceed less often than once in a thousand times does not.
     #[must_use]
@@ -234,8 +262,10 @@ pub fn reconcile(
         return Err(ReconcileError::NoUnknown);
     }
     let problem = problem(stack, parameters, readings, offset);
-    let ordered = problem.predicted(&problem.stack, 0.0)?;
-    let found = posterior(&problem, unknowns)?;
+    let at_order = problem.anchored(&problem.stack)?;
+    let at_order = at_order.as_ref();
+    let ordered = problem.predicted(problem.stack.clone(), at_order)?;
+    let found = posterior(&problem, unknowns, at_order)?;
     let deviations: Vec<Deviation> = problem
         .data
         .iter()
@@ -250,38 +280,71 @@ pub fn reconcile(
             sigma: problem.sigmas[index],
         })
         .collect();
-    let estimates: Vec<Estimate> = unknowns
-        .iter()
-        .enumerate()
-        .map(|(index, unknown)| Estimate {
-            name: unknown.name.clone(),
-            unit: unknown.unit(),
-            gives_way: unknown.gives_way().map(crate::materials::Element::symbol),
-            ordered: unknown.ordered,
-            value: unknown.ordered + unknown.prior_sigma * found.v[index],
-            sigma: unknown.prior_sigma * found.covariance[(index, index)].sqrt(),
-            prior_sigma: unknown.prior_sigma,
-        })
-        .collect();
+    let estimates = estimates(unknowns, &found);
     let undetermined = undetermined(unknowns, &found.jacobian);
     let mut result = Reconciliation {
         ordered_chi_square: problem.misses(&ordered).norm_squared(),
         estimated_chi_square: problem.misses(&found.predicted).norm_squared(),
         deviations,
         correlation: correlation(&found.covariance),
-        causes: causes(&problem, unknowns)?,
+        causes: causes(&problem, unknowns, at_order, &ordered)?,
         damping,
         corrections: Vec::new(),
         silent: Vec::new(),
         expected_pl_nm: None,
+        limits: Vec::new(),
+        followed_miss_nm: followed_miss_nm(&problem, unknowns, at_order, &found)?,
         offset: offset.clone(),
         estimates,
         undetermined,
     };
-    if result.undetermined.is_empty() && result.explains_the_data() {
-        correct(&mut result, &problem, unknowns, &found)?;
-    }
+    let next = if result.undetermined.is_empty() && result.explains_the_data() {
+        correct(&mut result, &problem, unknowns, &found)?
+    } else {
+        None
+    };
+    result.limits = limits(
+        &problem.stack,
+        &grown(&problem.stack, unknowns, &found.v),
+        next.as_ref(),
+        parameters,
+    );
     Ok(result)
+}
+
+/// The most likely structure alone, for many wafers: without causes and corrections it takes half
+/// the time.
+///
+/// # Errors
+///
+/// As [`reconcile`].
+pub fn estimate(
+    stack: &Stack,
+    parameters: &Parameters,
+    readings: &Readings,
+    unknowns: &[Unknown],
+    offset: &HouseOffset,
+) -> Result<Vec<Estimate>, ReconcileError> {
+    if unknowns.is_empty() {
+        return Err(ReconcileError::NoUnknown);
+    }
+    let problem = problem(stack, parameters, readings, offset);
+    let at_order = problem.anchored(&problem.stack)?;
+    let found = posterior(&problem, unknowns, at_order.as_ref())?;
+    Ok(estimates(unknowns, &found))
+}
+
+fn estimates(unknowns: &[Unknown], found: &Posterior) -> Vec<Estimate> {
+    let of = |(index, unknown): (usize, &Unknown)| Estimate {
+        name: unknown.name.clone(),
+        unit: unknown.unit(),
+        gives_way: unknown.gives_way().map(crate::materials::Element::symbol),
+        ordered: unknown.ordered,
+        value: unknown.ordered + unknown.prior_sigma * found.v[index],
+        sigma: unknown.prior_sigma * found.covariance[(index, index)].sqrt(),
+        prior_sigma: unknown.prior_sigma,
+    };
+    unknowns.iter().enumerate().map(of).collect()
 }
 
 /// The peak that the model gives by itself at the bench's temperature, nm in vacuum, for the
@@ -310,7 +373,8 @@ pub fn modelled_pl_nm(
     let grown = if problem.data.is_empty() {
         problem.stack.clone()
     } else {
-        grown(&problem.stack, unknowns, &posterior(&problem, unknowns)?.v)
+        let found = posterior(&problem, unknowns, None)?;
+        grown(&problem.stack, unknowns, &found.v)
     };
     Evaluation::new(&grown, parameters)?
         .wavelength_nm(Wavelength::Photoluminescence)
@@ -363,13 +427,33 @@ fn undetermined(unknowns: &[Unknown], jacobian: &DMatrix<f64>) -> Vec<Direction>
     found.into_iter().map(|(_, direction)| direction).collect()
 }
 
-/// Fills in what to change, and what peak is to be expected then.
+/// By how much the model followed from the order misses the full one at the estimate, nm.
+fn followed_miss_nm(
+    problem: &Problem<'_>,
+    unknowns: &[Unknown],
+    at_order: Option<&Anchored<'_>>,
+    found: &Posterior,
+) -> Result<Option<f64>, ReconcileError> {
+    let (Some(index), Some(at_order), Bands::Mixed) = (
+        problem.place(Datum::Pl),
+        at_order,
+        problem.stack.model.bands,
+    ) else {
+        return Ok(None);
+    };
+    let stack = grown(&problem.stack, unknowns, &found.v);
+    let followed = problem.predicted(stack, Some(at_order))?;
+    Ok(Some((followed[index] - found.predicted[index]).abs()))
+}
+
+/// Fills in what to change and what peak is to be expected then; the wafer that grows with it, if
+/// anything changes.
 fn correct(
     result: &mut Reconciliation,
     problem: &Problem<'_>,
     unknowns: &[Unknown],
     found: &Posterior,
-) -> Result<(), ReconcileError> {
+) -> Result<Option<Stack>, ReconcileError> {
     let mut next = found.v.clone();
     for (index, estimate) in result.estimates.iter().enumerate() {
         let shift = estimate.value - estimate.ordered;
@@ -381,21 +465,22 @@ fn correct(
         result.corrections.push(Correction {
             name: estimate.name.clone(),
             unit: estimate.unit,
+            ordered: estimate.ordered,
             change: -result.damping * shift,
             sigma: result.damping * estimate.sigma,
         });
     }
-    let pl = problem
-        .data
-        .iter()
-        .position(|(datum, _)| *datum == Datum::Pl);
-    if let Some(index) = pl
-        && !result.corrections.is_empty()
-    {
-        let expected = problem.moved(unknowns, &next)?[index];
+    if result.corrections.is_empty() {
+        return Ok(None);
+    }
+    let next = grown(&problem.stack, unknowns, &next);
+    if let Some((index, anchored)) = problem.place(Datum::Pl).zip(problem.anchored(&next)?) {
         let row = found.jacobian.row(index);
         let variance = (row * &found.covariance * row.transpose())[(0, 0)];
-        result.expected_pl_nm = Some((expected, problem.sigmas[index] * variance.sqrt()));
+        result.expected_pl_nm = Some((
+            problem.with_offset_nm(anchored.anchor_nm),
+            problem.sigmas[index] * variance.sqrt(),
+        ));
     }
-    Ok(())
+    Ok(Some(next))
 }

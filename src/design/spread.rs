@@ -13,6 +13,10 @@
 //! itself are those of Gauss and Hermite's three-point rule). The quadratic is checked against full
 //! solves of wafers of its own drawing, and the miss is part of the record. `Solving::EachWafer`
 //! leaves the quadratic out.
+//!
+//! With mixed bands the design is solved in full and the wafers about it by single bands
+//! ([`Anchored`](super::anchored)); the check is against the full model, so that the miss holds both
+//! simplifications.
 
 mod layers;
 mod statistics;
@@ -21,12 +25,13 @@ mod wafers;
 pub use layers::LayerSpread;
 pub use statistics::{Histogram, Moments, Yield};
 
+use super::anchored::Anchored;
 use super::draws::Normals;
 use super::reactor::{Reactor, Variable};
 use super::surrogate::{Quadratic, points};
-use crate::evaluation::{Evaluation, Failure};
+use crate::evaluation::{Failure, emission_nm};
 use crate::materials::Parameters;
-use crate::structure::{Medium, Stack, Target, Wavelength};
+use crate::structure::{Bands, Medium, Stack, Target, Wavelength};
 use crate::units::air;
 use layers::layers;
 use rayon::prelude::*;
@@ -39,6 +44,9 @@ pub const MODEL_NM: f64 = 10.0;
 
 /// Wafers whose full solution is compared with the quadratic.
 const CHECKED: usize = 32;
+
+/// The same with mixed bands, which take a hundred times as long.
+const CHECKED_MIXED: usize = 8;
 
 /// The block of draws that the check takes, far from those of the wafers.
 const CHECK_BLOCK: u64 = u64::MAX;
@@ -107,13 +115,15 @@ pub struct Sensitivity {
     pub share: f64,
 }
 
-/// How well the quadratic stands for full solutions.
+/// How well the quadratic stands for full solutions; with mixed bands that of single bands.
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub struct Miss {
     /// Structures solved for its coefficients.
     pub solved: usize,
-    /// Random wafers solved to check it.
+    /// Random wafers solved in full to check it.
     pub checked: usize,
+    /// Random wafers that the full model did not solve.
+    pub unsolved: usize,
     /// Root mean square of the miss over them, nm.
     pub rms_nm: f64,
     /// The largest, nm.
@@ -195,13 +205,13 @@ pub fn in_vacuum_nm(wavelength_nm: f64, medium: Medium) -> f64 {
 ///
 /// # Errors
 ///
-/// What [`Evaluation::new`] says.
+/// What [`crate::evaluation::Evaluation::new`] says.
 pub fn wavelength_nm(
     stack: &Stack,
     parameters: &Parameters,
     kind: Wavelength,
 ) -> Result<Option<f64>, Failure> {
-    Ok(Evaluation::new(stack, parameters)?.wavelength_nm(kind))
+    emission_nm(stack, parameters, kind)
 }
 
 /// Sensitivities, distribution and yield of a stack.
@@ -225,13 +235,17 @@ pub fn spread(
         return Err(SpreadError::NothingVaries);
     }
     let kind = request.kind;
+    let anchored =
+        Anchored::at(stack, parameters, kind)?.ok_or(SpreadError::NoEmission(kind.word()))?;
+    let nominal_nm = anchored.anchor_nm;
     let solved = |point: &[f64]| wavelength_nm(&reactor.grown(point), parameters, kind);
-    let nominal_nm =
-        wavelength_nm(stack, parameters, kind)?.ok_or(SpreadError::NoEmission(kind.word()))?;
     let places = points(variables, STEP);
     let values = places
         .par_iter()
-        .map(|point| solved(point)?.ok_or(SpreadError::Lost(kind.word())))
+        .map(|point| {
+            let near = anchored.wavelength_nm(reactor.grown(point))?;
+            near.ok_or(SpreadError::Lost(kind.word()))
+        })
         .collect::<Result<Vec<f64>, SpreadError>>()?;
     let quadratic = Quadratic::through(&values, variables, STEP);
     let sensitivities = sensitivities(&reactor.variables, &quadratic.slopes);
@@ -246,7 +260,11 @@ pub fn spread(
     };
     let (drawn, miss) = match request.solving {
         Solving::Quadratic => {
-            let miss = miss(&quadratic, request.seed, variables, places.len(), &solved)?;
+            let checked = match stack.model.bands {
+                Bands::Single => CHECKED,
+                Bands::Mixed => CHECKED_MIXED,
+            };
+            let miss = miss(&quadratic, request.seed, (places.len(), checked), &solved)?;
             (
                 wafers.drawn(request.draws, |x| Some(quadratic.at(x))),
                 Some(miss),
@@ -290,6 +308,30 @@ pub fn spread(
     })
 }
 
+/// The sensitivities by single bands alone, the strongest first; `None` where a wafer near the
+/// design has no such wavelength.
+#[must_use]
+pub(super) fn linear(
+    reactor: &Reactor<'_>,
+    parameters: &Parameters,
+    kind: Wavelength,
+) -> Option<Vec<Sensitivity>> {
+    let variables = reactor.variables.len();
+    let grown = |variable: usize, step: f64| {
+        let mut point = vec![0.0; variables];
+        point[variable] = step;
+        let mut stack = reactor.grown(&point);
+        stack.model.bands = Bands::Single;
+        wavelength_nm(&stack, parameters, kind).ok().flatten()
+    };
+    let slopes = (0..variables).into_par_iter().map(|variable| {
+        let (above, below) = (grown(variable, STEP)?, grown(variable, -STEP)?);
+        Some((above - below) / (2.0 * STEP))
+    });
+    let slopes = slopes.collect::<Option<Vec<f64>>>()?;
+    Some(sensitivities(&reactor.variables, &slopes))
+}
+
 fn length(vector: &[f64]) -> f64 {
     vector.iter().map(|x| x * x).sum::<f64>().sqrt()
 }
@@ -317,24 +359,32 @@ fn sensitivities(variables: &[Variable], slopes: &[f64]) -> Vec<Sensitivity> {
 fn miss(
     quadratic: &Quadratic,
     seed: u64,
-    variables: usize,
-    solved_before: usize,
+    (solved_before, wanted): (usize, usize),
     solved: &(impl Fn(&[f64]) -> Result<Option<f64>, Failure> + Sync),
 ) -> Result<Miss, SpreadError> {
     let mut normals = Normals::of_block(seed, CHECK_BLOCK);
-    let wafers: Vec<Vec<f64>> = (0..CHECKED)
-        .map(|_| (0..variables).map(|_| normals.draw()).collect())
+    let wafers: Vec<Vec<f64>> = (0..wanted)
+        .map(|_| quadratic.slopes.iter().map(|_| normals.draw()).collect())
         .collect();
-    let misses = wafers
+    let solutions: Vec<Result<Option<f64>, Failure>> = wafers
         .par_iter()
         .map(|wafer| Ok(solved(wafer)?.map(|nm| quadratic.at(wafer) - nm)))
-        .collect::<Result<Vec<Option<f64>>, SpreadError>>()?;
-    let misses: Vec<f64> = misses.into_iter().flatten().collect();
-    let checked = misses.len();
+        .collect();
+    let misses: Vec<f64> = solutions
+        .iter()
+        .filter_map(|solution| solution.as_ref().ok().copied().flatten())
+        .collect();
+    // One wafer that the full model can't solve is said; none solved is a failure of the model.
+    if misses.is_empty()
+        && let Some(failure) = solutions.into_iter().find_map(Result::err)
+    {
+        return Err(failure.into());
+    }
     Ok(Miss {
         solved: solved_before,
-        checked,
-        rms_nm: length(&misses) / (checked.max(1) as f64).sqrt(),
+        checked: misses.len(),
+        unsolved: wanted - misses.len(),
+        rms_nm: length(&misses) / (misses.len().max(1) as f64).sqrt(),
         worst_nm: misses.iter().fold(0.0, |worst, miss| worst.max(miss.abs())),
     })
 }

@@ -14,6 +14,9 @@ const LEAST_PERCENT: f64 = 0.05;
 /// A layer of less strain that is over its critical thickness is not remarked, %: AlGaAs on GaAs
 /// reaches 0.14 % at room temperature, and grows matched while it is hot.
 const LEAST_NOTED_PERCENT: f64 = 0.15;
+/// Mismatch of a thick layer below this is not stated without a limit, ppm (common practice: bulk
+/// layers are matched to 200 to 500 ppm).
+const LEAST_BULK_PPM: f64 = 200.0;
 /// Wells and barriers of fewer monolayers are remarked (common practice).
 const LEAST_MONOLAYERS: f64 = 2.0;
 /// Alloys whose fractions differ by less could be one calibration (common practice: the usual
@@ -86,7 +89,7 @@ pub enum WaferFinding {
         /// Relaxed mismatch, ppm.
         relaxed_ppm: f64,
         /// The house's limit, ppm.
-        most_ppm: f64,
+        most_ppm: Option<f64>,
     },
     /// A layer of elements that the house does not grow.
     ForbiddenElement {
@@ -141,7 +144,7 @@ pub(super) fn wafer(stack: &Stack, parameters: &Parameters) -> Vec<WaferFinding>
     let budget = StrainBudget::new(stack, parameters);
     let mut findings = strained(&budget, limits);
     findings.extend(fence_posts(stack));
-    findings.extend(thin_layers(stack, &budget, limits));
+    findings.extend(thin_layers(&budget, limits));
     findings.extend(bulk_mismatch(&budget, limits));
     findings.extend(forbidden_elements(stack, limits));
     findings.extend(group_v_changes(stack));
@@ -150,6 +153,38 @@ pub(super) fn wafer(stack: &Stack, parameters: &Parameters) -> Vec<WaferFinding>
     findings.extend(other_bowings(stack, parameters));
     findings.extend(other_offset(stack, parameters));
     findings
+}
+
+/// What a move of wells and barriers may bring to a limit: their strain and that of all together,
+/// and their thickness where the house limits it. Each with the index of its layer, `None` for all
+/// together.
+#[must_use]
+pub(super) fn wells_and_barriers(
+    stack: &Stack,
+    parameters: &Parameters,
+) -> Vec<(Option<usize>, WaferFinding)> {
+    let none = Limits::default();
+    let limits = stack.limits.as_ref().unwrap_or(&none);
+    let budget = StrainBudget::new(stack, parameters);
+    let strained = strained(&budget, limits)
+        .into_iter()
+        .filter_map(|finding| match &finding {
+            WaferFinding::Strain { layer, .. } => {
+                confines(layer.role).then_some((Some(layer.layer), finding))
+            }
+            WaferFinding::StackStrain { .. } => Some((None, finding)),
+            _ => None,
+        });
+    let limited = budget
+        .layers
+        .iter()
+        .filter(|layer| confines(layer.role) && least_nm(layer.role, limits).is_some())
+        .map(|layer| (Some(layer.layer), thin(layer, &budget, limits)));
+    strained.chain(limited).collect()
+}
+
+fn confines(role: Role) -> bool {
+    matches!(role, Role::Well | Role::Barrier | Role::Step)
 }
 
 fn strained(budget: &StrainBudget, limits: &Limits) -> Vec<WaferFinding> {
@@ -211,35 +246,44 @@ fn fence_posts(stack: &Stack) -> Option<WaferFinding> {
     })
 }
 
-fn thin_layers(stack: &Stack, budget: &StrainBudget, limits: &Limits) -> Vec<WaferFinding> {
-    // Planes of one sublattice stand half a lattice constant apart.
-    let monolayer_nm = 0.5 * budget.substrate_lattice_nm;
+fn thin_layers(budget: &StrainBudget, limits: &Limits) -> Vec<WaferFinding> {
     budget
         .layers
         .iter()
-        .filter_map(|layer| {
-            let of_wells = limits.well_nm_min.filter(|_| layer.role == Role::Well);
-            let least_nm = of_wells
-                .into_iter()
-                .chain(limits.layer_nm_min)
-                .reduce(f64::max);
-            let monolayers = layer.thickness_nm / monolayer_nm;
-            let confines = matches!(layer.role, Role::Well | Role::Barrier | Role::Step);
-            let worth_saying = least_nm.is_some_and(|least| layer.thickness_nm < least)
-                || confines && monolayers < LEAST_MONOLAYERS;
-            worth_saying.then(|| WaferFinding::Thin {
-                role: layer.role,
-                formula: stack.layers[layer.layer].material.formula(),
-                thickness_nm: layer.thickness_nm,
-                monolayers,
-                least_nm,
-            })
+        .filter(|layer| {
+            let is_under = |least| layer.thickness_nm < least;
+            least_nm(layer.role, limits).is_some_and(is_under)
+                || confines(layer.role) && monolayers(layer, budget) < LEAST_MONOLAYERS
         })
+        .map(|layer| thin(layer, budget, limits))
         .collect()
 }
 
+/// The house's least thickness of a layer of a role, nm.
+fn least_nm(role: Role, limits: &Limits) -> Option<f64> {
+    let of_wells = limits.well_nm_min.filter(|_| role == Role::Well);
+    of_wells
+        .into_iter()
+        .chain(limits.layer_nm_min)
+        .reduce(f64::max)
+}
+
+fn monolayers(layer: &LayerStrain, budget: &StrainBudget) -> f64 {
+    // Planes of one sublattice stand half a lattice constant apart.
+    layer.thickness_nm / (0.5 * budget.substrate_lattice_nm)
+}
+
+fn thin(layer: &LayerStrain, budget: &StrainBudget, limits: &Limits) -> WaferFinding {
+    WaferFinding::Thin {
+        role: layer.role,
+        formula: layer.formula.clone(),
+        thickness_nm: layer.thickness_nm,
+        monolayers: monolayers(layer, budget),
+        least_nm: least_nm(layer.role, limits),
+    }
+}
+
 fn bulk_mismatch(budget: &StrainBudget, limits: &Limits) -> Option<WaferFinding> {
-    let most_ppm = limits.mismatch_ppm_max?;
     let worst = budget
         .layers
         .iter()
@@ -254,10 +298,12 @@ fn bulk_mismatch(budget: &StrainBudget, limits: &Limits) -> Option<WaferFinding>
                 .relaxed_ppm()
                 .total_cmp(&b.mismatch.relaxed_ppm())
         })?;
-    Some(WaferFinding::BulkMismatch {
+    let relaxed_ppm = worst.mismatch.relaxed_ppm();
+    let most_ppm = limits.mismatch_ppm_max;
+    (most_ppm.is_some() || relaxed_ppm >= LEAST_BULK_PPM).then(|| WaferFinding::BulkMismatch {
         role: worst.role,
         formula: worst.formula.clone(),
-        relaxed_ppm: worst.mismatch.relaxed_ppm(),
+        relaxed_ppm,
         most_ppm,
     })
 }

@@ -6,11 +6,13 @@
 mod budget;
 mod ladder;
 mod mixed;
+mod outline;
 mod remark;
 mod spectrum;
 
 pub use budget::{Budget, budget};
 pub use ladder::{Group, Ladder, Rung, Shares, TransitionGroup};
+pub use outline::{Outline, emission_nm, refractive_index};
 pub use remark::Remark;
 pub use spectrum::{
     Absorption, GainPeak, PhotoLuminescence, Run, Spectrum, Spontaneous, Transparency,
@@ -122,6 +124,21 @@ impl Holes {
     }
 }
 
+/// How far mixed bands are followed along the wave number.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+enum Extent {
+    /// No further than the levels.
+    ZoneCentre,
+    /// Past what emits at [`PL_DENSITY_CM3`].
+    LowInjection,
+    /// Past every hole at the densities of the stack.
+    Densities,
+}
+
+/// How far the highest valence state must fall for the peak of emission at low injection, kT. The
+/// electron rises several times as fast, and emission falls off with the sum of both.
+const LOW_INJECTION_KT: f64 = 8.0;
+
 /// The levels of a stack and what follows from them.
 #[derive(Debug)]
 pub struct Evaluation<'a> {
@@ -156,6 +173,11 @@ impl<'a> Evaluation<'a> {
     ///
     /// [`Failure`] if there is no region to solve, no level of a kind, or no transition.
     pub fn new(stack: &'a Stack, parameters: &'a Parameters) -> Result<Self, Failure> {
+        Self::over(stack, parameters, Extent::Densities)
+    }
+
+    /// The same with mixed bands followed as far as `extent` says.
+    fn over(stack: &'a Stack, parameters: &'a Parameters, extent: Extent) -> Result<Self, Failure> {
         let profile = Profile::new(stack, parameters)?;
         let bands = single(&profile, stack.model.nonparabolic)?;
         require_levels(stack, &profile, &bands)?;
@@ -174,7 +196,13 @@ impl<'a> Evaluation<'a> {
         let mixed = match stack.model.bands {
             Bands::Single => None,
             Bands::Mixed => {
-                let depth_ev = mixed::depth_ev(stack, &parabolas, doping);
+                let depth_ev = match extent {
+                    Extent::ZoneCentre => 0.0,
+                    Extent::LowInjection => {
+                        LOW_INJECTION_KT * thermal_ev(stack.operation.temperature_k)
+                    }
+                    Extent::Densities => mixed::depth_ev(stack, &parabolas, doping),
+                };
                 Some(match mixed::one_of_equal_wells(stack, &bands) {
                     Some((wells, one)) => {
                         let profile = Profile::new(&one, parameters)?;
@@ -188,7 +216,7 @@ impl<'a> Evaluation<'a> {
         let mut transitions = every_pair(&pairs, &bands, mixed.as_ref());
         transitions.retain(|transition| transition.overlap > LEAST_OVERLAP);
         let first_ev = transitions.first().ok_or(Failure::NoTransition)?.energy_ev;
-        let index = refractive_index(stack, parameters, first_ev);
+        let index = index_at(stack, parameters, first_ev);
         // Positions and widths do not hang on the index, which scales every spectrum as a whole.
         let scale = index.as_ref().copied().unwrap_or(1.0);
         let (emitter, holes): (Box<dyn Emitter>, Holes) = match &mixed {
@@ -311,7 +339,7 @@ impl<'a> Evaluation<'a> {
         let peak_nm = |lowering_ev: f64| {
             let view = self.view(&self.occupation(&filling, lowering_ev));
             let [te, tm] = self.gain_peaks(&filling, &view);
-            larger(te, tm).map(|(_, peak)| peak.peak_nm)
+            GainPeak::larger(te, tm).map(|(_, peak)| peak.peak_nm)
         };
         Emission {
             first_transition_nm: wavelength_nm(self.first_ev),
@@ -354,7 +382,7 @@ impl<'a> Evaluation<'a> {
     #[must_use]
     pub fn highest_gain(&self, density_cm3: f64) -> Option<(&'static str, GainPeak)> {
         let [te, tm] = self.gain_peaks_at(density_cm3);
-        larger(te, tm)
+        GainPeak::larger(te, tm)
     }
 
     /// The carriers at a density of pairs, with gap shrinkage.
@@ -421,16 +449,6 @@ impl<'a> Evaluation<'a> {
             peak(|point| point.te_gain_cm),
             peak(|point| point.tm_gain_cm),
         ]
-    }
-}
-
-/// The larger of two peaks, with the name of its polarisation.
-fn larger(te: Option<GainPeak>, tm: Option<GainPeak>) -> Option<(&'static str, GainPeak)> {
-    match (te, tm) {
-        (Some(te), Some(tm)) if tm.gain_cm > te.gain_cm => Some(("TM", tm)),
-        (Some(te), _) => Some(("TE", te)),
-        (None, Some(tm)) => Some(("TM", tm)),
-        (None, None) => None,
     }
 }
 
@@ -538,11 +556,7 @@ fn net_doping(stack: &Stack, wells_nm: f64) -> NetDoping {
 }
 
 /// Mean refractive index of the wells by thickness at a photon energy.
-fn refractive_index(
-    stack: &Stack,
-    parameters: &Parameters,
-    photon_ev: f64,
-) -> Result<f64, Failure> {
+fn index_at(stack: &Stack, parameters: &Parameters, photon_ev: f64) -> Result<f64, Failure> {
     if let Some(index) = stack.model.index {
         return Ok(index);
     }

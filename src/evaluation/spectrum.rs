@@ -1,6 +1,6 @@
 //! The record of a spectrum.
 
-use super::{Evaluation, Failure, PL_DENSITY_CM3, Remark, larger, remark};
+use super::{Evaluation, Failure, PL_DENSITY_CM3, Remark, remark};
 use crate::spectra::landmarks::{LogarithmicFit, logarithmic_fit};
 use crate::spectra::{Emitter, Occupation, Point};
 use crate::units::{ELEMENTARY_CHARGE_C, wavelength_nm};
@@ -17,6 +17,19 @@ pub struct GainPeak {
     pub peak_nm: f64,
     /// Its photon energy, eV.
     pub peak_ev: f64,
+}
+
+impl GainPeak {
+    /// The larger of the peaks of TE and TM gain, with the name of its polarisation.
+    #[must_use]
+    pub fn larger(te: Option<Self>, tm: Option<Self>) -> Option<(&'static str, Self)> {
+        match (te, tm) {
+            (Some(te), Some(tm)) if tm.gain_cm > te.gain_cm => Some(("TM", tm)),
+            (Some(te), _) => Some(("TE", te)),
+            (None, Some(tm)) => Some(("TM", tm)),
+            (None, None) => None,
+        }
+    }
 }
 
 /// Absorption without carriers.
@@ -133,7 +146,7 @@ impl Evaluation<'_> {
         });
         let polarisation = runs
             .last()
-            .and_then(|run| larger(run.te, run.tm))
+            .and_then(|run| GainPeak::larger(run.te, run.tm))
             .map_or("TE", |(polarisation, _)| polarisation);
         let gains: Vec<(f64, f64)> = runs
             .iter()

@@ -161,7 +161,8 @@ fn turning_points(function: impl Fn(f64) -> Option<f64> + Sync, points: &Points)
 }
 
 /// Place of the least value between two points, by golden sections; the search ends early where a
-/// value below zero is found, since roots are then bracketed.
+/// value below zero is found, since roots are then bracketed, and where the values differ by so
+/// little of their size that none between them can be zero.
 fn least_place(function: impl Fn(f64) -> f64, low: f64, high: f64) -> f64 {
     let golden = 0.5 * (5f64.sqrt() - 1.0);
     let (mut left, mut right) = (low, high);
@@ -170,11 +171,15 @@ fn least_place(function: impl Fn(f64) -> f64, low: f64, high: f64) -> f64 {
         left + golden * (right - left),
     ];
     let mut values = inner.map(&function);
+    let mut spread_before = f64::INFINITY;
     for _ in 0..30 {
         let lower = usize::from(values[1] < values[0]);
-        if values[lower] < 0.0 {
+        // Two looks in a row: one alone may stand evenly on both sides of a turn.
+        let spread = (values[1] - values[0]).abs();
+        if values[lower] < 0.0 || values[lower] > 4.0 * spread.max(spread_before) {
             return inner[lower];
         }
+        spread_before = spread;
         if lower == 0 {
             right = inner[1];
             inner = [right - golden * (right - left), inner[0]];
@@ -195,7 +200,7 @@ fn roots(
     tolerance: f64,
 ) -> (Vec<f64>, Vec<f64>) {
     let span = points.last().map_or(0.0, |it| it.0) - points.first().map_or(0.0, |it| it.0);
-    let is_zero = |value: f64| value.abs() <= 1e-3 * tolerance;
+    let is_zero = |value: f64| value.abs() <= 1e-2 * tolerance;
     let found: Vec<(f64, bool)> = points
         .par_windows(2)
         .filter_map(|pair| {
@@ -204,7 +209,11 @@ fn roots(
                 return None;
             }
             let at = bracketed_root(
-                |at| function(at).unwrap_or(f64::NAN),
+                |at| match function(at) {
+                    Some(value) if is_zero(value) => 0.0,
+                    Some(value) => value,
+                    None => f64::NAN,
+                },
                 pair[0].0,
                 pair[1].0,
                 1e-9 * span,
@@ -271,6 +280,20 @@ mod tests {
         let f = |x: f64| Some(100.0 * ((x - 0.51).powi(2) - 1e-4));
         let survey = survey(f, (0.0, 1.0), &LOOK);
         assert!(close(&survey.roots, &[0.5, 0.52]), "{:?}", survey.roots);
+    }
+
+    #[test]
+    fn roots_around_a_kink_between_two_points_are_found() {
+        // Where two levels change places a wavelength has a kink; one side is steeper.
+        for steeper in [1.0, 3.0, 10.0] {
+            let f = |x: f64| {
+                let slope = if x < 0.311 { -50.0 * steeper } else { 50.0 };
+                Some(slope * (x - 0.311) - 0.2)
+            };
+            let survey = survey(f, (0.0, 1.0), &LOOK);
+            let planted = [0.311 - 0.004 / steeper, 0.315];
+            assert!(close(&survey.roots, &planted), "{:?}", survey.roots);
+        }
     }
 
     #[test]

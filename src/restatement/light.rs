@@ -51,7 +51,7 @@ pub(super) fn photon(
     } else {
         let peak_nm = wavelength_nm(gap_ev + shift_ev);
         said.number(
-            format!("as a gap: photoluminescence of the bulk layer at {at}, vacuum"),
+            format!("as a gap: bulk photoluminescence at {at}, vacuum"),
             peak_nm,
             "nm",
         );

@@ -92,6 +92,13 @@ impl FromStr for Quantity {
                 let help = format!("say which unit: {shown}nm, {shown}eV, {shown}ppm, ...");
                 return Err(Unclear::new(format!("`{shown}` has no unit"), help));
             }
+            other if other.starts_with(',') => {
+                let pointed = plain.replace(',', ".");
+                return Err(Unclear::new(
+                    format!("`{shown}` has a decimal comma, or one between thousands"),
+                    format!("write a point, and nothing between thousands: {pointed}"),
+                ));
+            }
             other => strained(number, other).ok_or_else(|| {
                 Unclear::new(
                     format!("the unit of `{shown}` is not known"),
@@ -234,6 +241,7 @@ mod tests {
             "nm",
             "1310",
             "1310 furlongs",
+            "1,31um",
             "-850ppm",
             "-1%",
             "1e400nm",

@@ -44,7 +44,7 @@ fn stiffness_ratio(about: &About, parameters: &Parameters) -> Result<(f64, Strin
             ),
         )),
         (None, None) => Err(Unclear::new(
-            "the two kinds of mismatch differ by the stiffness of the layer",
+            "what the planes of a strained layer do hangs on its stiffness",
             "name the substrate, --on InP, or the layer: --layer In0.6Ga0.4As",
         )),
     }

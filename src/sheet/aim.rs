@@ -5,7 +5,7 @@ use super::page::Page;
 use super::stamp::Stamp;
 use super::table::{Column, Table, numbers, words};
 use crate::design::{Aim, Binding, FiguresOfMerit, Move, Nearest, Outcome, Quantity, Variation};
-use crate::materials::Sense;
+use crate::materials::Element;
 use crate::source::Colour;
 
 /// Heads of the columns of moves.
@@ -53,6 +53,16 @@ pub fn aim(
                  polarisation takes over, and no structure has it.",
                 outcome.jumps,
                 if outcome.jumps == 1 { "" } else { "s" }
+            ),
+        );
+    }
+    if outcome.unsaid > 0 {
+        page.paragraph(
+            2,
+            &format!(
+                "{} more solution{} left out: the digits of a file miss the aim by more than 0.01 nm.",
+                outcome.unsaid,
+                if outcome.unsaid == 1 { " is" } else { "s are" }
             ),
         );
     }
@@ -118,22 +128,13 @@ fn solutions(variation: &Variation<'_>, outcome: &Outcome, page: &mut Page) {
         plural(count),
         power(density, 4)
     ));
-    let heads: Vec<&'static str> = variation
-        .moves
-        .iter()
-        .zip(LETTERS)
-        .map(|(moved, letter)| match (letter, unit(moved)) {
-            ("a", "nm") => "a\nnm",
-            ("b", "nm") => "b\nnm",
-            ("c", "nm") => "c\nnm",
-            ("a", "%") => "a\n%",
-            ("b", "%") => "b\n%",
-            ("c", "%") => "c\n%",
-            (letter, _) => letter,
-        })
-        .collect();
     let mut columns: Vec<Column> = vec![numbers("no")];
-    columns.extend(heads.into_iter().map(numbers));
+    columns.extend(variation.moves.iter().zip(LETTERS).map(|(moved, letter)| {
+        numbers(match unit(moved) {
+            "" => letter.to_owned(),
+            unit => format!("{letter}\n{unit}"),
+        })
+    }));
     columns.extend([
         numbers("peak gain\ncm⁻¹"),
         words(""),
@@ -179,10 +180,34 @@ fn solutions(variation: &Variation<'_>, outcome: &Outcome, page: &mut Page) {
     page.table(&table);
 }
 
+/// The elements whose shares drift in any of the solutions, each with the element that gives way.
+pub(super) fn exchanges(outcome: &Outcome) -> Vec<(Element, Element)> {
+    let mut exchanges = Vec::new();
+    for drift in outcome.solutions.iter().flat_map(|it| &it.figures.shares) {
+        let exchange = (drift.element, drift.at_expense_of);
+        if !exchanges.contains(&exchange) {
+            exchanges.push(exchange);
+        }
+    }
+    exchanges
+}
+
+/// What the wavelength does in one of these.
+pub(super) fn drift_nm(
+    figures: &FiguresOfMerit,
+    (element, other): (Element, Element),
+) -> Option<f64> {
+    let mut drifts = figures.shares.iter();
+    drifts
+        .find(|it| it.element == element && it.at_expense_of == other)
+        .map(|it| it.nm_per_thousandth)
+}
+
 /// Strain and what the wavelength hangs on.
 fn drifts(outcome: &Outcome, page: &mut Page) {
     page.heading("Strain of the well, and what moves the wavelength");
-    let mut table = Table::new([
+    let exchanges = exchanges(outcome);
+    let mut columns = vec![
         numbers("no"),
         numbers("strain\n%"),
         words("sense"),
@@ -190,8 +215,13 @@ fn drifts(outcome: &Outcome, page: &mut Page) {
         numbers("stack\n%"),
         numbers("1 % width\nnm"),
         numbers("1 K\nnm"),
-        words("0.001 of\nnm"),
-    ]);
+    ];
+    columns.extend(
+        exchanges
+            .iter()
+            .map(|(element, _)| numbers(format!("0.001 {}\nnm", element.symbol()))),
+    );
+    let mut table = Table::new(columns);
     for (index, solution) in outcome.solutions.iter().enumerate() {
         let figures = &solution.figures;
         let well = figures.well.as_ref();
@@ -203,29 +233,49 @@ fn drifts(outcome: &Outcome, page: &mut Page) {
         let change = |value: Option<f64>, decimals: usize| {
             value.map_or_else(|| ABSENT.to_owned(), |value| signed(value, decimals))
         };
-        table.row([
+        let mut cells = vec![
             (index + 1).to_string(),
             well.map_or_else(
                 || ABSENT.to_owned(),
                 |it| fixed(it.mismatch.strain_percent(), 3),
             ),
-            well.map_or(String::new(), |it| {
-                sense_word(it.mismatch.sense()).to_owned()
-            }),
+            well.map_or(String::new(), |it| it.mismatch.sense().word().to_owned()),
             percent(well.map(|it| it.critical_share())),
             percent(figures.stack_critical_share),
             change(figures.nm_per_percent_width, 2),
             change(figures.nm_per_k, 3),
-            shares(figures),
-        ]);
+        ];
+        cells.extend(
+            exchanges
+                .iter()
+                .map(|&exchange| change(drift_nm(figures, exchange), 2)),
+        );
+        table.row(cells);
     }
     page.table(&table);
     page.paragraph(
         2,
         "of critical: thickness of the well over its critical thickness by force balance, grown \
-         over; stack: the same of wells and barriers as one film. 0.001 of: an element's share \
-         rising at the expense of In (else Ga), or of P (else As).",
+         over; stack: the same of wells and barriers as one film.",
     );
+    let at_expense: Vec<String> = exchanges
+        .iter()
+        .map(|(element, other)| {
+            format!(
+                "0.001 {}: its share up by 0.001 at the expense of {}",
+                element.symbol(),
+                other.symbol()
+            )
+        })
+        .collect();
+    if !at_expense.is_empty() {
+        page.paragraph(2, &format!("{}.", at_expense.join("; ")));
+    }
+    limits(outcome, page);
+}
+
+/// Which solutions break which limits of the file.
+fn limits(outcome: &Outcome, page: &mut Page) {
     let broken: Vec<String> = outcome
         .solutions
         .iter()
@@ -245,29 +295,6 @@ fn drifts(outcome: &Outcome, page: &mut Page) {
             page.paragraph(2, &line);
         }
     }
-}
-
-fn sense_word(sense: Sense) -> &'static str {
-    match sense {
-        Sense::Compressive => "compressive",
-        Sense::Tensile => "tensile",
-        Sense::Matched => "matched",
-    }
-}
-
-fn shares(figures: &FiguresOfMerit) -> String {
-    let shares: Vec<String> = figures
-        .shares
-        .iter()
-        .map(|it| {
-            format!(
-                "{} {}",
-                it.element.symbol(),
-                signed(it.nm_per_thousandth, 2)
-            )
-        })
-        .collect();
-    shares.join(", ")
 }
 
 /// Why there is no solution.

@@ -62,6 +62,7 @@ macro_rules! row {
 
 mod chart;
 mod design;
+mod order;
 mod reconcile;
 mod restatement;
 mod spread;
@@ -70,6 +71,7 @@ mod xray;
 
 pub use chart::ChartTable;
 pub use design::{aim, weigh};
+pub(in crate::sheet) use order::SheetCell;
 pub use reconcile::reconcile;
 pub use restatement::restatement;
 pub use spread::spread;
@@ -84,6 +86,18 @@ impl CsvTable {
         }
     }
 
+    /// A table of rows that are known at once, each with the cells of the head.
+    fn of_rows(
+        name: &'static str,
+        heads: &[&str],
+        rows: impl IntoIterator<Item = Vec<Cell>>,
+    ) -> Self {
+        Self {
+            rows: rows.into_iter().collect(),
+            ..Self::new(name, heads)
+        }
+    }
+
     /// The table as a file.
     ///
     /// # Panics
@@ -91,7 +105,18 @@ impl CsvTable {
     /// Never: the text is written to memory, and every row has the cells of the head.
     #[must_use]
     pub fn text(&self, stamp: &Stamp) -> String {
-        let mut writer = csv::Writer::from_writer(format!("# {}\n", stamp.line()).into_bytes());
+        self.text_under(&stamp.line())
+    }
+
+    /// The table as a file under a line of its own.
+    ///
+    /// # Panics
+    ///
+    /// Never: the text is written to memory, and every row has the cells of the head.
+    #[must_use]
+    pub fn text_under(&self, line: &str) -> String {
+        let first = format!("# {}\n", super::page::tidy(line));
+        let mut writer = csv::Writer::from_writer(first.into_bytes());
         let cells = |row: &[Cell]| -> Vec<String> {
             row.iter()
                 .map(|cell| match cell {

@@ -101,15 +101,21 @@ pub(super) fn message(finding: &Finding) -> String {
             height_ev,
             thermal_ev,
             least_kt,
+            is_house,
         } => {
             let (level, edge) = match carrier {
                 Carrier::Electrons => ("electron", "lowest conduction edge"),
                 Carrier::Holes => ("hole", "highest valence edge"),
             };
             format!(
-                "the first {level} level lies {} meV from the {edge} outside the wells, {} kT (at least {} kT)",
+                "the first {level} level lies {} meV from the {edge} outside the wells, {} kT ({} {} kT)",
                 fixed(1e3 * height_ev, 0),
                 fixed(height_ev / thermal_ev, 1),
+                if *is_house {
+                    "at least"
+                } else {
+                    "a look below"
+                },
                 plain(*least_kt)
             )
         }
@@ -134,6 +140,20 @@ pub(super) fn message(finding: &Finding) -> String {
                 kind.meaning(),
                 fixed(*promised_nm, 2),
                 temperature(*temperature_k)
+            )
+        }
+        Finding::Scatter(scatter) => {
+            let strongest = &scatter.strongest;
+            format!(
+                "errors of growth move the {} by {} nm, one sigma, {} % of the variance by the {} \
+                 (linear, single bands); ± {} nm then holds {} % of the wafers, if the design stands \
+                 in the middle",
+                scatter.kind.meaning(),
+                significant(scatter.sigma_nm, 2),
+                fixed(100.0 * strongest.share, 0),
+                strongest.variable.cause.name(),
+                plain(scatter.tolerance_nm),
+                fixed(100.0 * scatter.share_if_centred(), 0)
             )
         }
         Finding::Coupling {
@@ -230,6 +250,11 @@ pub(super) fn advice(finding: &Finding) -> Option<String> {
             "table and promise must agree before the order goes out: move the layers (`stepwell aim`), or the promise"
                 .to_owned(),
         ),
+        Finding::Scatter(scatter) => Some(format!(
+            "hold the {} closer, widen the tolerance, or take a structure that hangs less on it \
+             (`stepwell spread --yield 95` says what it takes)",
+            scatter.strongest.variable.cause.name()
+        )),
         Finding::Doping { .. } if finding.standing() == Standing::Outside => Some(
             "acceptors move while the rest grows: a spacer, a sharper dopant, or a colder growth"
                 .to_owned(),

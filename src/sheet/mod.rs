@@ -13,6 +13,7 @@ mod levels;
 mod materials;
 mod matrix;
 mod number;
+pub mod order;
 mod page;
 mod picture;
 mod reconcile;

@@ -42,6 +42,16 @@ impl Page {
         }
     }
 
+    /// An item of a list: a point, and words that stand in behind it.
+    pub(super) fn item(&mut self, indent: usize, words: &str) {
+        let mut lead = format!("{:indent$}· ", "");
+        for line in wrapped(words, COLUMNS - indent - 2) {
+            let line = format!("{lead}{line}");
+            self.line(&line);
+            lead = " ".repeat(indent + 2);
+        }
+    }
+
     /// A blank line.
     pub(super) fn gap(&mut self) {
         self.text.push('\n');
@@ -143,12 +153,22 @@ pub(super) fn wrapped(words: &str, width: usize) -> Vec<String> {
     lines
 }
 
+/// A word cut in two, the first part no wider than `width`: a formula before an element, any other
+/// where the width ends.
 fn split_at_width(word: &str, width: usize) -> (&str, &str) {
     let mut used = 0;
+    let mut last_element = None;
+    let is_formula = word.starts_with(|first: char| first.is_ascii_uppercase())
+        && word
+            .chars()
+            .all(|letter| letter.is_ascii_alphanumeric() || letter == '.');
     for (at, letter) in word.char_indices() {
+        if is_formula && letter.is_ascii_uppercase() && at > 0 {
+            last_element = Some(at);
+        }
         used += letter.width().unwrap_or(0);
         if used > width {
-            return word.split_at(at);
+            return word.split_at(last_element.unwrap_or(at));
         }
     }
     (word, "")
@@ -162,6 +182,10 @@ mod tests {
     fn words_are_wrapped_and_long_ones_broken() {
         assert_eq!(wrapped("a bc  def", 4), ["a bc", "def"]);
         assert_eq!(wrapped("abcdefgh ij", 3), ["abc", "def", "gh", "ij"]);
+        assert_eq!(
+            wrapped("Ga0.2444In0.7556P0.2045As0.7955", 20),
+            ["Ga0.2444In0.7556", "P0.2045As0.7955"]
+        );
         assert_eq!(wrapped("", 10), [""]);
         assert_eq!(wrapped("µm³ cm⁻³", 4), ["µm³", "cm⁻³"]);
     }

@@ -1,5 +1,7 @@
 //! The page of the command `reconcile`.
 
+mod next;
+
 use super::levels::head;
 use super::number::{fixed, plain, signed, significant};
 use super::page::Page;
@@ -36,10 +38,11 @@ pub fn reconcile(wafer: &Wafer<'_>, stamp: &Stamp, colour: Colour) -> String {
     estimates(wafer, &mut page);
     undetermined(wafer, &mut page);
     causes(wafer, &mut page);
-    corrections(wafer, &mut page);
+    next::corrections(wafer, &mut page);
+    next::limits(wafer, &mut page);
     page.heading("Assumed");
     for line in assumed(wafer) {
-        page.paragraph(2, &format!("· {line}"));
+        page.item(2, &line);
     }
     stamp.write(&mut page);
     page.pair_at(14, "returned", wafer.returned_sha256);
@@ -301,57 +304,6 @@ fn short(datum: Datum) -> &'static str {
     }
 }
 
-fn corrections(wafer: &Wafer<'_>, page: &mut Page) {
-    let result = wafer.result;
-    if !result.undetermined.is_empty() || !result.explains_the_data() {
-        return;
-    }
-    page.heading("For the next order");
-    if result.corrections.is_empty() {
-        page.paragraph(
-            2,
-            "No correction: every estimate is smaller than its own uncertainty, and to follow it would be \
-             to follow noise.",
-        );
-        return;
-    }
-    let mut table = Table::new([words("change"), numbers("by"), numbers("sigma")]);
-    for it in &result.corrections {
-        table.row([
-            it.name.clone(),
-            amount(it.change, it.unit),
-            size(it.sigma, it.unit),
-        ]);
-    }
-    page.table(&table);
-    page.paragraph(
-        2,
-        &format!(
-            "{} % of the estimate (--damping), so that noise is not chased.",
-            plain(100.0 * result.damping)
-        ),
-    );
-    if !result.silent.is_empty() {
-        page.paragraph(
-            2,
-            &format!(
-                "{}: left alone, the estimate is smaller than its uncertainty.",
-                result.silent.join(", ")
-            ),
-        );
-    }
-    if let Some((nm, sigma)) = result.expected_pl_nm {
-        page.paragraph(
-            2,
-            &format!(
-                "Photoluminescence is then expected at {} ± {} nm in vacuum on the same bench.",
-                fixed(nm, 2),
-                significant(sigma, 2)
-            ),
-        );
-    }
-}
-
 /// What the answer rests on beside the data.
 pub(super) fn assumed(wafer: &Wafer<'_>) -> Vec<String> {
     let result = wafer.result;
@@ -417,6 +369,13 @@ pub(super) fn assumed(wafer: &Wafer<'_>) -> Vec<String> {
                 significant(offset.sigma_mev, 2)
             )
         });
+    }
+    if let Some(nm) = result.followed_miss_nm {
+        lines.push(format!(
+            "what was grown was solved with mixed bands; single causes were followed from the order by \
+             single bands, which at the estimate miss the full model by {} nm",
+            significant(nm, 2)
+        ));
     }
     lines
 }

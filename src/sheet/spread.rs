@@ -11,7 +11,7 @@ use super::stamp::Stamp;
 use super::table::{Table, numbers, words};
 use crate::design::{Cause, Spread};
 use crate::source::Colour;
-use crate::structure::Stack;
+use crate::structure::{Bands, Stack};
 
 /// Sensitivities, distribution and yield as text of 80 columns.
 #[must_use]
@@ -22,7 +22,7 @@ pub fn spread(stack: &Stack, spread: &Spread, stamp: &Stamp, colour: Colour) -> 
     distribution(spread, &mut page);
     good(spread, &mut page);
     layers(spread, &mut page);
-    trust(spread, &mut page);
+    trust(stack, spread, &mut page);
     stamp.write(&mut page);
     page.finish()
 }
@@ -193,19 +193,34 @@ fn layers(spread: &Spread, page: &mut Page) {
     page.table(&table);
 }
 
-fn trust(spread: &Spread, page: &mut Page) {
+fn trust(stack: &Stack, spread: &Spread, page: &mut Page) {
     page.heading("How it was computed");
-    let text = match spread.miss {
-        Some(miss) => format!(
-            "Wafers are read off a quadratic of all variables, cross terms included, through {} \
-             solved structures. Against {} random wafers solved in full it misses by {} nm (root \
-             mean square), by {} nm at most. --each-wafer solves every one.",
-            miss.solved,
+    let Some(miss) = spread.miss else {
+        page.paragraph(2, "Every wafer was solved in full.");
+        return;
+    };
+    let through = match stack.model.bands {
+        Bands::Single => format!("through {} solved structures", miss.solved),
+        Bands::Mixed => format!(
+            "through the design solved with mixed bands, its slopes and curvatures those of {} \
+             structures by single bands",
+            miss.solved
+        ),
+    };
+    let unsolved = match miss.unsolved {
+        0 => String::new(),
+        1 => " One wafer more had no full solution.".to_owned(),
+        more => format!(" {more} wafers more had no full solution."),
+    };
+    page.paragraph(
+        2,
+        &format!(
+            "Wafers are read off a quadratic of all variables, cross terms included, {through}. \
+             Against {} random wafers solved in full it misses by {} nm (root mean square), by {} nm \
+             at most.{unsolved} --each-wafer solves every one.",
             miss.checked,
             significant(miss.rms_nm, 2),
             significant(miss.worst_nm, 2)
         ),
-        None => "Every wafer was solved in full.".to_owned(),
-    };
-    page.paragraph(2, &text);
+    );
 }

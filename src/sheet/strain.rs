@@ -1,90 +1,125 @@
-//! The strain budget as a short table.
+//! The strain budget as two short tables.
 
 use super::number::{ABSENT, fixed, length_nm, significant};
 use super::page::Page;
 use super::table::{Table, numbers, words};
-use crate::coherence::{CriticalBand, CriticalThickness, StrainBudget};
+use crate::coherence::{Balance, CriticalBand, CriticalThickness, StrainBudget};
+use crate::materials::Mismatch;
 
 /// Layers of less strain are left out, %: what a matched one has for rounding or temperature.
 const LEAST_PERCENT: f64 = 0.02;
+/// Mean strain of wells and barriers below this is balance enough, %.
+const LEAST_MEAN_PERCENT: f64 = 0.05;
 /// From this thickness on the limit says nothing any more, nm.
 const NO_LIMIT_NM: f64 = 1e4;
 
-/// Strained layers against their critical thickness, wells and barriers together, and the balance.
+/// A strained layer, or wells and barriers together, as it stands in both tables.
+struct Film<'a> {
+    name: String,
+    thickness_nm: f64,
+    mismatch: &'a Mismatch,
+    critical: &'a CriticalBand,
+    share: f64,
+}
+
+/// Strained layers and wells and barriers together: their mismatch, their critical thickness, and
+/// what would balance them.
 pub(super) fn budget(budget: &StrainBudget, page: &mut Page) {
-    let strained = budget
-        .layers
-        .iter()
-        .filter(|layer| layer.mismatch.strain_percent() >= LEAST_PERCENT);
-    if strained.clone().next().is_none() {
+    let films = films(budget);
+    if films.is_empty() {
         return;
     }
-    page.heading("Strain budget: layers against their critical thickness");
+    page.heading("Strain budget");
     let mut table = Table::new([
         words("layer"),
         numbers("nm"),
         numbers("strain\n%"),
         words("sense"),
-        numbers("strain ×\n% nm"),
-        numbers("single\nnm"),
-        numbers("grown\nover nm"),
-        numbers("energy\nnm"),
+        numbers("strain ×\nthickness\n% nm"),
+        numbers("mismatch\nrelaxed\nppm"),
+        numbers("perpen-\ndicular\nppm"),
+    ]);
+    for film in &films {
+        let percent = film.mismatch.strain_percent();
+        table.row([
+            film.name.clone(),
+            length_nm(film.thickness_nm),
+            fixed(percent, 2),
+            film.mismatch.sense().word().to_owned(),
+            significant(percent * film.thickness_nm, 3),
+            fixed(film.mismatch.relaxed_ppm(), 0),
+            fixed(film.mismatch.perpendicular_ppm(), 0),
+        ]);
+    }
+    page.table(&table);
+    if let Some(balance) = budget.balance.as_ref().filter(|_| is_off_balance(budget)) {
+        page.paragraph(2, &format!("Balance: {}.", balancing(balance)));
+    }
+    page.heading("Critical thickness");
+    let mut table = Table::new([
+        words("layer"),
+        numbers("nm"),
+        numbers("force balance,\nsingle, nm"),
+        numbers("force balance,\ngrown over, nm"),
+        numbers("energy\nbalance, nm"),
         numbers("used\n%"),
     ]);
-    let row = |name: String,
-               nm: f64,
-               mismatch: &crate::materials::Mismatch,
-               critical: &CriticalBand,
-               share: f64| {
-        [
-            name,
-            length_nm(nm),
-            fixed(mismatch.strain_percent(), 2),
-            mismatch.sense().word().to_owned(),
-            significant(mismatch.strain_percent() * nm, 3),
-            thickness(critical.overlayer),
-            thickness(critical.buried),
-            thickness(critical.energy_balance),
-            if share.is_finite() {
-                significant(100.0 * share, 2)
+    for film in &films {
+        table.row([
+            film.name.clone(),
+            length_nm(film.thickness_nm),
+            thickness(film.critical.overlayer),
+            thickness(film.critical.buried),
+            thickness(film.critical.energy_balance),
+            if film.share.is_finite() {
+                significant(100.0 * film.share, 2)
             } else {
                 ABSENT.to_owned()
             },
-        ]
-    };
-    for layer in strained {
-        let name = if layer.count == 1 {
-            layer.role.word().to_owned()
-        } else {
-            format!("{} × {}", layer.count, layer.role.word())
-        };
-        let share = layer.critical_share();
-        table.row(row(
-            name,
-            layer.thickness_nm,
-            &layer.mismatch,
-            &layer.critical,
-            share,
-        ));
-    }
-    if let Some(active) = &budget.active {
-        let name = "all wells and barriers".to_owned();
-        let share = active.critical_share();
-        table.row(row(
-            name,
-            active.thickness_nm,
-            &active.mean,
-            &active.critical,
-            share,
-        ));
+        ]);
     }
     page.table(&table);
     page.paragraph(
         2,
-        "Critical thickness by the balance of forces, of a single layer with a free surface and of one \
-         grown over, and by that of energies: a band, with practice in it. Used: of the one that holds \
+        "Single: with a free surface. A band, with practice in it; used: of the force balance that holds \
          for the layer.",
     );
+}
+
+/// Whether the mean stress of wells and barriers is worth balancing.
+fn is_off_balance(budget: &StrainBudget) -> bool {
+    let active = budget.active.as_ref();
+    active.is_some_and(|active| active.mean.strain_percent() >= LEAST_MEAN_PERCENT)
+}
+
+fn films(budget: &StrainBudget) -> Vec<Film<'_>> {
+    let strained = budget
+        .layers
+        .iter()
+        .filter(|layer| layer.mismatch.strain_percent() >= LEAST_PERCENT);
+    let mut films: Vec<Film<'_>> = strained
+        .map(|layer| Film {
+            name: if layer.count == 1 {
+                layer.role.word().to_owned()
+            } else {
+                format!("{} × {}", layer.count, layer.role.word())
+            },
+            thickness_nm: layer.thickness_nm,
+            mismatch: &layer.mismatch,
+            critical: &layer.critical,
+            share: layer.critical_share(),
+        })
+        .collect();
+    if let Some(active) = budget.active.as_ref().filter(|_| !films.is_empty()) {
+        films.push(Film {
+            name: "wells and barriers".to_owned(),
+            thickness_nm: active.thickness_nm,
+            mismatch: &active.mean,
+            critical: &active.critical,
+            share: active.critical_share(),
+        });
+    }
+    films
 }
 
 fn thickness(critical: CriticalThickness) -> String {
@@ -96,4 +131,33 @@ fn thickness(critical: CriticalThickness) -> String {
         CriticalThickness::Unlimited => "any".to_owned(),
         CriticalThickness::NoneCoherent => "none".to_owned(),
     }
+}
+
+/// What would take the mean stress of wells and barriers away.
+pub(super) fn balancing(balance: &Balance) -> String {
+    let barriers = if balance.count == 1 {
+        format!("the barrier {}", balance.formula)
+    } else {
+        format!("the {} barriers {}", balance.count, balance.formula)
+    };
+    let by_strain = balance.mismatch.map_or_else(
+        || "could not at their thickness, whatever their strain".to_owned(),
+        |mismatch| {
+            format!(
+                "would take the mean stress away with {} % {}",
+                fixed(mismatch.strain_percent(), 2),
+                mismatch.sense().word()
+            )
+        },
+    );
+    let by_thickness = balance
+        .practicable_factor()
+        .map_or(String::new(), |factor| {
+            format!(
+                ", or {} times as thick ({} nm together)",
+                significant(factor, 3),
+                significant(factor * balance.thickness_nm, 3)
+            )
+        });
+    format!("{barriers} {by_strain}{by_thickness}")
 }

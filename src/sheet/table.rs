@@ -2,6 +2,7 @@
 
 use super::page::{bold, padded, tidy, wrapped};
 use crate::source::Colour;
+use std::borrow::Cow;
 use unicode_width::UnicodeWidthStr as _;
 
 /// Space between two columns.
@@ -13,18 +14,24 @@ const NARROWEST: usize = 8;
 
 /// One column.
 pub(super) struct Column {
-    head: &'static str,
+    head: Cow<'static, str>,
     right: bool,
 }
 
 /// A column of words; lines of the head are divided by `\n`.
-pub(super) const fn words(head: &'static str) -> Column {
-    Column { head, right: false }
+pub(super) fn words(head: impl Into<Cow<'static, str>>) -> Column {
+    Column {
+        head: head.into(),
+        right: false,
+    }
 }
 
 /// A column of numbers; the last line of the head is the unit.
-pub(super) const fn numbers(head: &'static str) -> Column {
-    Column { head, right: true }
+pub(super) fn numbers(head: impl Into<Cow<'static, str>>) -> Column {
+    Column {
+        head: head.into(),
+        right: true,
+    }
 }
 
 /// A line of the table.

@@ -28,111 +28,127 @@ pub(super) struct Row {
     digits: Digits,
 }
 
-/// The rows of a comparison.
-pub(super) fn rows(weighed: &[Weighed]) -> Vec<Row> {
-    let row = |figure, key, unit, digits, of: &dyn Fn(&Weighed) -> Option<f64>| Row {
-        figure,
-        key,
-        unit,
-        values: weighed.iter().map(of).collect(),
-        digits,
-    };
-    vec![
-        row("thickness", "thickness_nm", "nm", Digits::Fixed(2), &|it| {
+/// A figure: in words, as a key, its unit, how it is written, and where it stands.
+type Figure = (
+    &'static str,
+    &'static str,
+    &'static str,
+    Digits,
+    fn(&Weighed) -> Option<f64>,
+);
+
+const FIGURES: [Figure; 14] = {
+    use Digits::{Fixed, Power, Significant};
+    [
+        ("thickness", "thickness_nm", "nm", Fixed(2), |it| {
             Some(it.thickness_nm)
         }),
-        row(
-            "density",
-            "density_cm3",
-            "cm⁻³",
-            Digits::Power(4),
-            &|it| it.density_cm3,
-        ),
-        row(
+        ("density", "density_cm3", "cm⁻³", Power(4), |it| {
+            it.density_cm3
+        }),
+        (
             "sheet density",
             "sheet_density_cm2",
             "cm⁻²",
-            Digits::Power(4),
-            &Weighed::sheet_cm2,
+            Power(4),
+            Weighed::sheet_cm2,
         ),
-        row(
+        (
             "peak gain",
             "peak_gain_cm",
             "cm⁻¹",
-            Digits::Significant(4),
-            &|it| Some(it.gain()?.1.gain_cm),
+            Significant(4),
+            |it| Some(it.gain()?.1.gain_cm),
         ),
-        row(
-            "at wavelength",
-            "gain_peak_nm",
-            "nm",
-            Digits::Fixed(1),
-            &|it| Some(it.gain()?.1.peak_nm),
-        ),
-        row(
+        ("at wavelength", "gain_peak_nm", "nm", Fixed(1), |it| {
+            Some(it.gain()?.1.peak_nm)
+        }),
+        (
             "peak TE gain",
             "te_gain_cm",
             "cm⁻¹",
-            Digits::Significant(4),
-            &|it| Some(it.te?.gain_cm),
+            Significant(4),
+            |it| Some(it.te?.gain_cm),
         ),
-        row(
+        (
             "peak TM gain",
             "tm_gain_cm",
             "cm⁻¹",
-            Digits::Significant(4),
-            &|it| Some(it.tm?.gain_cm),
+            Significant(4),
+            |it| Some(it.tm?.gain_cm),
         ),
-        row(
+        (
             "TE over TM",
             "te_over_tm",
             "",
-            Digits::Significant(3),
-            &Weighed::te_over_tm,
+            Significant(3),
+            Weighed::te_over_tm,
         ),
-        row(
+        (
             "transparency",
             "transparency_cm3",
             "cm⁻³",
-            Digits::Power(4),
-            &|it| it.transparency_cm3,
+            Power(4),
+            |it| it.transparency_cm3,
         ),
-        row(
+        (
             "differential gain",
             "differential_gain_cm2",
             "cm²",
-            Digits::Power(3),
-            &|it| it.differential_gain_cm2,
+            Power(3),
+            |it| it.differential_gain_cm2,
         ),
-        row(
+        (
             "radiative current",
             "radiative_current_a_cm2",
             "A/cm²",
-            Digits::Significant(4),
-            &|it| it.current_a_cm2,
+            Significant(4),
+            |it| it.current_a_cm2,
         ),
-        row(
-            "emission peak",
-            "emission_nm",
-            "nm",
-            Digits::Fixed(1),
-            &|it| it.emission_nm,
-        ),
-        row(
+        ("emission peak", "emission_nm", "nm", Fixed(1), |it| {
+            it.emission_nm
+        }),
+        (
             "emission width",
             "emission_fwhm_mev",
             "meV",
-            Digits::Fixed(1),
-            &|it| it.emission_fwhm_mev,
+            Fixed(1),
+            |it| it.emission_fwhm_mev,
         ),
-        row(
-            "gain peak drift",
-            "nm_per_k",
-            "nm/K",
-            Digits::Fixed(3),
-            &|it| it.nm_per_k,
-        ),
+        ("gain peak drift", "nm_per_k", "nm/K", Fixed(3), |it| {
+            it.nm_per_k
+        }),
     ]
+};
+
+/// The rows of a comparison.
+pub(super) fn rows(weighed: &[Weighed]) -> Vec<Row> {
+    FIGURES
+        .into_iter()
+        .map(|(figure, key, unit, digits, of)| Row {
+            figure,
+            key,
+            unit,
+            values: weighed.iter().map(of).collect(),
+            digits,
+        })
+        .collect()
+}
+
+/// What is equal and how much of it: that of the first structure.
+pub(super) fn measure(weighed: &[Weighed], equal: Equal) -> String {
+    let amount = weighed.first().and_then(|first| {
+        Some(match equal {
+            Equal::Volume => format!("{} cm⁻³", power(first.density_cm3?, 4)),
+            Equal::Sheet => format!("{} cm⁻²", power(first.sheet_cm2()?, 4)),
+            Equal::Current => format!("{} A/cm²", significant(first.current_a_cm2?, 4)),
+            Equal::Gain => format!("{} cm⁻¹", significant(first.gain()?.1.gain_cm, 4)),
+        })
+    });
+    match amount {
+        Some(amount) => format!("{}, {amount}", equal.meaning()),
+        None => equal.meaning().to_owned(),
+    }
 }
 
 /// Structures side by side as text of 80 columns.
@@ -140,7 +156,7 @@ pub(super) fn rows(weighed: &[Weighed]) -> Vec<Row> {
 pub fn weigh(weighed: &[Weighed], equal: Equal, stamps: &[Stamp], colour: Colour) -> String {
     const HEADS: [&str; 8] = ["A", "B", "C", "D", "E", "F", "G", "H"];
     let mut page = Page::new(colour);
-    page.heading(&format!("At {}", equal.meaning()));
+    page.heading(&format!("At {}", measure(weighed, equal)));
     for (column, head) in weighed.iter().zip(HEADS) {
         let matter = match column.matter {
             Matter::Wells => "wells",
@@ -161,7 +177,7 @@ pub fn weigh(weighed: &[Weighed], equal: Equal, stamps: &[Stamp], colour: Colour
     page.gap();
     let shown = &weighed[..weighed.len().min(HEADS.len())];
     let mut columns = vec![words("figure"), words("unit")];
-    columns.extend(HEADS.iter().take(shown.len()).map(|head| numbers(head)));
+    columns.extend(HEADS.into_iter().take(shown.len()).map(numbers));
     let mut table = Table::new(columns);
     for row in rows(shown) {
         let mut cells = vec![row.figure.to_owned(), row.unit.to_owned()];

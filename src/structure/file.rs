@@ -18,6 +18,8 @@ pub(super) struct StructureFile {
     pub(super) target: Option<TargetTable>,
     pub(super) growth: Field<GrowthTable>,
     pub(super) limits: Option<LimitsTable>,
+    /// Its keys are gone through by [`order`](super::order::order).
+    pub(super) order: Field<Values>,
 }
 
 pub(super) struct SubstrateTable {
@@ -162,6 +164,7 @@ impl From<Values> for StructureFile {
                 .table("limits")
                 .and_then(|given| given.value)
                 .map(LimitsTable::from),
+            order: values.table("order"),
         }
     }
 }

@@ -2,6 +2,7 @@
 //! reference of the manual are all driven by it.
 
 use super::growth::GROWTH;
+use super::order::ORDER;
 use super::{Bands, Lineshape, Medium, Role, Wavelength};
 
 /// One table of the file and the keys it may hold.
@@ -28,8 +29,10 @@ pub(super) struct Key {
 
 /// What a value is, and within which bounds.
 pub(super) enum Kind {
-    /// Free text on one line.
+    /// A few words on one line.
     Text,
+    /// Free text on one line.
+    Prose,
     /// One of some words.
     Word(fn() -> Vec<&'static str>),
     /// `true` or `false`.
@@ -169,6 +172,12 @@ pub(super) static FILE: Table = Table {
             kind: Kind::Table(&LIMITS),
             default: "",
             doc: "limits of the house, for `check`",
+        },
+        Key {
+            name: "order",
+            kind: Kind::Table(&ORDER),
+            default: "",
+            doc: "what a design sheet says beside the layers, for `sheet`",
         },
     ],
 };
@@ -577,7 +586,7 @@ pub(super) static LIMITS: Table = Table {
         Key {
             name: "barrier_kt_min",
             kind: number("kT", (0.0, 1_000.0), (1.0, 20.0)),
-            default: "4, common practice",
+            default: "none; below 4, common practice, a look",
             doc: "least height of the barriers above the first level, at the working temperature",
         },
         Key {

@@ -98,6 +98,16 @@ impl<'a> Manuscript<'a> {
         }
     }
 
+    /// The formula that a material is given by, as it is written; a name that stands in the layers is
+    /// one itself.
+    #[must_use]
+    pub fn formula<'b>(&'b self, material: &'b str) -> Option<&'b str> {
+        let Some(table) = self.material(material) else {
+            return Some(material);
+        };
+        entry(table, "formula")?.1.get_ref().as_str()
+    }
+
     fn material(&self, name: &str) -> Option<&DeTable<'a>> {
         let (_, materials) = entry(&self.table, "materials")?;
         let (_, table) = entry(as_table(materials)?, name)?;

@@ -13,6 +13,8 @@ use crate::source::{Diagnostic, nearest, one_of};
 
 /// Longest text value, characters.
 const LONGEST_TEXT: usize = 200;
+/// Longest free text and longest item of a list, characters.
+const LONGEST_PROSE: usize = 10_000;
 /// Most keys of a table that are looked at one by one.
 const MOST_KEYS: usize = 200;
 
@@ -265,7 +267,12 @@ fn checked(
 ) -> Option<Value> {
     let span = value.span();
     match (&key.kind, value.get_ref()) {
-        (Kind::Text, DeValue::String(text)) => line_of_text(key, text, span, findings),
+        (Kind::Text, DeValue::String(text)) => {
+            line_of_text(key, text, LONGEST_TEXT, span, findings).map(Value::Text)
+        }
+        (Kind::Prose, DeValue::String(text)) => {
+            line_of_text(key, text, LONGEST_PROSE, span, findings).map(Value::Text)
+        }
         (Kind::Word(words), DeValue::String(text)) => word(key, &words(), text, span, findings),
         (Kind::Flag, DeValue::Boolean(flag)) => Some(Value::Flag(*flag)),
         (Kind::Count(lowest, highest), number @ (DeValue::Integer(_) | DeValue::Float(_))) => {
@@ -341,13 +348,14 @@ fn named(table: &'static Table, found: &DeTable<'_>, findings: &mut Findings) ->
 fn line_of_text(
     key: &'static Key,
     text: &str,
+    longest: usize,
     span: Range<usize>,
     findings: &mut Findings,
-) -> Option<Value> {
-    let fault = if text.chars().count() > LONGEST_TEXT {
+) -> Option<String> {
+    let fault = if text.chars().count() > longest {
         Diagnostic::new(
             span,
-            format!("`{}` is longer than {LONGEST_TEXT} characters", key.name),
+            format!("`{}` is longer than {longest} characters", key.name),
         )
         .with_help("shorten it; comments (`# ...`) can be as long as you like")
     } else if text.chars().any(char::is_control) {
@@ -357,7 +365,7 @@ fn line_of_text(
         Diagnostic::new(span, format!("`{}` is empty", key.name))
             .with_help(format!("{}; or leave the key out", key.doc))
     } else {
-        return Some(Value::Text(text.trim().to_owned()));
+        return Some(text.trim().to_owned());
     };
     findings.faults.push(fault);
     None
@@ -528,7 +536,10 @@ fn texts<'a, 'i: 'a>(
     let mut complete = true;
     for item in items {
         if let DeValue::String(text) = item.get_ref() {
-            texts.push((item.span(), text.trim().to_owned()));
+            match line_of_text(key, text, LONGEST_PROSE, item.span(), findings) {
+                Some(words) => texts.push((item.span(), words)),
+                None => complete = false,
+            }
         } else {
             findings
                 .faults
@@ -541,7 +552,9 @@ fn texts<'a, 'i: 'a>(
 
 fn wrong_kind(key: &'static Key, found: &DeValue<'_>, span: Range<usize>) -> Diagnostic {
     let (wanted, help) = match &key.kind {
-        Kind::Text | Kind::Word(_) => ("a text", format!("put it in quotes: {}", key.doc)),
+        Kind::Text | Kind::Prose | Kind::Word(_) => {
+            ("a text", format!("put it in quotes: {}", key.doc))
+        }
         Kind::Flag => (
             "true or false",
             "write `true` or `false`, without quotes".to_owned(),

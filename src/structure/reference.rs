@@ -46,7 +46,7 @@ fn entry(key: &'static Key, text: &mut String) {
     let _ = writeln!(text, "\n  {}", key.name);
     wrapped(key.doc, 6, text);
     let kind = match &key.kind {
-        Kind::Text => "text in quotes".to_owned(),
+        Kind::Text | Kind::Prose => "text in quotes".to_owned(),
         Kind::Word(words) => one_of(words()),
         Kind::Flag => "true or false".to_owned(),
         Kind::Count(lowest, highest) if lowest == highest => lowest.to_string(),

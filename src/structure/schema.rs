@@ -60,7 +60,7 @@ fn define(table: &'static Table, definitions: &mut Map<String, Value>) {
 
 fn described(key: &'static Key, definitions: &mut Map<String, Value>) -> Value {
     let mut value = match &key.kind {
-        Kind::Text => json!({ "type": "string", "minLength": 1 }),
+        Kind::Text | Kind::Prose => json!({ "type": "string", "minLength": 1 }),
         Kind::Word(words) => json!({ "enum": words() }),
         Kind::Flag => json!({ "type": "boolean" }),
         Kind::Count(lowest, highest) if lowest == highest => json!({ "enum": [lowest] }),

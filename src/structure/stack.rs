@@ -1,6 +1,6 @@
 //! The validated stack: what the file said, checked, expanded, in the trade's units.
 
-use super::{Growth, Limits};
+use super::{Growth, Limits, Order};
 use crate::materials::{Composition, Crystal, Offsets, Parameters};
 
 /// What a layer is made of.
@@ -369,6 +369,8 @@ pub struct Stack {
     pub growth: Option<Growth>,
     /// Limits of the house, where the file gives any.
     pub limits: Option<Limits>,
+    /// What an order says beside the layers, where the file says anything.
+    pub order: Option<Order>,
 }
 
 impl Stack {

@@ -5,6 +5,7 @@ use super::growth::growth;
 use super::layers::Layers;
 use super::magnitude::check_magnitude;
 use super::number::shown;
+use super::order::order;
 use super::palette::Palette;
 use super::reader::{Field, Findings, Given};
 use super::{
@@ -47,6 +48,7 @@ pub(super) fn stack(
     let mut reading = Layers::new(palette, parameters, operation.temperature_k);
     let layers = reading.expanded(file.layers.as_ref(), findings);
     let growth = growth(&file.growth, findings);
+    let order = order(file.order.clone(), findings);
     let own_numbers = reading.palette().remarks(findings);
     if overrides.temperature_k.is_some() && !own_numbers.is_empty() {
         findings
@@ -70,6 +72,7 @@ pub(super) fn stack(
         target,
         growth,
         limits,
+        order,
     })
 }
 
@@ -90,10 +93,25 @@ fn target(table: &TargetTable, findings: &mut Findings) -> Option<Target> {
         let mut media = Medium::ALL.into_iter();
         media.find(|medium| medium.word() == word)
     });
+    let taken_kind = Wavelength::Photoluminescence;
+    let taken_medium = Medium::default();
+    let taken: Vec<_> = [
+        (table.kind.is_none(), "kind", taken_kind.word()),
+        (table.medium.is_none(), "medium", taken_medium.word()),
+    ]
+    .into_iter()
+    .filter_map(|(is_missing, key, value)| is_missing.then_some((key, value)))
+    .collect();
+    if !taken.is_empty() {
+        findings.remarks.push(Remark::TargetAssumed {
+            span: table.span.clone(),
+            taken,
+        });
+    }
     Some(Target {
-        kind: kind.unwrap_or(Wavelength::Photoluminescence),
+        kind: kind.unwrap_or(taken_kind),
         wavelength_nm: given.value?,
-        medium: medium.unwrap_or_default(),
+        medium: medium.unwrap_or(taken_medium),
         temperature_k: number(table.temperature_c.as_ref()).map(|it| it + CELSIUS_ZERO_K),
         density_cm3: number(table.density_cm3.as_ref()),
         tolerance_nm: number(table.tolerance_nm.as_ref()),

@@ -4,6 +4,7 @@ use std::fmt::Write as _;
 
 use super::growth;
 use super::number::exact;
+use super::order;
 use super::{Layer, Material, Model, Operation, Stack, Substance, Target};
 use crate::materials::{Composition, Crystal, Element};
 use crate::units::CELSIUS_ZERO_K;
@@ -49,11 +50,14 @@ pub fn write(stack: &Stack) -> String {
             let _ = writeln!(text, "without_elements = {}", quoted(&symbols.join(", ")));
         }
     }
+    if let Some(said) = &stack.order {
+        order::write(said, &mut text);
+    }
     text
 }
 
 /// A text as a TOML basic string.
-fn quoted(text: &str) -> String {
+pub(super) fn quoted(text: &str) -> String {
     toml::Value::String(text.to_owned()).to_string()
 }
 

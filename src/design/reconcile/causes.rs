@@ -2,6 +2,7 @@
 
 use super::problem::{Problem, STEP};
 use super::{Datum, ReconcileError};
+use crate::design::anchored::Anchored;
 use crate::design::unknown::{Unknown, every_cause};
 use nalgebra::DVector;
 
@@ -43,49 +44,69 @@ enum Act {
 }
 
 impl Suspect {
-    fn predicted(&self, problem: &Problem<'_>, amount: f64) -> Result<Vec<f64>, ReconcileError> {
+    fn predicted(
+        &self,
+        problem: &Problem<'_>,
+        at_order: Option<&Anchored<'_>>,
+        ordered: &[f64],
+        amount: f64,
+    ) -> Result<Vec<f64>, ReconcileError> {
         let mut stack = problem.stack.clone();
         match &self.acts {
             Act::Unknowns(unknowns) => {
                 for (unknown, per_amount) in unknowns {
                     unknown.shift(&mut stack, amount * per_amount);
                 }
-                problem.predicted(&stack, 0.0)
             }
             Act::BenchTemperature => {
                 stack.operation.temperature_k = (stack.operation.temperature_k + amount).max(1.0);
-                problem.predicted(&stack, 0.0)
             }
-            Act::BenchWavelength => problem.predicted(&stack, amount),
+            Act::BenchWavelength => {
+                let mut predicted = ordered.to_vec();
+                if let Some(peak_nm) = problem
+                    .place(Datum::Pl)
+                    .and_then(|index| predicted.get_mut(index))
+                {
+                    *peak_nm += amount;
+                }
+                return Ok(predicted);
+            }
         }
+        problem.predicted(stack, at_order)
     }
 }
 
 /// Each possible cause by itself, with the amount that explains the data best.
+///
+/// # Arguments
+///
+/// * `at_order` – the model about the order
+/// * `ordered` – what it gives for the order
 pub(super) fn causes(
     problem: &Problem<'_>,
     unknowns: &[Unknown],
+    at_order: Option<&Anchored<'_>>,
+    ordered: &[f64],
 ) -> Result<Vec<SingleCause>, ReconcileError> {
     let mut found = Vec::new();
     for suspect in suspects(problem, unknowns) {
-        let derivative = |at: f64| -> Result<DVector<f64>, ReconcileError> {
-            let step = STEP * suspect.usual;
-            let above = problem.misses(&suspect.predicted(problem, at + step)?);
-            let below = problem.misses(&suspect.predicted(problem, at - step)?);
-            Ok((below - above) / (2.0 * step))
+        let misses = |amount: f64| -> Result<DVector<f64>, ReconcileError> {
+            let predicted = suspect.predicted(problem, at_order, ordered, amount)?;
+            Ok(problem.misses(&predicted))
         };
-        let slope = derivative(0.0)?;
+        let step = STEP * suspect.usual;
+        let slope = (misses(-step)? - misses(step)?) / (2.0 * step);
         let weight = slope.norm_squared();
         // What moves no datum by a hundredth of its error within what is usual explains nothing.
         if weight.sqrt() * suspect.usual < 1e-2 {
             continue;
         }
         let mut amount = 0.0;
-        let mut misses = problem.misses(&suspect.predicted(problem, amount)?);
+        let mut left = problem.misses(ordered);
         for _ in 0..6 {
-            let step = slope.dot(&misses) / weight;
+            let step = slope.dot(&left) / weight;
             amount += step.clamp(-10.0 * suspect.usual, 10.0 * suspect.usual);
-            misses = problem.misses(&suspect.predicted(problem, amount)?);
+            left = misses(amount)?;
             if step.abs() < 1e-3 * suspect.usual {
                 break;
             }
@@ -95,9 +116,9 @@ pub(super) fn causes(
             unit: suspect.unit,
             amount,
             sigma: weight.sqrt().recip(),
-            chi_square: misses.norm_squared(),
+            chi_square: left.norm_squared(),
             unusual: amount / suspect.usual,
-            leaves: misses.iter().copied().collect(),
+            leaves: left.iter().copied().collect(),
         });
     }
     let cost = |cause: &SingleCause| cause.chi_square + cause.unusual * cause.unusual;
@@ -133,11 +154,7 @@ fn suspects(problem: &Problem<'_>, unknowns: &[Unknown]) -> Vec<Suspect> {
             }
         })
         .collect();
-    let pl = problem
-        .data
-        .iter()
-        .position(|(datum, _)| *datum == Datum::Pl);
-    if let Some(index) = pl {
+    if let Some(index) = problem.place(Datum::Pl) {
         suspects.push(Suspect {
             name: "bench temperature".to_owned(),
             unit: "K",

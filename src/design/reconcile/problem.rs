@@ -1,12 +1,12 @@
 //! Unknowns and data, and the most likely unknowns.
 
 use super::{Datum, Readings, ReconcileError};
+use crate::design::anchored::Anchored;
 use crate::design::house_offset::HouseOffset;
 use crate::design::unknown::Unknown;
 use crate::diffraction::{Diffraction, Reflection};
-use crate::evaluation::Evaluation;
 use crate::materials::Parameters;
-use crate::structure::{Measured, MismatchKind, Stack, Wavelength};
+use crate::structure::{Bands, Measured, MismatchKind, Stack, Wavelength};
 use crate::units::{photon_ev, wavelength_nm};
 use nalgebra::{DMatrix, DVector};
 
@@ -19,6 +19,15 @@ pub(super) const STEP: f64 = 0.2;
 
 /// Most steps of the iteration.
 const MOST_ITERATIONS: usize = 12;
+
+/// A step longer than this asks for new derivatives, in prior sigmas.
+const LONG_STEP: f64 = 0.1;
+
+/// Most structures that are solved in full on the way to the most likely one.
+const MOST_ANCHORS: usize = 4;
+
+/// The way is at its end where an anchor is so near the next one, in prior sigmas.
+const SAME_PLACE: f64 = 0.02;
 
 /// Longest step of the iteration, in prior sigmas.
 const LONGEST_STEP: f64 = 2.0;
@@ -34,19 +43,39 @@ pub(super) struct Problem<'a> {
     pub(super) reflection: Reflection,
 }
 
-impl Problem<'_> {
+impl<'a> Problem<'a> {
+    /// The model of photoluminescence about a stack that is solved in full for it; `None` where no
+    /// peak was measured.
+    pub(super) fn anchored(&self, stack: &Stack) -> Result<Option<Anchored<'a>>, ReconcileError> {
+        if self.place(Datum::Pl).is_none() {
+            return Ok(None);
+        }
+        let anchored = Anchored::at(stack, self.parameters, Wavelength::Photoluminescence)?;
+        Ok(Some(anchored.ok_or(ReconcileError::NoEmission)?))
+    }
+
+    /// Where a datum stands among the data.
+    pub(super) fn place(&self, wanted: Datum) -> Option<usize> {
+        self.data.iter().position(|(datum, _)| *datum == wanted)
+    }
+
     /// What the model gives for a stack, in the order of the data.
     pub(super) fn predicted(
         &self,
-        stack: &Stack,
-        pl_shift_nm: f64,
+        stack: Stack,
+        anchored: Option<&Anchored<'_>>,
     ) -> Result<Vec<f64>, ReconcileError> {
         let wants_xray = self.data.iter().any(|(datum, _)| *datum != Datum::Pl);
         let multi_well = if wants_xray {
-            let seen = Diffraction::new(stack, self.parameters, self.reflection, DIFFRACTOMETER_K)?;
+            let seen =
+                Diffraction::new(&stack, self.parameters, self.reflection, DIFFRACTOMETER_K)?;
             Some(seen.multi_well.ok_or(ReconcileError::NoPeriod)?)
         } else {
             None
+        };
+        let peak_nm = match anchored {
+            Some(anchored) => anchored.wavelength_nm(stack)?,
+            None => None,
         };
         self.data
             .iter()
@@ -57,23 +86,26 @@ impl Problem<'_> {
                 }
                 (Datum::Mismatch(MismatchKind::Relaxed), Some(seen)) => Ok(seen.mean.relaxed_ppm()),
                 (Datum::Pl, _) | (_, None) => {
-                    let peak_nm = Evaluation::new(stack, self.parameters)?
-                        .wavelength_nm(Wavelength::Photoluminescence)
-                        .ok_or(ReconcileError::NoEmission)?;
-                    let photon = photon_ev(peak_nm) + 1e-3 * self.offset_mev;
-                    Ok(wavelength_nm(photon) + pl_shift_nm)
+                    let peak_nm = peak_nm.ok_or(ReconcileError::NoEmission)?;
+                    Ok(self.with_offset_nm(peak_nm))
                 }
             })
             .collect()
     }
 
+    /// A peak of the model with the house offset.
+    pub(super) fn with_offset_nm(&self, peak_nm: f64) -> f64 {
+        wavelength_nm(photon_ev(peak_nm) + 1e-3 * self.offset_mev)
+    }
+
     /// The same with the unknowns at so many prior sigmas.
-    pub(super) fn moved(
+    fn moved(
         &self,
         unknowns: &[Unknown],
         v: &DVector<f64>,
+        anchored: Option<&Anchored<'_>>,
     ) -> Result<Vec<f64>, ReconcileError> {
-        self.predicted(&grown(&self.stack, unknowns, v), 0.0)
+        self.predicted(grown(&self.stack, unknowns, v), anchored)
     }
 
     /// Derivatives of the predictions, in sigmas of the data for a prior sigma of each unknown.
@@ -81,13 +113,14 @@ impl Problem<'_> {
         &self,
         unknowns: &[Unknown],
         v: &DVector<f64>,
+        anchored: Option<&Anchored<'_>>,
     ) -> Result<DMatrix<f64>, ReconcileError> {
         let mut jacobian = DMatrix::zeros(self.data.len(), unknowns.len());
         for unknown in 0..unknowns.len() {
             let side = |step: f64| {
                 let mut moved = v.clone();
                 moved[unknown] += step;
-                self.moved(unknowns, &moved)
+                self.moved(unknowns, &moved, anchored)
             };
             let (above, below) = (side(STEP)?, side(-STEP)?);
             for datum in 0..self.data.len() {
@@ -124,33 +157,67 @@ pub(super) fn grown(stack: &Stack, unknowns: &[Unknown], v: &DVector<f64>) -> St
 pub(super) struct Posterior {
     /// In prior sigmas.
     pub(super) v: DVector<f64>,
+    /// What the full model gives for them.
     pub(super) predicted: Vec<f64>,
     pub(super) jacobian: DMatrix<f64>,
     /// (JᵀJ + 1)⁻¹.
     pub(super) covariance: DMatrix<f64>,
 }
 
+/// The most likely unknowns by the full model: where it was solved last, its photoluminescence is
+/// followed by single bands to the next place, until that is where it was solved.
+///
+/// # Arguments
+///
+/// * `at_order` – the model about the order
 pub(super) fn posterior(
     problem: &Problem<'_>,
     unknowns: &[Unknown],
+    at_order: Option<&Anchored<'_>>,
 ) -> Result<Posterior, ReconcileError> {
-    let count = unknowns.len();
-    let one = DMatrix::<f64>::identity(count, count);
-    let inverse = |jacobian: &DMatrix<f64>| {
-        (jacobian.transpose() * jacobian + &one)
-            .cholesky()
-            .expect("a square and the unit matrix make a positive definite one")
-            .inverse()
-    };
-    let mut v = DVector::zeros(count);
-    let mut predicted = problem.moved(unknowns, &v)?;
-    // The derivatives change little along the way: they are taken at the start and once more at the
-    // end, where they make the covariance.
-    let mut jacobian = problem.jacobian(unknowns, &v)?;
-    let mut covariance = inverse(&jacobian);
+    let mut anchored = at_order.copied();
+    let mut v = DVector::zeros(unknowns.len());
+    let mut jacobian = DMatrix::zeros(0, 0);
+    for _ in 0..MOST_ANCHORS {
+        let next = most_likely(problem, unknowns, anchored.as_ref(), &v)?;
+        let moved = (&next.0 - &v).norm();
+        (v, jacobian) = next;
+        anchored = problem.anchored(&grown(&problem.stack, unknowns, &v))?;
+        if moved < SAME_PLACE || problem.stack.model.bands == Bands::Single {
+            break;
+        }
+    }
+    Ok(Posterior {
+        predicted: problem.moved(unknowns, &v, anchored.as_ref())?,
+        covariance: covariance(&jacobian),
+        jacobian,
+        v,
+    })
+}
+
+fn covariance(jacobian: &DMatrix<f64>) -> DMatrix<f64> {
+    let count = jacobian.ncols();
+    (jacobian.transpose() * jacobian + DMatrix::identity(count, count))
+        .cholesky()
+        .expect("a square and the unit matrix make a positive definite one")
+        .inverse()
+}
+
+/// The most likely unknowns by a model of photoluminescence near one stack, by steps of Gauss and
+/// Newton from `start`, and the derivatives within a tenth of a prior sigma of them.
+fn most_likely(
+    problem: &Problem<'_>,
+    unknowns: &[Unknown],
+    anchored: Option<&Anchored<'_>>,
+    start: &DVector<f64>,
+) -> Result<(DVector<f64>, DMatrix<f64>), ReconcileError> {
+    let mut v = start.clone();
+    // The derivatives change little along the way: they are taken again after a long step only.
+    let mut jacobian = problem.jacobian(unknowns, &v, anchored)?;
     for _ in 0..MOST_ITERATIONS {
+        let predicted = problem.moved(unknowns, &v, anchored)?;
         let gradient = jacobian.transpose() * problem.misses(&predicted) - &v;
-        let step = &covariance * gradient;
+        let step = covariance(&jacobian) * gradient;
         let length = step.norm();
         let factor = if length > LONGEST_STEP {
             LONGEST_STEP / length
@@ -158,23 +225,14 @@ pub(super) fn posterior(
             1.0
         };
         v += factor * step;
-        predicted = problem.moved(unknowns, &v)?;
         if length < 1e-3 {
             break;
         }
-        if length > 0.5 {
-            jacobian = problem.jacobian(unknowns, &v)?;
-            covariance = inverse(&jacobian);
+        if length > LONG_STEP {
+            jacobian = problem.jacobian(unknowns, &v, anchored)?;
         }
     }
-    let jacobian = problem.jacobian(unknowns, &v)?;
-    let covariance = inverse(&jacobian);
-    Ok(Posterior {
-        v,
-        predicted,
-        jacobian,
-        covariance,
-    })
+    Ok((v, jacobian))
 }
 
 pub(super) fn problem<'a>(

@@ -1,7 +1,7 @@
 //! How findings about the wafer stand, and their numbers.
 
 use super::{LEAST_NOTED_PERCENT, StrainLimits, WaferFinding};
-use crate::coherence::{CriticalThickness, LayerStrain};
+use crate::coherence::LayerStrain;
 use crate::design::{Measure, Standing};
 
 impl WaferFinding {
@@ -27,18 +27,13 @@ impl WaferFinding {
     #[must_use]
     pub fn standing(&self) -> Standing {
         match self {
-            Self::Strain { layer, .. } => self.strain_standing(
-                layer.critical_share(),
-                layer.thickness_nm,
-                layer.critical.energy_balance,
-                layer.mismatch.strain_percent(),
-            ),
-            Self::StackStrain { active, .. } => self.strain_standing(
-                active.critical_share(),
-                active.thickness_nm,
-                active.critical.energy_balance,
-                active.mean.strain_percent(),
-            ),
+            Self::Strain { .. } | Self::StackStrain { .. } => {
+                let by_limits = self.by_limits().unwrap_or(Standing::Stated);
+                match self.coherence() {
+                    Standing::Stated => by_limits,
+                    beyond => beyond.max(by_limits),
+                }
+            }
             Self::Balance(_) | Self::GroupVChange { .. } => Standing::Stated,
             Self::FencePosts {
                 below_nm, above_nm, ..
@@ -49,9 +44,8 @@ impl WaferFinding {
                     Standing::Noted
                 }
             }
-            Self::Thin { .. } | Self::BulkMismatch { .. } => {
-                self.by_limits().unwrap_or(Standing::Noted)
-            }
+            Self::Thin { .. } => self.by_limits().unwrap_or(Standing::Noted),
+            Self::BulkMismatch { .. } => self.by_limits().unwrap_or(Standing::Stated),
             Self::ForbiddenElement { .. } => Standing::Outside,
             Self::SimilarAlloys { .. } | Self::Unmixing { .. } | Self::OtherSource { .. } => {
                 Standing::Noted
@@ -59,41 +53,38 @@ impl WaferFinding {
         }
     }
 
-    /// Outside a limit of the house or beyond both theories, worth a look beyond the more careful
-    /// one.
-    fn strain_standing(
-        &self,
-        critical_share: f64,
-        thickness_nm: f64,
-        energy_balance: CriticalThickness,
-        percent: f64,
-    ) -> Standing {
-        let by_limits = self.by_limits();
-        if by_limits == Some(Standing::Outside) {
-            return Standing::Outside;
+    /// How strained layers stand by theory alone: outside beyond both balances, worth a look beyond
+    /// the more careful one; stated otherwise, and for what is not about strain.
+    #[must_use]
+    pub fn coherence(&self) -> Standing {
+        let (share, thickness_nm, energy_balance, mismatch) = match self {
+            Self::Strain { layer, .. } => (
+                layer.critical_share(),
+                layer.thickness_nm,
+                layer.critical.energy_balance,
+                layer.mismatch,
+            ),
+            Self::StackStrain { active, .. } => (
+                active.critical_share(),
+                active.thickness_nm,
+                active.critical.energy_balance,
+                active.mean,
+            ),
+            _ => return Standing::Stated,
+        };
+        if share <= 1.0 || mismatch.strain_percent() < LEAST_NOTED_PERCENT {
+            Standing::Stated
+        } else if energy_balance.holds(thickness_nm) {
+            Standing::Noted
+        } else {
+            Standing::Outside
         }
-        if critical_share > 1.0 && percent >= LEAST_NOTED_PERCENT {
-            return if energy_balance.holds(thickness_nm) {
-                Standing::Noted
-            } else {
-                Standing::Outside
-            };
-        }
-        by_limits.unwrap_or(Standing::Stated)
     }
 
-    /// How its numbers stand against the limits of the house; `None` without a limit. Names of
-    /// thicknesses are limited from below, all others from above.
+    /// How its numbers stand against the limits of the house; `None` without a limit.
     fn by_limits(&self) -> Option<Standing> {
-        let limited = self.measures().into_iter().filter_map(|measure| {
-            let limit = measure.limit?;
-            let from_below = measure.name == "thickness_nm";
-            Some(if from_below {
-                measure.value >= limit
-            } else {
-                measure.value <= limit
-            })
-        });
+        let measures = self.measures();
+        let limited = measures.iter().filter_map(Measure::is_inside);
         limited.reduce(|all, one| all && one).map(|inside| {
             if inside {
                 Standing::Within
@@ -132,7 +123,7 @@ impl WaferFinding {
                 .into_iter()
                 .chain(
                     balance
-                        .thickness_factor
+                        .practicable_factor()
                         .map(|factor| measure("thickness_factor", factor, None)),
                 )
                 .collect(),
@@ -153,11 +144,7 @@ impl WaferFinding {
                 relaxed_ppm,
                 most_ppm,
                 ..
-            } => vec![measure(
-                "relaxed_mismatch_ppm",
-                *relaxed_ppm,
-                Some(*most_ppm),
-            )],
+            } => vec![measure("relaxed_mismatch_ppm", *relaxed_ppm, *most_ppm)],
             Self::ForbiddenElement { .. } => Vec::new(),
             Self::GroupVChange { interfaces, .. } => {
                 vec![measure("interfaces", *interfaces as f64, None)]

@@ -2,6 +2,7 @@
 
 use super::{Cell, CsvTable};
 use crate::design::{Outcome, Variation, Weighed};
+use crate::sheet::aim::{drift_nm, exchanges};
 use crate::sheet::weigh::rows;
 
 /// The solutions with their figures.
@@ -27,11 +28,18 @@ pub fn aim(variation: &Variation<'_>, outcome: &Outcome) -> Vec<CsvTable> {
             "stack_critical_share",
             "nm_per_percent_width",
             "nm_per_k",
-            "nm_per_thousandth",
-            "limits_broken",
         ]
         .map(str::to_owned),
     );
+    let exchanges = exchanges(outcome);
+    heads.extend(exchanges.iter().map(|(element, other)| {
+        format!(
+            "nm_per_thousandth_{}_for_{}",
+            element.symbol(),
+            other.symbol()
+        )
+    }));
+    heads.push("limits_broken".to_owned());
     let heads: Vec<&str> = heads.iter().map(String::as_str).collect();
     let mut table = CsvTable::new("solutions", &heads);
     for (index, solution) in outcome.solutions.iter().enumerate() {
@@ -45,18 +53,6 @@ pub fn aim(variation: &Variation<'_>, outcome: &Outcome) -> Vec<CsvTable> {
                 .zip(&solution.values)
                 .map(|(moved, &value)| Cell::from(moved.said(value))),
         );
-        let shares: Vec<String> = figures
-            .shares
-            .iter()
-            .map(|share| {
-                format!(
-                    "{} for {} {}",
-                    share.element.symbol(),
-                    share.at_expense_of.symbol(),
-                    super::exact(share.nm_per_thousandth)
-                )
-            })
-            .collect();
         row.extend(row![
             solution.wavelength_nm,
             figures.density_cm3,
@@ -74,15 +70,19 @@ pub fn aim(variation: &Variation<'_>, outcome: &Outcome) -> Vec<CsvTable> {
             figures.stack_critical_share,
             figures.nm_per_percent_width,
             figures.nm_per_k,
-            shares.join("; "),
-            figures.broken_limits.join(" "),
         ]);
+        row.extend(
+            exchanges
+                .iter()
+                .map(|&exchange| Cell::from(drift_nm(figures, exchange))),
+        );
+        row.push(Cell::from(figures.broken_limits.join(" ")));
         table.rows.push(row);
     }
     vec![table]
 }
 
-/// The comparison, and the spectra of all columns.
+/// The comparison, and the spectra and densities of states of all columns.
 #[must_use]
 pub fn weigh(weighed: &[Weighed]) -> Vec<CsvTable> {
     let mut heads = vec!["figure", "unit"];
@@ -114,5 +114,16 @@ pub fn weigh(weighed: &[Weighed]) -> Vec<CsvTable> {
             ]);
         }
     }
-    vec![comparison, spectra]
+    let mut states = CsvTable::new(
+        "states",
+        &["column", "above_first_edge_ev", "states_per_ev_cm3"],
+    );
+    for column in weighed {
+        for &(above_ev, per_ev_cm3) in &column.states_per_ev_cm3 {
+            states
+                .rows
+                .push(row![column.name.as_str(), above_ev, per_ev_cm3]);
+        }
+    }
+    vec![comparison, spectra, states]
 }

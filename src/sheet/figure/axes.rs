@@ -26,6 +26,9 @@ const TITLE_GAP_PX: f64 = 4.0;
 const LEVEL_AIR_PX: f64 = 10.0;
 const UPRIGHT_AIR_PX: f64 = 17.0;
 
+/// Room for a name in place of a number, px.
+const LONGEST_NAME_PX: f64 = 220.0;
+
 const LINE: Stroke = Stroke::solid(BLACK, 1.0);
 
 fn label_width_px(label: &str) -> f64 {
@@ -71,7 +74,12 @@ impl UprightAxis {
             let half_px = 0.5 * (line_height_px(LABEL_PX) + UPRIGHT_AIR_PX);
             (middle_px - half_px, middle_px + half_px)
         };
-        let ticks = with_room(ticks(span, |ticks| apart(ticks, ends)), ends);
+        let chosen = if axis.names.is_empty() {
+            ticks(span, |ticks| apart(ticks, ends))
+        } else {
+            named(axis)
+        };
+        let ticks = with_room(chosen, ends);
         let unit = unit_in_brackets(&tidy(&axis.unit), ticks.exponent);
         let whole = tidy(&format!("{} {unit}", axis.quantity));
         let mut title = if title_width_px(&whole) <= height_px {
@@ -130,6 +138,18 @@ impl UprightAxis {
             let at = (hung.at.1, 0.5 * (frame.top_px + frame.bottom_px));
             scene.write(Text { at, ..hung }.anchored(Anchor::Middle).upright());
         }
+    }
+}
+
+/// Ticks with names for labels.
+fn named(axis: &Axis) -> Ticks {
+    let ticks = axis.names.iter().map(|(value, name)| Tick {
+        value: *value,
+        label: Some(fitted(name, LABEL_PX, Weight::Regular, LONGEST_NAME_PX)),
+    });
+    Ticks {
+        exponent: 0,
+        ticks: ticks.collect(),
     }
 }
 
@@ -327,6 +347,21 @@ mod tests {
         assert_eq!(UprightAxis::new(&axis, span, 400.0).title.len(), 1);
         let low = UprightAxis::new(&axis, span, 180.0);
         assert_eq!(low.title, ["spontaneous emission rate", "(eV⁻¹ cm⁻³ s⁻¹)"]);
+    }
+
+    #[test]
+    fn names_stand_in_place_of_numbers_and_have_their_room() {
+        let span = Span::fixed(0.0, 3.0, Scale::Linear).expect("a span");
+        let long = "x".repeat(400);
+        let axis = Axis {
+            names: vec![(1.0, "growth rate".to_owned()), (2.0, long)],
+            ..Axis::default()
+        };
+        let upright = UprightAxis::new(&axis, span, 200.0);
+        let labels: Vec<&str> = upright.ticks.labelled().map(|(_, label)| label).collect();
+        assert_eq!(labels[0], "growth rate");
+        assert!(label_width_px(labels[1]) <= LONGEST_NAME_PX);
+        assert!(upright.width_px() >= label_width_px(labels[1]));
     }
 
     #[test]

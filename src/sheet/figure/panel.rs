@@ -101,6 +101,8 @@ pub struct Axis {
     pub includes: Option<f64>,
     /// Draws a heavy line where this axis is zero.
     pub heavy_zero: bool,
+    /// Names at their places instead of numbers; of a vertical axis only.
+    pub names: Vec<(f64, String)>,
 }
 
 impl Axis {

@@ -1,9 +1,10 @@
 //! What a check found about the wafer, in words.
 
-use crate::coherence::{ActiveStrain, Balance, CriticalBand, CriticalThickness, LayerStrain};
+use crate::coherence::{ActiveStrain, CriticalBand, CriticalThickness, LayerStrain};
 use crate::design::{Standing, StrainLimits, WaferFinding};
 use crate::materials::{Element, Mismatch};
 use crate::sheet::number::{fixed, length_nm, plain, signed, significant};
+use crate::sheet::strain::balancing;
 use crate::units::CELSIUS_ZERO_K;
 
 /// What was found, with its numbers.
@@ -56,10 +57,10 @@ pub(super) fn message(finding: &WaferFinding) -> String {
             relaxed_ppm,
             most_ppm,
         } => format!(
-            "of buffer, cladding, contact and cap the {} {formula} has the most mismatch, {} ppm relaxed (at most {} ppm)",
+            "of buffer, cladding, contact and cap the {} {formula} has the most mismatch, {} ppm relaxed{}",
             role.word(),
             fixed(*relaxed_ppm, 0),
-            plain(*most_ppm)
+            limit(*most_ppm, "ppm")
         ),
         WaferFinding::ForbiddenElement {
             role,
@@ -99,7 +100,7 @@ pub(super) fn message(finding: &WaferFinding) -> String {
             thermal_ev,
             source,
         } => format!(
-            "{source} puts the {quantity} of {of} {} meV off the one used, {} kT",
+            "by {source} the {quantity} of {of} is {} meV off the one used, {} kT",
             signed(1e3 * difference_ev, 0),
             fixed(difference_ev.abs() / thermal_ev, 1)
         ),
@@ -201,32 +202,6 @@ fn stack_strain(active: &ActiveStrain, most_percent: Option<f64>) -> String {
             None
         )
     )
-}
-
-fn balancing(balance: &Balance) -> String {
-    let barriers = if balance.count == 1 {
-        format!("the barrier {}", balance.formula)
-    } else {
-        format!("the {} barriers {}", balance.count, balance.formula)
-    };
-    let by_strain = balance.mismatch.map_or_else(
-        || "could not at their thickness, whatever their strain".to_owned(),
-        |mismatch| {
-            format!(
-                "would take the mean stress away with {} % {}",
-                fixed(mismatch.strain_percent(), 2),
-                mismatch.sense().word()
-            )
-        },
-    );
-    let by_thickness = balance.thickness_factor.map_or(String::new(), |factor| {
-        format!(
-            ", or {} times as thick ({} nm together)",
-            significant(factor, 3),
-            significant(factor * balance.thickness_nm, 3)
-        )
-    });
-    format!("{barriers} {by_strain}{by_thickness}")
 }
 
 /// What to do about it; `None` where nothing needs doing.

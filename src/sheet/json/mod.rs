@@ -22,15 +22,16 @@ pub use materials::{descriptions, families};
 pub use reconcile::reconcile;
 pub use restatement::restatement;
 pub use spectrum::spectrum;
+pub(in crate::sheet) use spread::key as cause_key;
 pub use spread::spread;
 pub use xray::xray;
 
 use serde::Serialize;
 
 /// Version of the documents.
-const FORMAT: u32 = 1;
+pub(in crate::sheet) const FORMAT: u32 = 1;
 
 /// A document as text: an object's keys on lines of their own, lists on one.
-fn text(document: &impl Serialize) -> String {
+pub(in crate::sheet) fn text(document: &impl Serialize) -> String {
     layout::text(document)
 }

@@ -21,8 +21,11 @@ struct Document<'a> {
     causes: Vec<Cause<'a>>,
     damping: f64,
     correction: Vec<Correction<'a>>,
+    limits: Vec<LimitEntry<'a>>,
+    next_is_outside: bool,
     expected_pl_nm: Option<f64>,
     expected_pl_sigma_nm: Option<f64>,
+    single_bands_miss_nm: Option<f64>,
     house_offset: HouseOffset<'a>,
     assumed: Vec<String>,
 }
@@ -83,9 +86,24 @@ struct Cause<'a> {
 #[derive(Serialize)]
 struct Correction<'a> {
     name: &'a str,
+    ordered: f64,
+    order_next: f64,
     change: f64,
     sigma: f64,
     unit: &'static str,
+}
+
+/// A figure of strain or thickness as ordered, as grown, and as expected after the correction.
+#[derive(Serialize)]
+struct LimitEntry<'a> {
+    layers: &'a str,
+    code: &'static str,
+    name: &'static str,
+    ordered: Option<f64>,
+    grown: Option<f64>,
+    next: Option<f64>,
+    limit: Option<f64>,
+    standing: &'static str,
 }
 
 #[derive(Serialize)]
@@ -175,13 +193,31 @@ pub fn reconcile(wafer: &Wafer<'_>, stamp: &Stamp) -> String {
             .iter()
             .map(|it| Correction {
                 name: &it.name,
+                ordered: it.ordered,
+                order_next: it.ordered + it.change,
                 change: it.change,
                 sigma: it.sigma,
                 unit: it.unit,
             })
             .collect(),
+        limits: result
+            .limits
+            .iter()
+            .map(|it| LimitEntry {
+                layers: &it.of,
+                code: it.code,
+                name: it.name,
+                ordered: it.ordered,
+                grown: it.grown,
+                next: it.next,
+                limit: it.limit,
+                standing: it.standing.word(),
+            })
+            .collect(),
+        next_is_outside: result.next_is_outside(),
         expected_pl_nm: result.expected_pl_nm.map(|(nm, _)| nm),
         expected_pl_sigma_nm: result.expected_pl_nm.map(|(_, sigma)| sigma),
+        single_bands_miss_nm: result.followed_miss_nm,
         house_offset: HouseOffset {
             family: &result.offset.family,
             runs: result.offset.runs,

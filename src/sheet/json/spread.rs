@@ -3,7 +3,7 @@
 use super::FORMAT;
 use crate::design::{Cause, Solving, Spread};
 use crate::sheet::Stamp;
-use crate::structure::Stack;
+use crate::structure::{Bands, Stack};
 use serde::Serialize;
 use std::collections::BTreeMap;
 
@@ -91,8 +91,11 @@ struct Histogram<'a> {
 #[derive(Serialize)]
 struct Surrogate {
     law: &'static str,
+    /// Of the structures that the law runs through.
+    bands: &'static str,
     solved: usize,
     checked: usize,
+    unsolved: usize,
     miss_rms_nm: f64,
     miss_worst_nm: f64,
 }
@@ -169,8 +172,10 @@ pub fn spread(stack: &Stack, spread: &Spread, stamp: &Stamp) -> String {
                 Solving::Quadratic => "quadratic",
                 Solving::EachWafer => "none",
             },
+            bands: Bands::Single.word(),
             solved: miss.solved,
             checked: miss.checked,
+            unsolved: miss.unsolved,
             miss_rms_nm: miss.rms_nm,
             miss_worst_nm: miss.worst_nm,
         }),

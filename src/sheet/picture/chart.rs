@@ -12,7 +12,7 @@ use crate::sheet::number::{plain, temperature};
 use crate::sheet::stamp::Stamp;
 
 /// Contour lines that are aimed at.
-const CONTOURS: f64 = 9.0;
+const CONTOURS: f64 = 10.0;
 /// Height of the plot over its width, px over px.
 const ASPECT: f64 = 0.62;
 /// A share of the critical thickness without end, for lines and hatches.
@@ -371,11 +371,12 @@ fn round_levels(values: &[Option<f64>]) -> Vec<f64> {
     }
     let rough = (high - low) / CONTOURS;
     let power = 10f64.powf(rough.log10().floor());
-    let step = power
-        * [1.0, 2.0, 5.0, 10.0]
-            .into_iter()
-            .find(|round| round * power >= rough)
-            .unwrap_or(10.0);
+    // The round step nearest to the rough one, in ratio.
+    let step = [1.0, 2.0, 5.0, 10.0]
+        .into_iter()
+        .map(|round| round * power)
+        .min_by(|a, b| (a / rough).ln().abs().total_cmp(&(b / rough).ln().abs()))
+        .unwrap_or(rough);
     let first = (low / step).ceil();
     let count = ((high / step).floor() - first) as usize;
     (0..=count).map(|at| (first + at as f64) * step).collect()

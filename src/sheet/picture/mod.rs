@@ -87,7 +87,7 @@ fn word_key(name: impl Into<String>) -> Key {
 }
 
 /// The stamp with short checksums: a figure is looked at, a table is compared.
-fn short_stamp(stamp: &Stamp) -> String {
+pub(super) fn short_stamp(stamp: &Stamp) -> String {
     let short = |sum: &str| sum.chars().take(SHORT_SUM).collect::<String>();
     let mut parts = vec![stamp.program.clone()];
     parts.extend(

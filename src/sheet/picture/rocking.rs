@@ -105,12 +105,12 @@ fn notes(seen: &Diffraction, curve: &RockingCurve) -> Vec<Note> {
     std::iter::once(note(0.0, "substrate".to_owned()))
         .chain(
             satellites
-                .filter(|it| height(it.peak.offset_arcsec) > 10.0 * BACKGROUND)
+                .filter(|it| height(it.peak.offset_arcsec) > 3.0 * BACKGROUND)
                 .map(|it| {
                     let name = if it.order == 0 {
                         "0".to_owned()
                     } else {
-                        signed(f64::from(it.order), 0)
+                        signed(f64::from(it.order), 0).replace('-', "−")
                     };
                     note(it.peak.offset_arcsec, name)
                 }),

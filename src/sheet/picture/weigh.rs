@@ -5,6 +5,7 @@ use crate::design::{Equal, Weighed};
 use crate::sheet::figure::{Axis, Curve, Dash, Figure, Ink, Joint, Naming, Panel, Row, TopAxis};
 use crate::sheet::number::{plain, power};
 use crate::sheet::stamp::Stamp;
+use crate::sheet::weigh::measure;
 use crate::units::wavelength_nm;
 
 /// Absorption dwarfs gain: so much of it is shown, in highest gains.
@@ -21,7 +22,7 @@ pub fn weigh_figure(weighed: &[Weighed], equal: Equal, stamp: &Stamp) -> Figure 
         })
         .collect();
     Figure {
-        title: format!("Side by side at {}", equal.meaning()),
+        title: format!("Side by side at {}", measure(weighed, equal)),
         caption: densities.join("; "),
         stamp: short_stamp(stamp),
         description: format!(

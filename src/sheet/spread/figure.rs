@@ -1,13 +1,14 @@
 //! The figure of `spread`: the wafers as bars with the window, and the sensitivities as bars.
 
 use super::sigma;
-use crate::design::{Sensitivity, Spread};
+use crate::design::Spread;
 use crate::sheet::Stamp;
 use crate::sheet::figure::{
     Area, Axis, Curve, Dash, Figure, Ink, Joint, Key, Naming, Note, Panel, Place, Row, Rule, Side,
     Standing, Stripe,
 };
 use crate::sheet::number::{fixed, plain, signed};
+use crate::sheet::picture::short_stamp;
 use crate::structure::Stack;
 use std::f64::consts::PI;
 
@@ -34,7 +35,7 @@ pub fn spread_figure(stack: &Stack, spread: &Spread, stamp: &Stamp) -> Figure {
             fixed(spread.sampled.sigma_nm, 2),
             plain(spread.request.model_nm)
         ),
-        stamp: stamp.line(),
+        stamp: short_stamp(stamp),
         description: "Distribution of the wavelength over wafers, and its sensitivities."
             .to_owned(),
         rows: vec![row(wafers(spread)), row(bars(spread))],
@@ -60,18 +61,21 @@ fn wafers(spread: &Spread) -> Panel {
         opacity: 0.35,
     };
     let linear = spread.linear;
+    let density_of_law = 100.0 / (linear.sigma_nm * (2.0 * PI).sqrt());
     let bell = (0..=200).map(|i| {
         let x = -4.0 + 0.04 * f64::from(i);
-        let height = 100.0 * (-0.5 * x * x).exp() / (linear.sigma_nm * (2.0 * PI).sqrt());
+        let height = density_of_law * (-0.5 * x * x).exp();
         (linear.mean_nm + linear.sigma_nm * x, height)
     });
+    let highest = steps()
+        .map(|((_, height), _)| height)
+        .chain([density_of_law])
+        .fold(0.0, f64::max);
     let mut panel = Panel {
         plot_height_px: 300.0,
         x: Axis::new("vacuum wavelength", "nm"),
-        y: Axis {
-            includes: Some(0.0),
-            ..Axis::new("wafers per nm", "%")
-        },
+        // Air over the bars for the names of the rules.
+        y: Axis::new("wafers per nm", "%").over(0.0, 1.2 * highest),
         areas: vec![area],
         curves: vec![
             Curve {
@@ -104,6 +108,15 @@ fn wafers(spread: &Spread) -> Panel {
             ink: Ink::Colour(7),
             opacity: 0.22,
         });
+        for side in [-1.0, 1.0] {
+            panel.rules.push(Rule {
+                at: Place::X(good.target_nm + side * good.tolerance_nm),
+                name: String::new(),
+                ink: Ink::Grey,
+                dash: Dash::Solid,
+                width_px: 0.8,
+            });
+        }
         panel.rules.push(Rule {
             at: Place::X(good.target_nm),
             name: "target".to_owned(),
@@ -125,54 +138,56 @@ fn wafers(spread: &Spread) -> Panel {
     panel
 }
 
-/// Bars of nm per sigma, the strongest on the left.
+/// Bars of nm per sigma, the strongest on top: longer wavelengths to the right.
 fn bars(spread: &Spread) -> Panel {
+    let count = spread.sensitivities.len() as f64;
+    let ends = spread
+        .sensitivities
+        .iter()
+        .fold((0.0f64, 0.0f64), |(low, high), it| {
+            (low.min(it.nm), high.max(it.nm))
+        });
+    // Air for the numbers at the ends of the bars.
+    let air = 0.2 * (ends.1 - ends.0).max(f64::MIN_POSITIVE);
     let mut panel = Panel {
-        plot_height_px: 230.0,
-        x: Axis::new("growth variables, the strongest first", "")
-            .over(0.4, spread.sensitivities.len() as f64 + 0.6),
-        y: Axis {
+        plot_height_px: 34.0 * count + 16.0,
+        x: Axis {
             heavy_zero: true,
-            includes: Some(0.0),
-            ..Axis::new("wavelength with one sigma more", "nm")
+            ..Axis::new("wavelength with one sigma more", "nm").over(ends.0 - air, ends.1 + air)
         },
+        y: Axis::new("", "").over(-count - 0.5, -0.5),
         ..Panel::default()
     };
     for (place, sensitivity) in spread.sensitivities.iter().enumerate() {
-        let middle = place as f64 + 1.0;
+        let middle = -1.0 - place as f64;
+        let variable = sensitivity.variable;
         let ink = Ink::Colour(usize::from(sensitivity.nm < 0.0));
+        panel.y.names.push((
+            middle,
+            format!(
+                "{}, {}",
+                variable.cause.name(),
+                sigma(variable.cause, variable.sigma)
+            ),
+        ));
         panel.areas.push(Area {
-            spans: [middle - HALF_BAR, middle + HALF_BAR]
-                .map(|x| {
-                    let height = sensitivity.nm;
-                    (x, Some((height.min(0.0), height.max(0.0))))
-                })
+            spans: [0.0, sensitivity.nm]
+                .map(|x| (x, Some((middle - HALF_BAR, middle + HALF_BAR))))
                 .to_vec(),
             ink,
             opacity: 0.6,
         });
-        panel.notes.push(label(sensitivity, middle, ink));
+        panel.notes.push(Note {
+            at: (sensitivity.nm, middle),
+            text: format!("{} nm", signed(sensitivity.nm, 2).replace('-', "−")),
+            ink,
+            mark: None,
+            standing: Standing::Near(if sensitivity.nm < 0.0 {
+                Side::Left
+            } else {
+                Side::Right
+            }),
+        });
     }
     panel
-}
-
-fn label(sensitivity: &Sensitivity, middle: f64, ink: Ink) -> Note {
-    let variable = sensitivity.variable;
-    let side = if sensitivity.nm < 0.0 {
-        Side::Below
-    } else {
-        Side::Above
-    };
-    Note {
-        at: (middle, sensitivity.nm),
-        text: format!(
-            "{} {}: {} nm",
-            variable.cause.name(),
-            sigma(variable.cause, variable.sigma),
-            signed(sensitivity.nm, 2)
-        ),
-        ink,
-        mark: None,
-        standing: Standing::Near(side),
-    }
 }

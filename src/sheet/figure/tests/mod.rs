@@ -171,6 +171,7 @@ fn any_axis() -> impl Strategy<Value = Axis> {
             },
             range,
             includes: None,
+            names: Vec::new(),
             heavy_zero,
         })
 }

@@ -1,0 +1,240 @@
+//! The command `sheet`: an order for the grower, or the same with all that stays in the house; and
+//! what `check` says of one that was kept.
+
+use super::Ending;
+use super::case::{Case, Text, parameters};
+use super::complaint::Complaint;
+use super::flags;
+use super::gauge::Gauge;
+use super::outlet::{Files, Outlet, print, remark as write_remark};
+use super::wishes::{make_folder, one};
+use crate::design::{Audience, House, Ordered, SPREAD_DRAWS};
+use crate::materials::Parameters;
+use crate::sheet::order::{
+    self, Document, Figures, Inspection, Kept, Origins, Since, Unreadable, inspect, kept,
+};
+use crate::sheet::{self, Stamp, sha256};
+use crate::structure::{self, Overrides, Reading};
+use std::path::{Path, PathBuf};
+
+/// Files of a sheet that are no figures.
+const PAGE: &str = "sheet.html";
+const LAYERS: &str = "layers.csv";
+const RECORD: &str = "sheet.json";
+/// Files that figures may become.
+const FIGURES: [&str; 4] = [
+    "rocking-curve.svg",
+    "levels.svg",
+    "spectrum.svg",
+    "spread.svg",
+];
+
+/// `stepwell sheet FILE --for grower`.
+pub(super) fn sheet(flags: &flags::Sheet, outlet: &Outlet) -> Result<Ending, Complaint> {
+    let audience = one("--for", &flags.audience, &Audience::ALL, Audience::word)?;
+    let mut files = Files::new(flags.force);
+    if let Some(folder) = &flags.out {
+        announce(folder, audience, &mut files)?;
+    }
+    let since = flags.since.as_deref().map(since).transpose()?;
+    let case = Case::read(
+        &flags.file.path,
+        flags.file.overlay.as_deref(),
+        &Overrides::default(),
+        outlet,
+    )?;
+    if !flags.quiet {
+        case.remark_on_file(outlet);
+        if case.reading.stack.order.is_none() {
+            write_remark(&sheet::remark(
+                "the file has no [order]: the sheet asks for what an order needs",
+                Some(
+                    "`stepwell manual` lists its keys; structures/estuary-1310.toml has them all in use",
+                ),
+                None,
+                outlet.error_colour(),
+            ));
+        }
+    }
+    let origins = Origins {
+        stack: &case.reading.stack,
+        text: case.text(),
+        sha256: case.sha256(),
+        parameters: &case.parameters,
+    };
+    let mut made = make(
+        &origins,
+        &case.reading,
+        audience,
+        since.as_ref(),
+        flags.quiet,
+    );
+    if made.document.repeats_revision() && !made.document.changes().is_empty() && !flags.quiet {
+        write_remark(&sheet::remark(
+            "the sheet differs from the earlier one and has the same revision",
+            Some("give it a `revision` of its own in [order]"),
+            None,
+            outlet.error_colour(),
+        ));
+    }
+    let written = match &flags.out {
+        Some(folder) => write(folder, &mut made, &files)?,
+        None => Vec::new(),
+    };
+    print(&if flags.json {
+        made.document.text()
+    } else {
+        order::summary(&made.document, &written, outlet.colour())
+    })?;
+    Ok(Ending::Done)
+}
+
+fn announce(folder: &Path, audience: Audience, files: &mut Files) -> Result<(), Complaint> {
+    if folder.is_file() {
+        return Err(
+            Complaint::usage(format!("--out: `{}` is a file", folder.display()))
+                .with_remedy("give the name of a folder, which may be a new one"),
+        );
+    }
+    let figures = match audience {
+        Audience::Grower => &FIGURES[..1],
+        Audience::House => &FIGURES[..],
+    };
+    let all = [PAGE, LAYERS, RECORD].iter().chain(figures);
+    all.copied()
+        .try_for_each(|name| files.announce_in_any_folder(&folder.join(name), "--out"))
+}
+
+/// The record of an earlier sheet.
+fn since(path: &Path) -> Result<Since, Complaint> {
+    let text = Text::read(path)?;
+    Since::read(&text.content).map_err(|error| unreadable(&text.name, &error))
+}
+
+fn unreadable(name: &str, error: &Unreadable) -> Complaint {
+    let remedy = match error {
+        Unreadable::NoJson(_) | Unreadable::NoSheet => {
+            "give the sheet.json that `stepwell sheet FILE --for grower --out FOLDER` wrote"
+        }
+        Unreadable::Format(_) => "take the program that wrote it",
+    };
+    Complaint::input(format!("{name}: {error}")).with_remedy(remedy)
+}
+
+/// A sheet before it is written.
+struct Made {
+    document: Document,
+    figures: Figures,
+}
+
+fn make(
+    origins: &Origins<'_>,
+    reading: &Reading,
+    audience: Audience,
+    since: Option<&Since>,
+    quiet: bool,
+) -> Made {
+    let (stack, parameters) = (origins.stack, origins.parameters);
+    let ordered = Ordered::new(stack, parameters);
+    let house = (audience == Audience::House).then(|| {
+        let gauge = Gauge::new(SPREAD_DRAWS, "drawing wafers", quiet);
+        let progress = |done| gauge.reached(done);
+        House::new(stack, parameters, &reading.remarks, &progress)
+    });
+    let document = Document::new(origins, &ordered, house.as_ref(), since);
+    let mut figures = Figures::of_wafer(&ordered, &document.stamp());
+    if let Some(house) = &house {
+        let offsets = house.evaluation.as_ref().ok().map(|it| it.profile.offsets);
+        let stamp = Stamp::new(stack, parameters, offsets, origins.sha256);
+        figures.add_house(stack, house, &stamp);
+    }
+    Made { document, figures }
+}
+
+/// Writes every file of a sheet; the record, which names the others, comes last.
+fn write(folder: &Path, made: &mut Made, files: &Files) -> Result<Vec<String>, Complaint> {
+    let mut texts = vec![
+        (PAGE.to_owned(), made.document.html(&made.figures)),
+        (LAYERS.to_owned(), made.document.layers_csv()),
+    ];
+    texts.extend(made.figures.files());
+    let listed: Vec<(String, &[u8])> = texts
+        .iter()
+        .map(|(name, text)| (name.clone(), text.as_bytes()))
+        .collect();
+    made.document.list_files(&listed);
+    texts.push((RECORD.to_owned(), made.document.text()));
+    make_folder(folder)?;
+    texts
+        .iter()
+        .map(|(name, text)| {
+            let path = folder.join(name);
+            files.write(&path, text)?;
+            Ok(path.display().to_string())
+        })
+        .collect()
+}
+
+/// `stepwell check SHEET.json`: whether a sheet still agrees with its own structure.
+pub(super) fn check(flags: &flags::Check, outlet: &Outlet) -> Result<Ending, Complaint> {
+    let text = Text::read(&flags.file.path)?;
+    let kept = kept(&text.content).map_err(|error| unreadable(&text.name, &error))?;
+    let parameters = parameters(flags.file.overlay.as_deref(), outlet)?;
+    let (anew, found) = again(&kept, &parameters, outlet, flags.output.quiet)?;
+    let files = files_beside(&flags.file.path, &kept);
+    print(&if flags.output.json {
+        order::inspection_json(&anew, &found, &files)
+    } else {
+        order::inspection(&anew, &found, &files, outlet.colour())
+    })?;
+    let agrees = found.agrees() && files.iter().all(|(_, agrees)| *agrees);
+    Ok(if agrees {
+        Ending::Done
+    } else {
+        Ending::Outside
+    })
+}
+
+/// The sheet made anew from the structure that it holds, and what does not agree.
+fn again(
+    kept: &Kept,
+    parameters: &Parameters,
+    outlet: &Outlet,
+    quiet: bool,
+) -> Result<(Document, Inspection), Complaint> {
+    let reading =
+        structure::read(&kept.structure, parameters, &Overrides::default()).map_err(|faults| {
+            Complaint::faults(
+                &faults,
+                "the structure of the sheet",
+                &kept.structure,
+                outlet.error_colour(),
+            )
+        })?;
+    let origins = Origins {
+        stack: &reading.stack,
+        text: &kept.structure,
+        sha256: &kept.source_sha256,
+        parameters,
+    };
+    let made = make(&origins, &reading, kept.audience, None, quiet);
+    let found = inspect(kept, &made.document);
+    Ok((made.document, found))
+}
+
+/// Files of the sheet that lie beside its record, and whether each is the one it was written with.
+fn files_beside(record: &Path, kept: &Kept) -> Vec<(String, bool)> {
+    let folder = record.parent().unwrap_or(Path::new(""));
+    let is_name = |name: &str| {
+        let path = PathBuf::from(name);
+        path.components().count() == 1 && path.file_name().is_some()
+    };
+    kept.files
+        .iter()
+        .filter(|(name, _)| is_name(name))
+        .filter_map(|(name, sum)| {
+            let bytes = std::fs::read(folder.join(name)).ok()?;
+            Some((name.clone(), sha256(&bytes) == *sum))
+        })
+        .collect()
+}
