@@ -345,18 +345,16 @@ impl Trail {
             if count < below + own.len() {
                 return false;
             }
-            // No more than there are lanes for.
-            let count = count.min(self.states);
             if count == below + own.len() {
                 lanes.extend_from_slice(own);
             } else {
-                let Ok(found) = chain.levels(below..count, low) else {
+                let Ok(found) = chain.levels(below..count.min(self.states), low) else {
                     return false;
                 };
                 fresh.energies.extend(found.energies);
                 fresh.vectors.extend(found.vectors);
             }
-            (low, below) = (segment.point, count);
+            (low, below) = (segment.point, count.min(self.states));
             if below >= required {
                 break;
             }
@@ -368,9 +366,6 @@ impl Trail {
             fresh.energies.extend(found.energies);
             fresh.vectors.extend(found.vectors);
             below = required;
-        }
-        if below > self.states {
-            return false;
         }
         let free: Vec<usize> = (0..self.states)
             .filter(|lane| !lanes.contains(lane))
