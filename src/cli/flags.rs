@@ -95,14 +95,17 @@ pub(super) struct Levels {
     /// Also write the matrix whose eigenvalues are the levels, as a Matrix Market file
     #[arg(long, value_name = "FILE.mtx")]
     pub(super) matrix: Option<PathBuf>,
-    /// The band of the matrix: electron, heavy, light, valence or valence-mirror
-    ///
-    /// valence and valence-mirror are the two blocks of heavy, light and split-off holes mixed; in a
-    /// stack that is its own mirror image both have the same energies.
+    /// The band of the matrix: electron, heavy, light, valence or valence-mirror (the two blocks of
+    /// mixed holes)
     #[arg(long, value_name = "BAND", requires = "matrix")]
     pub(super) matrix_of: Option<String>,
     /// In-plane wave number of a valence matrix, 1/nm [default: 0]
-    #[arg(long, value_name = "K", requires = "matrix_of")]
+    #[arg(
+        long,
+        value_name = "K",
+        requires = "matrix_of",
+        allow_negative_numbers = true
+    )]
     pub(super) at_k: Option<f64>,
     /// Draw band edges and envelopes
     #[arg(long, value_name = "PATH.svg")]

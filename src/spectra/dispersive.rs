@@ -1,6 +1,11 @@
 //! Gain and emission between electron parabolas and mixed valence bands: a sum over the in-plane
 //! wave number.
 
+#![expect(
+    clippy::inline_always,
+    reason = "only what is inlined is compiled for the vectors of the caller"
+)]
+
 use std::f64::consts::PI;
 
 use pulp::{Arch, NullaryFnOnce};

@@ -229,7 +229,7 @@ fn five_hundred_random_stacks_are_certified() {
         let stack = read(&file);
         let profile = Profile::new(&stack, &parameters).expect("wells between barriers");
         let bands = stepwell::subbands::single(&profile, true).expect("certified levels");
-        let states = stepwell::subbands::mixed(&profile, &bands, 0.01)
+        let states = stepwell::subbands::mixed(&profile, &bands, 0.002)
             .unwrap_or_else(|error| panic!("stack {number}: {error}\n{file}"));
         let heavy: Vec<f64> = states
             .zone_centre
@@ -297,7 +297,7 @@ fn five_hundred_random_stacks_are_certified() {
         .map(certify)
         .reduce(|| (0, 0), |a, b| (a.0 + b.0, a.1 + b.1));
     assert!(
-        states_seen > 2000 && slices_seen > 5000,
+        states_seen > 2000 && slices_seen > 2000,
         "only {states_seen} states, {slices_seen} slices"
     );
 }

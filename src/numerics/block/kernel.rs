@@ -3,6 +3,11 @@
 //! Written for the widest vectors that every machine has, and run with wider ones where the machine
 //! has them: the arithmetic is the same operation by operation, so that results are too.
 
+#![expect(
+    clippy::inline_always,
+    reason = "only what is inlined is compiled for the vectors of the caller"
+)]
+
 use pulp::{Arch, NullaryFnOnce};
 
 use super::{BlockRun, LANES, Lanes, Three, sum};
@@ -18,7 +23,7 @@ pub(super) struct Step {
     /// Number of eigenvalues below the shift.
     pub(super) below: [usize; LANES],
     /// From the shift to the Rayleigh quotient of the new vector.
-    pub(super) step: Lanes,
+    pub(super) rise: Lanes,
     /// Residual of the new vector.
     pub(super) residual: Lanes,
 }
@@ -102,7 +107,7 @@ impl NullaryFnOnce for Iterate<'_> {
         }
         Step {
             below,
-            step: std::array::from_fn(|lane| overlap[lane] / norm[lane]),
+            rise: std::array::from_fn(|lane| overlap[lane] / norm[lane]),
             residual: std::array::from_fn(|lane| {
                 let rest = (before[lane] - overlap[lane] * overlap[lane] / norm[lane]).max(0.0);
                 (rest / norm[lane]).sqrt()

@@ -191,7 +191,7 @@ impl BlockChain {
                 } else {
                     *low = low.max(shifts[lane]);
                 }
-                energies[lane] = shifts[lane] + step.step[lane];
+                energies[lane] = shifts[lane] + step.rise[lane];
                 let inside = energies[lane] > *low - SLACK && energies[lane] < *high + SLACK;
                 if best[lane].is_none() && step.residual[lane] < 1e-9 && inside {
                     best[lane] = Some((energies[lane], unload(&from, lane)));

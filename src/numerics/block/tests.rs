@@ -108,7 +108,11 @@ fn a_missed_level_is_found_again() {
         gap.vectors.remove(missing);
         let mut trail = Trail::new(&chain, &gap, 0.0);
         let held = trail.step(&mut chain, 1.0, Hold::Lowest(4), floor);
-        assert!(held, "level {missing} left out: {:?} of {exact:?}", trail.energies().collect::<Vec<_>>());
+        assert!(
+            held,
+            "level {missing} left out: {:?} of {exact:?}",
+            trail.energies().collect::<Vec<_>>()
+        );
         for (got, want) in trail.energies().zip(&exact) {
             assert!(
                 (got - want).abs() < 1e-8,

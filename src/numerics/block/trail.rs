@@ -56,6 +56,40 @@ pub struct Trail {
     order: Vec<usize>,
     /// How far the highest state asked for lay off its forecast.
     surprise: f64,
+    /// What a step writes on: nothing is allocated for it.
+    draft: Draft,
+}
+
+/// The next slice on its way, a value a lane.
+#[derive(Clone, Debug, Default)]
+struct Draft {
+    /// Energies as the slices before lead to.
+    forecast: Vec<f64>,
+    /// Energies now.
+    energies: Vec<f64>,
+    /// Residuals now.
+    residuals: Vec<f64>,
+    /// Where the last sweep was taken.
+    shifts: Vec<f64>,
+    /// Levels below the shifts.
+    below: Vec<usize>,
+    /// Lanes by rising energy.
+    order: Vec<usize>,
+    /// Lanes that have not settled, rising.
+    pending: Vec<usize>,
+}
+
+impl Draft {
+    fn sort(&mut self) {
+        let Self {
+            order, energies, ..
+        } = self;
+        sort(order, energies);
+    }
+
+    fn energy(&self, rank: usize) -> f64 {
+        self.energies[self.order[rank]]
+    }
 }
 
 /// Up to [`LANES`] states.
@@ -98,6 +132,7 @@ impl Trail {
             unbroken: vec![1; states],
             order: (0..states).collect(),
             surprise: 0.0,
+            draft: Draft::default(),
         }
     }
 
@@ -147,70 +182,84 @@ impl Trail {
     /// * `at` – the parameter of the problem
     /// * `floor` – no eigenvalue may lie below it
     pub fn step(&mut self, chain: &mut BlockChain, at: f64, hold: Hold, floor: f64) -> bool {
-        let forecast = self.forecast(at);
-        let mut energies = forecast.clone();
+        let mut draft = std::mem::take(&mut self.draft);
+        let held = self.drafted(chain, at, hold, floor, &mut draft);
+        if held {
+            self.accept(chain, at, &draft);
+        }
+        self.draft = draft;
+        held
+    }
+
+    /// Brings the workspace to the problem of `chain`; whether all was met.
+    fn drafted(
+        &mut self,
+        chain: &mut BlockChain,
+        at: f64,
+        hold: Hold,
+        floor: f64,
+        draft: &mut Draft,
+    ) -> bool {
         let required = match hold {
             Hold::Lowest(count) => count.min(self.states),
             Hold::Character => self.states,
         };
-        let mut order = self.order.clone();
-        let mut residuals = vec![f64::INFINITY; self.states];
-        let mut pending: Vec<usize> = (0..self.states).collect();
-        sort(&mut order, &energies);
+        self.forecast(at, &mut draft.forecast);
+        draft.energies.clone_from(&draft.forecast);
+        draft.order.clone_from(&self.order);
+        draft.residuals.clear();
+        draft.residuals.resize(self.states, f64::INFINITY);
+        draft.below.resize(self.states, 0);
+        draft.pending.clear();
+        draft.pending.extend(0..self.states);
+        draft.sort();
         let watched = match hold {
-            Hold::Lowest(_) => watch(&order, &energies, required, self.surprise),
+            Hold::Lowest(_) => watch(&draft.order, &draft.energies, required, self.surprise),
             Hold::Character => None,
         };
         let mut counted = None;
         for _ in 0..ROUNDS {
-            let mut shifts = energies.clone();
+            draft.shifts.clone_from(&draft.energies);
             if let (Some((lane, shift)), None) = (watched, counted) {
-                shifts[lane] = shift;
+                draft.shifts[lane] = shift;
             }
-            let below = self.sweep(chain, &pending, &shifts, &mut energies, &mut residuals);
-            counted = counted.or(watched.map(|(lane, shift)| (shift, below[lane])));
-            sort(&mut order, &energies);
-            self.separate(chain, &order, &mut energies, &mut residuals);
-            sort(&mut order, &energies);
-            let held = apart(&order, &energies, required);
-            let settled = |rank: usize| {
-                residuals[order[rank]] < allowed(rank, |rank| energies[order[rank]], self.states)
-            };
-            let unsettled = (0..held).filter(|&rank| !settled(rank));
-            pending = unsettled.map(|rank| order[rank]).collect();
-            if pending.is_empty() || !energies[order[0]].is_finite() {
+            self.sweep(chain, draft);
+            counted = counted.or(watched.map(|(lane, shift)| (shift, draft.below[lane])));
+            draft.sort();
+            self.separate(chain, draft);
+            draft.sort();
+            let held = apart(&draft.order, &draft.energies, required);
+            draft.pending.clear();
+            for rank in 0..held {
+                let lane = draft.order[rank];
+                let allowed = allowed(rank, |rank| draft.energy(rank), self.states);
+                let settled = draft.residuals[lane] < allowed;
+                if !settled {
+                    draft.pending.push(lane);
+                }
+            }
+            draft.pending.sort_unstable();
+            if draft.pending.is_empty() || !draft.energy(0).is_finite() {
                 break;
             }
         }
-        let held = apart(&order, &energies, required);
-        let rising = |pair: &[usize]| energies[pair[1]] > energies[pair[0]];
-        let found = pending.is_empty() && order[..held].windows(2).all(rising);
+        let held = apart(&draft.order, &draft.energies, required);
+        let rising = (1..held).all(|rank| draft.energy(rank) > draft.energy(rank - 1));
+        let found = draft.pending.is_empty() && rising;
         let certified = match hold {
             Hold::Character => found && chain.count_below(floor) == 0,
             Hold::Lowest(_) => {
-                (found && complete(chain, &order, &energies, held, counted))
-                    || self.mend(
-                        chain,
-                        &mut order,
-                        &mut energies,
-                        &residuals,
-                        required,
-                        floor,
-                    )
+                (found && complete(chain, &draft.order, &draft.energies, held, counted))
+                    || self.mend(chain, draft, required, floor)
             }
         };
-        if !(certified && energies[order[0]] > floor) {
-            return false;
-        }
-        let highest = order[required - 1];
-        self.surprise = (energies[highest] - forecast[highest]).abs();
-        self.order = order;
-        self.accept(chain, at, energies);
-        true
+        let highest = draft.order[required - 1];
+        self.surprise = (draft.energies[highest] - draft.forecast[highest]).abs();
+        certified && draft.energy(0) > floor
     }
 
     /// Continues the slices to a parameter: the vectors into the workspace, the energies by lane.
-    fn forecast(&mut self, at: f64) -> Vec<f64> {
+    fn forecast(&mut self, at: f64, energies: &mut Vec<f64>) {
         let [x0, x1, x2] = self.at;
         // Of the parabola through three slices, of the line through two, and of the last alone.
         let parabola = [
@@ -232,31 +281,30 @@ impl Trail {
                 std::array::from_fn(|slice| std::array::from_fn(|lane| shares[lane][slice]));
             combine(&mut chunk.next[0], &chunk.slices, &weights);
         }
-        (0..self.states)
-            .map(|lane| {
-                let shares = shares(lane);
-                (0..MEMORY)
-                    .filter(|&slice| shares[slice] != 0.0)
-                    .map(|slice| shares[slice] * self.energies[slice][lane])
-                    .sum()
-            })
-            .collect()
+        energies.clear();
+        energies.extend((0..self.states).map(|lane| -> f64 {
+            let shares = shares(lane);
+            (0..MEMORY)
+                .filter(|&slice| shares[slice] != 0.0)
+                .map(|slice| shares[slice] * self.energies[slice][lane])
+                .sum()
+        }));
     }
 
-    /// One step of inverse iteration for the states of some lanes: energies and residuals move on;
-    /// returns the numbers of levels below the shifts.
-    fn sweep(
-        &mut self,
-        chain: &mut BlockChain,
-        pending: &[usize],
-        shifts: &[f64],
-        energies: &mut [f64],
-        residuals: &mut [f64],
-    ) -> Vec<usize> {
-        let mut below = vec![0; self.states];
+    /// One step of inverse iteration for the states that have not settled: energies and residuals move
+    /// on, levels below the shifts are counted.
+    fn sweep(&mut self, chain: &mut BlockChain, draft: &mut Draft) {
+        let Draft {
+            energies,
+            residuals,
+            shifts,
+            below,
+            pending,
+            ..
+        } = draft;
         let mut take = |lanes: &[usize], step: &Step| {
             for (place, &lane) in lanes.iter().enumerate() {
-                energies[lane] = shifts[lane] + step.step[place];
+                energies[lane] = shifts[lane] + step.rise[place];
                 residuals[lane] = step.residual[place];
                 below[lane] = step.below[place];
             }
@@ -267,7 +315,7 @@ impl Trail {
                 take(lanes, &chain.step(&spread(lanes, shifts), from, to));
                 std::mem::swap(from, to);
             }
-            return below;
+            return;
         }
         // Few are left: they are packed together.
         let (mut from, mut to) = (chain.columns(), chain.columns());
@@ -291,17 +339,16 @@ impl Trail {
                 }
             }
         }
-        below
     }
 
     /// Separates near neighbours among the vectors in the workspace.
-    fn separate(
-        &mut self,
-        chain: &BlockChain,
-        order: &[usize],
-        energies: &mut [f64],
-        residuals: &mut [f64],
-    ) {
+    fn separate(&mut self, chain: &BlockChain, draft: &mut Draft) {
+        let Draft {
+            energies,
+            residuals,
+            order,
+            ..
+        } = draft;
         let rising = order.iter().map(|&lane| (energies[lane], residuals[lane]));
         for group in groups(rising.take_while(|level| level.0.is_finite())) {
             let lanes = &order[group];
@@ -322,12 +369,16 @@ impl Trail {
     fn mend(
         &mut self,
         chain: &mut BlockChain,
-        order: &mut [usize],
-        energies: &mut [f64],
-        residuals: &[f64],
+        draft: &mut Draft,
         required: usize,
         floor: f64,
     ) -> bool {
+        let Draft {
+            energies,
+            residuals,
+            order,
+            ..
+        } = draft;
         let kept = self.different(chain, order, energies, residuals);
         let segments = segments(kept.iter().map(|&lane| energies[lane]), floor);
         let mut counts = Vec::with_capacity(segments.len());
@@ -425,7 +476,8 @@ impl Trail {
     }
 
     /// Takes the workspace as the latest slice, in the sense of the one before it.
-    fn accept(&mut self, chain: &BlockChain, at: f64, energies: Vec<f64>) {
+    fn accept(&mut self, chain: &BlockChain, at: f64, draft: &Draft) {
+        self.order.clone_from(&draft.order);
         for (index, chunk) in self.chunks.iter_mut().enumerate() {
             let alike = products(&chain.runs, &chunk.next[0], &chunk.slices[MEMORY - 1]);
             let sense = alike.map(|alike| if alike < 0.0 { -1.0 } else { 1.0 });
@@ -451,7 +503,7 @@ impl Trail {
         self.at.rotate_left(1);
         self.at[MEMORY - 1] = at;
         self.energies.rotate_left(1);
-        self.energies[MEMORY - 1] = energies;
+        self.energies[MEMORY - 1].clone_from(&draft.energies);
     }
 }
 
@@ -469,7 +521,7 @@ fn sort(order: &mut [usize], energies: &[f64]) {
             energies[lane]
         }
     };
-    order.sort_by(|&a, &b| key(a).total_cmp(&key(b)));
+    order.sort_unstable_by(|&a, &b| key(a).total_cmp(&key(b)).then(a.cmp(&b)));
 }
 
 /// The residual that a state may have: small beside its distance from others. Those too near for that

@@ -274,6 +274,10 @@ fn creep(
 mod tests {
     use super::*;
 
+    /// One cluster of electron levels.
+    const ONE_LEVEL: [Range<usize>; 1] = [const { 0..1 }];
+    const TWO_LEVELS: [Range<usize>; 1] = [const { 0..2 }];
+
     #[test]
     fn wave_numbers_rise_in_the_steps_that_states_can_be_followed_over() {
         let k_per_nm = wave_numbers();
@@ -301,7 +305,7 @@ mod tests {
         let coarse = slice(&[(-0.1, heavy), (-0.1001, light), far]);
         let fine = slice(&[(-0.1004, light), (-0.1006, heavy), far]);
         let exact = slice(&[(-0.1005, light), (-0.1008, heavy), far]);
-        let got = extrapolated(&coarse, &fine, &[0..1]);
+        let got = extrapolated(&coarse, &fine, &ONE_LEVEL);
         for (got, exact) in got.energy_ev.iter().zip(&exact.energy_ev) {
             assert!((got - exact).abs() < 1e-12, "{got} {exact}");
         }
@@ -329,7 +333,7 @@ mod tests {
             slice([[0.75, 0.75], [0.75, 0.75]]),
         );
         for (coarse, fine) in [(&apart, &mixed), (&mixed, &apart)] {
-            let got = extrapolated(coarse, fine, &[0..2]);
+            let got = extrapolated(coarse, fine, &TWO_LEVELS);
             let sum: f64 = got.dipoles.iter().flatten().map(|dipole| dipole.te).sum();
             assert!((sum - 3.0).abs() < 1e-12, "{sum}");
         }
@@ -354,7 +358,10 @@ mod tests {
                 ]],
             }
         };
-        let (got, exact) = (extrapolated(&slice(0.2), &slice(0.1), &[0..1]), slice(0.0));
+        let (got, exact) = (
+            extrapolated(&slice(0.2), &slice(0.1), &ONE_LEVEL),
+            slice(0.0),
+        );
         for (got, exact) in got.energy_ev.iter().zip(&exact.energy_ev) {
             assert!((got - exact).abs() < 1e-15);
         }
