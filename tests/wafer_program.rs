@@ -388,15 +388,8 @@ fn a_map_gives_the_peak_and_says_what_was_taken_for_granted() {
 #[test]
 fn a_ledger_grows_and_is_rewritten_with_force_only() {
     let desk = Desk::new();
-    let words = [
-        "reconcile",
-        "my.toml",
-        "returned.toml",
-        "--ledger",
-        "house.toml",
-        "--record",
-        "--quiet",
-    ];
+    let words = "reconcile my.toml returned.toml --ledger house.toml --record --quiet";
+    let words: Vec<&str> = words.split(' ').collect();
     let (code, _, err) = desk.run(&words);
     assert_eq!(code, 0, "{err}");
     let first = desk.text("house.toml");
@@ -418,26 +411,11 @@ fn a_ledger_grows_and_is_rewritten_with_force_only() {
     assert_eq!(code, 0, "{err}");
     assert_eq!(desk.text("house.toml").matches("[[offsets]]").count(), 2);
     // It is not its own witness, and counts for the next one.
-    let words = [
-        "reconcile",
-        "my.toml",
-        "returned.toml",
-        "--ledger",
-        "house.toml",
-        "--json",
-    ];
-    let document = desk.json(&words);
+    let as_document = [&words[..5], &["--json"]].concat();
+    let document = desk.json(&as_document);
     assert_eq!(number(&document, "/house_offset/runs") as i64, 1);
     desk.file("returned.toml", &RETURNED.replace("0417", "0419"));
-    let words = [
-        "reconcile",
-        "my.toml",
-        "returned.toml",
-        "--ledger",
-        "house.toml",
-        "--json",
-    ];
-    let document = desk.json(&words);
+    let document = desk.json(&as_document);
     assert_eq!(number(&document, "/house_offset/runs") as i64, 2);
     assert!(number(&document, "/house_offset/sigma_mev") < 4.0);
 }
@@ -445,14 +423,8 @@ fn a_ledger_grows_and_is_rewritten_with_force_only() {
 #[test]
 fn a_ledger_that_is_not_there_is_a_fault_unless_it_is_to_be_made() {
     let desk = Desk::new();
-    let words = [
-        "reconcile",
-        "my.toml",
-        "returned.toml",
-        "--ledger",
-        "none.toml",
-    ];
-    let (code, _, err) = desk.run(&words);
+    let words = "reconcile my.toml returned.toml --ledger none.toml";
+    let (code, _, err) = desk.run(&words.split(' ').collect::<Vec<_>>());
     assert_eq!(code, 3, "{err}");
     assert!(!Path::new(&desk.path("none.toml")).exists());
 }
