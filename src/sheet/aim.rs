@@ -56,6 +56,16 @@ pub fn aim(
             ),
         );
     }
+    if outcome.unsaid > 0 {
+        page.paragraph(
+            2,
+            &format!(
+                "{} more solution{} left out: the digits of a file miss the aim by more than 0.01 nm.",
+                outcome.unsaid,
+                if outcome.unsaid == 1 { " is" } else { "s are" }
+            ),
+        );
+    }
     stamp.write(&mut page);
     page.finish()
 }
