@@ -326,15 +326,16 @@ fn what_is_open_is_named_and_ends_with_its_own_code() {
 #[test]
 fn data_that_no_structure_explains_end_without_a_correction() {
     let desk = Desk::new();
-    let far = RETURNED.replace("peak_nm = 1305.0", "peak_nm = 1480.0");
-    desk.file("far.toml", &far);
-    let (code, page, _) = desk.run(&["reconcile", "my.toml", "far.toml"]);
-    assert_eq!(code, 4);
-    assert!(
-        page.contains("No structure within these unknowns"),
-        "{page}"
-    );
-    assert!(!page.contains("For the next order"), "{page}");
+    for (said, misread) in [
+        ("peak_nm = 1305.0", "peak_nm = 1480.0"),
+        ("period_nm = 14.80", "period_nm = 24.80"),
+    ] {
+        desk.file("far.toml", &RETURNED.replace(said, misread));
+        let (code, page, _) = desk.run(&["reconcile", "my.toml", "far.toml"]);
+        assert_eq!(code, 4, "{misread}");
+        assert!(page.contains("No structure near the order"), "{page}");
+        assert!(!page.contains("For the next order"), "{page}");
+    }
 }
 
 #[test]
