@@ -407,6 +407,17 @@ fn faults_of_a_design_command_name_the_flag_and_the_remedy() {
         (
             &[
                 "aim",
+                PUMP,
+                "--wavelength",
+                "980nm",
+                "--move",
+                "barrier.strain",
+            ],
+            &["`GaAs` is GaAs", "move its thickness"],
+        ),
+        (
+            &[
+                "aim",
                 LINK,
                 "--wavelength",
                 "1310nm",
