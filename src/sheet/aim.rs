@@ -91,13 +91,23 @@ pub(super) fn value_words(moved: &Move, value: f64) -> String {
     }
 }
 
-/// A value of a move in a table.
+/// A value of a move in a table: a strain of either sense by its word.
 fn cell(moved: &Move, value: f64) -> String {
     let decimals = match moved.quantity {
         Quantity::Thickness | Quantity::Strain => 3,
         Quantity::Share(_) => 4,
         Quantity::Gap => 1,
     };
+    let is_of_either_sense =
+        moved.quantity == Quantity::Strain && moved.from < 0.0 && moved.to > 0.0;
+    if is_of_either_sense && value != 0.0 {
+        let sense = if value < 0.0 {
+            "compressive"
+        } else {
+            "tensile"
+        };
+        return format!("{} {sense}", fixed(value.abs(), decimals));
+    }
     fixed(moved.said(value), decimals)
 }
 
