@@ -278,7 +278,7 @@ impl Document {
     }
 
     /// Says which other files of the sheet there are.
-    pub fn list_files(&mut self, files: &[(String, &[u8])]) {
+    pub fn list_files(&mut self, files: &[(String, Vec<u8>)]) {
         let files: Vec<Value> = files
             .iter()
             .map(|(name, bytes)| json!({ "name": name, "sha256": sha256(bytes) }))

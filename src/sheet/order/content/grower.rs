@@ -206,7 +206,7 @@ fn layer_table(document: &Document) -> Table {
             "Gap, nm",
             "Doping, cm⁻³",
         ],
-        widths: vec![5, 12, 27, 12, 15, 15, 10, 15],
+        widths: vec![6, 12, 27, 12, 15, 15, 10, 15],
         rows,
     }
 }
