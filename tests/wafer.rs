@@ -484,7 +484,14 @@ fn a_tolerance_below_the_scatter_of_growth_is_said() {
         let share = 100.0 * libm::erf(sigmas / std::f64::consts::SQRT_2);
         assert_close(measure("inside_if_centred_percent"), share, 1e-6);
     }
+    let (unstated, _) = findings(
+        &with(5.0, "")
+            .replace("kind = \"pl\"\n", "")
+            .replace("medium = \"vacuum\"\n", ""),
+    );
+    assert_eq!(standing(&unstated, "target-assumed"), ["look"]);
     let (silent, _) = findings(&with(5.0, ""));
+    assert!(standing(&silent, "target-assumed").is_empty());
     assert!(standing(&silent, "growth-scatter").is_empty());
 }
 

@@ -326,15 +326,16 @@ fn what_is_open_is_named_and_ends_with_its_own_code() {
 #[test]
 fn data_that_no_structure_explains_end_without_a_correction() {
     let desk = Desk::new();
-    let far = RETURNED.replace("peak_nm = 1305.0", "peak_nm = 1480.0");
-    desk.file("far.toml", &far);
-    let (code, page, _) = desk.run(&["reconcile", "my.toml", "far.toml"]);
-    assert_eq!(code, 4);
-    assert!(
-        page.contains("No structure within these unknowns"),
-        "{page}"
-    );
-    assert!(!page.contains("For the next order"), "{page}");
+    for (said, misread) in [
+        ("peak_nm = 1305.0", "peak_nm = 1480.0"),
+        ("period_nm = 14.80", "period_nm = 24.80"),
+    ] {
+        desk.file("far.toml", &RETURNED.replace(said, misread));
+        let (code, page, _) = desk.run(&["reconcile", "my.toml", "far.toml"]);
+        assert_eq!(code, 4, "{misread}");
+        assert!(page.contains("No structure near the order"), "{page}");
+        assert!(!page.contains("For the next order"), "{page}");
+    }
 }
 
 #[test]
@@ -388,15 +389,8 @@ fn a_map_gives_the_peak_and_says_what_was_taken_for_granted() {
 #[test]
 fn a_ledger_grows_and_is_rewritten_with_force_only() {
     let desk = Desk::new();
-    let words = [
-        "reconcile",
-        "my.toml",
-        "returned.toml",
-        "--ledger",
-        "house.toml",
-        "--record",
-        "--quiet",
-    ];
+    let words = "reconcile my.toml returned.toml --ledger house.toml --record --quiet";
+    let words: Vec<&str> = words.split(' ').collect();
     let (code, _, err) = desk.run(&words);
     assert_eq!(code, 0, "{err}");
     let first = desk.text("house.toml");
@@ -418,26 +412,11 @@ fn a_ledger_grows_and_is_rewritten_with_force_only() {
     assert_eq!(code, 0, "{err}");
     assert_eq!(desk.text("house.toml").matches("[[offsets]]").count(), 2);
     // It is not its own witness, and counts for the next one.
-    let words = [
-        "reconcile",
-        "my.toml",
-        "returned.toml",
-        "--ledger",
-        "house.toml",
-        "--json",
-    ];
-    let document = desk.json(&words);
+    let as_document = [&words[..5], &["--json"]].concat();
+    let document = desk.json(&as_document);
     assert_eq!(number(&document, "/house_offset/runs") as i64, 1);
     desk.file("returned.toml", &RETURNED.replace("0417", "0419"));
-    let words = [
-        "reconcile",
-        "my.toml",
-        "returned.toml",
-        "--ledger",
-        "house.toml",
-        "--json",
-    ];
-    let document = desk.json(&words);
+    let document = desk.json(&as_document);
     assert_eq!(number(&document, "/house_offset/runs") as i64, 2);
     assert!(number(&document, "/house_offset/sigma_mev") < 4.0);
 }
@@ -445,14 +424,8 @@ fn a_ledger_grows_and_is_rewritten_with_force_only() {
 #[test]
 fn a_ledger_that_is_not_there_is_a_fault_unless_it_is_to_be_made() {
     let desk = Desk::new();
-    let words = [
-        "reconcile",
-        "my.toml",
-        "returned.toml",
-        "--ledger",
-        "none.toml",
-    ];
-    let (code, _, err) = desk.run(&words);
+    let words = "reconcile my.toml returned.toml --ledger none.toml";
+    let (code, _, err) = desk.run(&words.split(' ').collect::<Vec<_>>());
     assert_eq!(code, 3, "{err}");
     assert!(!Path::new(&desk.path("none.toml")).exists());
 }

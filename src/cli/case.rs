@@ -1,6 +1,7 @@
 //! The files that a command reads.
 
 use super::complaint::Complaint;
+use super::flags::StructureFile;
 use super::outlet::{Outlet, remark as write_remark};
 use super::shipped;
 use crate::evaluation;
@@ -100,6 +101,15 @@ pub(super) struct Case {
 }
 
 impl Case {
+    /// Reads the structure file that the command line names.
+    pub(super) fn of(
+        file: &StructureFile,
+        overrides: &Overrides,
+        outlet: &Outlet,
+    ) -> Result<Self, Complaint> {
+        Self::read(&file.path, file.overlay.as_deref(), overrides, outlet)
+    }
+
     /// Reads a structure file.
     pub(super) fn read(
         path: &Path,

@@ -42,12 +42,7 @@ pub(super) fn levels(flags: &flags::Levels, outlet: &Outlet) -> Result<Ending, C
         flags.matrix.as_deref(),
         &tables,
     )?;
-    let case = Case::read(
-        &flags.file.path,
-        flags.file.overlay.as_deref(),
-        &overrides,
-        outlet,
-    )?;
+    let case = Case::of(&flags.file, &overrides, outlet)?;
     if !destinations.quiet {
         case.remark_on_file(outlet);
     }
@@ -75,12 +70,7 @@ pub(super) fn spectrum(flags: &flags::Spectrum, outlet: &Outlet) -> Result<Endin
     let overrides = overrides(&flags.conditions)?;
     let tables = ["spectrum", "densities", "absorption", "landmarks"];
     let destinations = Destinations::new(&flags.output, flags.figure.as_deref(), None, &tables)?;
-    let case = Case::read(
-        &flags.file.path,
-        flags.file.overlay.as_deref(),
-        &overrides,
-        outlet,
-    )?;
+    let case = Case::of(&flags.file, &overrides, outlet)?;
     if !destinations.quiet {
         case.remark_on_file(outlet);
     }
@@ -108,12 +98,7 @@ pub(super) fn check(flags: &flags::Check, outlet: &Outlet) -> Result<Ending, Com
     }
     let overrides = overrides(&flags.conditions)?;
     let destinations = Destinations::new(&flags.output, None, None, &["findings"])?;
-    let case = Case::read(
-        &flags.file.path,
-        flags.file.overlay.as_deref(),
-        &overrides,
-        outlet,
-    )?;
+    let case = Case::of(&flags.file, &overrides, outlet)?;
     let stack = &case.reading.stack;
     let findings = findings_of(stack, &case.parameters, &case.reading.remarks);
     let profile = Profile::new(stack, &case.parameters).ok();

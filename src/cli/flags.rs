@@ -378,7 +378,7 @@ never written over without --force. NO_COLOR switches colours off.
 Exit code:
   0 done   1 the computation failed   2 the command line is wrong
   3 the input is wrong   4 no answer inside the limits
-  5 checked and found outside
+  5 checked and found outside   130 interrupted (Ctrl-C)
 
 `stepwell manual | man -l -` shows all this with every key of the file.";
 

@@ -37,12 +37,7 @@ pub(super) fn reconcile(flags: &flags::Reconcile, outlet: &Outlet) -> Result<End
         "limits",
     ];
     let destinations = Destinations::new(&flags.output, None, None, &tables)?;
-    let mut case = Case::read(
-        &flags.file.path,
-        flags.file.overlay.as_deref(),
-        &overrides,
-        outlet,
-    )?;
+    let mut case = Case::of(&flags.file, &overrides, outlet)?;
     let source = Text::read(&flags.returned)?;
     let returned = read_returned(&source.content).map_err(|it| faults(&it, &source, outlet))?;
     let unknowns = unknowns_of(&case.reading.stack, &returned.assumptions)

@@ -25,12 +25,7 @@ pub(super) fn spread(flags: &flags::Spread, outlet: &Outlet) -> Result<Ending, C
     let wanted_yield = flags.wanted_yield.as_deref().map(share).transpose()?;
     let tables = ["sensitivities", "histogram", "quantiles", "yield", "layers"];
     let destinations = Destinations::new(&flags.output, flags.figure.as_deref(), None, &tables)?;
-    let mut case = Case::read(
-        &flags.file.path,
-        flags.file.overlay.as_deref(),
-        &overrides,
-        outlet,
-    )?;
+    let mut case = Case::of(&flags.file, &overrides, outlet)?;
     if !destinations.quiet {
         case.remark_on_file(outlet);
     }

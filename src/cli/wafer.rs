@@ -26,12 +26,7 @@ pub(super) fn xray(flags: &flags::Xray, outlet: &Outlet) -> Result<Ending, Compl
         temperature_k: Some(at_k.unwrap_or(ROOM_K)),
         ..Overrides::default()
     };
-    let case = Case::read(
-        &flags.file.path,
-        flags.file.overlay.as_deref(),
-        &overrides,
-        outlet,
-    )?;
+    let case = Case::of(&flags.file, &overrides, outlet)?;
     let stack = &case.reading.stack;
     let kelvin = stack.operation.temperature_k;
     let seen = Diffraction::new(stack, &case.parameters, reflection, kelvin)

@@ -153,6 +153,13 @@ pub struct StrainBudget {
 type Share = (Crystal, f64);
 
 impl StrainBudget {
+    /// The well that uses most of its critical thickness.
+    #[must_use]
+    pub fn tightest_well(&self) -> Option<&LayerStrain> {
+        let wells = self.layers.iter().filter(|layer| layer.role == Role::Well);
+        wells.max_by(|a, b| a.critical_share().total_cmp(&b.critical_share()))
+    }
+
     /// The budget of a stack at its working temperature.
     #[must_use]
     pub fn new(stack: &Stack, parameters: &Parameters) -> Self {

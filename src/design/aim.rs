@@ -97,10 +97,13 @@ pub struct Outcome {
     pub solutions: Vec<Solution>,
     /// Where there is no solution, the nearest structure, if there is any structure at all.
     pub nearest: Option<Nearest>,
-    /// Lowest and highest wavelength seen, nm in the medium of the aim.
+    /// Where there is no solution, the lowest and highest wavelength seen, nm in the medium of the
+    /// aim.
     pub range_nm: Option<(f64, f64)>,
     /// Values at which the wavelength jumps over the aim: no solution, and worth knowing.
     pub jumps: usize,
+    /// Solutions that a file with its digits misses by more than [`MET_NM`]: left out.
+    pub unsaid: usize,
 }
 
 /// Why nothing came of an aim.
@@ -153,7 +156,7 @@ pub fn aim(
 struct Found {
     /// Shares and the number of the line.
     solutions: Vec<(Vec<f64>, usize)>,
-    /// Every structure looked at with its miss in nm.
+    /// Every structure looked at with its miss in nm, which may be a guess.
     seen: Vec<(Vec<f64>, f64)>,
     jumps: usize,
 }
@@ -243,24 +246,29 @@ impl Hunt<'_> {
             .filter_map(|(shares, line)| self.solution(shares, *line))
             .collect();
         self.check_stop()?;
-        let misses = || found.seen.iter().map(|it| it.1);
-        let least = misses().fold(f64::INFINITY, f64::min);
-        let most = misses().fold(f64::NEG_INFINITY, f64::max);
-        let nearest = if solutions.is_empty() {
-            let best = found
-                .seen
-                .iter()
-                .min_by(|a, b| a.1.abs().total_cmp(&b.1.abs()));
-            best.map(|(shares, miss)| self.nearest(shares, *miss))
+        let unsaid = found.solutions.len() - solutions.len();
+        let (nearest, range_nm) = if solutions.is_empty() {
+            (self.nearest(&found.seen), self.range_nm(&found.seen))
         } else {
-            None
+            (None, None)
         };
+        self.check_stop()?;
         Ok(Outcome {
             solutions,
             nearest,
-            range_nm: (least <= most).then(|| (self.shown_nm(least), self.shown_nm(most))),
+            range_nm,
             jumps: found.jumps,
+            unsaid,
         })
+    }
+
+    /// Lowest and highest wavelength of what was seen, nm in the medium of the aim.
+    fn range_nm(&self, seen: &[(Vec<f64>, f64)]) -> Option<(f64, f64)> {
+        let least = seen.iter().min_by(|a, b| a.1.total_cmp(&b.1))?;
+        let most = seen.iter().max_by(|a, b| a.1.total_cmp(&b.1))?;
+        // What was seen may be a guess.
+        let exact = |it: &(Vec<f64>, f64)| self.miss_nm(&it.0).unwrap_or(it.1);
+        Some((self.shown_nm(exact(least)), self.shown_nm(exact(most))))
     }
 
     /// A wavelength in the medium of the aim, from how much it misses in vacuum.

@@ -12,7 +12,7 @@ use super::movement::Variation;
 use super::progress::{Interrupted, Progress};
 use crate::coherence::{CriticalThickness, StrainBudget};
 use crate::evaluation::{Evaluation, Outline};
-use crate::structure::{Role, Stack, Wavelength};
+use crate::structure::{Stack, Wavelength};
 
 /// Points of a block.
 const BLOCK: usize = 64;
@@ -261,12 +261,7 @@ impl Chart<'_> {
 /// The strain of the well that uses most of its critical thickness.
 fn strain_of(stack: &Stack, variation: &Variation<'_>) -> ChartPoint {
     let budget = StrainBudget::new(stack, variation.parameters);
-    let well = budget
-        .layers
-        .iter()
-        .filter(|layer| layer.role == Role::Well)
-        .max_by(|a, b| a.critical_share().total_cmp(&b.critical_share()));
-    let Some(well) = well else {
+    let Some(well) = budget.tightest_well() else {
         return ChartPoint::default();
     };
     let share = |limit: CriticalThickness| match limit {

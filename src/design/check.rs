@@ -259,6 +259,7 @@ impl Finding {
                 Remark::UnusedMaterial { .. } => "unused-material",
                 Remark::IndirectBarrier { .. } => "indirect-barrier",
                 Remark::UnusualDopant { .. } => "unusual-dopant",
+                Remark::TargetAssumed { .. } => "target-assumed",
                 Remark::OwnNumbersKept { .. } => "own-numbers-kept",
             },
             Self::Unsolved(_) => "no-levels",

@@ -64,12 +64,6 @@ impl FiguresOfMerit {
         let [electron_barrier_kt, hole_barrier_kt] =
             barriers_ev(&evaluation).map(|height| height.map(|ev| ev / evaluation.thermal_ev()));
         let budget = StrainBudget::new(stack, parameters);
-        let well = budget
-            .layers
-            .iter()
-            .filter(|layer| layer.role == Role::Well)
-            .max_by(|a, b| a.critical_share().total_cmp(&b.critical_share()))
-            .cloned();
         let drifts = Drifts {
             stack,
             parameters,
@@ -82,7 +76,7 @@ impl FiguresOfMerit {
             transparency_cm3: evaluation.transparency_cm3(),
             electron_barrier_kt,
             hole_barrier_kt,
-            well,
+            well: budget.tightest_well().cloned(),
             stack_critical_share: budget.active.as_ref().map(|it| it.critical_share()),
             nm_per_percent_width: drifts.per_percent_width(),
             shares: drifts.per_thousandth(),

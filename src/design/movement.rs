@@ -143,14 +143,14 @@ pub enum Immovable {
         element: &'static str,
     },
     /// More is asked of a material than its elements can meet.
-    #[error("`{name}` is {family}, with {free} to choose: {asked} moves are too many")]
+    #[error("`{name}` is {family}; free fractions: {free}, moves: {asked}")]
     TooMany {
         /// The name.
         name: String,
         /// Its elements.
         family: String,
-        /// Fractions to choose, in words.
-        free: String,
+        /// Fractions to choose.
+        free: usize,
         /// Moves.
         asked: usize,
     },
@@ -200,6 +200,9 @@ impl Immovable {
                 "move its thickness, or give the material as an alloy".to_owned()
             }
             Self::NoSuchShare { .. } => "move the share of one of its elements".to_owned(),
+            Self::TooMany { free: 0, .. } => {
+                "move its thickness, or the composition of another material".to_owned()
+            }
             Self::TooMany { .. } => "leave one of them out".to_owned(),
             Self::TooOpen { .. } => "move the shares of its elements".to_owned(),
             Self::Bounds { .. } => "check the unit and the order of the bounds".to_owned(),

@@ -59,6 +59,8 @@ use problem::{Posterior, Problem, grown, posterior, problem};
 /// Sums of squares of none to three normal deviates that are exceeded once in a thousand times
 /// (M. Abramowitz, I. A. Stegun, Handbook of Mathematical Functions (1964), table 26.8).
 const POOR_FIT: [f64; 4] = [0.0, 10.828, 13.816, 16.266];
+/// Prior sigmas beyond which an estimate says that the data are not of this wafer, or misread.
+const FARTHEST: f64 = 5.0;
 /// A component of a direction smaller than this share of it is not named.
 const LEAST_COMPONENT: f64 = 0.15;
 
@@ -211,11 +213,14 @@ impl Reconciliation {
             .any(|figure| figure.next.is_some() && figure.standing == Standing::Outside)
     }
 
-    /// Whether a structure within the unknowns explains the data: a sum of squares that so many
-    /// normal deviates exceed less often than once in a thousand times does not.
+    /// Whether a structure near the order explains the data: neither is their sum of squares one that
+    /// so many normal deviates exceed less often than once in a thousand times, nor does it take an
+    /// unknown that nobody would believe.
     #[must_use]
     pub fn explains_the_data(&self) -> bool {
+        let is_near = |it: &Estimate| (it.value - it.ordered).abs() <= FARTHEST * it.prior_sigma;
         self.estimated_chi_square <= POOR_FIT[self.deviations.len().min(3)]
+            && self.estimates.iter().all(is_near)
     }
 }
 

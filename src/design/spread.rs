@@ -29,7 +29,7 @@ use super::anchored::Anchored;
 use super::draws::Normals;
 use super::reactor::{Reactor, Variable};
 use super::surrogate::{Quadratic, points};
-use crate::evaluation::{Evaluation, Failure};
+use crate::evaluation::{Failure, emission_nm};
 use crate::materials::Parameters;
 use crate::structure::{Bands, Medium, Stack, Target, Wavelength};
 use crate::units::air;
@@ -205,13 +205,13 @@ pub fn in_vacuum_nm(wavelength_nm: f64, medium: Medium) -> f64 {
 ///
 /// # Errors
 ///
-/// What [`Evaluation::new`] says.
+/// What [`crate::evaluation::Evaluation::new`] says.
 pub fn wavelength_nm(
     stack: &Stack,
     parameters: &Parameters,
     kind: Wavelength,
 ) -> Result<Option<f64>, Failure> {
-    Ok(Evaluation::new(stack, parameters)?.wavelength_nm(kind))
+    emission_nm(stack, parameters, kind)
 }
 
 /// Sensitivities, distribution and yield of a stack.

@@ -12,7 +12,7 @@ mod spectrum;
 
 pub use budget::{Budget, budget};
 pub use ladder::{Group, Ladder, Rung, Shares, TransitionGroup};
-pub use outline::{Outline, emission_nm};
+pub use outline::{Outline, emission_nm, refractive_index};
 pub use remark::Remark;
 pub use spectrum::{
     Absorption, GainPeak, PhotoLuminescence, Run, Spectrum, Spontaneous, Transparency,
@@ -216,7 +216,7 @@ impl<'a> Evaluation<'a> {
         let mut transitions = every_pair(&pairs, &bands, mixed.as_ref());
         transitions.retain(|transition| transition.overlap > LEAST_OVERLAP);
         let first_ev = transitions.first().ok_or(Failure::NoTransition)?.energy_ev;
-        let index = refractive_index(stack, parameters, first_ev);
+        let index = index_at(stack, parameters, first_ev);
         // Positions and widths do not hang on the index, which scales every spectrum as a whole.
         let scale = index.as_ref().copied().unwrap_or(1.0);
         let (emitter, holes): (Box<dyn Emitter>, Holes) = match &mixed {
@@ -556,11 +556,7 @@ fn net_doping(stack: &Stack, wells_nm: f64) -> NetDoping {
 }
 
 /// Mean refractive index of the wells by thickness at a photon energy.
-fn refractive_index(
-    stack: &Stack,
-    parameters: &Parameters,
-    photon_ev: f64,
-) -> Result<f64, Failure> {
+fn index_at(stack: &Stack, parameters: &Parameters, photon_ev: f64) -> Result<f64, Failure> {
     if let Some(index) = stack.model.index {
         return Ok(index);
     }

@@ -77,6 +77,15 @@ pub fn emission_nm(
     })
 }
 
+/// The refractive index of the wells at their first transition.
+///
+/// # Errors
+///
+/// [`Failure`] as for [`Evaluation::new`], and where a well of own numbers has none.
+pub fn refractive_index(stack: &Stack, parameters: &Parameters) -> Result<f64, Failure> {
+    Evaluation::over(stack, parameters, Extent::ZoneCentre)?.refractive_index()
+}
+
 impl Evaluation<'_> {
     /// The outline of it, without photoluminescence.
     #[must_use]

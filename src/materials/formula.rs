@@ -213,6 +213,15 @@ fn unknown(formula: &str, span: Range<usize>) -> Diagnostic {
             format!("{word:?} has a letter where its fraction belongs"),
         )
         .with_help("write numbers, e.g. Al0.3Ga0.7As in place of AlxGa1-xAs")
+    } else if word == "Q" {
+        Diagnostic::new(
+            0..formula.len(),
+            format!("`{}` does not say which alloy it is, nor of what its wavelength is", formula.trim()),
+        )
+        .with_help(
+            "gap, photoluminescence or absorption edge, at which temperature? name a material with `alloy`, \
+             `gap_nm` (at 300 K) and a strain",
+        )
     } else if lower {
         Diagnostic::new(span, format!("{word:?} is no element"))
             .with_help("symbols begin with a capital letter, e.g. In0.53Ga0.47As")

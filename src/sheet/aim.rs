@@ -56,6 +56,16 @@ pub fn aim(
             ),
         );
     }
+    if outcome.unsaid > 0 {
+        page.paragraph(
+            2,
+            &format!(
+                "{} more solution{} left out: the digits of a file miss the aim by more than 0.01 nm.",
+                outcome.unsaid,
+                if outcome.unsaid == 1 { " is" } else { "s are" }
+            ),
+        );
+    }
     stamp.write(&mut page);
     page.finish()
 }
@@ -81,13 +91,23 @@ pub(super) fn value_words(moved: &Move, value: f64) -> String {
     }
 }
 
-/// A value of a move in a table.
+/// A value of a move in a table: a strain of either sense by its word.
 fn cell(moved: &Move, value: f64) -> String {
     let decimals = match moved.quantity {
         Quantity::Thickness | Quantity::Strain => 3,
         Quantity::Share(_) => 4,
         Quantity::Gap => 1,
     };
+    let is_of_either_sense =
+        moved.quantity == Quantity::Strain && moved.from < 0.0 && moved.to > 0.0;
+    if is_of_either_sense && value != 0.0 {
+        let sense = if value < 0.0 {
+            "compressive"
+        } else {
+            "tensile"
+        };
+        return format!("{} {sense}", fixed(value.abs(), decimals));
+    }
     fixed(moved.said(value), decimals)
 }
 

@@ -157,8 +157,8 @@ fn estimates(wafer: &Wafer<'_>, page: &mut Page) {
     if !result.explains_the_data() {
         page.paragraph(
             2,
-            "No structure within these unknowns explains the data: look at the bench, at which layer \
-             emits, at the interfaces, at the units of what came back.",
+            "No structure near the order explains the data: look at the bench, at which layer emits, at \
+             the interfaces, at the units of what came back, and whose wafer it is.",
         );
     }
 }
@@ -216,10 +216,17 @@ pub(super) fn demand(wafer: &Wafer<'_>) -> Option<String> {
                 .to_owned(),
         );
     }
+    let left_out = if involved.len() == result.undetermined.len() {
+        involved.join(", ")
+    } else {
+        format!(
+            "{} of {}",
+            count(result.undetermined.len()),
+            involved.join(", ")
+        )
+    };
     ways.push(format!(
-        "`moved` without {} of {}, if a calibration vouches for {}",
-        count(result.undetermined.len()),
-        involved.join(", "),
+        "`moved` without {left_out}, if a calibration vouches for {}",
         if result.undetermined.len() == 1 {
             "it"
         } else {

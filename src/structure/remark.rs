@@ -62,6 +62,13 @@ pub enum Remark {
         /// What it usually is: `donor` or `acceptor`.
         usually: &'static str,
     },
+    /// A target that does not say what its wavelength is of, or what it is measured in.
+    TargetAssumed {
+        /// Bytes of the text where the target stands.
+        span: Range<usize>,
+        /// The keys that it leaves out, each with the value that is taken.
+        taken: Vec<(&'static str, &'static str)>,
+    },
     /// The temperature was laid over the file, and some materials have numbers of their own.
     OwnNumbersKept {
         /// Their names, in the order of the file.
@@ -78,6 +85,7 @@ impl Remark {
             | Self::SameMaterial { span, .. }
             | Self::UnusedMaterial { span, .. }
             | Self::IndirectBarrier { span, .. }
+            | Self::TargetAssumed { span, .. }
             | Self::UnusualDopant { span, .. } => Some(span.clone()),
             Self::DefaultTemperature { .. } | Self::OwnNumbersKept { .. } => None,
         }
@@ -111,6 +119,15 @@ impl Remark {
             Self::UnusualDopant {
                 dopant, usually, ..
             } => format!("{dopant} is usually {} {usually}", article(usually)),
+            Self::TargetAssumed { taken, .. } => {
+                let keys: Vec<String> = taken.iter().map(|(key, _)| format!("`{key}`")).collect();
+                let values: Vec<&str> = taken.iter().map(|(_, value)| *value).collect();
+                format!(
+                    "the target does not say its {}: {} is taken",
+                    keys.join(" and "),
+                    values.join(", ")
+                )
+            }
             Self::OwnNumbersKept { names } => format!(
                 "the numbers of {} stay as they are at the temperature asked for",
                 names.join(", ")
@@ -144,6 +161,16 @@ impl Remark {
             }
             Self::UnusualDopant { .. } => {
                 "check whether `donors_cm3` or `acceptors_cm3` is meant".to_owned()
+            }
+            Self::TargetAssumed { taken, .. } => {
+                let keys: Vec<String> = taken
+                    .iter()
+                    .map(|(key, value)| format!("`{key} = \"{value}\"`"))
+                    .collect();
+                format!(
+                    "peaks of photoluminescence and of gain lie tens of nm apart, air and vacuum a third of a nm: write {} or what is meant",
+                    keys.join(", ")
+                )
             }
             Self::OwnNumbersKept { .. } => {
                 "own numbers hold at one temperature: give those of this temperature".to_owned()

@@ -93,10 +93,25 @@ fn target(table: &TargetTable, findings: &mut Findings) -> Option<Target> {
         let mut media = Medium::ALL.into_iter();
         media.find(|medium| medium.word() == word)
     });
+    let taken_kind = Wavelength::Photoluminescence;
+    let taken_medium = Medium::default();
+    let taken: Vec<_> = [
+        (table.kind.is_none(), "kind", taken_kind.word()),
+        (table.medium.is_none(), "medium", taken_medium.word()),
+    ]
+    .into_iter()
+    .filter_map(|(is_missing, key, value)| is_missing.then_some((key, value)))
+    .collect();
+    if !taken.is_empty() {
+        findings.remarks.push(Remark::TargetAssumed {
+            span: table.span.clone(),
+            taken,
+        });
+    }
     Some(Target {
-        kind: kind.unwrap_or(Wavelength::Photoluminescence),
+        kind: kind.unwrap_or(taken_kind),
         wavelength_nm: given.value?,
-        medium: medium.unwrap_or_default(),
+        medium: medium.unwrap_or(taken_medium),
         temperature_k: number(table.temperature_c.as_ref()).map(|it| it + CELSIUS_ZERO_K),
         density_cm3: number(table.density_cm3.as_ref()),
         tolerance_nm: number(table.tolerance_nm.as_ref()),

@@ -355,6 +355,34 @@ fn where_there_is_no_answer_the_nearest_is_shown_with_what_binds() {
 }
 
 #[test]
+fn of_two_moves_the_nearest_is_a_corner() {
+    let page = ending_with(
+        4,
+        &[
+            "aim",
+            PUMP,
+            "--quiet",
+            "--bands",
+            "single",
+            "--wavelength",
+            "1200nm",
+            "--move",
+            "well.thickness=4..9nm",
+            "--move",
+            "well.In=0.15..0.25",
+        ],
+    );
+    let page: Vec<&str> = page.split_whitespace().collect();
+    let page = page.join(" ");
+    for words in [
+        "well.thickness_nm at its end of 9 nm",
+        "well.In at its end of 0.25",
+    ] {
+        assert!(page.contains(words), "{words}\n{page}");
+    }
+}
+
+#[test]
 fn faults_of_a_design_command_name_the_flag_and_the_remedy() {
     for (words, parts) in [
         (
@@ -375,6 +403,17 @@ fn faults_of_a_design_command_name_the_flag_and_the_remedy() {
                 "wall.In=0.1..0.2",
             ],
             &["`wall`", "there are"],
+        ),
+        (
+            &[
+                "aim",
+                PUMP,
+                "--wavelength",
+                "980nm",
+                "--move",
+                "barrier.strain",
+            ],
+            &["`GaAs` is GaAs", "move its thickness"],
         ),
         (
             &[

@@ -57,7 +57,11 @@ pub(in crate::cli) fn aim(flags: &flags::Aim, outlet: &Outlet) -> Result<Ending,
         AimError::Interrupted(_) => interrupted("nothing has been written"),
     })?;
     let stamp = seen.stamp(&stack);
-    if let Some(folder) = &flags.write {
+    if let Some(folder) = flags
+        .write
+        .as_ref()
+        .filter(|_| !outcome.solutions.is_empty())
+    {
         let stem = stem(&flags.file.path);
         let digits = outcome.solutions.len().to_string().len();
         let files: Vec<(String, &str)> = outcome

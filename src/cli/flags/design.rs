@@ -115,8 +115,8 @@ is thickness (nm), the share of an element on its sublattice (0 to 1), strain
 (1%tensile..1.5%compressive) or gap (1200..1600nm, of the strained bulk layer).
 What gives way when a composition moves is said with the result.
 Without --wavelength the file's [target] is aimed at. One move gives every
-solution; two give the line of solutions; three give
-lines at values of the third.
+solution; two give the lines of solutions; three give lines at values of the
+third.
 Files that are written differ from yours in nothing but what moved.
 Exit code 4 if there is no solution; the nearest structure is then shown.";
 
@@ -126,7 +126,7 @@ Examples:
       --up well.strain=1%tensile..1.5%compressive --of pl --figure plane.svg
   stepwell chart my.toml --across well.thickness=4..12nm --up well.In=0.1..0.3 \\
       --of peak-gain --points 100x100 --csv plane.csv --figure plane.svg
-  ... --csv plane.csv --resume              after Ctrl-C: go on where it ended
+  ... --csv plane.csv --resume              after Ctrl-C (exit code 130): go on
   ... --part 3/16 --csv part-3.csv          one of sixteen parts, on a cluster
   ... --join part-*.csv --csv plane.csv     all parts, the same bytes as one run
 

@@ -81,11 +81,7 @@ impl Recipe {
             return Err(Immovable::TooMany {
                 name: self.material.clone(),
                 family: self.original.family(),
-                free: match free {
-                    0 => "no fraction".to_owned(),
-                    1 => "one fraction".to_owned(),
-                    more => format!("{more} fractions"),
-                },
+                free,
                 asked,
             });
         }

@@ -21,6 +21,8 @@ struct AimDocument<'a> {
     giving_way: Vec<String>,
     solutions: Vec<SolutionEntry<'a>>,
     nearest: Option<NearestEntry>,
+    jumps: usize,
+    unsaid: usize,
 }
 
 #[derive(Serialize)]
@@ -110,6 +112,8 @@ pub fn aim(variation: &Variation<'_>, aim: &Aim, outcome: &Outcome, stamp: &Stam
             miss_nm: nearest.miss_nm,
             binds: bindings(variation, nearest),
         }),
+        jumps: outcome.jumps,
+        unsaid: outcome.unsaid,
     })
 }
 

@@ -98,20 +98,21 @@ pub(super) fn limits(wafer: &Wafer<'_>, page: &mut Page) {
         ]);
     }
     page.table(&table);
-    let words = match (is_corrected, worst(figures)) {
-        (true, Standing::Outside) => {
-            "Next: the wafer to be expected after the correction. It is outside: take a smaller step \
-             (--damping), another knob, or another design."
+    let verdict = match worst(figures) {
+        Standing::Outside if is_corrected => {
+            "It is outside: take a smaller step (--damping), another knob, or another design."
         }
-        (true, Standing::Noted) => {
-            "Next: the wafer to be expected after the correction. Over force balance, under energy \
-             balance: ask the grower."
-        }
-        (true, _) => "Next: the wafer to be expected after the correction. No limit is broken.",
-        (false, Standing::Outside) => "What was grown is outside.",
-        (false, _) => "No limit is broken.",
+        Standing::Outside => "What was grown is outside.",
+        Standing::Noted => "Over force balance, under energy balance: ask the grower.",
+        _ if figures.iter().any(|it| it.limit.is_some()) => "No limit is broken.",
+        _ => "The file has no [limits] to hold them against; no critical thickness is exceeded.",
     };
-    page.paragraph(2, words);
+    let next = if is_corrected {
+        "Next: the wafer to be expected after the correction. "
+    } else {
+        ""
+    };
+    page.paragraph(2, &format!("{next}{verdict}"));
 }
 
 fn worst(figures: &[LimitedFigure]) -> Standing {
