@@ -466,8 +466,9 @@ What the sheet says beside the layers stands in [order]: name, revision,
 quantity, substrates, tolerances, acceptance, handling. What is left out is
 printed as common practice and marked so, or asked for. The grower's copy holds
 no gain, no conditions of the device and no title of the structure.
-Any browser prints the page on A4 or Letter, and --pdf needs none. `check` with a sheet.json computes
-it again from its own structure: a sheet edited by hand is found out.";
+Any browser prints the page on A4 or Letter; --pdf needs none. `check` with a
+sheet.json computes it again from the structure that it holds: a sheet edited by
+hand is found out.";
 
 const XRAY_EXAMPLES: &str = "\
 Examples:

@@ -80,10 +80,8 @@ fn header(document: &Document) -> Section {
     if !asked.is_empty() {
         blocks.push(Block::Paragraph(vec![
             Span::Asked,
-            words(format!(
-                " To be filled in before this sheet is issued: {}.",
-                asked.join("; ")
-            )),
+            words(" To be filled in before this sheet is issued: "),
+            said(&format!("{}.", asked.join("; "))),
         ]));
     }
     section("Order", blocks)
