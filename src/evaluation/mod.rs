@@ -137,7 +137,7 @@ enum Extent {
 
 /// How far the highest valence state must fall for the peak of emission at low injection, kT. The
 /// electron rises several times as fast, and emission falls off with the sum of both.
-const LOW_INJECTION_KT: f64 = 8.0;
+const LOW_INJECTION_KT: f64 = 5.0;
 
 /// The levels of a stack and what follows from them.
 #[derive(Debug)]

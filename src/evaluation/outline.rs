@@ -10,7 +10,7 @@ use crate::units::wavelength_nm;
 /// An [`Evaluation`] with mixed bands follows the valence states along the wave number past every hole
 /// that its densities put there. The first transition needs the zone centre alone, and emission at
 /// low injection a part of the way: an outline goes no further. Its transition is the same number;
-/// its photoluminescence agrees to 1e-4 nm.
+/// its photoluminescence agrees to 5e-7 eV, as do its levels with exact ones.
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub struct Outline {
     /// Edge of the first transition, without shrinkage, nm in vacuum.

@@ -3,6 +3,7 @@
 use stepwell::evaluation::{Evaluation, Outline};
 use stepwell::materials::Parameters;
 use stepwell::structure::{Overrides, Wavelength, read};
+use stepwell::units::photon_ev;
 
 #[test]
 fn an_outline_has_the_wavelengths_of_the_whole_evaluation() {
@@ -19,8 +20,12 @@ fn an_outline_has_the_wavelengths_of_the_whole_evaluation() {
         assert_eq!(centre, whole.outline(), "{name}");
         let close = |kind: Wavelength, outline: &Outline| {
             let (got, want) = (outline.wavelength_nm(kind), whole.wavelength_nm(kind));
-            let miss = got.expect("a wavelength") - want.expect("a wavelength");
-            assert!(miss.abs() < 1e-4, "{name}: {kind:?} misses by {miss:e} nm");
+            let energy_ev = |nm: Option<f64>| photon_ev(nm.expect("a wavelength"));
+            let miss_ev = energy_ev(got) - energy_ev(want);
+            assert!(
+                miss_ev.abs() < 5e-7,
+                "{name}: {kind:?} misses by {miss_ev:e} eV"
+            );
         };
         close(Wavelength::Transition, &centre);
         close(Wavelength::Transition, &emission);

@@ -324,6 +324,35 @@ fn every_solution_says_what_tells_it_from_the_others() {
 }
 
 #[test]
+fn the_target_of_the_file_is_aimed_at_under_its_own_conditions() {
+    let folder = folder();
+    let text = prescribed_well(6.0, 1430.0, -1.0, "single")
+        + "[target]\nkind = \"pl\"\nwavelength_nm = 1309.6\nmedium = \"air\"\ntemperature_c = 85\n";
+    let file = put(&folder, "aimed.toml", &text);
+    let out = path(&folder, "out");
+    let words = [
+        "aim",
+        &file,
+        "--quiet",
+        "--json",
+        "--move",
+        "well.thickness=3..9nm",
+        "--write",
+        &out,
+    ];
+    let document = json(&done(&words));
+    let target = &document["target"];
+    assert_eq!(target["medium"], "air");
+    assert!((target["temperature_k"].as_f64().expect("kelvin") - 358.15).abs() < 1e-9);
+    let got_nm = document["solutions"][0]["wavelength_nm"].as_f64();
+    assert!((got_nm.expect("a solution") - 1309.6).abs() <= 0.01);
+    // Air shortens a wavelength by its index, 1.000270 at 1310 nm (P. E. Ciddor, Appl. Opt. 35,
+    // 1566 (1996), from memory).
+    let vacuum_nm = wavelength_nm(&path(&folder, "out/aimed-1.toml"), "pl", &["--at", "85C"]);
+    assert!((vacuum_nm / 1309.6 - 1.000_270).abs() < 1e-5, "{vacuum_nm}");
+}
+
+#[test]
 fn where_there_is_no_answer_the_nearest_is_shown_with_what_binds() {
     let words = [
         "aim",

@@ -1,12 +1,14 @@
 //! Figures of shipped structures: in order, complete, true to the records.
 
 use super::*;
+use crate::design::{Reactor, Request, Solving, spread};
+use crate::diffraction::{Diffraction, Reflection};
 use crate::evaluation::{Evaluation, Spectrum};
 use crate::materials::Parameters;
 use crate::sheet::figure::tests::assert_in_order;
-use crate::sheet::figure::{Curve, Figure, Panel, Purpose};
+use crate::sheet::figure::{Curve, Figure, Panel, Purpose, Scale};
 use crate::sheet::sha256;
-use crate::structure::{self, Bands, Overrides, Stack};
+use crate::structure::{self, Bands, Overrides, Stack, Wavelength};
 
 macro_rules! shipped {
     ($($name:literal),*) => {
@@ -259,4 +261,75 @@ fn a_stamp_on_a_figure_is_short() {
         assert!(!line.contains(&stamp.parameters_sha256));
         assert!(line.contains("single valence bands"));
     });
+}
+
+/// Of every multi-well: compressive to the left, logarithmic, each order with its sign.
+#[test]
+fn a_rocking_curve_names_its_orders_from_the_compressive_side() {
+    let parameters = Parameters::shipped();
+    for (name, text) in STRUCTURES {
+        let stack = stack(text, &parameters, Bands::Single);
+        let seen = Diffraction::new(&stack, &parameters, Reflection::DEFAULT, 300.0);
+        let seen = seen.expect("reflects");
+        let stamp = Stamp::new(&stack, &parameters, None, &sha256(b"a file"));
+        let figure = rocking_figure(&stack, &seen, &seen.rocking_curve(), &stamp);
+        assert_in_order(&figure);
+        let panel = panel(&figure, 0);
+        assert_eq!(panel.y.scale, Scale::Logarithmic);
+        let Some(multi_well) = &seen.multi_well else {
+            continue;
+        };
+        let place = |order: &str| {
+            let found = panel.notes.iter().find(|note| note.text == order);
+            found.map(|note| note.at.0)
+        };
+        let zero = place("0").unwrap_or_else(|| panic!("{name}: no zero order"));
+        assert_eq!(zero < 0.0, multi_well.mean.perpendicular > 0.0, "{name}");
+        for order in ["−1", "+1"] {
+            if let Some(at) = place(order) {
+                assert_eq!(at < zero, order == "−1", "{name}: {order}");
+            }
+        }
+    }
+}
+
+/// The bars are sorted, each on the side of its sign, and the window stands where the file says.
+#[test]
+fn a_spread_shows_its_window_and_its_bars_in_order() {
+    let parameters = Parameters::shipped();
+    let stack = stack(text_of("estuary-1310"), &parameters, Bands::Single);
+    let growth = stack.growth.expect("errors of growth");
+    let reactor = Reactor::new(&stack, &growth);
+    let request = Request {
+        kind: Wavelength::Photoluminescence,
+        draws: 1000,
+        seed: 1,
+        solving: Solving::Quadratic,
+        wanted_yield: None,
+        window: Some((1297.0, 5.0)),
+        model_nm: 10.0,
+    };
+    let found = spread(&reactor, &stack, &parameters, &request, &|_| {}).expect("a spread");
+    let stamp = Stamp::new(&stack, &parameters, None, &sha256(b"a file"));
+    let figure = crate::sheet::spread_figure(&stack, &found, &stamp);
+    assert_in_order(&figure);
+    let stripe = &panel(&figure, 0).stripes[0];
+    assert!((stripe.from - 1292.0).abs() + (stripe.to - 1302.0).abs() < 1e-9);
+    let bars = panel(&figure, 1);
+    assert_eq!(bars.y.names.len(), found.sensitivities.len());
+    let lengths: Vec<f64> = bars.notes.iter().map(|note| note.at.0).collect();
+    assert!(
+        lengths.is_sorted_by(|a, b| a.abs() >= b.abs()),
+        "{lengths:?}"
+    );
+    let heights: Vec<f64> = bars.notes.iter().map(|note| note.at.1).collect();
+    assert!(heights.is_sorted_by(|a, b| a > b), "from the top down");
+    for (bar, note) in bars.areas.iter().zip(&bars.notes) {
+        assert_eq!(
+            bar.spans[1].0 < 0.0,
+            note.text.starts_with('−'),
+            "{}",
+            note.text
+        );
+    }
 }
