@@ -266,14 +266,21 @@ fn what_can_not_be_computed_is_left_blank_with_its_reason() {
 #[test]
 fn what_an_order_needs_is_asked_for() {
     let desk = Desk::new();
-    let structure = desk.put("plain.toml", PLAIN);
+    let nameless = PLAIN.replace("dopant = \"Zn\"", "");
+    let structure = desk.put("plain.toml", &nameless);
     let (said, remarks) = desk.sheet(&structure, "grower", "out", &[]);
     assert!(remarks.contains("no [order]"), "{remarks}");
     let record = desk.record("out/sheet.json");
     let asked = record["asked_for"].as_array().expect("a list");
     let labels: Vec<&str> = asked.iter().filter_map(Value::as_str).collect();
     for label in [
-        "Sheet", "Revision", "Wafers", "Diameter", "Off-cut", "Author",
+        "Sheet",
+        "Revision",
+        "Wafers",
+        "Diameter",
+        "Off-cut",
+        "Author",
+        "Dopant of layer 7",
     ] {
         assert!(labels.contains(&label), "{label}");
         assert!(said.contains(label), "{label}");
@@ -285,6 +292,24 @@ fn what_an_order_needs_is_asked_for() {
         assert_eq!(is_empty, says_so, "{path}");
         assert_ne!(origin, "given", "{path}");
     }
+}
+
+/// A material of own numbers has no composition to grow: it is asked for, not made up.
+#[test]
+fn a_composition_that_nobody_gave_is_asked_for() {
+    let desk = Desk::new();
+    desk.sheet("structures/every-key.toml", "grower", "out", &["--quiet"]);
+    let record = desk.record("out/sheet.json");
+    let asked = record["asked_for"].as_array().expect("a list");
+    assert!(
+        asked.iter().any(|it| it == "Composition of house"),
+        "{asked:?}"
+    );
+    let layers = record["layers"].as_array().expect("layers");
+    let own = layers.iter().find(|layer| layer["formula"] == "house");
+    assert!(own.expect("the layer")["composition"].is_null());
+    let page = desk.read("out/sheet.html");
+    assert!(page.contains("<bdi>house</bdi>: composition <span class=\"mark asked\">"));
 }
 
 /// A thousand layers: every one of them a row, numbered without a gap.
