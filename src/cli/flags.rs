@@ -186,6 +186,10 @@ pub(super) struct Reconcile {
     pub(super) output: Output,
 }
 
+#[expect(
+    clippy::struct_excessive_bools,
+    reason = "each is a flag of the command line"
+)]
 #[derive(Debug, Args)]
 pub(super) struct Sheet {
     #[command(flatten)]
@@ -196,6 +200,12 @@ pub(super) struct Sheet {
     /// Folder for sheet.html, layers.csv, sheet.json and the figures
     #[arg(long, value_name = "FOLDER")]
     pub(super) out: Option<PathBuf>,
+    /// Write the sheet as PDF too, sheet.pdf in the folder
+    #[arg(long, requires = "out")]
+    pub(super) pdf: bool,
+    /// Paper of the PDF: a4 or letter
+    #[arg(long, value_name = "PAPER", requires = "pdf", default_value = "a4")]
+    pub(super) paper: String,
     /// Tell what has changed since an earlier sheet
     #[arg(long, value_name = "SHEET.json")]
     pub(super) since: Option<PathBuf>,
@@ -457,6 +467,7 @@ correction is outside a limit.";
 const SHEET_EXAMPLES: &str = "\
 Examples:
   stepwell sheet my.toml --for grower --out order-b/
+  stepwell sheet my.toml --for grower --out order-b/ --pdf --paper letter
   stepwell sheet my.toml --for house --out house-b/
   stepwell sheet my.toml --for grower --out order-c/ --since order-b/sheet.json
   stepwell check order-c/sheet.json
@@ -465,8 +476,9 @@ What the sheet says beside the layers stands in [order]: name, revision,
 quantity, substrates, tolerances, acceptance, handling. What is left out is
 printed as common practice and marked so, or asked for. The grower's copy holds
 no gain, no conditions of the device and no title of the structure.
-Any browser prints the page on A4 or Letter. `check` with a sheet.json computes
-it again from its own structure: a sheet edited by hand is found out.";
+Any browser prints the page on A4 or Letter; --pdf needs none. `check` with a
+sheet.json computes it again from the structure that it holds: a sheet edited by
+hand is found out.";
 
 const XRAY_EXAMPLES: &str = "\
 Examples:

@@ -20,7 +20,7 @@ const ENDINGS: [(&str, &str); 7] = [
     ("130", "interrupted"),
 ];
 
-const EXAMPLES: [(&str, &str); 7] = [
+const EXAMPLES: [(&str, &str); 8] = [
     (
         "stepwell new estuary-1310 > my.toml",
         "a structure to start from, with comments",
@@ -37,6 +37,10 @@ const EXAMPLES: [(&str, &str); 7] = [
     (
         "stepwell xray my.toml --figure rocking.svg",
         "what a diffractometer will see of the wafer",
+    ),
+    (
+        "stepwell sheet my.toml --for grower --out order/ --pdf",
+        "the design sheet of an order: page, PDF, layer table, record",
     ),
     (
         "stepwell restate 850ppm --mismatch relaxed --on InP",

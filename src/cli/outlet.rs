@@ -140,10 +140,15 @@ impl Files {
     /// Writes a file: it appears whole or not at all, and never in place of another without
     /// `--force`.
     pub(super) fn write(&self, path: &Path, text: &str) -> Result<(), Complaint> {
+        self.write_bytes(path, text.as_bytes())
+    }
+
+    /// The same for what is no text.
+    pub(super) fn write_bytes(&self, path: &Path, bytes: &[u8]) -> Result<(), Complaint> {
         let failed = |error: io::Error| unwritable(path, &error);
         // What is no plain file (a pipe, a terminal) can only be written to, and holds nothing.
         if fs::metadata(path).is_ok_and(|it| !it.is_file()) {
-            return fs::write(path, text).map_err(failed);
+            return fs::write(path, bytes).map_err(failed);
         }
         // A link stays what it is: the file behind it is replaced.
         let path = fs::canonicalize(path).unwrap_or_else(|_| path.to_owned());
@@ -158,7 +163,7 @@ impl Files {
             builder.permissions(fs::Permissions::from_mode(0o666))
         };
         let mut file = builder.tempfile_in(folder).map_err(failed)?;
-        file.write_all(text.as_bytes()).map_err(failed)?;
+        file.write_all(bytes).map_err(failed)?;
         let persisted = if self.force {
             file.persist(&path)
         } else {

@@ -11,7 +11,7 @@ use super::wishes::{make_folder, one};
 use crate::design::{Audience, House, Ordered, SPREAD_DRAWS};
 use crate::materials::Parameters;
 use crate::sheet::order::{
-    self, Document, Figures, Inspection, Kept, Origins, Since, Unreadable, inspect, kept,
+    self, Document, Figures, Inspection, Kept, Origins, Paper, Since, Unreadable, inspect, kept,
 };
 use crate::sheet::{self, Stamp, sha256};
 use crate::structure::{self, Overrides, Reading};
@@ -21,6 +21,7 @@ use std::path::{Path, PathBuf};
 const PAGE: &str = "sheet.html";
 const LAYERS: &str = "layers.csv";
 const RECORD: &str = "sheet.json";
+const PDF: &str = "sheet.pdf";
 /// Files that figures may become.
 const FIGURES: [&str; 4] = [
     "rocking-curve.svg",
@@ -34,8 +35,9 @@ pub(super) fn sheet(flags: &flags::Sheet, outlet: &Outlet) -> Result<Ending, Com
     let audience = one("--for", &flags.audience, &Audience::ALL, Audience::word)?;
     let mut files = Files::new(flags.force);
     if let Some(folder) = &flags.out {
-        announce(folder, audience, &mut files)?;
+        announce(folder, audience, flags.pdf, &mut files)?;
     }
+    let paper = one("--paper", &flags.paper, &Paper::ALL, Paper::word)?;
     let since = flags.since.as_deref().map(since).transpose()?;
     let case = Case::read(
         &flags.file.path,
@@ -78,7 +80,7 @@ pub(super) fn sheet(flags: &flags::Sheet, outlet: &Outlet) -> Result<Ending, Com
         ));
     }
     let written = match &flags.out {
-        Some(folder) => write(folder, &mut made, &files)?,
+        Some(folder) => write(folder, &mut made, flags.pdf.then_some(paper), &files)?,
         None => Vec::new(),
     };
     print(&if flags.json {
@@ -89,7 +91,12 @@ pub(super) fn sheet(flags: &flags::Sheet, outlet: &Outlet) -> Result<Ending, Com
     Ok(Ending::Done)
 }
 
-fn announce(folder: &Path, audience: Audience, files: &mut Files) -> Result<(), Complaint> {
+fn announce(
+    folder: &Path,
+    audience: Audience,
+    pdf: bool,
+    files: &mut Files,
+) -> Result<(), Complaint> {
     if folder.is_file() {
         return Err(
             Complaint::usage(format!("--out: `{}` is a file", folder.display()))
@@ -101,7 +108,9 @@ fn announce(folder: &Path, audience: Audience, files: &mut Files) -> Result<(), 
         Audience::House => &FIGURES[..],
     };
     let all = [PAGE, LAYERS, RECORD].iter().chain(figures);
+    let pdf = pdf.then_some(PDF);
     all.copied()
+        .chain(pdf)
         .try_for_each(|name| files.announce_in_any_folder(&folder.join(name), "--out"))
 }
 
@@ -152,24 +161,27 @@ fn make(
 }
 
 /// Writes every file of a sheet; the record, which names the others, comes last.
-fn write(folder: &Path, made: &mut Made, files: &Files) -> Result<Vec<String>, Complaint> {
-    let mut texts = vec![
-        (PAGE.to_owned(), made.document.html(&made.figures)),
-        (LAYERS.to_owned(), made.document.layers_csv()),
+fn write(
+    folder: &Path,
+    made: &mut Made,
+    paper: Option<Paper>,
+    files: &Files,
+) -> Result<Vec<String>, Complaint> {
+    let (document, figures) = (&mut made.document, &made.figures);
+    let mut all: Vec<(String, Vec<u8>)> = vec![
+        (PAGE.to_owned(), document.html(figures).into_bytes()),
+        (LAYERS.to_owned(), document.layers_csv().into_bytes()),
     ];
-    texts.extend(made.figures.files());
-    let listed: Vec<(String, &[u8])> = texts
-        .iter()
-        .map(|(name, text)| (name.clone(), text.as_bytes()))
-        .collect();
-    made.document.list_files(&listed);
-    texts.push((RECORD.to_owned(), made.document.text()));
+    let drawn = figures.files().into_iter();
+    all.extend(drawn.map(|(name, svg)| (name, svg.into_bytes())));
+    all.extend(paper.map(|paper| (PDF.to_owned(), document.pdf(figures, paper))));
+    document.list_files(&all);
+    all.push((RECORD.to_owned(), document.text().into_bytes()));
     make_folder(folder)?;
-    texts
-        .iter()
-        .map(|(name, text)| {
+    all.iter()
+        .map(|(name, bytes)| {
             let path = folder.join(name);
-            files.write(&path, text)?;
+            files.write_bytes(&path, bytes)?;
             Ok(path.display().to_string())
         })
         .collect()

@@ -136,8 +136,9 @@ enum Extent {
 }
 
 /// How far the highest valence state must fall for the peak of emission at low injection, kT. The
-/// electron rises several times as fast, and emission falls off with the sum of both.
-const LOW_INJECTION_KT: f64 = 5.0;
+/// electron rises several times as fast, and emission falls off with the sum of both; what lies
+/// beyond only shares the holes out, as [`outline::holes_beyond`] has it.
+const LOW_INJECTION_KT: f64 = 2.5;
 
 /// The levels of a stack and what follows from them.
 #[derive(Debug)]
@@ -229,10 +230,11 @@ impl<'a> Evaluation<'a> {
                 let (samples, edges, reach) = mixed::samples(mixed, &line);
                 let emitter =
                     Dispersive::new(samples, edges, reach, kane_energy_ev, wells_nm, scale, line);
-                (
-                    Box::new(emitter),
-                    Holes::Sampled(mixed::hole_states(mixed, kt)),
-                )
+                let mut states = mixed::hole_states(mixed, kt);
+                if extent == Extent::LowInjection {
+                    states.extend(outline::holes_beyond(mixed, kt));
+                }
+                (Box::new(emitter), Holes::Sampled(states))
             }
         };
         let mut evaluation = Self {

@@ -3,6 +3,7 @@
 use super::{Evaluation, Extent, Failure};
 use crate::materials::Parameters;
 use crate::structure::{Stack, Wavelength};
+use crate::subbands::MixedBands;
 use crate::units::wavelength_nm;
 
 /// What levels tell without a spectrum of gain.
@@ -107,4 +108,35 @@ impl Evaluation<'_> {
             heavy_less_light_mev: heavy.zip(light).map(|(heavy, light)| 1e3 * (heavy - light)),
         }
     }
+}
+
+/// Hole states beyond the wave numbers that were followed, each subband prolonged as a parabola: energy
+/// counted downwards (eV) and number per area (cm⁻²). They emit nothing that is seen and only share
+/// the holes out.
+pub(super) fn holes_beyond(mixed: &MixedBands, thermal_ev: f64) -> Vec<(f64, f64)> {
+    /// So many steps of so many kT.
+    const STEPS: (usize, f64) = (40, 0.25);
+    let [.., before, last] = mixed.k_per_nm.as_slice() else {
+        return Vec::new();
+    };
+    let squares = last * last - before * before;
+    let mut states = Vec::new();
+    for slices in &mixed.blocks {
+        let [.., near, end] = slices.as_slice() else {
+            continue;
+        };
+        for (near_ev, end_ev) in near.energy_ev.iter().zip(&end.energy_ev) {
+            let falls_ev = near_ev - end_ev;
+            if falls_ev <= 0.0 {
+                continue;
+            }
+            let step_ev = STEPS.1 * thermal_ev;
+            // d(k²)/4π per nm², 1e14 to cm⁻².
+            let number =
+                mixed.degeneracy * step_ev * squares / falls_ev / (4.0 * std::f64::consts::PI)
+                    * 1e14;
+            states.extend((0..STEPS.0).map(|at| (step_ev * (at as f64 + 0.5) - end_ev, number)));
+        }
+    }
+    states
 }

@@ -170,6 +170,33 @@ fn all_files_appear_or_none_and_nothing_is_written_over() {
     assert_eq!(desk.read("half/layers.csv"), "mine");
 }
 
+/// The PDF is one of the sheet's files: listed in the record, missed where it was edited.
+#[test]
+fn a_pdf_is_part_of_the_sheet() {
+    let desk = Desk::new();
+    let structure = desk.put("plain.toml", PLAIN);
+    for (paper, width) in [("a4", "595.28"), ("letter", "612")] {
+        let more = ["--pdf", "--paper", paper, "--force", "--quiet"];
+        desk.sheet(&structure, "grower", "out", &more);
+        let pdf = fs::read(desk.path("out/sheet.pdf")).expect("a PDF");
+        assert!(pdf.starts_with(b"%PDF-1.7"));
+        let box_of_paper = format!("/MediaBox [0 0 {width} ");
+        let stands = pdf
+            .windows(box_of_paper.len())
+            .any(|it| it == box_of_paper.as_bytes());
+        assert!(stands, "{paper}");
+    }
+    let record = desk.record("out/sheet.json");
+    let files = record["files"].as_array().expect("files");
+    assert!(files.iter().any(|file| file["name"] == "sheet.pdf"));
+    let record = desk.shown("out/sheet.json");
+    assert_eq!(stepwell(&["check", &record, "-q"]).status.code(), Some(0));
+    let mut pdf = fs::read(desk.path("out/sheet.pdf")).expect("a PDF");
+    pdf.push(b' ');
+    fs::write(desk.path("out/sheet.pdf"), pdf).expect("written");
+    assert_eq!(stepwell(&["check", &record, "-q"]).status.code(), Some(5));
+}
+
 #[test]
 fn faults_are_answered_with_their_remedy() {
     let desk = Desk::new();
@@ -185,6 +212,18 @@ fn faults_are_answered_with_their_remedy() {
             "no JSON",
         ),
         (vec!["check", &other], 3, "not the record of a design"),
+        (
+            vec!["sheet", &structure, "--for", "grower", "--pdf"],
+            2,
+            "--out",
+        ),
+        (
+            vec![
+                "sheet", &structure, "--for", "grower", "--out", "x", "--pdf", "--paper", "a5",
+            ],
+            2,
+            "a4",
+        ),
         (
             vec!["sheet", &structure, "--for", "grower", "--out", &structure],
             2,
@@ -227,14 +266,21 @@ fn what_can_not_be_computed_is_left_blank_with_its_reason() {
 #[test]
 fn what_an_order_needs_is_asked_for() {
     let desk = Desk::new();
-    let structure = desk.put("plain.toml", PLAIN);
+    let nameless = PLAIN.replace("dopant = \"Zn\"", "");
+    let structure = desk.put("plain.toml", &nameless);
     let (said, remarks) = desk.sheet(&structure, "grower", "out", &[]);
     assert!(remarks.contains("no [order]"), "{remarks}");
     let record = desk.record("out/sheet.json");
     let asked = record["asked_for"].as_array().expect("a list");
     let labels: Vec<&str> = asked.iter().filter_map(Value::as_str).collect();
     for label in [
-        "Sheet", "Revision", "Wafers", "Diameter", "Off-cut", "Author",
+        "Sheet",
+        "Revision",
+        "Wafers",
+        "Diameter",
+        "Off-cut",
+        "Author",
+        "Dopant of layer 7",
     ] {
         assert!(labels.contains(&label), "{label}");
         assert!(said.contains(label), "{label}");
@@ -246,6 +292,24 @@ fn what_an_order_needs_is_asked_for() {
         assert_eq!(is_empty, says_so, "{path}");
         assert_ne!(origin, "given", "{path}");
     }
+}
+
+/// A material of own numbers has no composition to grow: it is asked for, not made up.
+#[test]
+fn a_composition_that_nobody_gave_is_asked_for() {
+    let desk = Desk::new();
+    desk.sheet("structures/every-key.toml", "grower", "out", &["--quiet"]);
+    let record = desk.record("out/sheet.json");
+    let asked = record["asked_for"].as_array().expect("a list");
+    assert!(
+        asked.iter().any(|it| it == "Composition of house"),
+        "{asked:?}"
+    );
+    let layers = record["layers"].as_array().expect("layers");
+    let own = layers.iter().find(|layer| layer["formula"] == "house");
+    assert!(own.expect("the layer")["composition"].is_null());
+    let page = desk.read("out/sheet.html");
+    assert!(page.contains("<bdi>house</bdi>: composition <span class=\"mark asked\">"));
 }
 
 /// A thousand layers: every one of them a row, numbered without a gap.

@@ -44,11 +44,15 @@ mod svg;
 #[cfg(test)]
 pub(crate) mod tests;
 
+pub(crate) use glyphs::{Level, SCRIPT_SIZE, Weight, set};
+pub(crate) use palette::Rgb;
 pub use panel::{
     Area, Axis, Curve, Dash, Figure, Ink, Joint, Key, Mark, Naming, Note, Panel, Place, Row, Rule,
     Scale, Side, Standing, Stripe, TopAxis, heights_at_one_scale,
 };
+pub(crate) use scene::{Anchor, Scene, Shape, Text};
 pub use scene::{Frame, Layout, PlacedText, Purpose, Rectangle};
+pub(crate) use svg::lift;
 
 impl Figure {
     /// The figure as a self-contained SVG document, 900 px wide.
@@ -57,6 +61,11 @@ impl Figure {
         let title = lettering::tidy(&self.title);
         let description = lettering::tidy(&self.description);
         svg::document(&arrangement::scene(self), &title, &description)
+    }
+
+    /// Everything in its place, for other writers than that of SVG.
+    pub(crate) fn scene(&self) -> Scene {
+        arrangement::scene(self)
     }
 
     /// Where the panels and the texts lie.

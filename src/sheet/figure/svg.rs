@@ -148,9 +148,14 @@ fn mark(svg: &mut String, (x, y): Point, mark: Mark, size_px: f64, rgb: Rgb) {
     }
 }
 
-/// Part of the font size that a raised figure is lifted, and a lowered one dropped.
-const RAISED: f64 = 0.36;
-const LOWERED: f64 = 0.16;
+/// How far a character is lifted above its line, in parts of the font size; negative: dropped.
+pub(crate) fn lift(level: Level) -> f64 {
+    match level {
+        Level::Line => 0.0,
+        Level::Raised => 0.36,
+        Level::Lowered => -0.16,
+    }
+}
 
 fn text(svg: &mut String, text: &Text) {
     let (x, y) = (number(text.at.0), number(text.at.1));
@@ -181,11 +186,7 @@ fn text(svg: &mut String, text: &Text) {
 /// are not in the table: nobody knows how wide the reader's font makes them, so they are forced to
 /// the width measured.
 fn runs(svg: &mut String, content: &str, size_px: f64, weight: Weight) {
-    let lift = |level: Level| match level {
-        Level::Line => 0.0,
-        Level::Raised => -RAISED * size_px,
-        Level::Lowered => LOWERED * size_px,
-    };
+    let drop_px = |level: Level| -lift(level) * size_px;
     let characters = content.chars().map(|character| {
         let (level, plain) = set(character);
         ((level, is_known(plain)), plain)
@@ -199,8 +200,8 @@ fn runs(svg: &mut String, content: &str, size_px: f64, weight: Weight) {
         }
         let (level, known) = kind;
         let mut attributes = String::new();
-        let shift_px = lift(level) - height_px;
-        height_px = lift(level);
+        let shift_px = drop_px(level) - height_px;
+        height_px = drop_px(level);
         if shift_px != 0.0 {
             append(
                 &mut attributes,

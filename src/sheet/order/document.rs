@@ -46,7 +46,7 @@ struct Whole {
     copy: &'static str,
     stamp: SheetStamp,
     order: BTreeMap<&'static str, FieldEntry>,
-    asked_for: Vec<&'static str>,
+    asked_for: Vec<String>,
     substrate: SubstrateEntry,
     counts: CountsEntry,
     layers: Vec<LayerEntry>,
@@ -204,7 +204,7 @@ impl Document {
                 parameter_files: of_parameters.parameter_files,
             },
             order: fields(&for_reader, audience),
-            asked_for: asked_for(&for_reader, audience),
+            asked_for: asked_for(&for_reader, audience, &ordered.layers),
             substrate: SubstrateEntry {
                 formula: ordered.wafer.substrate.formula(),
                 theta_deg: xray(&ordered.targets).map(|it| it.seen.substrate.theta_deg),
@@ -278,7 +278,7 @@ impl Document {
     }
 
     /// Says which other files of the sheet there are.
-    pub fn list_files(&mut self, files: &[(String, &[u8])]) {
+    pub fn list_files(&mut self, files: &[(String, Vec<u8>)]) {
         let files: Vec<Value> = files
             .iter()
             .map(|(name, bytes)| json!({ "name": name, "sha256": sha256(bytes) }))
@@ -336,13 +336,31 @@ fn fields(
         .collect()
 }
 
-/// Labels of the fields that an order needs and has not.
-fn asked_for(order: &crate::structure::Order, audience: Audience) -> Vec<&'static str> {
-    order_fields()
+/// What an order needs and has not: fields by their labels, compositions of materials that are given
+/// by numbers, dopants.
+fn asked_for(
+    order: &crate::structure::Order,
+    audience: Audience,
+    layers: &[OrderedLayer],
+) -> Vec<String> {
+    let fields = order_fields()
         .filter(|field| field.for_grower || audience == Audience::House)
         .filter(|field| order.entry(field.path).1 == Origin::AskedFor)
-        .map(|field| field.label)
-        .collect()
+        .map(|field| field.label.to_owned());
+    let mut asked: Vec<String> = fields.collect();
+    for layer in layers {
+        let ends = std::iter::once(&layer.lower).chain(&layer.upper);
+        for end in ends.filter(|end| end.composition.is_none()) {
+            let composition = format!("Composition of {}", end.formula);
+            if !asked.contains(&composition) {
+                asked.push(composition);
+            }
+        }
+        if layer.density_cm3.is_some() && layer.dopant.is_none() {
+            asked.push(format!("Dopant of layer {}", layer.number));
+        }
+    }
+    asked
 }
 
 impl From<&OrderedLayer> for LayerEntry {

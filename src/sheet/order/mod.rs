@@ -15,6 +15,7 @@ mod document;
 mod figures;
 mod html;
 mod inspect;
+mod pdf;
 mod summary;
 mod table;
 
@@ -22,4 +23,5 @@ pub use changes::{Change, Since, Unreadable};
 pub use document::{Document, Origins};
 pub use figures::Figures;
 pub use inspect::{Deviation, Inspection, Kept, inspect, kept};
+pub use pdf::Paper;
 pub use summary::{inspection, inspection_json, summary};

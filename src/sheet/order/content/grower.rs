@@ -80,10 +80,8 @@ fn header(document: &Document) -> Section {
     if !asked.is_empty() {
         blocks.push(Block::Paragraph(vec![
             Span::Asked,
-            words(format!(
-                " To be filled in before this sheet is issued: {}.",
-                asked.join("; ")
-            )),
+            words(" To be filled in before this sheet is issued: "),
+            said(&format!("{}.", asked.join("; "))),
         ]));
     }
     section("Order", blocks)
@@ -206,7 +204,7 @@ fn layer_table(document: &Document) -> Table {
             "Gap, nm",
             "Doping, cm⁻³",
         ],
-        widths: vec![5, 12, 27, 12, 15, 15, 10, 15],
+        widths: vec![6, 12, 27, 12, 15, 15, 10, 15],
         rows,
     }
 }
