@@ -87,13 +87,14 @@ impl Document {
         self.put("changes", changes);
     }
 
-    /// What is ordered otherwise, in words.
+    /// What is ordered otherwise, in words: what several layers have in common is told once.
     #[must_use]
-    pub fn changes(&self) -> Vec<&str> {
-        let changes = self.list_at("/changes").iter();
-        changes
-            .filter_map(|change| change.get("words").and_then(Value::as_str))
-            .collect()
+    pub fn changes(&self) -> Vec<String> {
+        let told = self.list_at("/changes").iter().filter_map(|change| {
+            let text = |key: &str| change.get(key).and_then(Value::as_str);
+            Some((text("place")?, text("words")?))
+        });
+        gathered(told)
     }
 
     /// Whether the revision is the same word as on the earlier sheet.
@@ -224,6 +225,47 @@ fn of_layer(place: &str, name: &str, was: &Value, is: &Value) -> Vec<Change> {
     changes
 }
 
+/// Most layers of one change that are told by their numbers.
+const MOST_TOLD: usize = 12;
+
+/// Changes by their places and words; those of layers that differ in the number only become one.
+fn gathered<'a>(changes: impl Iterator<Item = (&'a str, &'a str)>) -> Vec<String> {
+    let mut gathered: Vec<(Vec<usize>, &str)> = Vec::new();
+    for (place, words) in changes {
+        let index = place
+            .strip_prefix("/layers/")
+            .and_then(|rest| rest.split('/').next()?.parse::<usize>().ok());
+        let of_layer = index.and_then(|index| {
+            let rest = words.strip_prefix(&format!("layer {}", index + 1))?;
+            Some((index + 1, rest))
+        });
+        let Some((number, rest)) = of_layer else {
+            gathered.push((Vec::new(), words));
+            continue;
+        };
+        let known = gathered
+            .iter_mut()
+            .find(|(numbers, known)| !numbers.is_empty() && *known == rest);
+        match known {
+            Some((numbers, _)) => numbers.push(number),
+            None => gathered.push((vec![number], rest)),
+        }
+    }
+    let said = |(numbers, words): (Vec<usize>, &str)| match numbers.as_slice() {
+        [] => words.to_owned(),
+        [one] => format!("layer {one}{words}"),
+        many => {
+            let told = many.iter().take(MOST_TOLD).map(ToString::to_string);
+            let told = told.collect::<Vec<_>>().join(", ");
+            match many.len().saturating_sub(MOST_TOLD) {
+                0 => format!("layers {told}{words}"),
+                more => format!("layers {told} and {more} more{words}"),
+            }
+        }
+    };
+    gathered.into_iter().map(said).collect()
+}
+
 /// A difference that is more than rounding.
 fn change(
     place: &str,
@@ -243,7 +285,7 @@ fn change(
     if let (Some(was), Some(is)) = (before.as_f64(), after.as_f64()) {
         let more = is - was;
         let sign = if more > 0.0 { "+" } else { "−" };
-        words = format!("{words} ({sign}{})", said(&json!(more.abs()), unit));
+        words = format!("{words} ({sign}{}{unit})", rounded(more.abs(), 3));
     }
     Some(Change {
         place: place.to_owned(),
@@ -259,15 +301,7 @@ fn said(value: &Value, unit: &str) -> String {
         Value::Null => "nothing".to_owned(),
         Value::Number(number) => {
             let number = number.as_f64().unwrap_or(f64::NAN);
-            // Six digits: what rounding leaves is not worth saying.
-            let digits = 5 - number.abs().max(1e-300).log10().floor() as i32;
-            let scale = 10f64.powi(digits.clamp(-300, 300));
-            let rounded = if number.abs() < 1e-300 {
-                0.0
-            } else {
-                (number * scale).round() / scale
-            };
-            format!("{}{unit}", plain(rounded))
+            format!("{}{unit}", rounded(number, 6))
         }
         Value::String(text) => format!("“{}”", crate::sheet::page::tidy(text)),
         Value::Array(items) => {
@@ -275,6 +309,21 @@ fn said(value: &Value, unit: &str) -> String {
             items.join(", ")
         }
         other => other.to_string(),
+    }
+}
+
+/// A number to so many digits: what rounding leaves is not worth saying.
+fn rounded(number: f64, digits: i32) -> String {
+    let size = number.abs();
+    if size < 1e-300 {
+        return plain(0.0);
+    }
+    let scale = 10f64.powi((digits - 1 - size.log10().floor() as i32).clamp(-300, 300));
+    let text = plain((size * scale).round() / scale);
+    if number < 0.0 {
+        format!("−{text}")
+    } else {
+        text
     }
 }
 
@@ -319,6 +368,40 @@ mod tests {
         assert_eq!(
             words(&[a.clone(), b.clone(), new, c.clone()], &[a, b, c]),
             ["earlier layer 3: spacer AlAs is gone"]
+        );
+    }
+
+    #[test]
+    fn what_layers_have_in_common_is_told_once() {
+        let told = [
+            (
+                "/layers/5/thickness_nm",
+                "layer 6, well: thickness 5 nm → 6 nm",
+            ),
+            ("/layers/5/dopant", "layer 6, well: dopant nothing → Si"),
+            (
+                "/layers/7/thickness_nm",
+                "layer 8, well: thickness 5 nm → 6 nm",
+            ),
+            ("/targets/total_nm", "total thickness 10 nm → 12 nm"),
+        ];
+        assert_eq!(
+            gathered(told.into_iter()),
+            [
+                "layers 6, 8, well: thickness 5 nm → 6 nm",
+                "layer 6, well: dopant nothing → Si",
+                "total thickness 10 nm → 12 nm",
+            ]
+        );
+        let places: Vec<(String, String)> = (0..20)
+            .map(|it| (format!("/layers/{it}"), format!("layer {}: new", it + 1)))
+            .collect();
+        let many = places
+            .iter()
+            .map(|(place, words)| (place.as_str(), words.as_str()));
+        assert_eq!(
+            gathered(many),
+            ["layers 1, 2, 3, 4, 5, 6, 7, 8, 9, 10, 11, 12 and 8 more: new"]
         );
     }
 

@@ -30,7 +30,7 @@ pub fn summary(document: &Document, written: &[String], colour: Colour) -> Strin
             page.paragraph(2, "Nothing that is ordered has changed.");
         }
         for change in changes {
-            page.paragraph(2, change);
+            page.paragraph(2, &change);
         }
     }
     let asked: Vec<&str> = document

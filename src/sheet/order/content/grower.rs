@@ -96,9 +96,8 @@ fn changes(document: &Document) -> Option<Section> {
         format!("Changes since revision {revision}")
     };
     let items: Vec<Line> = document
-        .list_at("/changes")
+        .changes()
         .iter()
-        .filter_map(|change| change.get("words").and_then(Value::as_str))
         .map(|change| vec![said(change)])
         .collect();
     let block = if items.is_empty() {
