@@ -28,6 +28,7 @@
 //! B. N. Parlett, The Symmetric Eigenvalue Problem (1980), chapters 3 and 4.
 
 mod kernel;
+mod mend;
 mod neighbours;
 mod search;
 #[cfg(test)]

@@ -3,6 +3,11 @@
 use std::ops::Range;
 
 use super::{BlockChain, CLUSTER, LANES, Ladder, Lanes, Uncertified, load, unload};
+use crate::numerics::clusters::clusters;
+use crate::numerics::general::general_vectors;
+
+/// Levels closer than this have no vectors of their own.
+const INSEPARABLE: f64 = 20.0 * CLUSTER;
 
 impl BlockChain {
     /// The `count` lowest eigenvalues from nothing: isolated by inertia, certified by it.
@@ -69,7 +74,7 @@ impl BlockChain {
             })
             .collect();
         let mut ladder = Ladder::default();
-        for cluster in clusters(&near) {
+        for cluster in clusters(&near, INSEPARABLE) {
             match found[cluster.start].take() {
                 Some((energy, vector)) if cluster.len() == 1 => {
                     ladder.energies.push(energy);
@@ -210,20 +215,7 @@ impl BlockChain {
 
     /// General vectors to start inverse iteration from.
     fn start_vectors(&self, count: usize) -> Vec<Vec<f64>> {
-        let mut seed = 0x9e37_79b9_7f4a_7c15_u64;
-        let mut vectors: Vec<Vec<f64>> = (0..count)
-            .map(|_| {
-                (0..3 * self.nodes)
-                    .map(|_| {
-                        // A fixed sequence (xorshift): the same bytes in every run.
-                        seed ^= seed << 13;
-                        seed ^= seed >> 7;
-                        seed ^= seed << 17;
-                        (seed >> 11) as f64 / (1u64 << 53) as f64 - 0.5
-                    })
-                    .collect()
-            })
-            .collect();
+        let mut vectors = general_vectors(count, 3 * self.nodes);
         self.orthonormalise(&mut vectors);
         vectors
     }
@@ -271,18 +263,4 @@ impl BlockChain {
         }
         nearest
     }
-}
-
-/// Ranges of rising levels whose neighbours are too close for vectors of their own.
-fn clusters(energies: &[f64]) -> Vec<Range<usize>> {
-    let mut clusters = Vec::new();
-    let mut start = 0;
-    for end in 1..=energies.len() {
-        let apart = |next: &f64| next - energies[end - 1] > 20.0 * CLUSTER;
-        if energies.get(end).is_none_or(apart) {
-            clusters.push(start..end);
-            start = end;
-        }
-    }
-    clusters
 }

@@ -1,23 +1,21 @@
 //! States followed from problem to neighbouring problem.
 
-use std::ops::Range;
-
 use super::kernel::{Columns, Step, combine, products, projections};
 use super::neighbours::{NEAR, groups};
 use super::{BlockChain, LANES, Ladder, Lanes, load, unload};
 
 /// Largest residual of an accepted state: the energy is good to its square over the distance of the
 /// next level.
-const LARGEST_RESIDUAL: f64 = 3e-6;
+pub(super) const LARGEST_RESIDUAL: f64 = 3e-6;
 /// Largest share of any other state in the vector of an accepted one: its residual over the distance
 /// of that state.
 const LARGEST_SHARE: f64 = 1e-4;
 /// How far above the highest state asked for its shift stands at least.
-const LEAST_MARGIN: f64 = 4.0 * LARGEST_RESIDUAL;
+pub(super) const LEAST_MARGIN: f64 = 4.0 * LARGEST_RESIDUAL;
 /// Steps of inverse iteration that a slice may take.
 const ROUNDS: usize = 4;
 /// Problems that the next one is extrapolated from.
-const MEMORY: usize = 3;
+pub(super) const MEMORY: usize = 3;
 
 /// What must hold of the states of a slice.
 #[derive(Clone, Copy, Debug, PartialEq)]
@@ -44,14 +42,14 @@ pub enum Hold {
 /// shift is the one that decides.
 #[derive(Clone, Debug)]
 pub struct Trail {
-    states: usize,
-    chunks: Vec<Chunk>,
+    pub(super) states: usize,
+    pub(super) chunks: Vec<Chunk>,
     /// The parameter at the slices, oldest first.
     at: [f64; MEMORY],
     /// Energies by lane at the slices, oldest first.
     energies: [Vec<f64>; MEMORY],
     /// Up to how many slices back each state is a straight continuation of itself.
-    unbroken: Vec<usize>,
+    pub(super) unbroken: Vec<usize>,
     /// Lanes by rising energy.
     order: Vec<usize>,
     /// How far the highest state asked for lay off its forecast.
@@ -62,21 +60,21 @@ pub struct Trail {
 
 /// The next slice on its way, a value a lane.
 #[derive(Clone, Debug, Default)]
-struct Draft {
+pub(super) struct Draft {
     /// Energies as the slices before lead to.
-    forecast: Vec<f64>,
+    pub(super) forecast: Vec<f64>,
     /// Energies now.
-    energies: Vec<f64>,
+    pub(super) energies: Vec<f64>,
     /// Residuals now.
-    residuals: Vec<f64>,
+    pub(super) residuals: Vec<f64>,
     /// Where the last sweep was taken.
-    shifts: Vec<f64>,
+    pub(super) shifts: Vec<f64>,
     /// Levels below the shifts.
-    below: Vec<usize>,
+    pub(super) below: Vec<usize>,
     /// Lanes by rising energy.
-    order: Vec<usize>,
+    pub(super) order: Vec<usize>,
     /// Lanes that have not settled, rising.
-    pending: Vec<usize>,
+    pub(super) pending: Vec<usize>,
 }
 
 impl Draft {
@@ -94,11 +92,11 @@ impl Draft {
 
 /// Up to [`LANES`] states.
 #[derive(Clone, Debug)]
-struct Chunk {
+pub(super) struct Chunk {
     /// Vectors at the slices, oldest first.
-    slices: [Columns; MEMORY],
+    pub(super) slices: [Columns; MEMORY],
     /// Vectors on their way to the next slice, and their workspace.
-    next: [Columns; 2],
+    pub(super) next: [Columns; 2],
 }
 
 /// A count of levels at an energy.
@@ -147,14 +145,6 @@ impl Trail {
         self.order
             .iter()
             .map(|&lane| self.energies[MEMORY - 1][lane])
-    }
-
-    /// Latest vectors by rising energy, three values a node.
-    #[must_use]
-    pub fn vectors(&self) -> Vec<Vec<f64>> {
-        let vector =
-            |&lane: &usize| unload(&self.chunks[lane / LANES].slices[MEMORY - 1], lane % LANES);
-        self.order.iter().map(vector).collect()
     }
 
     /// Σ f u over the nodes for each of the three functions of the latest vectors, state by state in
@@ -363,118 +353,6 @@ impl Trail {
         }
     }
 
-    /// Finds by counts where levels were missed between the settled ones, searches them from nothing,
-    /// and gives them the lanes of states that met others. Returns whether the lowest levels, at least
-    /// those required, are then complete.
-    fn mend(
-        &mut self,
-        chain: &mut BlockChain,
-        draft: &mut Draft,
-        required: usize,
-        floor: f64,
-    ) -> bool {
-        let Draft {
-            energies,
-            residuals,
-            order,
-            ..
-        } = draft;
-        let kept = self.different(chain, order, energies, residuals);
-        let segments = segments(kept.iter().map(|&lane| energies[lane]), floor);
-        let mut counts = Vec::with_capacity(segments.len());
-        for part in segments.chunks(LANES) {
-            let points = std::array::from_fn(|place| part[place.min(part.len() - 1)].point);
-            counts.extend_from_slice(&chain.counts_below(&points)[..part.len()]);
-        }
-        let (mut lanes, mut fresh) = (Vec::new(), Ladder::default());
-        let (mut low, mut below) = (floor, chain.count_below(floor));
-        if below != 0 {
-            return false;
-        }
-        for (segment, count) in segments.iter().zip(counts) {
-            let own = &kept[segment.levels.clone()];
-            if count < below + own.len() {
-                return false;
-            }
-            if count == below + own.len() {
-                lanes.extend_from_slice(own);
-            } else {
-                let Ok(found) = chain.levels(below..count.min(self.states), low) else {
-                    return false;
-                };
-                fresh.energies.extend(found.energies);
-                fresh.vectors.extend(found.vectors);
-            }
-            (low, below) = (segment.point, count.min(self.states));
-            if below >= required {
-                break;
-            }
-        }
-        if below < required {
-            let Ok(found) = chain.levels(below..required, low) else {
-                return false;
-            };
-            fresh.energies.extend(found.energies);
-            fresh.vectors.extend(found.vectors);
-            below = required;
-        }
-        let free: Vec<usize> = (0..self.states)
-            .filter(|lane| !lanes.contains(lane))
-            .collect();
-        for (&lane, (energy, vector)) in free.iter().zip(fresh.energies.iter().zip(&fresh.vectors))
-        {
-            load(&mut self.chunks[lane / LANES].next[0], lane % LANES, vector);
-            energies[lane] = *energy;
-        }
-        // What is left only stands by, above all that is known, as it was before.
-        let known = fresh.energies.iter().copied();
-        let highest = known
-            .chain(lanes.iter().map(|&lane| energies[lane]))
-            .fold(floor, f64::max);
-        let mut next = highest;
-        for &lane in &free[fresh.energies.len()..] {
-            let beyond = is_settled(residuals[lane]) && energies[lane] > highest;
-            if !beyond {
-                next += 8.0 * LEAST_MARGIN;
-                energies[lane] = next;
-                self.unbroken[lane] = 0;
-                let chunk = &mut self.chunks[lane / LANES];
-                let lane = lane % LANES;
-                for (to, from) in chunk.next[0].iter_mut().zip(&chunk.slices[MEMORY - 1]) {
-                    for row in 0..3 {
-                        to[row][lane] = from[row][lane];
-                    }
-                }
-            }
-        }
-        sort(order, energies);
-        let distinct = |pair: &[usize]| energies[pair[1]] > energies[pair[0]];
-        order[..below].windows(2).all(distinct)
-    }
-
-    /// Lanes by rising energy that have settled, each on a state of its own.
-    fn different(
-        &self,
-        chain: &BlockChain,
-        order: &[usize],
-        energies: &[f64],
-        residuals: &[f64],
-    ) -> Vec<usize> {
-        let vector = |lane: usize| unload(&self.chunks[lane / LANES].next[0], lane % LANES);
-        let mut kept: Vec<usize> = Vec::with_capacity(self.states);
-        for &lane in order {
-            if !(energies[lane].is_finite() && is_settled(residuals[lane])) {
-                continue;
-            }
-            let near = |&&other: &&usize| energies[lane] - energies[other] < 2.0 * LARGEST_RESIDUAL;
-            let same = |&other: &usize| chain.product(&vector(lane), &vector(other)).abs() > 0.5;
-            if !kept.iter().rev().take_while(near).any(same) {
-                kept.push(lane);
-            }
-        }
-        kept
-    }
-
     /// Takes the workspace as the latest slice, in the sense of the one before it.
     fn accept(&mut self, chain: &BlockChain, at: f64, draft: &Draft) {
         self.order.clone_from(&draft.order);
@@ -513,7 +391,7 @@ fn spread(lanes: &[usize], shifts: &[f64]) -> Lanes {
 }
 
 /// Sorts lanes by energy; what is not a number stands last.
-fn sort(order: &mut [usize], energies: &[f64]) {
+pub(super) fn sort(order: &mut [usize], energies: &[f64]) {
     let key = |lane: usize| {
         if energies[lane].is_nan() {
             f64::INFINITY
@@ -537,38 +415,6 @@ fn allowed(rank: usize, energy: impl Fn(usize) -> f64, states: usize) -> f64 {
         .unwrap_or(f64::INFINITY)
         .min(below.unwrap_or(f64::INFINITY));
     LARGEST_RESIDUAL.min(LARGEST_SHARE * distance)
-}
-
-fn is_settled(residual: f64) -> bool {
-    residual < LARGEST_RESIDUAL
-}
-
-/// Levels that a count can't tell apart, and a point above them.
-struct Segment {
-    levels: Range<usize>,
-    point: f64,
-}
-
-/// Cuts rising levels wherever there is room for a count between them.
-fn segments(energies: impl Iterator<Item = f64>, floor: f64) -> Vec<Segment> {
-    let energies: Vec<f64> = energies.collect();
-    let mut segments = Vec::new();
-    let (mut start, mut low) = (0, floor);
-    for end in 1..=energies.len() {
-        let last = energies[end - 1];
-        let room = energies.get(end).map_or(f64::INFINITY, |next| next - last);
-        if room > 4.0 * LARGEST_RESIDUAL {
-            let point = last + (0.5 * room).min(LEAST_MARGIN);
-            if last > low {
-                segments.push(Segment {
-                    levels: start..end,
-                    point,
-                });
-                (start, low) = (end, point);
-            }
-        }
-    }
-    segments
 }
 
 /// How many of the lowest states, at least those required, stand apart from the next one: where

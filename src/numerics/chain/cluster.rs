@@ -1,6 +1,7 @@
 //! Levels too close to be told apart by counting: their common span, separated inside it.
 
 use super::{CLUSTER, Chain, ORTHOGONAL_BELOW, State};
+use crate::numerics::general::general_vectors;
 use nalgebra::{DMatrix, SymmetricEigen};
 
 impl Chain {
@@ -13,20 +14,7 @@ impl Chain {
         let (diagonal, link) = self.pencil(shift);
         let factors = Factors::new(&diagonal, &link);
         let weights = self.weights();
-        let mut seed = 0x9e37_79b9_7f4a_7c15_u64;
-        let mut basis: Vec<Vec<f64>> = (0..count)
-            .map(|_| {
-                (0..self.nodes)
-                    .map(|_| {
-                        // A fixed sequence (xorshift): a start vector only has to be general.
-                        seed ^= seed << 13;
-                        seed ^= seed >> 7;
-                        seed ^= seed << 17;
-                        (seed >> 11) as f64 / (1u64 << 53) as f64 - 0.5
-                    })
-                    .collect()
-            })
-            .collect();
+        let mut basis = general_vectors(count, self.nodes);
         for _ in 0..4 {
             for index in 0..count {
                 let (done, rest) = basis.split_at_mut(index);

@@ -6,6 +6,7 @@ use super::centre::Centre;
 use super::form::Grid;
 use super::{Dipole, Projection, Slice, uncertified};
 use crate::numerics::block::{BlockChain, Hold, Ladder, Trail};
+use crate::numerics::clusters::clusters;
 use crate::subbands::{CLUSTER_EV, Uncertified};
 
 /// Steps of the in-plane wave number, 1/nm, and up to where each is taken: small enough to follow
@@ -111,20 +112,6 @@ pub(super) fn extrapolated(coarse: &Slice, fine: &Slice, electrons: &[Range<usiz
         }
     }
     Slice { energy_ev, dipoles }
-}
-
-/// Ranges of energies in order whose neighbours are closer than `within_ev`.
-pub(super) fn clusters(energies_ev: &[f64], within_ev: f64) -> Vec<Range<usize>> {
-    let mut clusters = Vec::new();
-    let mut start = 0;
-    for end in 1..=energies_ev.len() {
-        let apart = |next: &f64| (next - energies_ev[end - 1]).abs() >= within_ev;
-        if energies_ev.get(end).is_none_or(apart) {
-            clusters.push(start..end);
-            start = end;
-        }
-    }
-    clusters
 }
 
 /// Which state of a coarser grid each state of the finer one was: as a rule that of its number, but

@@ -12,8 +12,9 @@ pub use matrix::valence_hamiltonian;
 use rayon::prelude::*;
 
 use super::{CLUSTER_EV, COARSEST_STEP_NM, Level, SingleBands, Uncertified};
+use crate::numerics::clusters::clusters;
 use crate::profile::Profile;
-use along::{Track, clusters, extrapolated, follow, wave_numbers};
+use along::{Track, extrapolated, follow, wave_numbers};
 use centre::Centre;
 use form::Grid;
 
