@@ -42,7 +42,8 @@ impl Trail {
             if count == below + own.len() {
                 lanes.extend_from_slice(own);
             } else {
-                let Ok(found) = chain.levels(below..count.min(self.states), low) else {
+                let upper = count.min(self.states);
+                let Some(found) = exactly(chain, below..upper, low) else {
                     return false;
                 };
                 fresh.energies.extend(found.energies);
@@ -54,7 +55,7 @@ impl Trail {
             }
         }
         if below < required {
-            let Ok(found) = chain.levels(below..required, low) else {
+            let Some(found) = exactly(chain, below..required, low) else {
                 return false;
             };
             fresh.energies.extend(found.energies);
@@ -149,4 +150,12 @@ fn segments(energies: impl Iterator<Item = f64>, floor: f64) -> Vec<Segment> {
         }
     }
     segments
+}
+
+/// The levels of a range from nothing, and no other; `None` where they can't be certified.
+fn exactly(chain: &mut BlockChain, range: Range<usize>, low: f64) -> Option<Ladder> {
+    let mut ladder = chain.levels(range.clone(), low).ok()?;
+    ladder.energies.truncate(range.len());
+    ladder.vectors.truncate(range.len());
+    Some(ladder)
 }

@@ -33,7 +33,8 @@ impl BlockChain {
         self.levels(0..count, floor)
     }
 
-    /// The eigenvalues with the numbers `range`, counted from 0, found from nothing.
+    /// The eigenvalues with the numbers `range`, counted from 0, found from nothing, and those that stand
+    /// too close to the last of them to be told apart.
     ///
     /// # Arguments
     ///
@@ -47,7 +48,11 @@ impl BlockChain {
         if range.is_empty() {
             return Ok(Ladder::default());
         }
-        let brackets = self.isolate(range.clone(), low);
+        let mut brackets = self.isolate(range.clone(), low);
+        // What shares the bracket of the last level can't be left out.
+        let last = brackets[brackets.len() - 1];
+        let below = self.count_below(last.1);
+        brackets.extend((range.end..below).map(|_| last));
         let shared = |index: usize| {
             (index > 0 && brackets[index - 1] == brackets[index])
                 || brackets.get(index + 1) == Some(&brackets[index])
@@ -87,19 +92,20 @@ impl BlockChain {
                 }
             }
         }
-        self.certify(&ladder, range.start)?;
+        self.certify(&ladder, range.start, last.1)?;
         Ok(ladder)
     }
 
-    /// Counts between the levels (and around clusters) must agree with their numbers.
-    fn certify(&self, ladder: &Ladder, first: usize) -> Result<(), Uncertified> {
+    /// Counts between the levels (and around clusters) must agree with their numbers, up to the `top` of
+    /// the last bracket.
+    fn certify(&self, ladder: &Ladder, first: usize, top: f64) -> Result<(), Uncertified> {
         let energies = &ladder.energies;
         let mut points = Vec::with_capacity(energies.len() + 1);
         for (index, &energy) in energies.iter().enumerate() {
             match energies.get(index + 1) {
                 Some(above) if above - energy < CLUSTER => {}
                 Some(above) => points.push((0.5 * (energy + above), first + index + 1)),
-                None => points.push((energy + CLUSTER, first + index + 1)),
+                None => points.push((top.max(energy), first + index + 1)),
             }
         }
         points.push((energies[0] - CLUSTER, first));

@@ -22,6 +22,9 @@ pub const LARGEST_WAVE_NUMBER_PER_NM: f64 = 2.0;
 /// Valence states closer than this are all but equal, eV: far below any line width.
 const EQUAL_EV: f64 = 2e-5;
 
+/// Sums of matrix elements are corrected by no more than this share of them.
+const LARGEST_CORRECTION: f64 = 0.05;
+
 /// The in-plane wave numbers that may be visited, 1/nm, from zero.
 pub(super) fn wave_numbers() -> Vec<f64> {
     let mut k_per_nm = vec![0.0];
@@ -64,9 +67,11 @@ pub(super) fn extrapolated(coarse: &Slice, fine: &Slice, electrons: &[Range<usiz
         .iter()
         .map(|row| order.iter().map(|&state| row[state]).collect())
         .collect();
+    // A large correction is none of the grid: states have changed hands between clusters.
     let factor = |coarse: f64, fine: f64| {
-        if fine > 0.0 {
-            (two(coarse, fine) / fine).max(0.0)
+        let correction = (fine - coarse) / (3.0 * fine);
+        if correction.abs() < LARGEST_CORRECTION {
+            1.0 + correction
         } else {
             1.0
         }
@@ -115,32 +120,56 @@ pub(super) fn extrapolated(coarse: &Slice, fine: &Slice, electrons: &[Range<usiz
 }
 
 /// Which state of a coarser grid each state of the finer one was: as a rule that of its number, but
-/// two that lie nearer to each other than the grids do may have crossed between them. Matrix elements
-/// tell: those of a pair that crossed are alike crosswise.
+/// states that lie nearer to each other than the grids do may have crossed between them, whole families
+/// of them where wells are coupled. Matrix elements tell, summed over the electron levels: where the
+/// pairs that are likest are much liker than those of equal number, they are taken.
 fn partners(coarse: &Slice, fine: &Slice) -> Vec<usize> {
     let count = fine.energy_ev.len();
     let mut partners: Vec<usize> = (0..count).collect();
-    let unlike = |of_coarse: usize, of_fine: usize| -> f64 {
-        let rows = coarse.dipoles.iter().zip(&fine.dipoles);
-        rows.map(|(coarse, fine)| {
-            let (a, b) = (coarse[of_coarse], fine[of_fine]);
-            (a.te - b.te).abs() + (a.tm - b.tm).abs()
+    let strength = |slice: &Slice, state: usize| {
+        slice.dipoles.iter().fold((0.0, 0.0), |sum, row| {
+            (sum.0 + row[state].te, sum.1 + row[state].tm)
         })
-        .sum()
+    };
+    let unlike = |of_coarse: usize, of_fine: usize| -> f64 {
+        let (a, b) = (strength(coarse, of_coarse), strength(fine, of_fine));
+        (a.0 - b.0).abs() + (a.1 - b.1).abs()
     };
     let moved = |state: usize| (fine.energy_ev[state] - coarse.energy_ev[state]).abs();
-    let mut state = 0;
-    while state + 1 < count {
-        let next = state + 1;
-        let gap = |slice: &Slice| (slice.energy_ev[state] - slice.energy_ev[next]).abs();
-        let near = gap(coarse).max(gap(fine)) < 4.0 * moved(state).max(moved(next));
-        let straight = unlike(state, state) + unlike(next, next);
-        let crossed = unlike(state, next) + unlike(next, state);
-        if near && crossed < 0.5 * straight {
-            partners.swap(state, next);
-            state += 1;
+    let near = |state: usize| {
+        let gap = |slice: &Slice| (slice.energy_ev[state] - slice.energy_ev[state + 1]).abs();
+        gap(coarse).max(gap(fine)) < 4.0 * moved(state).max(moved(state + 1))
+    };
+    let mut start = 0;
+    for end in 1..=count {
+        if end < count && near(end - 1) {
+            continue;
         }
-        state += 1;
+        let straight: f64 = (start..end).map(|state| unlike(state, state)).sum();
+        // The likest pairs first, those of near numbers before others.
+        let mut pairs: Vec<(usize, usize)> = (start..end)
+            .flat_map(|coarse| (start..end).map(move |fine| (coarse, fine)))
+            .collect();
+        let rank = |&(coarse, fine): &(usize, usize)| {
+            unlike(coarse, fine) + 1e-6 * coarse.abs_diff(fine) as f64
+        };
+        pairs.sort_by(|a, b| rank(a).total_cmp(&rank(b)));
+        let mut likest: Vec<Option<usize>> = vec![None; end - start];
+        let mut taken = vec![false; end - start];
+        let mut crossed = 0.0;
+        for (coarse, fine) in pairs {
+            if likest[fine - start].is_none() && !taken[coarse - start] {
+                likest[fine - start] = Some(coarse);
+                taken[coarse - start] = true;
+                crossed += unlike(coarse, fine);
+            }
+        }
+        if crossed < 0.5 * straight {
+            for (fine, coarse) in likest.into_iter().enumerate() {
+                partners[start + fine] = coarse.unwrap_or(start + fine);
+            }
+        }
+        start = end;
     }
     partners
 }
