@@ -5,12 +5,15 @@ use std::ops::Range;
 use nalgebra::{DMatrix, SymmetricEigen};
 
 use super::{BlockChain, Ladder};
+use crate::numerics::clusters::clusters;
 
 /// Levels closer than this may have to be separated inside their span.
 pub(super) const NEAR: f64 = 5e-5;
 /// Neighbours are separated unless both residuals are this much smaller than their distance: the
 /// vectors are then as pure as the inverse of it.
 const PURE: f64 = 1e3;
+/// No residual is known better than this: rounding may leave none at all, even of a state found twice.
+const LEAST_RESIDUAL: f64 = 1e-11;
 
 impl BlockChain {
     /// Gram-Schmidt, twice for rounding.
@@ -65,25 +68,22 @@ impl BlockChain {
     }
 }
 
-/// Ranges of two and more rising levels, each given with its residual, that are too near to their
-/// neighbours to be pure.
+/// Ranges of two and more rising levels, each given with its residual, that are too near to each other
+/// to be pure. An impure one reaches over its neighbours: the largest residual among levels that stand
+/// near each other holds for all of them.
 pub(super) fn groups(levels: impl Iterator<Item = (f64, f64)>) -> Vec<Range<usize>> {
+    let (energies, residuals): (Vec<f64>, Vec<f64>) = levels.unzip();
     let mut groups = Vec::new();
-    let (mut start, mut count, mut last) = (0, 0, (f64::NEG_INFINITY, 0.0));
-    let mut close = |range: Range<usize>| {
-        if range.len() > 1 {
-            groups.push(range);
-        }
-    };
-    for (level, (energy, residual)) in levels.enumerate() {
-        let distance = energy - last.0;
-        if distance >= NEAR || distance > PURE * f64::max(residual, last.1) {
-            close(start..level);
-            start = level;
-        }
-        last = (energy, residual);
-        count = level + 1;
+    for near in clusters(&energies, NEAR) {
+        let largest = residuals[near.clone()]
+            .iter()
+            .copied()
+            .fold(LEAST_RESIDUAL, f64::max);
+        let impure = clusters(&energies[near.clone()], PURE * largest);
+        let places = impure
+            .into_iter()
+            .map(|it| near.start + it.start..near.start + it.end);
+        groups.extend(places.filter(|group| group.len() > 1));
     }
-    close(start..count);
     groups
 }
