@@ -8,14 +8,15 @@ use super::flags;
 use super::gauge::Gauge;
 use super::outlet::{Files, Outlet, print, remark as write_remark};
 use super::wishes::{make_folder, one};
-use crate::design::{Audience, House, Ordered, SPREAD_DRAWS};
+use crate::design::{Audience, House, Ordered, SPREAD_DRAWS, vacuum_nm};
 use crate::materials::Parameters;
 use crate::sheet::order::{
-    self, Document, Figures, Inspection, Kept, Origins, Paper, Since, Unreadable, inspect, kept,
+    self, Document, Figures, Inspection, Kept, Origins, Paper, Since, Standing, Unreadable,
+    inspect, kept,
 };
 use crate::sheet::{self, Stamp, sha256};
-use crate::structure::{self, Overrides, Reading};
-use std::path::{Path, PathBuf};
+use crate::structure::{self, Overrides, Reading, Stack, Wavelength};
+use std::path::Path;
 
 /// Files of a sheet that are no figures.
 const PAGE: &str = "sheet.html";
@@ -64,13 +65,23 @@ pub(super) fn sheet(flags: &flags::Sheet, outlet: &Outlet) -> Result<Ending, Com
         sha256: case.sha256(),
         parameters: &case.parameters,
     };
-    let mut made = make(
+    let (mut made, concerns) = make(
         &origins,
         &case.reading,
         audience,
         since.as_ref(),
         flags.quiet,
     );
+    if !flags.quiet {
+        for (words, advice) in &concerns {
+            write_remark(&sheet::remark(
+                words,
+                Some(advice),
+                None,
+                outlet.error_colour(),
+            ));
+        }
+    }
     if made.document.repeats_revision() && !made.document.changes().is_empty() && !flags.quiet {
         write_remark(&sheet::remark(
             "the sheet differs from the earlier one and has the same revision",
@@ -142,9 +153,10 @@ fn make(
     audience: Audience,
     since: Option<&Since>,
     quiet: bool,
-) -> Made {
+) -> (Made, Vec<Concern>) {
     let (stack, parameters) = (origins.stack, origins.parameters);
     let ordered = Ordered::new(stack, parameters);
+    let concerns = concerns(stack, &ordered);
     let house = (audience == Audience::House).then(|| {
         let gauge = Gauge::new(SPREAD_DRAWS, "drawing wafers", quiet);
         let progress = |done| gauge.reached(done);
@@ -157,7 +169,47 @@ fn make(
         let stamp = Stamp::new(stack, parameters, offsets, origins.sha256);
         figures.add_house(stack, house, &stamp);
     }
-    Made { document, figures }
+    (Made { document, figures }, concerns)
+}
+
+/// What is said and what to do about it.
+type Concern = (String, &'static str);
+
+/// What whoever sends the sheet must know of its photoluminescence, on either copy.
+fn concerns(stack: &Stack, ordered: &Ordered) -> Vec<Concern> {
+    let pl = match &ordered.targets.pl {
+        Ok(pl) => pl,
+        Err(reason) => {
+            return vec![(
+                format!("the photoluminescence to be had cannot be computed: {reason}"),
+                "the grower reads that it is to be agreed",
+            )];
+        }
+    };
+    let kelvin = ordered.targets.temperature_k;
+    let target = stack.target.filter(|target| {
+        let meant_k = target
+            .temperature_k
+            .unwrap_or(stack.operation.temperature_k);
+        // At another temperature than that of the bench it is another wavelength.
+        target.kind == Wavelength::Photoluminescence && (meant_k - kelvin).abs() < 0.5
+    });
+    let Some((target_nm, tolerance_nm)) =
+        target.and_then(|target| Some((vacuum_nm(&target), target.tolerance_nm?)))
+    else {
+        return Vec::new();
+    };
+    if (pl.vacuum_nm - target_nm).abs() <= tolerance_nm {
+        return Vec::new();
+    }
+    vec![(
+        format!(
+            "OUTSIDE THE TARGET: the sheet orders photoluminescence at {:.1} nm, and [target] wants \
+             {target_nm:.1} nm ± {tolerance_nm} nm (both in vacuum)",
+            pl.vacuum_nm
+        ),
+        "change the layers, [target], or `pl_offset_nm` in [order.targets] before it is sent",
+    )]
 }
 
 /// Writes every file of a sheet; the record, which names the others, comes last.
@@ -193,13 +245,14 @@ pub(super) fn check(flags: &flags::Check, outlet: &Outlet) -> Result<Ending, Com
     let kept = kept(&text.content).map_err(|error| unreadable(&text.name, &error))?;
     let parameters = parameters(flags.file.overlay.as_deref(), outlet)?;
     let (anew, found) = again(&kept, &parameters, outlet, flags.output.quiet)?;
-    let files = files_beside(&flags.file.path, &kept);
+    let files = files_beside(&flags.file.path, &kept, &anew, &found);
+    let anew = anew.document;
     print(&if flags.output.json {
         order::inspection_json(&anew, &found, &files)
     } else {
         order::inspection(&anew, &found, &files, outlet.colour())
     })?;
-    let agrees = found.agrees() && files.iter().all(|(_, agrees)| *agrees);
+    let agrees = found.agrees() && files.iter().all(|(_, standing)| standing.agrees());
     Ok(if agrees {
         Ending::Done
     } else {
@@ -213,7 +266,7 @@ fn again(
     parameters: &Parameters,
     outlet: &Outlet,
     quiet: bool,
-) -> Result<(Document, Inspection), Complaint> {
+) -> Result<(Made, Inspection), Complaint> {
     let reading =
         structure::read(&kept.structure, parameters, &Overrides::default()).map_err(|faults| {
             Complaint::faults(
@@ -229,24 +282,83 @@ fn again(
         sha256: &kept.source_sha256,
         parameters,
     };
-    let made = make(&origins, &reading, kept.audience, None, quiet);
+    let (made, _) = make(&origins, &reading, kept.audience, None, quiet);
     let found = inspect(kept, &made.document);
-    Ok((made.document, found))
+    Ok((made, found))
 }
 
-/// Files of the sheet that lie beside its record, and whether each is the one it was written with.
-fn files_beside(record: &Path, kept: &Kept) -> Vec<(String, bool)> {
+/// Files of the sheet beside its record, and how each was found.
+fn files_beside(
+    record: &Path,
+    kept: &Kept,
+    anew: &Made,
+    found: &Inspection,
+) -> Vec<(String, Standing)> {
     let folder = record.parent().unwrap_or(Path::new(""));
-    let is_name = |name: &str| {
-        let path = PathBuf::from(name);
-        path.components().count() == 1 && path.file_name().is_some()
-    };
-    kept.files
+    // Pages are made of the record and of figures; where both are as they were, so are they.
+    let is_repeatable = found.is_same_program && found.agrees();
+    let made = made_again(kept, anew);
+    let mut files: Vec<(String, Standing)> = kept
+        .files
         .iter()
-        .filter(|(name, _)| is_name(name))
-        .filter_map(|(name, sum)| {
-            let bytes = std::fs::read(folder.join(name)).ok()?;
-            Some((name.clone(), sha256(&bytes) == *sum))
+        .map(|(name, sum)| {
+            let standing = standing(folder, name, sum);
+            let sums = made.iter().filter(|(made, _)| made == name);
+            let mut sums = sums.map(|(_, made)| made).peekable();
+            let is_other = sums.peek().is_some() && !sums.any(|made| made == sum);
+            if standing.agrees() && is_repeatable && is_other {
+                (name.clone(), Standing::NotOfRecord)
+            } else {
+                (name.clone(), standing)
+            }
         })
-        .collect()
+        .collect();
+    for (name, _) in made {
+        let is_there = std::fs::symlink_metadata(folder.join(&name)).is_ok();
+        let is_due = is_there || (kept.names_files() && name != PDF);
+        if is_due && files.iter().all(|(known, _)| *known != name) {
+            files.push((name, Standing::Unlisted));
+        }
+    }
+    files
+}
+
+/// Every file that a sheet may be written with, made of the kept record: name and SHA-256. The PDF
+/// is there once for each paper.
+fn made_again(kept: &Kept, anew: &Made) -> Vec<(String, String)> {
+    let document = kept.document();
+    let mut made = vec![
+        (
+            PAGE.to_owned(),
+            sha256(document.html(&anew.figures).as_bytes()),
+        ),
+        (LAYERS.to_owned(), sha256(document.layers_csv().as_bytes())),
+    ];
+    let drawn = anew.figures.files().into_iter();
+    made.extend(drawn.map(|(name, svg)| (name, sha256(svg.as_bytes()))));
+    made.extend(Paper::ALL.map(|paper| {
+        let pdf = document.pdf(&anew.figures, paper);
+        (PDF.to_owned(), sha256(&pdf))
+    }));
+    made
+}
+
+/// How a file beside the record is found. Only what is a file is opened: a pipe would never end.
+fn standing(folder: &Path, name: &str, sum: &str) -> Standing {
+    let plain = Path::new(name);
+    if sum.is_empty() || plain.file_name() != Some(plain.as_os_str()) {
+        return Standing::NoName;
+    }
+    let path = folder.join(name);
+    match std::fs::metadata(&path) {
+        Err(error) if error.kind() == std::io::ErrorKind::NotFound => return Standing::Missing,
+        Err(_) => return Standing::Unreadable,
+        Ok(about) if !about.is_file() => return Standing::NoFile,
+        Ok(_) => {}
+    }
+    match std::fs::read(&path) {
+        Err(_) => Standing::Unreadable,
+        Ok(bytes) if sha256(&bytes) == sum => Standing::Agrees,
+        Ok(_) => Standing::Edited,
+    }
 }

@@ -152,18 +152,20 @@ struct Names {
 }
 
 impl Names {
-    /// The formula where it is exact; a number for an alloy whose fractions have more digits; the
-    /// name of a material of own numbers, which has no formula to go by.
+    /// The formula where it is exact; a number for an alloy whose fractions have more digits and
+    /// for a material of own numbers: its name in the file may say what it is for.
     fn of(&mut self, material: &Material) -> String {
-        if let Substance::Own { .. } = material.substance {
-            return material.name.clone();
-        }
         let known = self
             .given
             .iter()
             .find(|(substance, _)| *substance == material.substance);
         if let Some((_, name)) = known {
             return name.clone();
+        }
+        if let Substance::Own { .. } = material.substance {
+            let name = format!("material-{}", self.given.len() + 1);
+            self.given.push((material.substance, name.clone()));
+            return name;
         }
         let formula = material.formula();
         let is_exact = Composition::parse(&formula)

@@ -103,6 +103,11 @@ fn no_cell_of_the_table_is_a_formula() {
     let file = desk.read("out/layers.csv");
     let (stamp, table) = file.split_once('\n').expect("a stamp");
     assert!(stamp.starts_with("# "), "{stamp}");
+    assert!(stamp.contains("cmd"), "{stamp}");
+    for separator in [',', ';', '\t', '"'] {
+        let mut cells = stamp.split(separator);
+        assert!(cells.next().is_some() && cells.next().is_none(), "{stamp}");
+    }
     let mut reader = csv::Reader::from_reader(table.as_bytes());
     for row in reader.records() {
         for cell in &row.expect("a row of the same length") {

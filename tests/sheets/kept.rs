@@ -77,9 +77,69 @@ fn an_edited_page_or_table_is_found_out() {
         );
         desk.put(&format!("out/{name}"), &whole);
     }
-    // A file that is gone says nothing.
-    fs::remove_file(desk.path("out/layers.csv")).expect("removed");
     assert_eq!(check(&desk, "out/sheet.json").0, 0);
+    fs::remove_file(desk.path("out/layers.csv")).expect("removed");
+    let (code, said) = check(&desk, "out/sheet.json");
+    assert!(code == 5 && said.contains("is missing"), "{said}");
+    fs::create_dir(desk.path("out/layers.csv")).expect("made");
+    let (code, said) = check(&desk, "out/sheet.json");
+    assert!(code == 5 && said.contains("is no file"), "{said}");
+}
+
+/// A record that no longer names a file, or names the sum of an edited one, is found out.
+#[test]
+fn files_taken_out_of_the_record_are_missed() {
+    let desk = Desk::new();
+    desk.sheet("structures/estuary-980.toml", "grower", "out", &["--quiet"]);
+    let record = desk.record("out/sheet.json");
+    let mut emptied = record.clone();
+    emptied["files"] = serde_json::json!([]);
+    let mut without = record.clone();
+    without.as_object_mut().expect("a record").remove("files");
+    let mut elsewhere = record.clone();
+    elsewhere["files"][0]["name"] = serde_json::json!("../sheet.html");
+    for edited in [emptied, without, elsewhere] {
+        desk.put("out/edited.json", &edited.to_string());
+        let (code, said) = check(&desk, "out/edited.json");
+        assert_eq!(code, 5, "{said}");
+        assert!(said.contains("is not named under `files`"), "{said}");
+    }
+    // A table that was edited together with its sum.
+    let table = desk.read("out/layers.csv");
+    let edited = table.replacen("7.5", "7.6", 1);
+    assert_ne!(edited, table);
+    desk.put("out/layers.csv", &edited);
+    let sum = |text: &str| stepwell::sheet::sha256(text.as_bytes());
+    let lie = desk
+        .read("out/sheet.json")
+        .replace(&sum(&table), &sum(&edited));
+    desk.put("out/sheet.json", &lie);
+    let (code, said) = check(&desk, "out/sheet.json");
+    assert!(
+        code == 5 && said.contains("is not what is made of this record"),
+        "{said}"
+    );
+}
+
+/// Of two values of one key readers take one or the other: neither is believed.
+#[test]
+fn a_key_that_stands_twice_is_refused() {
+    let desk = Desk::new();
+    desk.sheet("structures/estuary-980.toml", "grower", "out", &["--quiet"]);
+    let twice = desk.read("out/sheet.json").replacen(
+        "\"thickness_nm\"",
+        "\"thickness_nm\": 9.9, \"thickness_nm\"",
+        1,
+    );
+    let path = desk.put("out/twice.json", &twice);
+    let output = stepwell(&["check", &path, "--quiet"]);
+    assert_eq!(output.status.code(), Some(3));
+    let said: Vec<&str> = text(&output.stderr).split_whitespace().collect();
+    let said = said.join(" ");
+    assert!(
+        said.contains("the key `thickness_nm` stands twice"),
+        "{said}"
+    );
 }
 
 #[test]
@@ -134,6 +194,18 @@ fn a_revision_tells_what_changed_in_words_and_in_the_table() {
     // What it says of the present is checked, too.
     let (code, words) = check(&desk, "b/sheet.json");
     assert_eq!(code, 0, "{words}");
+    assert!(
+        words.contains("not checked: which earlier sheet"),
+        "{words}"
+    );
+    let mut orphan = desk.record("b/sheet.json");
+    orphan["since"] = serde_json::Value::Null;
+    desk.put("b/orphan.json", &orphan.to_string());
+    let (code, words) = check(&desk, "b/orphan.json");
+    assert!(
+        code == 5 && words.contains("names no earlier sheet"),
+        "{words}"
+    );
     let lie = desk
         .read("b/sheet.json")
         .replace("\"after\": 450.0", "\"after\": 440.0");

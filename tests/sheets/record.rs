@@ -98,7 +98,7 @@ fn layers_in_the_table_are_those_of_the_record() {
     let record = desk.record("out/sheet.json");
     let file = desk.read("out/layers.csv");
     let (stamp, table) = file.split_once('\n').expect("a stamp");
-    assert!(stamp.starts_with("# Epitaxy order EST-1310-07, revision B; "));
+    assert!(stamp.starts_with("# Epitaxy order EST-1310-07 revision B / "));
     let mut reader = csv::Reader::from_reader(table.as_bytes());
     let heads = reader.headers().expect("heads").clone();
     let column = |name: &str| {
@@ -252,6 +252,8 @@ fn what_can_not_be_computed_is_left_blank_with_its_reason() {
         assert!(record["targets"]["pl_nm"].is_null());
         assert!(record["targets"]["xray_period_nm"].is_null());
         assert!(record["targets"]["total_nm"].is_number());
+        let is_plain = record["targets"]["pl_missing"] == "to be agreed";
+        assert_eq!(is_plain, reader == "grower");
         for key in ["pl_missing", "xray_missing"] {
             let reason = record["targets"][key].as_str().expect("a reason");
             assert!(desk.read("out/sheet.html").contains(reason), "{reason}");
@@ -302,14 +304,64 @@ fn a_composition_that_nobody_gave_is_asked_for() {
     let record = desk.record("out/sheet.json");
     let asked = record["asked_for"].as_array().expect("a list");
     assert!(
-        asked.iter().any(|it| it == "Composition of house"),
+        asked.iter().any(|it| it
+            .as_str()
+            .is_some_and(|it| it.starts_with("Composition of material-"))),
         "{asked:?}"
     );
     let layers = record["layers"].as_array().expect("layers");
-    let own = layers.iter().find(|layer| layer["formula"] == "house");
-    assert!(own.expect("the layer")["composition"].is_null());
+    let own = layers.iter().find(|layer| layer["composition"].is_null());
+    let name = own.expect("the layer")["formula"].as_str().expect("a name");
+    assert!(name.starts_with("material-"), "{name}");
     let page = desk.read("out/sheet.html");
-    assert!(page.contains("<bdi>house</bdi>: composition <span class=\"mark asked\">"));
+    assert!(!page.contains("<bdi>house</bdi>"));
+    let structure = record["structure"].as_str().expect("a structure");
+    assert!(!structure.contains("house"), "{structure}");
+    let asks = format!("<bdi>{name}</bdi>: composition <span class=\"mark asked\">");
+    assert!(page.contains(&asks));
+}
+
+/// Whoever sends an order that misses its own target is told so, and the order is written.
+#[test]
+fn an_order_beside_its_target_is_remarked() {
+    let desk = Desk::new();
+    for (nm, expected) in [(1000.0, true), (1300.0, false)] {
+        let target = format!(
+            "[target]\nkind = \"pl\"\nwavelength_nm = {nm}\nmedium = \"vacuum\"\ntemperature_c = 25\n\
+             tolerance_nm = {}\n",
+            if expected { 5 } else { 900 }
+        );
+        let structure = desk.put("aimed.toml", &format!("{PLAIN}{target}"));
+        for reader in ["grower", "house"] {
+            let (_, remarks) = desk.sheet(&structure, reader, "out", &["--force"]);
+            assert_eq!(
+                remarks.contains("OUTSIDE THE TARGET"),
+                expected,
+                "{remarks}"
+            );
+        }
+    }
+}
+
+/// Layers matched to the substrate are neither tensile nor compressive on the page.
+#[test]
+fn a_strain_that_is_printed_as_zero_is_matched() {
+    let desk = Desk::new();
+    let structure = desk.put(
+        "plain.toml",
+        &PLAIN.replace("compressive_percent = 0.6", "matched = true"),
+    );
+    desk.sheet(&structure, "grower", "out", &["--quiet"]);
+    let page = desk.read("out/sheet.html");
+    assert!(page.contains(">0.00</data> matched"));
+    for sense in ["tensile", "compressive"] {
+        for zero in ["0.00", "−0.00"] {
+            assert!(
+                !page.contains(&format!(">{zero}</data> {sense}")),
+                "{zero} {sense}"
+            );
+        }
+    }
 }
 
 /// A thousand layers: every one of them a row, numbered without a gap.

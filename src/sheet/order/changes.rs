@@ -3,6 +3,7 @@
 mod alignment;
 
 use super::document::Document;
+use super::once::Once;
 use crate::sheet::number::plain;
 use crate::structure::order_fields;
 use alignment::aligned;
@@ -44,8 +45,9 @@ pub struct Change {
 
 /// The record in a text.
 pub(super) fn record(text: &str) -> Result<Value, Unreadable> {
-    let value: Value =
-        serde_json::from_str(text).map_err(|error| Unreadable::NoJson(error.to_string()))?;
+    let no_json = |error: serde_json::Error| Unreadable::NoJson(error.to_string());
+    let value: Value = serde_json::from_str(text).map_err(no_json)?;
+    serde_json::from_str::<Once>(text).map_err(no_json)?;
     if value.get("kind").and_then(Value::as_str) != Some("design sheet") {
         return Err(Unreadable::NoSheet);
     }

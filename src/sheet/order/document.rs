@@ -192,6 +192,11 @@ impl Document {
             }
             Audience::Grower => ordered.order.clone(),
         };
+        let mut targets = TargetsEntry::from(&ordered.targets);
+        if audience == Audience::Grower {
+            // Why a solver came to nothing is for the house to know.
+            targets.pl_missing = targets.pl_missing.map(|_| "to be agreed".to_owned());
+        }
         let whole = Whole {
             format: json::FORMAT,
             kind: "design sheet",
@@ -216,7 +221,7 @@ impl Document {
                 words: ordered.counts.words(),
             },
             layers: ordered.layers.iter().map(LayerEntry::from).collect(),
-            targets: TargetsEntry::from(&ordered.targets),
+            targets,
             cautions: cautions(&ordered.wafer),
             house: house.map(|house| HouseEntry::new(origins, house)),
             since: Value::Null,

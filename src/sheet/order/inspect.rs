@@ -43,11 +43,14 @@ pub struct Deviation {
 pub struct Inspection {
     /// Whether the structure is the one that the sheet was made from.
     pub structure_agrees: bool,
+    /// Whether program and parameters are those that the sheet was made with.
+    pub is_same_program: bool,
     /// How many values of the sheet were compared.
     pub compared: usize,
     /// What does not agree.
     pub deviations: Vec<Deviation>,
-    /// Why numbers may differ though nobody touched them: other parameters, another program.
+    /// Why numbers may differ though nobody touched them (other parameters, another program), and
+    /// what cannot be checked.
     pub reasons: Vec<String>,
 }
 
@@ -76,9 +79,9 @@ pub fn kept(text: &str) -> Result<Kept, Unreadable> {
         .find(|it| it.word() == audience)
         .ok_or(Unreadable::NoSheet)?;
     let files = value.get("files").and_then(Value::as_array);
-    let files = files.into_iter().flatten().filter_map(|file| {
-        let text = |key: &str| Some(file.get(key)?.as_str()?.to_owned());
-        Some((text("name")?, text("sha256")?))
+    let files = files.into_iter().flatten().map(|file| {
+        let text = |key: &str| file.get(key).and_then(Value::as_str).unwrap_or_default();
+        (text("name").to_owned(), text("sha256").to_owned())
     });
     Ok(Kept {
         audience,
@@ -89,6 +92,22 @@ pub fn kept(text: &str) -> Result<Kept, Unreadable> {
         files: files.collect(),
         value,
     })
+}
+
+impl Kept {
+    /// The record as it was kept: what its pages were made of.
+    #[must_use]
+    pub fn document(&self) -> Document {
+        Document {
+            value: self.value.clone(),
+        }
+    }
+
+    /// Whether the record names files at all: one that went to the terminal does not.
+    #[must_use]
+    pub fn names_files(&self) -> bool {
+        self.value.get("files").is_some()
+    }
 }
 
 /// Compares a kept sheet with one made anew from its structure.
@@ -102,6 +121,16 @@ pub fn inspect(kept: &Kept, anew: &Document) -> Inspection {
     let sum = sha256(kept.structure.as_bytes());
     let structure_agrees = stamped.and_then(Value::as_str) == Some(sum.as_str());
     let mut reasons = Vec::new();
+    let since = kept.value.get("since").unwrap_or(&Value::Null);
+    let told = kept.value.get("changes").unwrap_or(&Value::Null);
+    let has_changes = told.as_array().is_none_or(|changes| !changes.is_empty());
+    if since.is_null() && has_changes {
+        deviations.push(Deviation {
+            place: "changes".to_owned(),
+            kept: said(told),
+            computed: "no changes, for it names no earlier sheet".to_owned(),
+        });
+    }
     if anew.text_at("/stamp/parameters_sha256") != kept.parameters_sha256 {
         reasons.push(
             "the parameters are not those that the sheet was made with: give them with --materials"
@@ -115,8 +144,17 @@ pub fn inspect(kept: &Kept, anew: &Document) -> Inspection {
             anew.text_at("/stamp/program")
         ));
     }
+    let is_same_program = reasons.is_empty();
+    if !since.is_null() {
+        reasons.push(
+            "not checked: which earlier sheet it is (`since`), what was ordered there (`before`), and \
+             whether every change is listed; only that sheet can tell"
+                .to_owned(),
+        );
+    }
     Inspection {
         structure_agrees,
+        is_same_program,
         compared,
         deviations,
         reasons,

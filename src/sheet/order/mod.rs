@@ -10,16 +10,19 @@
 
 mod cautions;
 mod changes;
+mod companions;
 mod content;
 mod document;
 mod figures;
 mod html;
 mod inspect;
+mod once;
 mod pdf;
 mod summary;
 mod table;
 
 pub use changes::{Change, Since, Unreadable};
+pub use companions::Standing;
 pub use document::{Document, Origins};
 pub use figures::Figures;
 pub use inspect::{Deviation, Inspection, Kept, inspect, kept};

@@ -1,9 +1,10 @@
 //! What the terminal says of a sheet.
 
+use super::companions::Standing;
 use super::document::Document;
 use super::inspect::Inspection;
 use crate::sheet::number::{fixed, signed, temperature};
-use crate::sheet::page::Page;
+use crate::sheet::page::{Page, tidy};
 use crate::source::Colour;
 use serde_json::Value;
 
@@ -110,7 +111,7 @@ fn targets(document: &Document, page: &mut Page) {
 pub fn inspection(
     anew: &Document,
     found: &Inspection,
-    files: &[(String, bool)],
+    files: &[(String, Standing)],
     colour: Colour,
 ) -> String {
     const MOST: usize = 40;
@@ -136,15 +137,8 @@ pub fn inspection(
             )
         },
     );
-    for (name, agrees) in files {
-        page.pair(
-            name,
-            if *agrees {
-                "is the one that the sheet was written with"
-            } else {
-                "is not the one that the sheet was written with: it was edited"
-            },
-        );
+    for (name, standing) in files {
+        page.pair(&tidy(name), standing.words());
     }
     for reason in &found.reasons {
         page.pair("mind", reason);
@@ -170,13 +164,21 @@ pub fn inspection(
 
 /// The same as a JSON document.
 #[must_use]
-pub fn inspection_json(anew: &Document, found: &Inspection, files: &[(String, bool)]) -> String {
+pub fn inspection_json(
+    anew: &Document,
+    found: &Inspection,
+    files: &[(String, Standing)],
+) -> String {
     let deviations = found.deviations.iter().map(
         |it| serde_json::json!({ "place": it.place, "sheet": it.kept, "structure": it.computed }),
     );
-    let files = files
-        .iter()
-        .map(|(name, agrees)| serde_json::json!({ "name": name, "agrees": agrees }));
+    let files = files.iter().map(|(name, standing)| {
+        serde_json::json!({
+            "name": name,
+            "agrees": standing.agrees(),
+            "words": standing.words(),
+        })
+    });
     crate::sheet::json::text(&serde_json::json!({
         "format": crate::sheet::json::FORMAT,
         "sheet": anew.name(),

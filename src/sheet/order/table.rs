@@ -28,6 +28,12 @@ const HEADS: [&str; 21] = [
     "period",
 ];
 
+/// A line that is one cell in any spreadsheet: nothing in it separates or quotes, and behind its `#`
+/// nothing can begin as a formula does.
+fn of_one_cell(line: &str) -> String {
+    line.replace([',', ';', '"', '\'', '\t', '|'], "")
+}
+
 impl Document {
     /// The layers from the substrate up; a graded layer takes two rows, one for each end.
     ///
@@ -47,7 +53,7 @@ impl Document {
             }
         }
         let stamp = format!(
-            "{}; {}; gaps, strains and mismatches at {} K; structure sha256 {}; parameters sha256 {}",
+            "{} / {} / gaps and strains and mismatches at {} K / structure sha256 {} / parameters sha256 {}",
             self.name(),
             self.text_at("/stamp/program"),
             self.number_at("/targets/pl_temperature_k")
@@ -55,7 +61,7 @@ impl Document {
             self.text_at("/stamp/structure_sha256"),
             self.text_at("/stamp/parameters_sha256"),
         );
-        table.text_under(&stamp)
+        table.text_under(&of_one_cell(&stamp))
     }
 
     fn layer_cells(&self, layer: &str, end: &str, word: &str) -> Vec<SheetCell> {

@@ -1,6 +1,7 @@
 //! What both copies say.
 
 use super::{Block, Digits, Line, Row, Section, Span, Table, said, words};
+use crate::materials::Sense;
 use crate::sheet::order::document::Document;
 use crate::structure::{OrderField, order_fields};
 use serde_json::Value;
@@ -253,9 +254,17 @@ fn layer_row(document: &Document, at: &str, is_changed: bool) -> Row {
         of_ends(&|end| composition(document, end)),
         thickness,
         of_ends(&|end| {
+            let place = format!("{end}/strain_percent");
+            // A zero that is printed has no sense, whatever its last digits.
+            let is_zero = document.number_at(&place).is_none_or(|it| it.abs() < 5e-3);
+            let sense = if is_zero {
+                Sense::Matched.word()
+            } else {
+                document.text_at(&format!("{end}/strain"))
+            };
             vec![
-                document.shown(format!("{end}/strain_percent"), Digits::Fixed(2)),
-                words(format!(" {}", document.text_at(&format!("{end}/strain")))),
+                document.shown(&place, Digits::Fixed(2)),
+                words(format!(" {sense}")),
             ]
         }),
         of_ends(&|end| {
