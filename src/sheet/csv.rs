@@ -78,13 +78,12 @@ pub use spread::spread;
 pub use xray::xray;
 
 /// Words that no terminal is steered by and no spreadsheet takes for a formula: behind an
-/// apostrophe where they begin as formulas do.
+/// apostrophe where they begin as formulas do. A unit in percent is none.
 fn harmless(words: &str) -> String {
     let tidy = super::page::tidy(words);
-    if tidy
-        .trim_start()
-        .starts_with(['=', '+', '-', '@', '|', '%'])
-    {
+    let begin = tidy.trim_start();
+    let is_unit = begin == "%" || begin.starts_with("% ");
+    if !is_unit && begin.starts_with(['=', '+', '-', '@', '|', '%']) {
         format!("'{tidy}")
     } else {
         tidy
@@ -631,8 +630,9 @@ mod tests {
                 "{cell}"
             );
         }
-        assert_eq!(harmless("Si"), "Si");
-        assert_eq!(harmless("In0.53Ga0.47As"), "In0.53Ga0.47As");
+        for kept in ["Si", "In0.53Ga0.47As", "%", "% nm"] {
+            assert_eq!(harmless(kept), kept);
+        }
     }
 
     #[test]
