@@ -71,9 +71,17 @@ impl BlockChain {
 /// Ranges of two and more rising levels, each given with its residual, that are too near to each other
 /// to be pure. An impure one reaches over its neighbours: the largest residual among levels that stand
 /// near each other holds for all of them.
-pub(super) fn groups(levels: impl Iterator<Item = (f64, f64)>) -> Vec<Range<usize>> {
-    let (energies, residuals): (Vec<f64>, Vec<f64>) = levels.unzip();
+pub(super) fn groups(levels: impl Iterator<Item = (f64, f64)> + Clone) -> Vec<Range<usize>> {
     let mut groups = Vec::new();
+    let above = levels.clone().skip(1);
+    if levels
+        .clone()
+        .zip(above)
+        .all(|(low, high)| high.0 - low.0 >= NEAR)
+    {
+        return groups;
+    }
+    let (energies, residuals): (Vec<f64>, Vec<f64>) = levels.unzip();
     for near in clusters(&energies, NEAR) {
         let largest = residuals[near.clone()]
             .iter()
