@@ -22,6 +22,8 @@ pub const LARGEST_WAVE_NUMBER_PER_NM: f64 = 2.0;
 /// Valence states closer than this are all but equal, eV: far below any line width.
 const EQUAL_EV: f64 = 2e-5;
 
+/// States whose matrix elements, summed over the electron levels, differ by less belong to one family.
+const ONE_FAMILY: f64 = 0.2;
 /// Sums of matrix elements are corrected by no more than this share of them.
 const LARGEST_CORRECTION: f64 = 0.05;
 
@@ -167,6 +169,16 @@ fn partners(coarse: &Slice, fine: &Slice) -> Vec<usize> {
         if crossed < 0.5 * straight {
             for (fine, coarse) in likest.into_iter().enumerate() {
                 partners[start + fine] = coarse.unwrap_or(start + fine);
+            }
+            // Members of one family are as like as each other: they keep their order.
+            for low in start..end {
+                for high in low + 1..end {
+                    let (a, b) = (partners[low], partners[high]);
+                    let apart = unlike(b, low) + unlike(a, high) - unlike(a, low) - unlike(b, high);
+                    if a > b && apart < ONE_FAMILY {
+                        partners.swap(low, high);
+                    }
+                }
             }
         }
         start = end;
