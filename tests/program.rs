@@ -383,6 +383,115 @@ fn a_file_that_can_not_be_written_is_named() {
 
 #[cfg(unix)]
 #[test]
+fn the_path_of_a_file_does_not_steer_the_terminal() {
+    let folder = folder();
+    let path = put(&folder, "a\u{1b}[2J\u{202e}b.toml", "format = 1\nno = 1\n");
+    let (code, errors) = refusal(&["levels", &path]);
+    assert_eq!(code, 3);
+    assert!(
+        errors.contains("a\u{fffd}[2J\u{fffd}b.toml:2:1"),
+        "{errors}"
+    );
+    assert!(!errors.contains(['\u{1b}', '\u{202e}']), "{errors}");
+}
+
+#[test]
+fn words_in_a_table_are_no_formulas() {
+    let folder = folder();
+    let path = put(
+        &folder,
+        "=cmd().toml",
+        &fs::read_to_string(TENSILE).expect("the file"),
+    );
+    let table = shown(&folder.path().join("weigh.csv"));
+    stepwell(&[
+        "weigh",
+        "=cmd().toml",
+        "-",
+        "--quiet",
+        "--bands",
+        "single",
+        "--csv",
+        &table,
+    ])
+    .current_dir(folder.path())
+    .write_stdin(fs::read_to_string(&path).expect("the file"))
+    .assert()
+    .success();
+    let text = fs::read_to_string(&table).expect("written");
+    let heads = text.lines().nth(1).expect("heads");
+    assert!(heads.contains(",'=cmd()"), "{heads}");
+    let row = text.lines().find(|line| line.starts_with("nm_per_k,"));
+    let row = row.expect("a row of numbers");
+    assert!(!row.contains('\''), "{row}");
+}
+
+#[test]
+fn too_large_a_file_is_told_its_size() {
+    let folder = folder();
+    let path = put(&folder, "large.csv", &"#\n".repeat(3 << 20));
+    let (code, errors) = refusal(&["materials", "GaAs", "--materials", &path]);
+    assert_eq!(code, 3);
+    let words = errors.split_whitespace().collect::<Vec<_>>().join(" ");
+    assert!(
+        words.contains("has 6291456 bytes, and at most 4194304 are read"),
+        "{errors}"
+    );
+    assert!(
+        words.contains("→ check that") && !words.contains("structure file"),
+        "{errors}"
+    );
+}
+
+#[test]
+fn a_design_sheet_is_told_from_a_structure() {
+    let folder = folder();
+    let sheet = put(
+        &folder,
+        "sheet.json",
+        r#"{"kind": "design sheet", "format": 1}"#,
+    );
+    let (code, errors) = refusal(&["levels", &sheet]);
+    assert_eq!(code, 3);
+    assert!(errors.contains("is a design sheet"), "{errors}");
+    assert!(errors.contains("stepwell check"), "{errors}");
+    assert!(!errors.contains("-->"), "{errors}");
+}
+
+#[test]
+fn a_folder_in_place_of_a_folder_or_a_file_has_a_remedy() {
+    let folder = folder();
+    let file = put(&folder, "file", "mine");
+    let (code, errors) = refusal(&[
+        "levels",
+        TENSILE,
+        "--quiet",
+        "--csv",
+        &format!("{file}/in/"),
+    ]);
+    assert!([1, 2].contains(&code), "{errors}");
+    assert!(errors.contains("→ choose another place"), "{errors}");
+}
+
+#[test]
+fn a_target_is_judged_at_its_own_temperature() {
+    let folder = folder();
+    let content = fs::read_to_string(PUMP).expect("the file");
+    let head = content.split("[target]").next().expect("a part");
+    let target = "\n[target]\nkind = \"transition\"\nwavelength_nm = 970\n";
+    let path = put(&folder, "pump.toml", &format!("{head}{target}"));
+    let judged = |words: &[&str]| -> Value {
+        let words = [&["check", path.as_str(), "--json"], words].concat();
+        let findings: Value = serde_json::from_slice(&run(&words).stdout).expect("JSON");
+        let all = findings["findings"].as_array().expect("findings");
+        let found = all.iter().find(|it| it["code"] == "target");
+        found.expect("the target").clone()
+    };
+    assert_eq!(judged(&[]), judged(&["--at", "80C"]));
+}
+
+#[cfg(unix)]
+#[test]
 fn what_is_no_plain_file_is_written_to_and_stays() {
     result(&["levels", TENSILE, "--csv", "/dev/null", "--quiet"]);
     result(&[

@@ -6,10 +6,11 @@ use super::outlet::{Outlet, remark as write_remark};
 use super::shipped;
 use crate::evaluation;
 use crate::materials::{Offsets, Parameters};
+use crate::sheet::order::Since;
 use crate::sheet::{self, Stamp};
-use crate::source::{LARGEST_TEXT_BYTES, Place, nearest, text};
+use crate::source::{LARGEST_TEXT_BYTES, Place, Unreadable, nearest, text};
 use crate::structure::{self, Overrides, Reading};
-use std::fs::File;
+use std::fs::{self, File};
 use std::io::{self, ErrorKind, Read as _};
 use std::path::Path;
 
@@ -41,7 +42,7 @@ impl Text {
         };
         read.map_err(|error| unreadable(path, &name, &error))?;
         let content = text(&bytes)
-            .map_err(|error| Complaint::input(format!("{name}: {error}")))?
+            .map_err(|error| no_text(path, &name, &error))?
             .to_owned();
         Ok(Self {
             name,
@@ -50,6 +51,21 @@ impl Text {
             had_byte_order_mark: bytes.starts_with("\u{feff}".as_bytes()),
         })
     }
+}
+
+/// What is wrong with the bytes of a file. Of one that is too large only the beginning was read.
+fn no_text(path: &Path, name: &str, error: &Unreadable) -> Complaint {
+    let Unreadable::TooLarge { bytes: read } = error else {
+        return Complaint::input(format!("{name}: {error}"));
+    };
+    let size = match fs::metadata(path) {
+        Ok(file) if file.is_file() => format!("{} bytes", file.len()),
+        _ => format!("{read} bytes or more"),
+    };
+    Complaint::input(format!(
+        "`{name}` has {size}, and at most {LARGEST_TEXT_BYTES} are read"
+    ))
+    .with_remedy("check that it is the file you mean, or leave out what is not needed")
 }
 
 fn unreadable(path: &Path, name: &str, error: &io::Error) -> Complaint {
@@ -70,8 +86,10 @@ fn unreadable(path: &Path, name: &str, error: &io::Error) -> Complaint {
         }
         ErrorKind::PermissionDenied => {
             Complaint::input(format!("`{name}` can't be read: it is not allowed"))
+                .with_remedy("check the permissions of the file and of its folder")
         }
-        _ => Complaint::input(format!("`{name}` can't be read: {error}")),
+        _ => Complaint::input(format!("`{name}` can't be read: {error}"))
+            .with_remedy("copy it to another place and give that"),
     }
 }
 
@@ -121,6 +139,10 @@ impl Case {
         let source = Text::read(path)?;
         let reading =
             structure::read(&source.content, &parameters, overrides).map_err(|faults| {
+                if Since::read(&source.content).is_ok() {
+                    return Complaint::input(format!("`{}` is a design sheet", source.name))
+                        .with_remedy(format!("this is for it: stepwell check {}", source.name));
+                }
                 Complaint::faults(
                     &faults,
                     &source.name,
@@ -158,6 +180,25 @@ impl Case {
             },
         )?;
         Ok(Self { reading, ..self })
+    }
+
+    /// The same with the target of the file as it is meant without `overrides`: one that gives no
+    /// temperature is for that of [operation], wherever else the structure is looked at.
+    pub(super) fn with_own_target(mut self, overrides: &Overrides) -> Self {
+        let as_written = Overrides {
+            temperature_k: None,
+            ..overrides.clone()
+        };
+        if overrides.temperature_k.is_some()
+            && let Some(target) = &mut self.reading.stack.target
+            && target.temperature_k.is_none()
+            && let Ok(written) =
+                structure::read(&self.source.content, &self.parameters, &as_written)
+            && written.stack.operation.temperature_given
+        {
+            target.temperature_k = Some(written.stack.operation.temperature_k);
+        }
+        self
     }
 
     /// What results hang on.

@@ -104,7 +104,7 @@ pub(super) fn check(flags: &flags::Check, outlet: &Outlet) -> Result<Ending, Com
     }
     let overrides = overrides(&flags.conditions)?;
     let destinations = Destinations::new(&flags.output, None, None, &["findings"])?;
-    let case = Case::of(&flags.file, &overrides, outlet)?;
+    let case = Case::of(&flags.file, &overrides, outlet)?.with_own_target(&overrides);
     let stack = &case.reading.stack;
     let findings = findings_of(stack, &case.parameters, &case.reading.remarks);
     let profile = Profile::new(stack, &case.parameters).ok();

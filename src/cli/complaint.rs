@@ -117,6 +117,36 @@ impl From<Failure> for Complaint {
             Failure::Unsolvable(_) | Failure::NoIndex { .. } => Ending::Input,
             _ => Ending::Failed,
         };
-        Self::new(ending, failure.to_string())
+        let complaint = Self::new(ending, failure.to_string());
+        match failure {
+            Failure::Uncertified(_) => complaint.with_remedy(
+                "change a thickness or a composition by a little, try `--bands single` if the \
+                 bands are mixed, or report the file",
+            ),
+            _ => complaint,
+        }
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+    use crate::subbands::Uncertified;
+
+    #[test]
+    fn levels_that_were_not_certified_have_a_remedy() {
+        let failure = Failure::Uncertified(Uncertified {
+            band: "valence in-plane",
+            level: 1,
+            energy_ev: f64::NAN,
+        });
+        let complaint = Complaint::from(failure);
+        assert_eq!(complaint.ending, Ending::Failed);
+        let text = complaint.text(Colour::Never);
+        assert!(
+            text.contains("--bands single") && text.contains("report the file"),
+            "{text}"
+        );
+        assert!(!text.contains("NaN"), "{text}");
     }
 }

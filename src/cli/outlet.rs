@@ -67,7 +67,8 @@ pub(super) fn print(text: &str) -> Result<(), Complaint> {
         Err(error) if error.kind() != ErrorKind::BrokenPipe => Err(Complaint::new(
             Ending::Failed,
             format!("standard output can't be written: {error}"),
-        )),
+        )
+        .with_remedy(room_for_it(error.kind()))),
         _ => Ok(()),
     }
 }
@@ -219,23 +220,52 @@ fn in_the_way(path: &Path) -> Complaint {
 
 /// Why a file can't be written.
 pub(super) fn unwritable(path: &Path, error: &io::Error) -> Complaint {
-    let complaint = |message: String| Complaint::new(Ending::Failed, message);
     let shown = path.display();
-    match error.kind() {
-        ErrorKind::NotFound => complaint(format!(
-            "`{shown}` can't be written: there is no such folder"
-        ))
-        .with_remedy("make the folder first"),
-        ErrorKind::PermissionDenied => {
-            complaint(format!("`{shown}` can't be written: it is not allowed"))
+    let reason = match error.kind() {
+        ErrorKind::NotFound => "there is no such folder".to_owned(),
+        ErrorKind::PermissionDenied => "it is not allowed".to_owned(),
+        ErrorKind::IsADirectory => "it is a folder".to_owned(),
+        _ => error.to_string(),
+    };
+    Complaint::new(
+        Ending::Failed,
+        format!("`{shown}` can't be written: {reason}"),
+    )
+    .with_remedy(room_for_it(error.kind()))
+}
+
+/// What lets a file, or a folder, be made.
+pub(super) fn room_for_it(kind: ErrorKind) -> &'static str {
+    match kind {
+        ErrorKind::NotFound => "make the folder first",
+        ErrorKind::PermissionDenied | ErrorKind::ReadOnlyFilesystem => {
+            "choose another place, or check the permissions of the folder"
         }
-        _ => complaint(format!("`{shown}` can't be written: {error}")),
+        ErrorKind::StorageFull | ErrorKind::QuotaExceeded => {
+            "free some space there, or choose another place"
+        }
+        ErrorKind::IsADirectory => "rename or remove that folder, or choose another name",
+        _ => "choose another place",
     }
 }
 
 #[cfg(test)]
 mod tests {
     use super::*;
+
+    #[test]
+    fn every_reason_has_its_remedy() {
+        for (kind, remedy) in [
+            (ErrorKind::PermissionDenied, "check the permissions"),
+            (ErrorKind::StorageFull, "free some space"),
+            (ErrorKind::IsADirectory, "choose another name"),
+            (ErrorKind::NotFound, "make the folder first"),
+            (ErrorKind::Other, "choose another place"),
+        ] {
+            let text = unwritable(Path::new("a.csv"), &kind.into()).text(Colour::Never);
+            assert!(text.contains(remedy), "{kind}: {text}");
+        }
+    }
 
     #[test]
     fn an_append_that_stops_halfway_leaves_the_old_file() {

@@ -336,6 +336,7 @@ pub(super) fn make_folder(folder: &Path) -> Result<(), Complaint> {
             super::Ending::Failed,
             format!("the folder `{}` can't be made: {error}", folder.display()),
         )
+        .with_remedy(super::outlet::room_for_it(error.kind()))
     })
 }
 

@@ -77,6 +77,19 @@ pub use restatement::restatement;
 pub use spread::spread;
 pub use xray::xray;
 
+/// Words that no terminal is steered by and no spreadsheet takes for a formula: behind an
+/// apostrophe where they begin as formulas do. A unit in percent is none.
+fn harmless(words: &str) -> String {
+    let tidy = super::page::tidy(words);
+    let begin = tidy.trim_start();
+    let is_unit = begin == "%" || begin.starts_with("% ");
+    if !is_unit && begin.starts_with(['=', '+', '-', '@', '|', '%']) {
+        format!("'{tidy}")
+    } else {
+        tidy
+    }
+}
+
 impl CsvTable {
     fn new(name: &'static str, heads: &[&str]) -> Self {
         Self {
@@ -121,13 +134,13 @@ impl CsvTable {
             row.iter()
                 .map(|cell| match cell {
                     Cell::Number(value) => exact(*value),
-                    Cell::Text(text) => text.clone(),
+                    Cell::Text(text) => harmless(text),
                     Cell::Blank => String::new(),
                 })
                 .collect()
         };
-        let rows =
-            std::iter::once(self.heads.clone()).chain(self.rows.iter().map(|row| cells(row)));
+        let rows = std::iter::once(self.heads.iter().map(|head| harmless(head)).collect())
+            .chain(self.rows.iter().map(|row| cells(row)));
         for row in rows {
             writer
                 .write_record(row)
@@ -600,4 +613,35 @@ pub fn descriptions(descriptions: &[Description]) -> Vec<CsvTable> {
         }
     }
     vec![table]
+}
+
+#[cfg(test)]
+mod tests {
+    use super::{Cell, CsvTable, harmless};
+
+    #[test]
+    fn no_words_begin_as_formulas_do() {
+        for formula in ["=1+1", "+1", "-1", "@A1", " =cmd", "\t=1", "|x", "%y"] {
+            let cell = harmless(formula);
+            assert!(
+                !cell
+                    .trim_start()
+                    .starts_with(['=', '+', '-', '@', '|', '%']),
+                "{cell}"
+            );
+        }
+        for kept in ["Si", "In0.53Ga0.47As", "%", "% nm"] {
+            assert_eq!(harmless(kept), kept);
+        }
+    }
+
+    #[test]
+    fn heads_and_cells_are_harmless_and_numbers_as_they_are() {
+        let mut table = CsvTable::new("a", &["=cmd()", "b\u{1b}[2J", "c"]);
+        table.rows.push(row!["@A1", "d\u{202e}e", -1.5]);
+        assert_eq!(
+            table.text_under("stamp"),
+            "# stamp\n'=cmd(),b\u{fffd}[2J,c\n'@A1,d\u{fffd}e,-1.5\n"
+        );
+    }
 }

@@ -2,6 +2,7 @@
 
 use super::table::Table;
 use crate::source::Colour;
+pub(super) use crate::source::tidy;
 use unicode_width::{UnicodeWidthChar as _, UnicodeWidthStr as _};
 
 /// Columns that a page takes.
@@ -107,19 +108,6 @@ pub(super) fn bold(words: &str, colour: Colour) -> String {
         Colour::Always => format!("\u{1b}[1m{words}\u{1b}[0m"),
         Colour::Never => words.to_owned(),
     }
-}
-
-/// Text without what moves a cursor or turns the direction of writing.
-pub(super) fn tidy(text: &str) -> String {
-    text.chars()
-        .map(|letter| match letter {
-            '\u{202a}'..='\u{202e}' | '\u{2066}'..='\u{2069}' | '\u{200e}' | '\u{200f}' => {
-                '\u{fffd}'
-            }
-            letter if letter.is_control() => '\u{fffd}',
-            letter => letter,
-        })
-        .collect()
 }
 
 /// Text filled up with spaces to a width.

@@ -49,12 +49,12 @@ impl Diagnostic {
     /// The fault as a reader sees it: message, `name:line:column`, the line with a caret, advice.
     ///
     /// `text` is the one that the span counts in. A long line is cut around the caret; control
-    /// characters are shown, not sent to the terminal. Ends without a line feed.
+    /// characters, of the name too, are shown, not sent to the terminal. Ends without a line feed.
     #[must_use]
     pub fn show(&self, name: &str, text: &str, colour: Colour) -> String {
         let line = Line::of(text, &self.span);
         let snippet = Snippet::source(line.text)
-            .path(name)
+            .path(super::tidy(name))
             .line_start(self.place(text).line)
             .annotation(AnnotationKind::Primary.span(line.span));
         self.rendered(
@@ -66,7 +66,7 @@ impl Diagnostic {
     /// The same without the line.
     fn show_place(&self, name: &str, text: &str, colour: Colour) -> String {
         let place = self.place(text);
-        let origin = Origin::path(name)
+        let origin = Origin::path(super::tidy(name))
             .line(place.line)
             .char_column(place.column);
         self.rendered(
@@ -285,6 +285,21 @@ mod tests {
                 .show("a", "ab\u{1b}c", Colour::Never)
                 .contains('\u{1b}')
         );
+    }
+
+    #[test]
+    fn the_name_of_a_file_does_not_steer_the_terminal() {
+        let name = "a\u{1b}[2J\u{202e}b\u{2028}.toml";
+        let fault = Diagnostic::new(0..1, "wrong");
+        for shown in [
+            fault.show(name, "abc", Colour::Never),
+            fault.show_place(name, "abc", Colour::Never),
+        ] {
+            assert!(
+                shown.contains("a\u{fffd}[2J\u{fffd}b\u{fffd}.toml:1:1"),
+                "{shown}"
+            );
+        }
     }
 
     #[test]

@@ -17,7 +17,9 @@
 mod diagnostic;
 mod spelling;
 mod text;
+mod tidy;
 
 pub use diagnostic::{Colour, Diagnostic, Place, report};
 pub use spelling::{nearest, one_of};
 pub use text::{LARGEST_TEXT_BYTES, Unreadable, text};
+pub use tidy::tidy;

@@ -11,9 +11,7 @@ pub const LARGEST_TEXT_BYTES: usize = 4 << 20;
 #[derive(Clone, Debug, Error, PartialEq, Eq)]
 pub enum Unreadable {
     /// More bytes than any such file has.
-    #[error(
-        "the file has {bytes} bytes: it is not a structure file (at most {LARGEST_TEXT_BYTES} bytes are read)"
-    )]
+    #[error("the file has {bytes} bytes, and at most {LARGEST_TEXT_BYTES} are read")]
     TooLarge {
         /// Its size.
         bytes: usize,

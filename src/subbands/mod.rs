@@ -27,14 +27,22 @@ const MOST_HALVINGS: u32 = 5;
 
 /// Why no levels came out.
 #[derive(Clone, Debug, PartialEq, thiserror::Error)]
-#[error("{band} level {level} near {energy_ev:.6} eV could not be certified by node counts")]
+#[error("{band} level {level}{} could not be certified by node counts", near(*.energy_ev))]
 pub struct Uncertified {
     /// Which band.
     pub band: &'static str,
     /// Number of the level from the band edge.
     pub level: usize,
-    /// Where it was looked for, eV.
+    /// Where it was looked for, eV; not a number where the search lost its way.
     pub energy_ev: f64,
+}
+
+fn near(energy_ev: f64) -> String {
+    if energy_ev.is_finite() {
+        format!(" near {energy_ev:.6} eV")
+    } else {
+        String::new()
+    }
 }
 
 /// The inner nodes of the finest grid.
@@ -69,5 +77,27 @@ impl Nodes {
             positions_nm,
             weights_nm,
         }
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::Uncertified;
+
+    #[test]
+    fn an_energy_is_said_where_there_is_one() {
+        let said = |energy_ev| {
+            let band = "valence in-plane";
+            let level = 1;
+            Uncertified {
+                band,
+                level,
+                energy_ev,
+            }
+            .to_string()
+        };
+        assert!(said(-0.25).contains("level 1 near -0.250000 eV could"));
+        assert!(said(f64::NAN).contains("level 1 could"));
+        assert!(said(f64::INFINITY).contains("level 1 could"));
     }
 }

@@ -12,22 +12,9 @@ impl SheetCell {
         Self(value.map_or(Cell::Blank, Cell::Number))
     }
 
-    /// Words, which no spreadsheet takes for a formula.
+    /// Words.
     pub(in crate::sheet) fn said(text: &str) -> Self {
-        Self(Cell::Text(harmless(text)))
-    }
-}
-
-/// Words as they are, behind an apostrophe where they begin as formulas do.
-fn harmless(text: &str) -> String {
-    let tidy = crate::sheet::page::tidy(text);
-    if tidy
-        .trim_start()
-        .starts_with(['=', '+', '-', '@', '|', '%'])
-    {
-        format!("'{tidy}")
-    } else {
-        tidy
+        Self(Cell::Text(text.to_owned()))
     }
 }
 
@@ -40,25 +27,5 @@ impl CsvTable {
     /// One row more.
     pub(in crate::sheet) fn push(&mut self, row: Vec<SheetCell>) {
         self.rows.push(row.into_iter().map(|cell| cell.0).collect());
-    }
-}
-
-#[cfg(test)]
-mod tests {
-    use super::harmless;
-
-    #[test]
-    fn no_words_begin_as_formulas_do() {
-        for formula in ["=1+1", "+1", "-1", "@A1", " =cmd", "\t=1", "|x", "%y"] {
-            let cell = harmless(formula);
-            assert!(
-                !cell
-                    .trim_start()
-                    .starts_with(['=', '+', '-', '@', '|', '%']),
-                "{cell}"
-            );
-        }
-        assert_eq!(harmless("Si"), "Si");
-        assert_eq!(harmless("In0.53Ga0.47As"), "In0.53Ga0.47As");
     }
 }
