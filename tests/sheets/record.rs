@@ -395,3 +395,17 @@ fn the_same_sheet_is_the_same_bytes() {
         assert!(one == two, "{name}");
     }
 }
+
+/// The record of a shipped order, read back, makes the very files that it was written with.
+#[test]
+fn shipped_orders_check_as_they_were_written() {
+    let structures = std::path::Path::new(env!("CARGO_MANIFEST_DIR")).join("structures");
+    for name in ["estuary-980.toml", "estuary-1310.toml"] {
+        let desk = Desk::new();
+        let structure = structures.join(name).display().to_string();
+        desk.sheet(&structure, "grower", "out", &[]);
+        let record = desk.shown("out/sheet.json");
+        let output = stepwell(&["check", &record, "-q"]);
+        assert_eq!(output.status.code(), Some(0), "{name}: {output:?}");
+    }
+}
