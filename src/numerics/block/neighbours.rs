@@ -71,18 +71,25 @@ impl BlockChain {
 /// Ranges of two and more rising levels, each given with its residual, that are too near to each other
 /// to be pure. An impure one reaches over its neighbours: the largest residual among levels that stand
 /// near each other holds for all of them.
-pub(super) fn groups(levels: impl Iterator<Item = (f64, f64)> + Clone) -> Vec<Range<usize>> {
+///
+/// # Arguments
+///
+/// * `held` – how many of the lowest levels must be pure; groups of those above do not matter
+pub(super) fn groups(
+    levels: impl Iterator<Item = (f64, f64)> + Clone,
+    held: usize,
+) -> Vec<Range<usize>> {
     let mut groups = Vec::new();
     let above = levels.clone().skip(1);
-    if levels
-        .clone()
-        .zip(above)
-        .all(|(low, high)| high.0 - low.0 >= NEAR)
-    {
+    let mut pairs = levels.clone().zip(above).take(held);
+    if pairs.all(|(low, high)| high.0 - low.0 >= NEAR) {
         return groups;
     }
     let (energies, residuals): (Vec<f64>, Vec<f64>) = levels.unzip();
     for near in clusters(&energies, NEAR) {
+        if near.start >= held {
+            break;
+        }
         let largest = residuals[near.clone()]
             .iter()
             .copied()
@@ -91,7 +98,7 @@ pub(super) fn groups(levels: impl Iterator<Item = (f64, f64)> + Clone) -> Vec<Ra
         let places = impure
             .into_iter()
             .map(|it| near.start + it.start..near.start + it.end);
-        groups.extend(places.filter(|group| group.len() > 1));
+        groups.extend(places.filter(|group| group.len() > 1 && group.start < held));
     }
     groups
 }

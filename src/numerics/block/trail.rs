@@ -216,7 +216,8 @@ impl Trail {
             self.sweep(chain, draft);
             counted = counted.or(watched.map(|(lane, shift)| (shift, draft.below[lane])));
             draft.sort();
-            self.separate(chain, draft);
+            let held = apart(&draft.order, &draft.energies, required);
+            self.separate(chain, draft, held);
             draft.sort();
             let held = apart(&draft.order, &draft.energies, required);
             draft.pending.clear();
@@ -331,8 +332,9 @@ impl Trail {
         }
     }
 
-    /// Separates near neighbours among the vectors in the workspace.
-    fn separate(&mut self, chain: &BlockChain, draft: &mut Draft) {
+    /// Separates those of the lowest states to be held, and near neighbours of theirs, whose vectors in
+    /// the workspace are not pure.
+    fn separate(&mut self, chain: &BlockChain, draft: &mut Draft, held: usize) {
         let Draft {
             energies,
             residuals,
@@ -340,7 +342,7 @@ impl Trail {
             ..
         } = draft;
         let rising = order.iter().map(|&lane| (energies[lane], residuals[lane]));
-        for group in groups(rising.take_while(|level| level.0.is_finite())) {
+        for group in groups(rising.take_while(|level| level.0.is_finite()), held) {
             let lanes = &order[group];
             let vector = |&lane: &usize| unload(&self.chunks[lane / LANES].next[0], lane % LANES);
             let (ladder, rest) = chain.separate(lanes.iter().map(vector).collect());
