@@ -3,7 +3,7 @@
 use super::file::map;
 use super::keys::{Key, Kind, Table, number};
 use super::number::exact;
-use super::reader::{Field, Findings, Given, Values};
+use super::reader::{Field, Findings, Values, value};
 use crate::materials::Element;
 use crate::source::Diagnostic;
 use std::fmt::Write as _;
@@ -165,20 +165,16 @@ fn fluxes(mut values: Values) -> Fluxes {
 
 /// The errors that the table states; `None` without a table or after a complaint.
 pub(super) fn growth(field: &Field<GrowthTable>, findings: &mut Findings) -> Option<Growth> {
-    fn value<T: Copy + Default>(field: &Field<T>) -> T {
-        let given = field.as_ref().and_then(|given: &Given<T>| given.value);
-        given.unwrap_or_default()
-    }
     let given = field.as_ref()?;
     let table = given.value.as_ref()?;
     let growth = Growth {
-        rate_percent: value(&table.rate_percent),
-        flux_percent: value(&table.flux_percent),
-        group_v_fraction: value(&table.group_v_fraction),
-        temperature_k: value(&table.temperature_k),
-        flux_percent_per_k: value(&table.flux_percent_per_k),
-        group_v_fraction_per_k: value(&table.group_v_fraction_per_k),
-        model_nm: table.model_nm.as_ref().and_then(|given| given.value),
+        rate_percent: value(&table.rate_percent).unwrap_or_default(),
+        flux_percent: value(&table.flux_percent).unwrap_or_default(),
+        group_v_fraction: value(&table.group_v_fraction).unwrap_or_default(),
+        temperature_k: value(&table.temperature_k).unwrap_or_default(),
+        flux_percent_per_k: value(&table.flux_percent_per_k).unwrap_or_default(),
+        group_v_fraction_per_k: value(&table.group_v_fraction_per_k).unwrap_or_default(),
+        model_nm: value(&table.model_nm),
     };
     let acts =
         growth.group_v_fraction_per_k != 0.0 || growth.flux_percent_per_k != Fluxes::default();

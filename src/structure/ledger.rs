@@ -2,10 +2,9 @@
 //!
 //! A ledger only grows: an entry is a piece of text that goes behind what is there.
 
-use super::keys::{Key, Kind, Table, number};
+use super::keys::{FORMAT, Key, Kind, Table, number};
 use super::number::exact;
-use super::reader::{self, Findings, Values};
-use super::syntax;
+use super::reader::{Findings, Values};
 use crate::source::Diagnostic;
 use crate::units::photon_ev;
 use std::fmt::Write as _;
@@ -74,12 +73,7 @@ static FILE: Table = Table {
     path: "",
     doc: "House offsets: measured photoluminescence against the model.",
     keys: &[
-        Key {
-            name: "format",
-            kind: Kind::Count(1, 1),
-            default: "",
-            doc: "version of the file format, always 1",
-        },
+        FORMAT,
         Key {
             name: "offsets",
             kind: Kind::Rows(&OFFSETS),
@@ -146,12 +140,7 @@ impl Ledger {
     ///
     /// Every fault of the file at its place.
     pub fn read(text: &str) -> Result<Self, Vec<Diagnostic>> {
-        let (table, broken) = syntax::table(text);
-        let mut findings = Findings::in_file_of(&FILE);
-        let mut values = reader::read(&table, &mut findings);
-        if !broken.is_empty() {
-            return Err(super::with_broken_syntax(text, broken, findings.faults));
-        }
+        let (mut values, mut findings) = super::values_of(text, &FILE)?;
         if values.count("format").is_none() {
             findings.faults.push(
                 Diagnostic::new(0..0, "the ledger does not say its `format`")

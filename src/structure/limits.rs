@@ -1,7 +1,7 @@
 //! What the house accepts.
 
 use super::file::LimitsTable;
-use super::reader::{Field, Findings, brief};
+use super::reader::{Field, Findings, brief, value};
 use crate::materials::Element;
 use crate::source::{Diagnostic, nearest, one_of};
 
@@ -35,18 +35,17 @@ pub struct Limits {
 impl Limits {
     /// The limits of a table; elements that are none are complained about.
     pub(super) fn of(table: &LimitsTable, findings: &mut Findings) -> Self {
-        let number = |field: &Field<f64>| field.as_ref().and_then(|given| given.value);
         Self {
-            strain_percent_max: number(&table.strain_percent_max),
-            strain_thickness_percent_nm_max: number(&table.strain_thickness_percent_nm_max),
-            net_strain_percent_max: number(&table.net_strain_percent_max),
-            critical_share_max: number(&table.critical_share_max),
-            mismatch_ppm_max: number(&table.mismatch_ppm_max),
-            layer_nm_min: number(&table.layer_nm_min),
-            well_nm_min: number(&table.well_nm_min),
-            barrier_kt_min: number(&table.barrier_kt_min),
-            coupling_mev_max: number(&table.coupling_mev_max),
-            acceptor_setback_nm_min: number(&table.acceptor_setback_nm_min),
+            strain_percent_max: value(&table.strain_percent_max),
+            strain_thickness_percent_nm_max: value(&table.strain_thickness_percent_nm_max),
+            net_strain_percent_max: value(&table.net_strain_percent_max),
+            critical_share_max: value(&table.critical_share_max),
+            mismatch_ppm_max: value(&table.mismatch_ppm_max),
+            layer_nm_min: value(&table.layer_nm_min),
+            well_nm_min: value(&table.well_nm_min),
+            barrier_kt_min: value(&table.barrier_kt_min),
+            coupling_mev_max: value(&table.coupling_mev_max),
+            acceptor_setback_nm_min: value(&table.acceptor_setback_nm_min),
             without_elements: elements(&table.without_elements, findings),
         }
     }

@@ -129,12 +129,7 @@ pub fn read(
     parameters: &Parameters,
     overrides: &Overrides,
 ) -> Result<Reading, Vec<Diagnostic>> {
-    let (table, broken) = syntax::table(text);
-    let mut findings = reader::Findings::in_file_of(&keys::FILE);
-    let values = reader::read(&table, &mut findings);
-    if !broken.is_empty() {
-        return Err(with_broken_syntax(text, broken, findings.faults));
-    }
+    let (values, mut findings) = values_of(text, &keys::FILE)?;
     let file = file::StructureFile::from(values);
     let stack = validate::stack(&file, text, parameters, overrides, &mut findings);
     match stack {
@@ -144,6 +139,22 @@ pub fn read(
             Ok(Reading { stack, remarks })
         }
         _ => Err(in_order(findings.faults)),
+    }
+}
+
+/// The values of a file whose keys are those of `table`, each checked by itself, and what was found
+/// on the way; where the TOML itself is broken, its faults.
+fn values_of(
+    text: &str,
+    table: &'static keys::Table,
+) -> Result<(reader::Values, reader::Findings), Vec<Diagnostic>> {
+    let (found, broken) = syntax::table(text);
+    let mut findings = reader::Findings::in_file_of(table);
+    let values = reader::read(&found, &mut findings);
+    if broken.is_empty() {
+        Ok((values, findings))
+    } else {
+        Err(with_broken_syntax(text, broken, findings.faults))
     }
 }
 

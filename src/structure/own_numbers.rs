@@ -3,7 +3,7 @@
 use super::Substance;
 use super::file::NumbersTable;
 use super::keys::NUMBERS;
-use super::reader::{Field, Findings, Given};
+use super::reader::{Findings, Given, value};
 use crate::materials::Crystal;
 use crate::source::Diagnostic;
 
@@ -46,7 +46,6 @@ pub(super) fn own_numbers(
         );
     }
     physical(table, findings);
-    let number = |field: &Field<f64>| field.as_ref().and_then(|given| given.value);
     let luttinger = table.luttinger.as_ref()?.value.as_ref()?;
     let index = match &table.index {
         Some(given) => Some(given.value?),
@@ -54,20 +53,20 @@ pub(super) fn own_numbers(
     };
     Some(Substance::Own {
         crystal: Crystal {
-            lattice_nm: number(&table.lattice_nm)?,
-            gap_ev: number(&table.gap_ev)?,
+            lattice_nm: value(&table.lattice_nm)?,
+            gap_ev: value(&table.gap_ev)?,
             gap_x_ev: f64::INFINITY,
             gap_l_ev: f64::INFINITY,
-            valence_edge_ev: number(&table.valence_edge_ev)?,
-            split_off_ev: number(&table.split_off_ev)?,
-            electron_mass: number(&table.electron_mass)?,
+            valence_edge_ev: value(&table.valence_edge_ev)?,
+            split_off_ev: value(&table.split_off_ev)?,
+            electron_mass: value(&table.electron_mass)?,
             luttinger: [luttinger[0].1, luttinger[1].1, luttinger[2].1],
-            kane_energy_ev: number(&table.kane_energy_ev)?,
-            ac_ev: number(&table.ac_ev)?,
-            av_ev: number(&table.av_ev)?,
-            b_ev: number(&table.b_ev)?,
-            c11_gpa: number(&table.c11_gpa)?,
-            c12_gpa: number(&table.c12_gpa)?,
+            kane_energy_ev: value(&table.kane_energy_ev)?,
+            ac_ev: value(&table.ac_ev)?,
+            av_ev: value(&table.av_ev)?,
+            b_ev: value(&table.b_ev)?,
+            c11_gpa: value(&table.c11_gpa)?,
+            c12_gpa: value(&table.c12_gpa)?,
         },
         index,
     })
@@ -89,7 +88,6 @@ fn physical(table: &NumbersTable, findings: &mut Findings) {
             );
         }
     }
-    let value = |field: &Field<f64>| field.as_ref().and_then(|given| given.value);
     if let (Some(c11), Some(given), Some(c12)) =
         (value(&table.c11_gpa), &table.c12_gpa, value(&table.c12_gpa))
         && c12 >= c11

@@ -1,14 +1,21 @@
 //! The reader: walks the parsed TOML along the table of keys and checks every value by itself.
 
-use std::borrow::Cow;
+mod given;
+mod wrong;
+
+pub(super) use given::{Field, Given, Values, value};
+pub(super) use wrong::brief;
+
 use std::collections::BTreeMap;
 use std::ops::Range;
 
+use given::Value;
 use toml::Spanned;
-use toml::de::{DeTable, DeValue};
+use toml::de::{DeArray, DeTable, DeValue};
+use wrong::{said, unknown, wrong_item, wrong_kind};
 
 use super::Remark;
-use super::keys::{Key, Kind, MISNOMERS, Magnitude, Table};
+use super::keys::{Key, Kind, Magnitude, Table};
 use crate::source::{Diagnostic, nearest, one_of};
 
 /// Longest text value, characters.
@@ -39,119 +46,6 @@ impl Findings {
     }
 }
 
-/// A value in its place; without one where it was refused.
-#[derive(Clone, Debug)]
-pub(super) struct Given<T> {
-    /// Bytes of the key.
-    pub(super) key: Range<usize>,
-    /// Bytes of the value.
-    pub(super) span: Range<usize>,
-    /// The value; `None` after a complaint.
-    pub(super) value: Option<T>,
-}
-
-/// The value of a key, if the key is there.
-pub(super) type Field<T> = Option<Given<T>>;
-
-/// A table of the file, its keys checked one by one.
-#[derive(Clone, Debug)]
-pub(super) struct Values {
-    /// Bytes of its head, or of all of it where it is written inline.
-    pub(super) span: Range<usize>,
-    entries: BTreeMap<&'static str, Given<Value>>,
-}
-
-#[derive(Clone, Debug)]
-enum Value {
-    Text(String),
-    Flag(bool),
-    Count(u64),
-    Number(f64),
-    Texts(Vec<(Range<usize>, String)>),
-    Numbers(Vec<(Range<usize>, f64)>),
-    Table(Values),
-    Named(Vec<(String, Given<Values>)>),
-    Rows(Vec<Values>),
-}
-
-impl Values {
-    fn take<T>(&mut self, name: &str, convert: impl Fn(Value) -> Option<T>) -> Field<T> {
-        self.entries.remove(name).map(|given| Given {
-            key: given.key,
-            span: given.span,
-            value: given.value.and_then(convert),
-        })
-    }
-
-    /// Names of the keys that are there, refused values among them.
-    pub(super) fn names(&self) -> impl Iterator<Item = &'static str> {
-        self.entries.keys().copied()
-    }
-
-    pub(super) fn text(&mut self, name: &str) -> Field<String> {
-        self.take(name, |value| match value {
-            Value::Text(text) => Some(text),
-            _ => None,
-        })
-    }
-
-    pub(super) fn flag(&mut self, name: &str) -> Field<bool> {
-        self.take(name, |value| match value {
-            Value::Flag(flag) => Some(flag),
-            _ => None,
-        })
-    }
-
-    pub(super) fn count(&mut self, name: &str) -> Field<u64> {
-        self.take(name, |value| match value {
-            Value::Count(count) => Some(count),
-            _ => None,
-        })
-    }
-
-    pub(super) fn number(&mut self, name: &str) -> Field<f64> {
-        self.take(name, |value| match value {
-            Value::Number(number) => Some(number),
-            _ => None,
-        })
-    }
-
-    pub(super) fn texts(&mut self, name: &str) -> Field<Vec<(Range<usize>, String)>> {
-        self.take(name, |value| match value {
-            Value::Texts(texts) => Some(texts),
-            _ => None,
-        })
-    }
-
-    pub(super) fn numbers(&mut self, name: &str) -> Field<Vec<(Range<usize>, f64)>> {
-        self.take(name, |value| match value {
-            Value::Numbers(numbers) => Some(numbers),
-            _ => None,
-        })
-    }
-
-    pub(super) fn table(&mut self, name: &str) -> Field<Values> {
-        self.take(name, |value| match value {
-            Value::Table(values) => Some(values),
-            _ => None,
-        })
-    }
-
-    pub(super) fn named(&mut self, name: &str) -> Field<Vec<(String, Given<Values>)>> {
-        self.take(name, |value| match value {
-            Value::Named(tables) => Some(tables),
-            _ => None,
-        })
-    }
-
-    pub(super) fn rows(&mut self, name: &str) -> Field<Vec<Values>> {
-        self.take(name, |value| match value {
-            Value::Rows(rows) => Some(rows),
-            _ => None,
-        })
-    }
-}
-
 /// The whole file.
 pub(super) fn read(table: &DeTable<'_>, findings: &mut Findings) -> Values {
     values(findings.root, 0..0, table, findings)
@@ -175,7 +69,11 @@ fn values(
         let (key, checked) = match table.key(name.get_ref()) {
             Some(key) => (Some(key), checked(key, value, findings)),
             None if too_many => continue,
-            None => (unknown(table, name, findings), None),
+            None => {
+                let (fault, meant) = unknown(findings.root, table, name);
+                findings.faults.push(fault);
+                (meant, None)
+            }
         };
         let given = Given {
             key: name.span(),
@@ -194,70 +92,6 @@ fn values(
         }
     }
     Values { span, entries }
-}
-
-/// Complains about a key that is not in the table, and returns the one that was probably meant.
-fn unknown(
-    table: &'static Table,
-    name: &Spanned<Cow<'_, str>>,
-    findings: &mut Findings,
-) -> Option<&'static Key> {
-    let word = name.get_ref();
-    let misnomer = MISNOMERS
-        .iter()
-        .filter_map(|misnomer| Some((misnomer, table.key(misnomer.meant)?)))
-        .find(|(misnomer, _)| misnomer.word == word);
-    let near = || nearest(word, table.names()).and_then(|name| table.key(name));
-    let (help, meant) = if let Some((misnomer, key)) = misnomer {
-        (misnomer.help.to_owned(), Some(key))
-    } else if let Some(key) = near() {
-        (format!("did you mean `{}`?", key.name), Some(key))
-    } else if let Some(path) = home(findings.root, word, 0) {
-        (format!("`{word}` belongs in {path}"), None)
-    } else {
-        (format!("known here: {}", one_of(table.names())), None)
-    };
-    let message = format!("unknown key `{}` {}", brief(word), place_of(table));
-    findings
-        .faults
-        .push(Diagnostic::new(name.span(), message).with_help(help));
-    meant
-}
-
-fn place_of(table: &Table) -> String {
-    match table.path {
-        "" => "of the file".to_owned(),
-        "layers" => "of [[layers]]".to_owned(),
-        path => format!("of [{path}]"),
-    }
-}
-
-/// Where a key of this name would be known. Tables nest three deep; a row holds rows.
-fn home(table: &'static Table, word: &str, depth: usize) -> Option<String> {
-    let here = || match table.path {
-        "" => "the file, above the first table".to_owned(),
-        "layers" => "[[layers]]".to_owned(),
-        path => format!("[{path}]"),
-    };
-    if table.key(word).is_some() {
-        return Some(here());
-    }
-    table.keys.iter().find_map(|key| match &key.kind {
-        Kind::Table(inner) | Kind::Named(inner) | Kind::Rows(inner) if depth < 3 => {
-            home(inner, word, depth + 1)
-        }
-        _ => None,
-    })
-}
-
-/// A word of the file, short enough for a message.
-pub(super) fn brief(word: &str) -> String {
-    const LONGEST: usize = 40;
-    if word.chars().count() <= LONGEST {
-        return word.to_owned();
-    }
-    let start: String = word.chars().take(LONGEST).collect();
-    format!("{start}...")
 }
 
 fn checked(
@@ -281,12 +115,10 @@ fn checked(
         (Kind::Number(magnitude), number @ (DeValue::Integer(_) | DeValue::Float(_))) => {
             possible(key.name, *magnitude, as_number(number)?, span, findings).map(Value::Number)
         }
-        (Kind::Texts(most), DeValue::Array(items)) => {
-            texts(key, *most, items.iter(), span, findings)
-        }
+        (Kind::Texts(most), DeValue::Array(items)) => texts(key, *most, items, span, findings),
         (Kind::Numbers(magnitude, fewest, most), DeValue::Array(items)) => {
             let wanted = (*fewest, *most);
-            numbers(key, *magnitude, wanted, items.iter(), span, findings)
+            numbers(key, *magnitude, wanted, items, span, findings)
         }
         (Kind::Table(table), DeValue::Table(found)) => {
             Some(Value::Table(values(table, span, found, findings)))
@@ -471,14 +303,70 @@ fn possible(
     Some(value)
 }
 
-fn numbers<'a, 'i: 'a>(
+fn numbers(
     key: &'static Key,
     magnitude: Magnitude,
-    (fewest, most): (usize, usize),
-    items: impl ExactSizeIterator<Item = &'a Spanned<DeValue<'i>>>,
+    wanted: (usize, usize),
+    items: &DeArray<'_>,
     span: Range<usize>,
     findings: &mut Findings,
 ) -> Option<Value> {
+    list(
+        key,
+        "numbers",
+        wanted,
+        items,
+        span,
+        findings,
+        |item, findings| {
+            let Some(number) = as_number(item.get_ref()) else {
+                let fault = wrong_item(key, item.get_ref(), item.span());
+                findings.faults.push(fault);
+                return None;
+            };
+            possible(key.name, magnitude, number, item.span(), findings)
+        },
+    )
+    .map(Value::Numbers)
+}
+
+fn texts(
+    key: &'static Key,
+    most: usize,
+    items: &DeArray<'_>,
+    span: Range<usize>,
+    findings: &mut Findings,
+) -> Option<Value> {
+    list(
+        key,
+        "texts",
+        (1, most),
+        items,
+        span,
+        findings,
+        |item, findings| {
+            let DeValue::String(text) = item.get_ref() else {
+                let fault = wrong_item(key, item.get_ref(), item.span());
+                findings.faults.push(fault);
+                return None;
+            };
+            line_of_text(key, text, LONGEST_PROSE, item.span(), findings)
+        },
+    )
+    .map(Value::Texts)
+}
+
+/// The members of a list, each in its place; `None` where they are too few or too many, or one of
+/// them is refused.
+fn list<T>(
+    key: &'static Key,
+    members: &str,
+    (fewest, most): (usize, usize),
+    items: &DeArray<'_>,
+    span: Range<usize>,
+    findings: &mut Findings,
+    convert: impl Fn(&Spanned<DeValue<'_>>, &mut Findings) -> Option<T>,
+) -> Option<Vec<(Range<usize>, T)>> {
     if !(fewest..=most).contains(&items.len()) {
         let wanted = if fewest == most {
             format!("{fewest}")
@@ -486,7 +374,7 @@ fn numbers<'a, 'i: 'a>(
             format!("{fewest} to {most}")
         };
         let message = format!(
-            "`{}` has {} numbers: {wanted} are wanted",
+            "`{}` has {} {members}: {wanted} are wanted",
             key.name,
             items.len()
         );
@@ -495,140 +383,10 @@ fn numbers<'a, 'i: 'a>(
             .push(Diagnostic::new(span, message).with_help(key.doc));
         return None;
     }
-    let mut numbers = Vec::with_capacity(items.len());
-    let mut complete = true;
-    for item in items {
-        let number = if let Some(number) = as_number(item.get_ref()) {
-            possible(key.name, magnitude, number, item.span(), findings)
-        } else {
-            findings
-                .faults
-                .push(wrong_item(key, item.get_ref(), item.span()));
-            None
-        };
-        match number {
-            Some(number) => numbers.push((item.span(), number)),
-            None => complete = false,
-        }
-    }
-    complete.then_some(Value::Numbers(numbers))
-}
-
-fn texts<'a, 'i: 'a>(
-    key: &'static Key,
-    most: usize,
-    items: impl ExactSizeIterator<Item = &'a Spanned<DeValue<'i>>>,
-    span: Range<usize>,
-    findings: &mut Findings,
-) -> Option<Value> {
-    if !(1..=most).contains(&items.len()) {
-        let message = format!(
-            "`{}` has {} texts: 1 to {most} are wanted",
-            key.name,
-            items.len()
-        );
-        findings
-            .faults
-            .push(Diagnostic::new(span, message).with_help(key.doc));
-        return None;
-    }
-    let mut texts = Vec::with_capacity(items.len());
-    let mut complete = true;
-    for item in items {
-        if let DeValue::String(text) = item.get_ref() {
-            match line_of_text(key, text, LONGEST_PROSE, item.span(), findings) {
-                Some(words) => texts.push((item.span(), words)),
-                None => complete = false,
-            }
-        } else {
-            findings
-                .faults
-                .push(wrong_item(key, item.get_ref(), item.span()));
-            complete = false;
-        }
-    }
-    complete.then_some(Value::Texts(texts))
-}
-
-fn wrong_kind(key: &'static Key, found: &DeValue<'_>, span: Range<usize>) -> Diagnostic {
-    let (wanted, help) = match &key.kind {
-        Kind::Text | Kind::Prose | Kind::Word(_) => {
-            ("a text", format!("put it in quotes: {}", key.doc))
-        }
-        Kind::Flag => (
-            "true or false",
-            "write `true` or `false`, without quotes".to_owned(),
-        ),
-        Kind::Count(..) => ("a whole number", key.doc.to_owned()),
-        Kind::Number(magnitude) => {
-            let unit = match magnitude.unit {
-                "" => String::new(),
-                unit => format!(" of {unit}"),
-            };
-            (
-                "a number",
-                format!("write a number{unit}, without quotes and without the unit"),
-            )
-        }
-        Kind::Texts(_) => (
-            "a list of texts",
-            format!("write `{} = [\"...\"]`: {}", key.name, key.doc),
-        ),
-        Kind::Numbers(..) => (
-            "a list of numbers",
-            format!("write `{} = [...]`: {}", key.name, key.doc),
-        ),
-        Kind::Table(_) => (
-            "a table",
-            format!("write `[{}]` with its keys below", key.name),
-        ),
-        Kind::Named(_) => (
-            "a table",
-            format!("write `[{}.NAME]` with its keys below", key.name),
-        ),
-        Kind::Rows(_) => (
-            "a list of tables",
-            format!("write `[[{}]]` above each layer", key.name),
-        ),
-    };
-    Diagnostic::new(
-        span,
-        format!("`{}` is {}, and {wanted} is wanted", key.name, said(found)),
-    )
-    .with_help(help)
-}
-
-/// A member of a list that is not what the list is of.
-fn wrong_item(key: &'static Key, found: &DeValue<'_>, span: Range<usize>) -> Diagnostic {
-    let (wanted, help) = match key.kind {
-        Kind::Rows(_) => (
-            "tables",
-            "write `[[layers]]` above each layer, or `layers = [{ role = ... }, ...]`",
-        ),
-        Kind::Texts(_) => ("texts", "write one list of texts in quotes"),
-        _ => (
-            "numbers",
-            "write one list of numbers, without quotes: `[1e18, 2e18]`",
-        ),
-    };
-    Diagnostic::new(
-        span,
-        format!(
-            "`{}` holds {}, and {wanted} are wanted",
-            key.name,
-            said(found)
-        ),
-    )
-    .with_help(help)
-}
-
-fn said(value: &DeValue<'_>) -> &'static str {
-    match value {
-        DeValue::String(_) => "a text",
-        DeValue::Integer(_) | DeValue::Float(_) => "a number",
-        DeValue::Boolean(_) => "true or false",
-        DeValue::Datetime(_) => "a date",
-        DeValue::Array(_) => "a list",
-        DeValue::Table(_) => "a table",
-    }
+    // Every member is looked at, also behind one that is refused.
+    let converted: Vec<Option<(Range<usize>, T)>> = items
+        .iter()
+        .map(|item| Some((item.span(), convert(item, findings)?)))
+        .collect();
+    converted.into_iter().collect()
 }

@@ -1,9 +1,9 @@
 //! The file of what came back with a wafer: photoluminescence, X-ray, and what the user vouches for.
 
+use super::Medium;
 use super::file::map;
 use super::keys::{Key, Kind, Table, number};
-use super::reader::{self, Field, Findings, Values};
-use super::{Medium, syntax};
+use super::reader::{Findings, Values, value};
 use crate::materials::Sense;
 use crate::source::Diagnostic;
 use crate::units::CELSIUS_ZERO_K;
@@ -310,14 +310,8 @@ static ASSUME: Table = Table {
 ///
 /// Every fault of the file, each at its place and with advice, in the order of the text.
 pub fn read_returned(text: &str) -> Result<Returned, Vec<Diagnostic>> {
-    let (table, broken) = syntax::table(text);
-    let mut findings = Findings::in_file_of(&FILE);
-    let values = reader::read(&table, &mut findings);
-    if !broken.is_empty() {
-        return Err(super::with_broken_syntax(text, broken, findings.faults));
-    }
-    let returned = returned(values, &mut findings);
-    match returned {
+    let (values, mut findings) = super::values_of(text, &FILE)?;
+    match returned(values, &mut findings) {
         Some(returned) if findings.faults.is_empty() => Ok(returned),
         _ => Err(super::in_order(findings.faults)),
     }
@@ -367,10 +361,6 @@ fn returned(mut values: Values, findings: &mut Findings) -> Option<Returned> {
         xray,
         assumptions,
     })
-}
-
-fn value<T: Clone>(field: &Field<T>) -> Option<T> {
-    field.as_ref().and_then(|given| given.value.clone())
 }
 
 fn assumptions(mut values: Values) -> Assumptions {

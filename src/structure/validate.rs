@@ -7,7 +7,7 @@ use super::magnitude::check_magnitude;
 use super::number::shown;
 use super::order::order;
 use super::palette::Palette;
-use super::reader::{Field, Findings, Given};
+use super::reader::{Findings, value};
 use super::{
     Bands, Limits, Lineshape, Medium, Model, Operation, Overrides, Remark, Stack, Target,
     Wavelength,
@@ -84,12 +84,11 @@ fn target(table: &TargetTable, findings: &mut Findings) -> Option<Target> {
         );
         return None;
     };
-    let word = |field: &Field<String>| field.as_ref().and_then(|given| given.value.clone());
-    let kind = word(&table.kind).and_then(|word| {
+    let kind = value(&table.kind).and_then(|word| {
         let mut kinds = Wavelength::ALL.into_iter();
         kinds.find(|kind| kind.word() == word)
     });
-    let medium = word(&table.medium).and_then(|word| {
+    let medium = value(&table.medium).and_then(|word| {
         let mut media = Medium::ALL.into_iter();
         media.find(|medium| medium.word() == word)
     });
@@ -112,9 +111,9 @@ fn target(table: &TargetTable, findings: &mut Findings) -> Option<Target> {
         kind: kind.unwrap_or(taken_kind),
         wavelength_nm: given.value?,
         medium: medium.unwrap_or(taken_medium),
-        temperature_k: number(table.temperature_c.as_ref()).map(|it| it + CELSIUS_ZERO_K),
-        density_cm3: number(table.density_cm3.as_ref()),
-        tolerance_nm: number(table.tolerance_nm.as_ref()),
+        temperature_k: value(&table.temperature_c).map(|it| it + CELSIUS_ZERO_K),
+        density_cm3: value(&table.density_cm3),
+        tolerance_nm: value(&table.tolerance_nm),
     })
 }
 
@@ -141,8 +140,8 @@ fn operation(table: &OperationTable, overrides: &Overrides, findings: &mut Findi
             .with_help("keep one of them"),
         );
     }
-    let from_file = number(table.temperature_k.as_ref())
-        .or_else(|| number(table.temperature_c.as_ref()).map(|celsius| celsius + CELSIUS_ZERO_K));
+    let from_file = value(&table.temperature_k)
+        .or_else(|| value(&table.temperature_c).map(|celsius| celsius + CELSIUS_ZERO_K));
     let laid_over = overrides
         .temperature_k
         .filter(|kelvin| check_magnitude("temperature_k", *kelvin).is_ok());
@@ -150,7 +149,7 @@ fn operation(table: &OperationTable, overrides: &Overrides, findings: &mut Findi
     let listed = densities(table, findings);
     let (densities_cm3, working_density_cm3) = if overrides.densities_cm3.is_empty() {
         let highest = listed.last().copied().unwrap_or(DEFAULT_DENSITIES_CM3[4]);
-        let working = number(table.working_density_cm3.as_ref()).unwrap_or(highest);
+        let working = value(&table.working_density_cm3).unwrap_or(highest);
         (listed, working)
     } else {
         let mut densities = overrides.densities_cm3.clone();
@@ -187,32 +186,27 @@ fn densities(table: &OperationTable, findings: &mut Findings) -> Vec<f64> {
     listed.into_iter().map(|(_, density)| density).collect()
 }
 
-fn number(given: Option<&Given<f64>>) -> Option<f64> {
-    given.and_then(|given| given.value)
-}
-
 fn model(table: &ModelTable, overrides: &Overrides) -> Model {
-    let word = |field: &Field<String>| field.as_ref().and_then(|given| given.value.clone());
     let defaults = Model::default();
-    let bands = word(&table.bands).and_then(|word| {
+    let bands = value(&table.bands).and_then(|word| {
         [Bands::Single, Bands::Mixed]
             .into_iter()
             .find(|bands| bands.word() == word)
     });
-    let lineshape = word(&table.lineshape).and_then(|word| {
+    let lineshape = value(&table.lineshape).and_then(|word| {
         Lineshape::ALL
             .into_iter()
             .find(|lineshape| lineshape.word() == word)
     });
-    let nonparabolic = table.nonparabolic.as_ref().and_then(|given| given.value);
+    let nonparabolic = value(&table.nonparabolic);
     Model {
         bands: overrides.bands.or(bands).unwrap_or(defaults.bands),
         nonparabolic: nonparabolic.unwrap_or(defaults.nonparabolic),
         lineshape: lineshape.unwrap_or(defaults.lineshape),
-        intraband_fs: number(table.intraband_fs.as_ref()).unwrap_or(defaults.intraband_fs),
-        shrinkage_mev: number(table.shrinkage_mev.as_ref()).unwrap_or(defaults.shrinkage_mev),
-        conduction_share: number(table.conduction_share.as_ref()),
-        field_kv_cm: number(table.field_kv_cm.as_ref()).unwrap_or(defaults.field_kv_cm),
-        index: number(table.index.as_ref()),
+        intraband_fs: value(&table.intraband_fs).unwrap_or(defaults.intraband_fs),
+        shrinkage_mev: value(&table.shrinkage_mev).unwrap_or(defaults.shrinkage_mev),
+        conduction_share: value(&table.conduction_share),
+        field_kv_cm: value(&table.field_kv_cm).unwrap_or(defaults.field_kv_cm),
+        index: value(&table.index),
     }
 }
